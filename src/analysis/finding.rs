@@ -1,0 +1,80 @@
+//! A diagnosis in words, with its evidence, about the board or about the bench.
+
+use serde::{Deserialize, Serialize};
+
+/// One finding.
+#[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
+pub struct Finding {
+    /// A fixed word for programs.
+    pub code: FindingCode,
+    /// Whom it concerns.
+    pub about: About,
+    /// What was seen, with numbers, and what to look at first.
+    pub text: String,
+}
+
+/// Whether a finding concerns the board or the bench.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "snake_case")]
+pub enum About {
+    /// The board under test.
+    Board,
+    /// The instruments, leads, fixture or procedure. Makes the outcome `INVALID` when it stops a judgement.
+    Bench,
+}
+
+/// Fixed words for findings.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord, Serialize, Deserialize)]
+#[serde(rename_all = "snake_case")]
+pub enum FindingCode {
+    /// The board stays on down to the floor.
+    NeverTrips,
+    /// The board does not turn on at the start voltage although the load is there.
+    NeverOn,
+    /// The board does not come back on the way up.
+    NeverReEnables,
+    /// The load is not connected.
+    NoLoad,
+    /// Too little to tell an open switch from a missing load.
+    NoCurrent,
+    /// The board switches on and off by itself.
+    Chatter,
+    /// Source resistance times load current is more than the hysteresis.
+    SourceResistance,
+    /// A step was shorter than the board's delay, so the edge is smeared.
+    DwellShorterThanDelay,
+    /// More current than the load can draw at the pre-check voltage.
+    ShortCircuit,
+    /// Conducts like a diode at the pre-check voltage: connected the wrong way round?
+    Reversed,
+    /// Current flows out of the board.
+    BackFeed,
+    /// Voltage on the board before the output was on.
+    LiveBoard,
+    /// The terminals did not reach the set-point.
+    SupplyNotArrived,
+    /// The supply limited the current.
+    CurrentLimit,
+    /// Current between on and off.
+    NeitherOnNorOff,
+    /// The ammeter was on a range that cannot see the off current, or overloaded.
+    RangeNotAdequate,
+    /// Off current above what the limit allows, with a hint at the path.
+    OffCurrentHigh,
+    /// Off current below what the limit allows.
+    OffCurrentLow,
+    /// Instrument accuracy was not stated, so it is not in the uncertainty.
+    AccuracyNotIncluded,
+    /// No voltmeter at the board: the drop in the leads is not measured.
+    NoVoltmeter,
+    /// An instrument or its link failed.
+    BenchFault,
+    /// The run was stopped.
+    Aborted,
+    /// The run never ended: found at the next start.
+    Incomplete,
+    /// The output was not confirmed off.
+    OutputMayBeOn,
+    /// The trace holds too little to find any threshold.
+    NothingToSee,
+}

@@ -1,0 +1,305 @@
+//! One table of a document: typed getters that note what is missing, wrong or unknown.
+
+use super::{Document, Problem, Span};
+use crate::units::{Quantity, Unit, UnitError, parse_duration, parse_fraction, parse_quantity};
+use std::collections::BTreeSet;
+use std::time::Duration;
+use toml::Spanned;
+use toml::de::{DeTable, DeValue};
+
+/// A value and the place it was read from.
+#[derive(Clone, Debug, PartialEq)]
+pub struct At<T> {
+    /// The value.
+    pub value: T,
+    /// Where it stands.
+    pub span: Span,
+}
+
+/// A table of a document. On drop it notes every key that was never asked for.
+pub struct Table<'d, 't> {
+    document: &'d Document<'t>,
+    path: String,
+    header: Span,
+    entries: &'d DeTable<'t>,
+    asked: BTreeSet<String>,
+}
+
+impl<'d, 't> Table<'d, 't> {
+    pub(super) fn new(
+        document: &'d Document<'t>,
+        path: String,
+        header: Span,
+        entries: &'d DeTable<'t>,
+    ) -> Self {
+        Self { document, path, header, entries, asked: BTreeSet::new() }
+    }
+
+    /// Where the table begins: its header, or the braces of an inline table.
+    pub fn span(&self) -> Span {
+        self.header.clone()
+    }
+
+    /// Notes a problem found by comparing values.
+    pub fn problem(&self, span: Span, message: String) {
+        self.document.note(Problem::new(span, message));
+    }
+
+    /// Notes a problem of the table as a whole.
+    pub fn problem_here(&self, message: String) {
+        self.problem(self.header.clone(), message);
+    }
+
+    /// A required quantity with its unit in the text.
+    pub fn quantity<Q: Quantity>(&mut self, key: &str) -> Option<At<Q>> {
+        self.required(key, &wanted(Q::UNIT))?;
+        self.optional_quantity(key)
+    }
+
+    /// A quantity that may be left out.
+    pub fn optional_quantity<Q: Quantity>(&mut self, key: &str) -> Option<At<Q>> {
+        self.unit_text(key, Q::UNIT, |text| parse_quantity(text, Q::UNIT).map(Q::from_si))
+    }
+
+    /// A required time.
+    pub fn duration(&mut self, key: &str) -> Option<At<Duration>> {
+        self.required(key, &wanted(Unit::Second))?;
+        self.optional_duration(key)
+    }
+
+    /// A time that may be left out.
+    pub fn optional_duration(&mut self, key: &str) -> Option<At<Duration>> {
+        self.unit_text(key, Unit::Second, parse_duration)
+    }
+
+    /// A required share in per cent, as a fraction of one.
+    pub fn fraction(&mut self, key: &str) -> Option<At<f64>> {
+        self.required(key, &wanted(Unit::Percent))?;
+        self.optional_fraction(key)
+    }
+
+    /// A share in per cent that may be left out.
+    pub fn optional_fraction(&mut self, key: &str) -> Option<At<f64>> {
+        self.unit_text(key, Unit::Percent, parse_fraction)
+    }
+
+    /// A required text.
+    pub fn text(&mut self, key: &str) -> Option<At<String>> {
+        self.required(key, "a text in quotes")?;
+        self.optional_text(key)
+    }
+
+    /// A text that may be left out.
+    pub fn optional_text(&mut self, key: &str) -> Option<At<String>> {
+        let value = self.look(key)?;
+        match value.get_ref().as_str() {
+            Some(text) => Some(At { value: text.to_owned(), span: value.span() }),
+            None => self.wrong_type(key, value, "a text in quotes"),
+        }
+    }
+
+    /// A required whole number.
+    pub fn integer(&mut self, key: &str) -> Option<At<i64>> {
+        self.required(key, "a whole number")?;
+        self.optional_integer(key)
+    }
+
+    /// A whole number that may be left out.
+    pub fn optional_integer(&mut self, key: &str) -> Option<At<i64>> {
+        let value = self.look(key)?;
+        let number =
+            value.get_ref().as_integer().and_then(|n| i64::from_str_radix(n.as_str(), n.radix()).ok());
+        match number {
+            Some(number) => Some(At { value: number, span: value.span() }),
+            None => self.wrong_type(key, value, "a whole number"),
+        }
+    }
+
+    /// A plain number that may be left out; for ratios and counts that have no unit.
+    pub fn optional_number(&mut self, key: &str) -> Option<At<f64>> {
+        let value = self.look(key)?;
+        let number: Option<f64> = match value.get_ref() {
+            DeValue::Float(number) => number.as_str().parse().ok(),
+            DeValue::Integer(number) => number.as_str().parse().ok(),
+            _ => None,
+        };
+        match number.filter(|number| number.is_finite()) {
+            Some(number) => Some(At { value: number, span: value.span() }),
+            None => self.wrong_type(key, value, "a number"),
+        }
+    }
+
+    /// True or false, which may be left out.
+    pub fn optional_flag(&mut self, key: &str) -> Option<At<bool>> {
+        let value = self.look(key)?;
+        match value.get_ref().as_bool() {
+            Some(flag) => Some(At { value: flag, span: value.span() }),
+            None => self.wrong_type(key, value, "true or false"),
+        }
+    }
+
+    /// A list of texts that may be left out.
+    pub fn optional_texts(&mut self, key: &str) -> Option<At<Vec<At<String>>>> {
+        let value = self.look(key)?;
+        let Some(array) = value.get_ref().as_array() else {
+            return self.wrong_type(key, value, "a list of texts");
+        };
+        let mut texts = Vec::new();
+        for item in array.iter() {
+            match item.get_ref().as_str() {
+                Some(text) => texts.push(At { value: text.to_owned(), span: item.span() }),
+                None => return self.wrong_type(key, item, "a text in quotes"),
+            }
+        }
+        Some(At { value: texts, span: value.span() })
+    }
+
+    /// One of a few words, each standing for a value; required.
+    pub fn choice<T: Copy>(&mut self, key: &str, choices: &[(&str, T)]) -> Option<At<T>> {
+        self.required(key, &one_of(choices.iter().map(|(word, _)| *word)))?;
+        self.optional_choice(key, choices)
+    }
+
+    /// One of a few words, which may be left out.
+    pub fn optional_choice<T: Copy>(&mut self, key: &str, choices: &[(&str, T)]) -> Option<At<T>> {
+        let text = self.optional_text(key)?;
+        let found = choices.iter().find(|(word, _)| *word == text.value);
+        let Some((_, value)) = found else {
+            let words = one_of(choices.iter().map(|(word, _)| *word));
+            self.problem(
+                text.span,
+                format!("{}: read \"{}\", wanted {words}", self.name_of(key), text.value),
+            );
+            return None;
+        };
+        Some(At { value: *value, span: text.span })
+    }
+
+    /// A required table.
+    pub fn table(&mut self, key: &str) -> Option<Table<'d, 't>> {
+        self.required(key, "a table")?;
+        self.optional_table(key)
+    }
+
+    /// A table that may be left out.
+    pub fn optional_table(&mut self, key: &str) -> Option<Table<'d, 't>> {
+        let value = self.look(key)?;
+        match value.get_ref().as_table() {
+            Some(entries) => Some(Table::new(self.document, self.name_of(key), value.span(), entries)),
+            None => self.wrong_type(key, value, "a table"),
+        }
+    }
+
+    /// The tables of a list such as `[[range]]`; empty when the key is left out.
+    pub fn tables(&mut self, key: &str) -> Vec<Table<'d, 't>> {
+        let Some(value) = self.look(key) else { return Vec::new() };
+        let Some(array) = value.get_ref().as_array() else {
+            self.wrong_type::<()>(key, value, "a list of tables");
+            return Vec::new();
+        };
+        let mut tables = Vec::new();
+        for (index, item) in array.iter().enumerate() {
+            match item.get_ref().as_table() {
+                Some(entries) => {
+                    let path = format!("{}[{}]", self.name_of(key), index + 1);
+                    tables.push(Table::new(self.document, path, item.span(), entries));
+                }
+                None => {
+                    self.wrong_type::<()>(key, item, "a table");
+                }
+            }
+        }
+        tables
+    }
+
+    /// The keys present, in the order of the text; for tables whose keys the writer chooses.
+    pub fn keys(&self) -> Vec<At<String>> {
+        let mut keys: Vec<_> = self
+            .entries
+            .keys()
+            .map(|key| At { value: key.get_ref().to_string(), span: key.span() })
+            .collect();
+        keys.sort_by_key(|key| key.span.start);
+        keys
+    }
+
+    fn look(&mut self, key: &str) -> Option<&'d Spanned<DeValue<'t>>> {
+        self.asked.insert(key.to_owned());
+        self.entries.get(key)
+    }
+
+    fn required(&mut self, key: &str, wanted: &str) -> Option<()> {
+        if self.look(key).is_some() {
+            return Some(());
+        }
+        let place = if self.path.is_empty() { "the file".to_owned() } else { format!("[{}]", self.path) };
+        self.problem_here(format!("{place} has no key \"{key}\"; wanted {wanted}"));
+        None
+    }
+
+    fn unit_text<T>(
+        &mut self,
+        key: &str,
+        unit: Unit,
+        parse: impl FnOnce(&str) -> Result<T, UnitError>,
+    ) -> Option<At<T>> {
+        let value = self.look(key)?;
+        let Some(text) = value.get_ref().as_str() else {
+            return self.wrong_type(key, value, &format!("{} in quotes", wanted(unit)));
+        };
+        match parse(text) {
+            Ok(read) => Some(At { value: read, span: value.span() }),
+            Err(error) => {
+                self.problem(value.span(), format!("{}: {error}", self.name_of(key)));
+                None
+            }
+        }
+    }
+
+    fn wrong_type<T>(&self, key: &str, value: &Spanned<DeValue<'t>>, wanted: &str) -> Option<T> {
+        let read = with_article(value.get_ref().type_str());
+        self.problem(value.span(), format!("{}: read {read}, wanted {wanted}", self.name_of(key)));
+        None
+    }
+
+    fn name_of(&self, key: &str) -> String {
+        if self.path.is_empty() { key.to_owned() } else { format!("{}.{key}", self.path) }
+    }
+}
+
+impl Drop for Table<'_, '_> {
+    fn drop(&mut self) {
+        for key in self.entries.keys() {
+            let name = key.get_ref().as_ref();
+            if self.asked.contains(name) {
+                continue;
+            }
+            let place = if self.path.is_empty() { "the file".to_owned() } else { format!("[{}]", self.path) };
+            let nearest = self
+                .asked
+                .iter()
+                .map(|known| (strsim::damerau_levenshtein(known, name), known))
+                .min()
+                .filter(|(distance, known)| *distance <= known.len().div_ceil(2));
+            let hint = match nearest {
+                Some((_, known)) => format!("did you mean \"{known}\"?"),
+                None => format!("known keys: {}", self.asked.iter().cloned().collect::<Vec<_>>().join(", ")),
+            };
+            self.problem(key.span(), format!("unknown key \"{name}\" in {place}; {hint}"));
+        }
+    }
+}
+
+fn wanted(unit: Unit) -> String {
+    format!("{} such as \"{}\"", unit.kind(), unit.example())
+}
+
+fn one_of<'w>(words: impl Iterator<Item = &'w str>) -> String {
+    let quoted: Vec<String> = words.map(|word| format!("\"{word}\"")).collect();
+    quoted.join(" or ")
+}
+
+fn with_article(kind: &str) -> String {
+    let article = if kind.starts_with(['a', 'e', 'i', 'o', 'u']) { "an" } else { "a" };
+    format!("{article} {kind}")
+}

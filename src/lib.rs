@@ -1,0 +1,21 @@
+//! Bench test logger and pass/fail verifier for boards with an undervoltage cut-off.
+//!
+//! The rooms, in the order of a run:
+//!
+//! - [`profile`]: what a board must do, read from a file and checked
+//! - [`procedure`]: what to do next; one answer in, one action out (pure)
+//! - [`bench`]: carries the actions out, over serial ports or in virtual time
+//! - [`trace`]: what was measured
+//! - [`analysis`]: from a trace to quantities with uncertainty, and findings (pure)
+//! - [`verdict`]: quantities and limits to decisions and one outcome (pure)
+//!
+//! [`units`] and [`document`] serve them all: quantities with units, and files read with every problem at its place.
+
+pub mod analysis;
+pub mod bench;
+pub mod document;
+pub mod procedure;
+pub mod profile;
+pub mod trace;
+pub mod units;
+pub mod verdict;

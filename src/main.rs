@@ -1,0 +1,3 @@
+//! Parses the command line, runs one command, maps the result to an exit code.
+
+fn main() {}
