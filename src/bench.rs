@@ -1,5 +1,9 @@
 //! Carries out a procedure: in real time over serial ports, or in virtual time on the simulation.
 
+mod drive;
+
+pub use drive::{Watch, drive};
+
 use crate::procedure::{Action, Event};
 use std::time::Duration;
 

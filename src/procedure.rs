@@ -1,9 +1,71 @@
 //! What to do next: one answer in, one action out. Pure: no clock, no port, no file.
 //!
-//! Every way out of a procedure passes through *switch the output off*.
+//! [`Procedure::handle`] takes what came of the last action and the time since the start of the run, and returns the
+//! next action. Inside, a run is told from top to bottom ([`script`]): prepare, pre-check, arm, survey, off current,
+//! narrow, confirm. Whatever happens on the way, the script's only way out is [`switch_off`].
 
 mod ability;
 mod action;
+mod confirm;
+mod desk;
+mod off_current;
+mod plan;
+mod pre_check;
+mod probe;
+mod progress;
+mod script;
+mod switch_off;
+mod walk;
 
 pub use ability::Ability;
 pub use action::{Action, Event};
+pub use plan::Plan;
+pub use progress::{Progress, Stage};
+
+use crate::trace::Ending;
+use desk::Desk;
+use std::pin::Pin;
+use std::rc::Rc;
+use std::task::{Context, Poll, Waker};
+use std::time::Duration;
+
+/// One run of one board.
+pub struct Procedure {
+    desk: Rc<Desk>,
+    script: Pin<Box<dyn Future<Output = Ending>>>,
+    over: Option<Ending>,
+}
+
+impl Procedure {
+    /// A run that follows `plan`.
+    pub fn new(plan: Plan) -> Self {
+        let desk = Rc::new(Desk::new(plan.maximum));
+        let script = Box::pin(script::run(Rc::clone(&desk), plan));
+        Self { desk, script, over: None }
+    }
+
+    /// Takes what came of the last action at run time `now` and returns the next action.
+    ///
+    /// The first event is [`Event::Start`]. After [`Action::Finish`] every further event gets the same finish.
+    pub fn handle(&mut self, now: Duration, event: Event) -> Action {
+        if let Some(ending) = &self.over {
+            return Action::Finish(ending.clone());
+        }
+        self.desk.put(now, event);
+        match self.script.as_mut().poll(&mut Context::from_waker(Waker::noop())) {
+            Poll::Pending => self.desk.take_action(),
+            Poll::Ready(ending) => {
+                self.over = Some(ending.clone());
+                Action::Finish(ending)
+            }
+        }
+    }
+
+    /// How far the run has come.
+    pub fn progress(&self) -> Progress {
+        self.desk.progress()
+    }
+}
+
+#[cfg(test)]
+mod tests;

@@ -4,8 +4,10 @@
 //! bench a second ago, from a record of last year or from a CSV file.
 
 mod ending;
+mod switch_state;
 
 pub use ending::{BenchFault, Ending, FaultKind, OutputState, Stop};
+pub use switch_state::SwitchState;
 
 use crate::units::{Amps, Ohms, Volts};
 use serde::{Deserialize, Serialize};

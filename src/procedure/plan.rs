@@ -1,0 +1,144 @@
+//! The numbers of one run, worked out once from the profile and the bench's abilities.
+
+use super::Ability;
+use crate::profile::{Load, Profile, QuantityName, Ramp};
+use crate::units::{Amps, Volts};
+use std::time::Duration;
+
+/// Everything a procedure needs to know. One that exists keeps to the profile's maximum.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Plan {
+    /// No set-point is ever higher.
+    pub maximum: Volts,
+    /// Over-voltage protection set in the supply.
+    pub over_voltage: Volts,
+    /// Current limit set in the supply once the pre-check is passed.
+    pub current_limit: Amps,
+    /// Current limit during the pre-check.
+    pub pre_check_limit: Amps,
+    /// Board certainly on.
+    pub start: Volts,
+    /// End of the downward ramp.
+    pub floor: Volts,
+    /// The load behind the switch.
+    pub load: Load,
+    /// Step of the ramp over the whole range.
+    pub survey_step: Volts,
+    /// Step of the second ramp through the bracket of the first; `None` when the first is the only one.
+    pub fine_step: Option<Volts>,
+    /// Pace while the voltage falls.
+    pub down: Pace,
+    /// Pace while the voltage rises.
+    pub up: Pace,
+    /// Settling time of the supply after a step.
+    pub settle: Duration,
+    /// Time one reading takes.
+    pub read_time: Duration,
+    /// Settling time after a change of the ammeter's range.
+    pub range_settle: Duration,
+    /// How far the terminals may lie from the set-point, lead drop aside.
+    pub arrival_tolerance: Volts,
+    /// Whether arrival can be measured.
+    pub voltmeter: bool,
+    /// Voltages at which the off current is read, lowest first, all below the lowest trip.
+    pub off_points: Vec<Volts>,
+    /// Ammeter range while the board may conduct.
+    pub on_range: Amps,
+    /// Ammeter ranges for the off current, most sensitive first.
+    pub off_ranges: Vec<Amps>,
+}
+
+/// Waiting times in one direction.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Pace {
+    /// From the settled voltage to the reading: longer than the slowest delay the design allows.
+    pub dwell: Duration,
+    /// How long a voltage beside the threshold is held to see that nothing moves.
+    pub hold: Duration,
+}
+
+impl Plan {
+    /// Works out a run. Profile and bench have been checked against each other before.
+    pub fn new(profile: &Profile, ability: &Ability) -> Self {
+        let supply = profile.supply;
+        let load_current = |volts: Volts| volts / profile.load.resistance;
+        let (survey_step, fine_step) = steps(profile, ability.set_step);
+        let on_range = smallest_holding(&ability.ranges, supply.current_limit);
+        let off_limit = profile.limits.get(&QuantityName::OffCurrent);
+        let expected_off =
+            off_limit.and_then(|limit| limit.max).map_or(OFF_CURRENT_GUESS, |max| Amps(2.0 * max));
+        let first_off = smallest_holding(&ability.ranges, expected_off);
+        let off_ranges =
+            ability.ranges.iter().copied().filter(|r| *r >= first_off && *r <= on_range).collect();
+        let off_at = off_limit.and_then(|limit| limit.at);
+        let mut off_points: Vec<Volts> = std::iter::once(supply.floor).chain(off_at).collect();
+        off_points.sort_by(|a, b| a.0.total_cmp(&b.0));
+        off_points.dedup();
+        Self {
+            maximum: supply.maximum,
+            over_voltage: (supply.maximum * OVER_VOLTAGE).min(ability.max_voltage),
+            current_limit: supply.current_limit,
+            pre_check_limit: load_current(PRE_CHECK_LOW * 2.0)
+                .max(PRE_CHECK_CURRENT)
+                .max(ability.min_current),
+            start: supply.start,
+            floor: supply.floor,
+            load: profile.load,
+            survey_step,
+            fine_step,
+            down: Pace::new(profile.timing.detect_delay),
+            up: Pace::new(profile.timing.release_delay),
+            settle: ability.settle,
+            read_time: ability.read_time,
+            range_settle: ability.range_settle,
+            arrival_tolerance: ability.arrival_tolerance,
+            voltmeter: ability.voltmeter,
+            off_points,
+            on_range,
+            off_ranges,
+        }
+    }
+}
+
+impl Pace {
+    fn new(delay: Duration) -> Self {
+        Self { dwell: delay.mul_f64(1.25) + Duration::from_millis(1), hold: (delay * 10).max(SHORTEST_HOLD) }
+    }
+
+    /// The pace for a board that proved slower than its design allows.
+    pub(super) fn slower(self) -> Self {
+        Self { dwell: (self.dwell * 8).max(SHORTEST_HOLD / 2), hold: self.hold * 4 }
+    }
+}
+
+/// First pre-check voltage: below the knee of any semiconductor.
+pub(super) const PRE_CHECK_LOW: Volts = Volts(0.3);
+/// Second pre-check voltage: above the knee of a diode, below what a detector works at.
+pub(super) const PRE_CHECK_HIGH: Volts = Volts(1.0);
+/// Least current limit of the pre-check.
+const PRE_CHECK_CURRENT: Amps = Amps(5e-3);
+/// Over-voltage protection above the profile's maximum, so that an error of the set-point does not trigger it.
+const OVER_VOLTAGE: f64 = 1.05;
+/// A guess at the off current where the profile sets no limit.
+const OFF_CURRENT_GUESS: Amps = Amps(10e-6);
+/// A slow board shows itself within this time beside its threshold.
+const SHORTEST_HOLD: Duration = Duration::from_millis(250);
+
+/// Survey and fine step. Two passes with n and m steps over a span cost n + m and resolve n x m, so the geometric
+/// mean of span and resolution is the cheapest survey step.
+fn steps(profile: &Profile, set_step: Volts) -> (Volts, Option<Volts>) {
+    match profile.ramp {
+        Ramp::Staircase { step } => (step, None),
+        Ramp::Search { resolution } => {
+            let fine = resolution.max(set_step);
+            let span = profile.supply.start - profile.supply.floor;
+            let cells = (span / fine).sqrt().round().max(1.0);
+            (fine * cells, (cells > 1.0).then_some(fine))
+        }
+    }
+}
+
+/// The smallest of `ranges` (smallest first) that holds `current`, or the largest there is.
+fn smallest_holding(ranges: &[Amps], current: Amps) -> Amps {
+    ranges.iter().copied().find(|range| *range >= current).or(ranges.last().copied()).unwrap_or(current)
+}

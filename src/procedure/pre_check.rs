@@ -1,0 +1,80 @@
+//! Before any real voltage: is the board dead, not shorted, and the right way round?
+
+use super::desk::Desk;
+use super::plan::{PRE_CHECK_HIGH, PRE_CHECK_LOW};
+use super::{Action, Plan};
+use crate::trace::{Sample, Stop};
+use crate::units::{Amps, Volts};
+use std::time::Duration;
+
+/// Output verified off, protections set in the supply, then 0.3 V and 1 V with little current.
+///
+/// At 0.3 V no semiconductor conducts: more current than the load draws is a short. At 1 V a detector does not work
+/// yet and the switch is open: a current well below the load's is a diode in forward direction, so the board is
+/// probably reversed. A current like the load's is a closed switch, which the ramp will judge.
+pub(super) async fn pre_check(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
+    desk.order(Action::OutputOff).await?;
+    let protect = Action::Protect { over_voltage: plan.over_voltage, current_limit: plan.pre_check_limit };
+    desk.order(protect).await?;
+    desk.order(Action::Range(plan.on_range)).await?;
+    desk.wait(plan.range_settle).await?;
+    wait_until_dead(desk, plan).await?;
+
+    desk.set(PRE_CHECK_LOW).await?;
+    desk.order(Action::OutputOn).await?;
+    let low = settled(desk, plan).await?;
+    if current(&low) > load_current(plan, low.set) * SHORT {
+        return Err(Stop::ShortCircuit { at: low.terminals(), current: current(&low) });
+    }
+
+    desk.set(PRE_CHECK_HIGH.min(plan.floor)).await?;
+    let high = settled(desk, plan).await?;
+    let share = current(&high) / load_current(plan, high.terminals().max(PRE_CHECK_LOW));
+    if share > DIODE.0 && share < DIODE.1 {
+        return Err(Stop::ConductsBackwards { at: high.terminals(), current: current(&high) });
+    }
+    Ok(())
+}
+
+/// Current above this multiple of the load's is a short.
+const SHORT: f64 = 1.5;
+/// Shares of the load's current between which something other than the load conducts.
+const DIODE: (f64, f64) = (0.02, 0.7);
+
+/// An overloaded meter on a range that holds the current limit means at least that.
+fn current(sample: &Sample) -> Amps {
+    sample.current.amps().or(sample.range).unwrap_or(Amps(f64::INFINITY))
+}
+
+fn load_current(plan: &Plan, volts: Volts) -> Amps {
+    volts / plan.load.resistance
+}
+
+async fn settled(desk: &Desk, plan: &Plan) -> Result<Sample, Stop> {
+    desk.wait(plan.settle).await?;
+    desk.read().await
+}
+
+/// With the output off nothing may stand at the terminals; charge left from before gets time to drain.
+async fn wait_until_dead(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
+    if !plan.voltmeter {
+        return Ok(());
+    }
+    let patience = desk.now() + DRAIN;
+    loop {
+        let at = desk.read().await?.terminals();
+        if at.abs() < DEAD {
+            return Ok(());
+        }
+        if desk.now() >= patience {
+            return Err(Stop::LiveBoard { at });
+        }
+        desk.wait(DRAIN_POLL).await?;
+    }
+}
+
+/// Below this a board counts as discharged.
+pub(super) const DEAD: Volts = Volts(0.1);
+const DRAIN: Duration = Duration::from_secs(5);
+/// Pause between looks at a draining board.
+pub(super) const DRAIN_POLL: Duration = Duration::from_millis(100);

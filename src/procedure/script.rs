@@ -1,0 +1,130 @@
+//! A run from beginning to end, as a technician would tell it.
+
+use super::confirm::{Confirmed, confirm_re_enable, confirm_trip};
+use super::desk::Desk;
+use super::off_current::measure_off_current;
+use super::plan::Pace;
+use super::pre_check::pre_check;
+use super::probe::{arm_off, arm_on};
+use super::progress::{Stage, left};
+use super::switch_off::switch_off;
+use super::walk::{Edge, walk_down, walk_up};
+use super::{Action, Plan};
+use crate::trace::{Ending, Stop};
+use crate::units::Volts;
+use std::rc::Rc;
+
+/// The whole run. Whatever ends the measuring, the output is switched off.
+pub(super) async fn run(desk: Rc<Desk>, plan: Plan) -> Ending {
+    desk.begin().await;
+    let stop = match measure(&desk, &plan).await {
+        Ok(()) => Stop::Completed,
+        Err(stop) => stop,
+    };
+    switch_off(&desk, &plan, stop).await
+}
+
+async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
+    let enter = |stage| desk.enter(stage, left(plan, stage));
+
+    enter(Stage::PreCheck);
+    pre_check(desk, plan).await?;
+
+    enter(Stage::Arm);
+    desk.order(Action::LimitCurrent(plan.current_limit)).await?;
+    arm_on(desk, plan).await?;
+
+    enter(Stage::SurveyDown);
+    let Some(trip) = walk_down(desk, plan, plan.start, plan.floor, plan.survey_step, plan.down).await? else {
+        return Ok(());
+    };
+    descend_to_floor(desk, plan, trip.changed).await?;
+
+    enter(Stage::OffCurrent);
+    measure_off_current(desk, plan).await?;
+
+    enter(Stage::SurveyUp);
+    let low = plan.off_points.last().copied().unwrap_or(plan.floor);
+    let Some(re_enable) = walk_up(desk, plan, low, plan.start, plan.survey_step, plan.up).await? else {
+        return Ok(());
+    };
+
+    let trip = narrow_trip(desk, plan, trip).await?;
+    enter(Stage::NarrowUp);
+    narrow_re_enable(desk, plan, trip, re_enable).await
+}
+
+/// Goes on below the trip, so that a board that conducts again further down is seen.
+async fn descend_to_floor(desk: &Desk, plan: &Plan, from: Volts) -> Result<(), Stop> {
+    let next = from - plan.survey_step;
+    if next > plan.floor {
+        walk_down(desk, plan, next, plan.floor, plan.survey_step, plan.down).await?;
+    }
+    Ok(())
+}
+
+/// Small steps through the bracket, then a hold just above it; a board that trips there is slow and gets more time.
+async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Stop> {
+    let step = plan.fine_step.unwrap_or(plan.survey_step);
+    let mut pace = plan.down;
+    let mut edge = survey;
+    let mut margin = 2.0;
+    let mut known = plan.fine_step.is_none();
+    for _ in 0..ATTEMPTS {
+        if !known {
+            desk.enter(Stage::NarrowDown, left(plan, Stage::NarrowDown));
+            arm_on(desk, plan).await?;
+            let from = (survey.unchanged + step * margin).min(plan.start);
+            let to = (survey.changed - plan.survey_step).max(plan.floor);
+            match walk_down(desk, plan, from, to, step, pace).await? {
+                Some(found) => edge = found,
+                None => return Ok(edge),
+            }
+        }
+        desk.enter(Stage::Confirm, left(plan, Stage::Confirm));
+        match confirm_trip(desk, plan, edge, pace).await? {
+            Confirmed::Stands => break,
+            Confirmed::Moved => (known, pace, margin) = (false, slower(pace), wider(plan, step, margin)),
+        }
+    }
+    Ok(edge)
+}
+
+/// The mirror image of [`narrow_trip`]; the board is brought below its trip before each attempt.
+async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) -> Result<(), Stop> {
+    let step = plan.fine_step.unwrap_or(plan.survey_step);
+    let below_trip = (trip.changed - plan.survey_step).max(plan.floor);
+    let mut pace = plan.up;
+    let mut edge = survey;
+    let mut margin = 2.0;
+    let mut known = plan.fine_step.is_none();
+    for _ in 0..ATTEMPTS {
+        if !known {
+            arm_off(desk, plan, below_trip).await?;
+            let from = (survey.unchanged - step * margin).max(below_trip);
+            let to = (survey.changed + plan.survey_step).min(plan.start);
+            match walk_up(desk, plan, from, to, step, pace).await? {
+                Some(found) => edge = found,
+                None => return Ok(()),
+            }
+        }
+        desk.enter(Stage::Confirm, left(plan, Stage::Confirm));
+        match confirm_re_enable(desk, plan, edge, below_trip, pace).await? {
+            Confirmed::Stands => break,
+            Confirmed::Moved => (known, pace, margin) = (false, slower(pace), wider(plan, step, margin)),
+        }
+    }
+    Ok(())
+}
+
+/// How often a bracket is looked for before the last one has to do.
+const ATTEMPTS: usize = 3;
+
+fn slower(pace: Pace) -> Pace {
+    pace.slower()
+}
+
+/// Begins two survey steps further away: the survey was too fast as well.
+fn wider(plan: &Plan, step: Volts, margin: f64) -> f64 {
+    margin + 2.0 * (plan.survey_step / step)
+}

@@ -1,0 +1,53 @@
+//! Whether the switch was open or closed at a reading.
+
+use super::Current;
+use crate::units::{Amps, Ohms, Volts};
+
+/// State of the switch as the current tells it.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum SwitchState {
+    /// Closed: the load draws its current.
+    On,
+    /// Open: nothing but leakage flows.
+    Off,
+    /// In between; never rounded to either.
+    Neither,
+}
+
+impl SwitchState {
+    /// Tells the state from the current the load would draw at this voltage, not from one fixed number.
+    ///
+    /// On above half of `volts / load`; off below a hundredth of it, or below five standard uncertainties of the
+    /// reading where that is more. An overloaded meter carries at least its range: on. A voltage of zero tells
+    /// nothing.
+    pub fn of(current: Current, volts: Volts, load: Ohms, uncertainty: Amps) -> Self {
+        let Some(current) = current.amps() else { return Self::On };
+        let full = volts / load;
+        if volts > Volts::ZERO && current > full * ON_SHARE {
+            Self::On
+        } else if current < (full * OFF_SHARE).max(uncertainty * OFF_UNCERTAINTIES) {
+            Self::Off
+        } else {
+            Self::Neither
+        }
+    }
+}
+
+const ON_SHARE: f64 = 0.5;
+const OFF_SHARE: f64 = 0.01;
+const OFF_UNCERTAINTIES: f64 = 5.0;
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn the_load_decides_what_is_on() {
+        let state = |amps| SwitchState::of(Current::Value(Amps(amps)), Volts(5.5), Ohms(55.0), Amps::ZERO);
+        assert_eq!(state(0.1), SwitchState::On);
+        assert_eq!(state(0.03), SwitchState::Neither);
+        assert_eq!(state(2.4e-6), SwitchState::Off);
+        assert_eq!(state(f64::NAN), SwitchState::Neither);
+        assert_eq!(SwitchState::of(Current::OVERLOAD, Volts(5.5), Ohms(55.0), Amps::ZERO), SwitchState::On);
+    }
+}
