@@ -1,20 +1,12 @@
 //! One table of a document: typed getters that note what is missing, wrong or unknown.
 
-use super::{Document, Problem, Span};
+use super::{At, Document, Problem, Span};
 use crate::units::{Quantity, Unit, UnitError, parse_duration, parse_fraction, parse_quantity};
+use jiff::civil::Date;
 use std::collections::BTreeSet;
 use std::time::Duration;
 use toml::Spanned;
 use toml::de::{DeTable, DeValue};
-
-/// A value and the place it was read from.
-#[derive(Clone, Debug, PartialEq)]
-pub struct At<T> {
-    /// The value.
-    pub value: T,
-    /// Where it stands.
-    pub span: Span,
-}
 
 /// A table of a document. On drop it notes every key that was never asked for.
 pub struct Table<'d, 't> {
@@ -35,19 +27,15 @@ impl<'d, 't> Table<'d, 't> {
         Self { document, path, header, entries, asked: BTreeSet::new() }
     }
 
-    /// Where the table begins: its header, or the braces of an inline table.
-    pub fn span(&self) -> Span {
-        self.header.clone()
-    }
-
-    /// Notes a problem found by comparing values.
-    pub fn problem(&self, span: Span, message: String) {
-        self.document.note(Problem::new(span, message));
+    /// Notes a problem with `value`, found by looking at it or by comparing it with others. The message begins with
+    /// its key and its text.
+    pub fn problem<T>(&self, value: &At<T>, what: &str) {
+        self.note(value.span.clone(), format!("{value}: {what}"));
     }
 
     /// Notes a problem of the table as a whole.
     pub fn problem_here(&self, message: String) {
-        self.problem(self.header.clone(), message);
+        self.note(self.header.clone(), message);
     }
 
     /// A required quantity with its unit in the text.
@@ -59,6 +47,11 @@ impl<'d, 't> Table<'d, 't> {
     /// A quantity that may be left out.
     pub fn optional_quantity<Q: Quantity>(&mut self, key: &str) -> Option<At<Q>> {
         self.unit_text(key, Q::UNIT, |text| parse_quantity(text, Q::UNIT).map(Q::from_si))
+    }
+
+    /// A value of `unit` in SI units that may be left out; for keys whose unit is known only when the file is read.
+    pub fn optional_value(&mut self, key: &str, unit: Unit) -> Option<At<f64>> {
+        self.unit_text(key, unit, |text| parse_quantity(text, unit))
     }
 
     /// A required time.
@@ -93,7 +86,7 @@ impl<'d, 't> Table<'d, 't> {
     pub fn optional_text(&mut self, key: &str) -> Option<At<String>> {
         let value = self.look(key)?;
         match value.get_ref().as_str() {
-            Some(text) => Some(At { value: text.to_owned(), span: value.span() }),
+            Some(text) => Some(self.at(key, value, text.to_owned())),
             None => self.wrong_type(key, value, "a text in quotes"),
         }
     }
@@ -110,31 +103,38 @@ impl<'d, 't> Table<'d, 't> {
         let number =
             value.get_ref().as_integer().and_then(|n| i64::from_str_radix(n.as_str(), n.radix()).ok());
         match number {
-            Some(number) => Some(At { value: number, span: value.span() }),
+            Some(number) => Some(self.at(key, value, number)),
             None => self.wrong_type(key, value, "a whole number"),
         }
     }
 
-    /// A plain number that may be left out; for ratios and counts that have no unit.
-    pub fn optional_number(&mut self, key: &str) -> Option<At<f64>> {
-        let value = self.look(key)?;
-        let number: Option<f64> = match value.get_ref() {
-            DeValue::Float(number) => number.as_str().parse().ok(),
-            DeValue::Integer(number) => number.as_str().parse().ok(),
-            _ => None,
+    /// One of a few whole numbers, each standing for a value; required.
+    pub fn integer_choice<T: Copy>(&mut self, key: &str, choices: &[(i64, T)]) -> Option<At<T>> {
+        let wanted = any_of(choices.iter().map(|(number, _)| number.to_string()));
+        self.required(key, &wanted)?;
+        let number = self.optional_integer(key)?;
+        let Some((_, value)) = choices.iter().find(|(choice, _)| *choice == number.value) else {
+            self.problem(&number, &format!("wanted {wanted}"));
+            return None;
         };
-        match number.filter(|number| number.is_finite()) {
-            Some(number) => Some(At { value: number, span: value.span() }),
-            None => self.wrong_type(key, value, "a number"),
-        }
+        Some(number.with(*value))
     }
 
-    /// True or false, which may be left out.
-    pub fn optional_flag(&mut self, key: &str) -> Option<At<bool>> {
+    /// A date that may be left out: `2027-03-31`, with or without quotes.
+    pub fn optional_date(&mut self, key: &str) -> Option<At<Date>> {
+        let wanted = "a date such as 2027-03-31";
         let value = self.look(key)?;
-        match value.get_ref().as_bool() {
-            Some(flag) => Some(At { value: flag, span: value.span() }),
-            None => self.wrong_type(key, value, "true or false"),
+        let text = match value.get_ref() {
+            DeValue::String(text) => text.to_string(),
+            DeValue::Datetime(date) => date.to_string(),
+            _ => return self.wrong_type(key, value, wanted),
+        };
+        match text.parse::<Date>() {
+            Ok(date) if text.len() == "2027-03-31".len() => Some(self.at(key, value, date)),
+            _ => {
+                self.problem(&self.at(key, value, ()), &format!("wanted {wanted}"));
+                None
+            }
         }
     }
 
@@ -147,11 +147,11 @@ impl<'d, 't> Table<'d, 't> {
         let mut texts = Vec::new();
         for item in array.iter() {
             match item.get_ref().as_str() {
-                Some(text) => texts.push(At { value: text.to_owned(), span: item.span() }),
+                Some(text) => texts.push(self.at(key, item, text.to_owned())),
                 None => return self.wrong_type(key, item, "a text in quotes"),
             }
         }
-        Some(At { value: texts, span: value.span() })
+        Some(self.at(key, value, texts))
     }
 
     /// One of a few words, each standing for a value; required.
@@ -163,16 +163,11 @@ impl<'d, 't> Table<'d, 't> {
     /// One of a few words, which may be left out.
     pub fn optional_choice<T: Copy>(&mut self, key: &str, choices: &[(&str, T)]) -> Option<At<T>> {
         let text = self.optional_text(key)?;
-        let found = choices.iter().find(|(word, _)| *word == text.value);
-        let Some((_, value)) = found else {
-            let words = one_of(choices.iter().map(|(word, _)| *word));
-            self.problem(
-                text.span,
-                format!("{}: read \"{}\", wanted {words}", self.name_of(key), text.value),
-            );
+        let Some((_, value)) = choices.iter().find(|(word, _)| *word == text.value) else {
+            self.problem(&text, &format!("wanted {}", one_of(choices.iter().map(|(word, _)| *word))));
             return None;
         };
-        Some(At { value: *value, span: text.span })
+        Some(text.with(*value))
     }
 
     /// A required table.
@@ -212,15 +207,9 @@ impl<'d, 't> Table<'d, 't> {
         tables
     }
 
-    /// The keys present, in the order of the text; for tables whose keys the writer chooses.
-    pub fn keys(&self) -> Vec<At<String>> {
-        let mut keys: Vec<_> = self
-            .entries
-            .keys()
-            .map(|key| At { value: key.get_ref().to_string(), span: key.span() })
-            .collect();
-        keys.sort_by_key(|key| key.span.start);
-        keys
+    /// True when the writer gave this key, whatever stands there.
+    pub fn has(&self, key: &str) -> bool {
+        self.entries.contains_key(key)
     }
 
     fn look(&mut self, key: &str) -> Option<&'d Spanned<DeValue<'t>>> {
@@ -232,8 +221,7 @@ impl<'d, 't> Table<'d, 't> {
         if self.look(key).is_some() {
             return Some(());
         }
-        let place = if self.path.is_empty() { "the file".to_owned() } else { format!("[{}]", self.path) };
-        self.problem_here(format!("{place} has no key \"{key}\"; wanted {wanted}"));
+        self.problem_here(format!("{} has no key \"{key}\"; wanted {wanted}", self.place()));
         None
     }
 
@@ -248,9 +236,9 @@ impl<'d, 't> Table<'d, 't> {
             return self.wrong_type(key, value, &format!("{} in quotes", wanted(unit)));
         };
         match parse(text) {
-            Ok(read) => Some(At { value: read, span: value.span() }),
+            Ok(read) => Some(self.at(key, value, read)),
             Err(error) => {
-                self.problem(value.span(), format!("{}: {error}", self.name_of(key)));
+                self.note(value.span(), format!("{}: {error}", self.name_of(key)));
                 None
             }
         }
@@ -258,8 +246,22 @@ impl<'d, 't> Table<'d, 't> {
 
     fn wrong_type<T>(&self, key: &str, value: &Spanned<DeValue<'t>>, wanted: &str) -> Option<T> {
         let read = with_article(value.get_ref().type_str());
-        self.problem(value.span(), format!("{}: read {read}, wanted {wanted}", self.name_of(key)));
+        self.note(value.span(), format!("{}: read {read}, wanted {wanted}", self.name_of(key)));
         None
+    }
+
+    fn at<T>(&self, key: &str, value: &Spanned<DeValue<'t>>, read: T) -> At<T> {
+        let span = value.span();
+        let written = self.document.text.get(span.clone()).and_then(|text| text.lines().next());
+        At { value: read, key: self.name_of(key), written: written.unwrap_or_default().to_owned(), span }
+    }
+
+    fn note(&self, span: Span, message: String) {
+        self.document.note(Problem::new(span, message));
+    }
+
+    fn place(&self) -> String {
+        if self.path.is_empty() { "the file".to_owned() } else { format!("[{}]", self.path) }
     }
 
     fn name_of(&self, key: &str) -> String {
@@ -274,10 +276,10 @@ impl Drop for Table<'_, '_> {
             if self.asked.contains(name) {
                 continue;
             }
-            let place = if self.path.is_empty() { "the file".to_owned() } else { format!("[{}]", self.path) };
             let nearest = self
                 .asked
                 .iter()
+                .filter(|known| !self.entries.contains_key(known.as_str()))
                 .map(|known| (strsim::damerau_levenshtein(known, name), known))
                 .min()
                 .filter(|(distance, known)| *distance <= known.len().div_ceil(2));
@@ -285,7 +287,7 @@ impl Drop for Table<'_, '_> {
                 Some((_, known)) => format!("did you mean \"{known}\"?"),
                 None => format!("known keys: {}", self.asked.iter().cloned().collect::<Vec<_>>().join(", ")),
             };
-            self.problem(key.span(), format!("unknown key \"{name}\" in {place}; {hint}"));
+            self.note(key.span(), format!("unknown key \"{name}\" in {}; {hint}", self.place()));
         }
     }
 }
@@ -295,8 +297,11 @@ fn wanted(unit: Unit) -> String {
 }
 
 fn one_of<'w>(words: impl Iterator<Item = &'w str>) -> String {
-    let quoted: Vec<String> = words.map(|word| format!("\"{word}\"")).collect();
-    quoted.join(" or ")
+    any_of(words.map(|word| format!("\"{word}\"")))
+}
+
+fn any_of(words: impl Iterator<Item = String>) -> String {
+    words.collect::<Vec<_>>().join(" or ")
 }
 
 fn with_article(kind: &str) -> String {
