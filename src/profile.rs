@@ -1,10 +1,51 @@
-//! What a board must do: a checked profile.
+//! What a board must do: a profile, read from hand-written TOML and checked in full.
+//!
+//! ```toml
+//! schema = 1                          # version of this format
+//! board = "RN-204"                    # part number
+//! revision = "C"
+//! title = "River-level logger"        # for people
+//! serial_number = "RN[0-9]{6}"        # regular expression, matched in full
+//!
+//! [supply]                            # how the supply is driven
+//! start = "7.60 V"                    # board certainly on
+//! floor = "5.20 V"                    # end of the downward ramp
+//! maximum = "8.40 V"                  # never exceeded; at most 30 V
+//! current_limit = "350 mA"            # above the load's current; at most 5 A
+//!
+//! [load]                              # what the board drives during the test
+//! resistance = "55 ohm"
+//! tolerance = "1 %"
+//! rating = "3 W"                      # at least maximum^2 / resistance
+//!
+//! [timing]                            # slowest the design allows
+//! detect_delay = "5 ms"               # crossing the trip to open switch
+//! release_delay = "20 ms"             # crossing the re-enable to closed switch
+//!
+//! [ramp]
+//! mode = "search"                     # or "staircase"
+//! step = "10 mV"                      # of a staircase; needed when the mode is staircase
+//! resolution = "2 mV"                 # of a search; needed when the mode is search
+//!
+//! [limits]                            # any quantity of QuantityName; min, max or both
+//! trip = { min = "5.88 V", max = "6.12 V" }
+//! off_current = { at = "5.80 V", max = "4.0 uA" }   # only this one has "at"
+//! ```
 
+mod check;
+mod check_limits;
+mod draft;
 mod limit;
+#[cfg(test)]
+mod sample;
+mod serial_number;
 
 pub use limit::{Limit, QuantityName};
 
+use crate::document::{Document, Problems};
 use crate::units::{Amps, Ohms, Volts, Watts};
+use draft::Draft;
+use sha2::{Digest, Sha256};
 use std::collections::BTreeMap;
 use std::time::Duration;
 
@@ -17,7 +58,7 @@ pub struct Profile {
     pub revision: String,
     /// What it is, for people.
     pub title: String,
-    /// Pattern every serial number matches in full.
+    /// Pattern of serial numbers, anchored at both ends; [`Profile::matches`] applies it.
     pub serial_number: regex_lite::Regex,
     /// How the supply is driven.
     pub supply: Supply,
@@ -29,6 +70,8 @@ pub struct Profile {
     pub ramp: Ramp,
     /// Limits by quantity.
     pub limits: BTreeMap<QuantityName, Limit>,
+    /// SHA-256 (FIPS 180-4) of the file's text, 64 hexadecimal digits.
+    pub hash: String,
 }
 
 /// Voltages and current of the supply during a run.
@@ -55,6 +98,13 @@ pub struct Load {
     pub rating: Watts,
 }
 
+impl Load {
+    /// Most current a load inside its tolerance draws at `voltage`.
+    pub fn most_current(&self, voltage: Volts) -> Amps {
+        voltage / (self.resistance * (1.0 - self.tolerance))
+    }
+}
+
 /// Longest delays of the board.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub struct Timing {
@@ -77,4 +127,108 @@ pub enum Ramp {
         /// Width of a cell.
         resolution: Volts,
     },
+}
+
+impl Profile {
+    /// Reads and checks the profile in `text`, which came from the file called `name`.
+    ///
+    /// # Errors
+    /// Every problem of the file: what cannot be read, what is unknown, and what does not fit together.
+    pub fn read(name: &str, text: &str) -> Result<Self, Problems> {
+        Document::new(name, text).read(|root| {
+            let draft = Draft::read(root);
+            check::check(&draft, root);
+            check_limits::check(&draft, root);
+            draft.finish(hash(text))
+        })
+    }
+
+    /// True when the whole of `serial` is a serial number of this board.
+    pub fn matches(&self, serial: &str) -> bool {
+        self.serial_number.is_match(serial)
+    }
+}
+
+fn hash(text: &str) -> String {
+    Sha256::digest(text.as_bytes()).iter().map(|byte| format!("{byte:02x}")).collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use proptest::prelude::*;
+
+    #[test]
+    fn every_shipped_profile_is_read_without_complaint() {
+        for (name, text) in [
+            ("river-node.toml", sample::RIVER_NODE),
+            ("garden-probe.toml", include_str!("../profiles/garden-probe.toml")),
+            ("mast-beacon.toml", include_str!("../profiles/mast-beacon.toml")),
+        ] {
+            if let Err(problems) = Profile::read(name, text) {
+                panic!("{problems}");
+            }
+        }
+    }
+
+    #[test]
+    fn the_river_node_is_read_as_written() {
+        let profile = Profile::read("river-node.toml", sample::RIVER_NODE).expect("a good profile");
+        assert_eq!(profile.board, "RN-204");
+        assert_eq!(profile.revision, "C");
+        assert_eq!(
+            profile.supply,
+            Supply { start: Volts(7.6), floor: Volts(5.2), maximum: Volts(8.4), current_limit: Amps(0.35) }
+        );
+        assert_eq!(profile.load, Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0) });
+        assert_eq!(profile.timing.release_delay, Duration::from_millis(20));
+        assert_eq!(profile.ramp, Ramp::Search { resolution: Volts(0.002) });
+        assert_eq!(profile.limits.len(), 4);
+        assert_eq!(
+            profile.limits[&QuantityName::OffCurrent],
+            Limit { at: Some(Volts(5.8)), min: Some(1e-6), max: Some(4e-6) }
+        );
+    }
+
+    #[test]
+    fn a_serial_number_matches_in_full_or_not_at_all() {
+        let profile = Profile::read("river-node.toml", sample::RIVER_NODE).expect("a good profile");
+        assert!(profile.matches("RN000123"));
+        for wrong in ["", "RN00012", "RN0001234", "xRN000123", "rn000123", "RN000123\n"] {
+            assert!(!profile.matches(wrong), "{wrong:?}");
+        }
+    }
+
+    /// FIPS 180-4, the one-block example message "abc".
+    #[test]
+    fn the_hash_is_sha_256_of_the_text() {
+        assert_eq!(hash("abc"), "ba7816bf8f01cfea414140de5dae2223b00361a396177a9cb410ff61f20015ad");
+    }
+
+    proptest! {
+        #[test]
+        fn any_text_is_read_or_refused_without_panic(text in "\\PC{0,200}") {
+            if let Err(problems) = Profile::read("p.toml", &text) {
+                prop_assert!(problems.lines().count() > 0);
+                prop_assert!(!problems.to_string().is_empty());
+            }
+        }
+
+        #[test]
+        fn a_good_profile_with_any_damage_is_read_or_refused_without_panic(
+            at in 0..sample::RIVER_NODE.len(),
+            length in 0_usize..40,
+            damage in "[\\PC\"\\[\\]{}=.0-9\n]{0,12}",
+        ) {
+            let mut text = sample::RIVER_NODE.to_owned();
+            let end = (at + length).min(text.len());
+            if text.is_char_boundary(at) && text.is_char_boundary(end) {
+                text.replace_range(at..end, &damage);
+            }
+            if let Err(problems) = Profile::read("p.toml", &text) {
+                prop_assert!(problems.lines().count() > 0, "refused without a reason: {text}");
+                prop_assert!(!problems.to_string().is_empty());
+            }
+        }
+    }
 }

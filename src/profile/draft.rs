@@ -1,0 +1,192 @@
+//! What was read of a profile so far: each value by itself good, with its place, none compared with another yet.
+
+use super::serial_number;
+use super::{Limit, Load, Profile, QuantityName, Ramp, Supply, Timing};
+use crate::document::{At, Table};
+use crate::units::{Amps, Ohms, Volts, Watts};
+use regex_lite::Regex;
+use std::collections::BTreeMap;
+use std::time::Duration;
+
+/// A profile with holes; what is missing or unreadable has been noted already.
+#[derive(Default)]
+pub(super) struct Draft {
+    pub(super) board: Option<At<String>>,
+    pub(super) revision: Option<At<String>>,
+    pub(super) title: Option<At<String>>,
+    pub(super) serial_number: Option<Regex>,
+    pub(super) supply: SupplyDraft,
+    pub(super) load: LoadDraft,
+    pub(super) timing: TimingDraft,
+    pub(super) ramp: RampDraft,
+    pub(super) limits: BTreeMap<QuantityName, LimitDraft>,
+}
+
+#[derive(Default)]
+pub(super) struct SupplyDraft {
+    pub(super) start: Option<At<Volts>>,
+    pub(super) floor: Option<At<Volts>>,
+    pub(super) maximum: Option<At<Volts>>,
+    pub(super) current_limit: Option<At<Amps>>,
+}
+
+#[derive(Default)]
+pub(super) struct LoadDraft {
+    pub(super) resistance: Option<At<Ohms>>,
+    pub(super) tolerance: Option<At<f64>>,
+    pub(super) rating: Option<At<Watts>>,
+}
+
+#[derive(Default)]
+pub(super) struct TimingDraft {
+    pub(super) detect_delay: Option<At<Duration>>,
+    pub(super) release_delay: Option<At<Duration>>,
+}
+
+#[derive(Default)]
+pub(super) struct RampDraft {
+    pub(super) mode: Option<At<ModeWord>>,
+    pub(super) step: Option<At<Volts>>,
+    pub(super) resolution: Option<At<Volts>>,
+}
+
+#[derive(Clone, Copy, PartialEq, Eq)]
+pub(super) enum ModeWord {
+    Staircase,
+    Search,
+}
+
+#[derive(Default)]
+pub(super) struct LimitDraft {
+    pub(super) at: Option<At<Volts>>,
+    pub(super) min: Option<At<f64>>,
+    pub(super) max: Option<At<f64>>,
+}
+
+impl Draft {
+    /// Takes all that a profile may hold from the root table.
+    pub(super) fn read(root: &mut Table<'_, '_>) -> Self {
+        root.integer_choice("schema", &[(1, ())]);
+        Self {
+            board: root.text("board"),
+            revision: root.text("revision"),
+            title: root.text("title"),
+            serial_number: root.text("serial_number").and_then(|text| serial_number::pattern(&text, root)),
+            supply: root.table("supply").map(read_supply).unwrap_or_default(),
+            load: root.table("load").map(read_load).unwrap_or_default(),
+            timing: root.table("timing").map(read_timing).unwrap_or_default(),
+            ramp: root.table("ramp").map(read_ramp).unwrap_or_default(),
+            limits: root.table("limits").map(read_limits).unwrap_or_default(),
+        }
+    }
+
+    /// The profile, when nothing is missing.
+    pub(super) fn finish(self, hash: String) -> Option<Profile> {
+        let ramp = match self.ramp.mode?.value {
+            ModeWord::Staircase => Ramp::Staircase { step: self.ramp.step?.value },
+            ModeWord::Search => Ramp::Search { resolution: self.ramp.resolution?.value },
+        };
+        Some(Profile {
+            board: self.board?.value,
+            revision: self.revision?.value,
+            title: self.title?.value,
+            serial_number: self.serial_number?,
+            supply: Supply {
+                start: self.supply.start?.value,
+                floor: self.supply.floor?.value,
+                maximum: self.supply.maximum?.value,
+                current_limit: self.supply.current_limit?.value,
+            },
+            load: Load {
+                resistance: self.load.resistance?.value,
+                tolerance: self.load.tolerance?.value,
+                rating: self.load.rating?.value,
+            },
+            timing: Timing {
+                detect_delay: self.timing.detect_delay?.value,
+                release_delay: self.timing.release_delay?.value,
+            },
+            ramp,
+            limits: self.limits.iter().map(|(name, limit)| (*name, limit.finish())).collect(),
+            hash,
+        })
+    }
+
+    /// A limit on a voltage, as volts.
+    pub(super) fn volts(
+        &self,
+        name: QuantityName,
+        end: impl Fn(&LimitDraft) -> &Option<At<f64>>,
+    ) -> Option<At<Volts>> {
+        let at = end(self.limits.get(&name)?).as_ref()?;
+        Some(at.with(Volts(at.value)))
+    }
+}
+
+impl LimitDraft {
+    fn finish(&self) -> Limit {
+        Limit {
+            at: self.at.as_ref().map(|at| at.value),
+            min: self.min.as_ref().map(|at| at.value),
+            max: self.max.as_ref().map(|at| at.value),
+        }
+    }
+}
+
+fn read_supply(mut table: Table<'_, '_>) -> SupplyDraft {
+    SupplyDraft {
+        start: table.quantity("start"),
+        floor: table.quantity("floor"),
+        maximum: table.quantity("maximum"),
+        current_limit: table.quantity("current_limit"),
+    }
+}
+
+fn read_load(mut table: Table<'_, '_>) -> LoadDraft {
+    LoadDraft {
+        resistance: table.quantity("resistance"),
+        tolerance: table.fraction("tolerance"),
+        rating: table.quantity("rating"),
+    }
+}
+
+fn read_timing(mut table: Table<'_, '_>) -> TimingDraft {
+    TimingDraft {
+        detect_delay: table.duration("detect_delay"),
+        release_delay: table.duration("release_delay"),
+    }
+}
+
+fn read_ramp(mut table: Table<'_, '_>) -> RampDraft {
+    let mode = table.choice("mode", &[("staircase", ModeWord::Staircase), ("search", ModeWord::Search)]);
+    // Only what the mode needs is required; the other may stand there for the day the mode is changed.
+    let mut needed_for = |key, word| match &mode {
+        Some(mode) if mode.value == word => table.quantity(key),
+        _ => table.optional_quantity(key),
+    };
+    let step = needed_for("step", ModeWord::Staircase);
+    let resolution = needed_for("resolution", ModeWord::Search);
+    RampDraft { mode, step, resolution }
+}
+
+fn read_limits(mut table: Table<'_, '_>) -> BTreeMap<QuantityName, LimitDraft> {
+    let mut limits = BTreeMap::new();
+    for name in QuantityName::ALL {
+        if let Some(limit) = table.optional_table(name.key()) {
+            limits.insert(name, read_limit(limit, name));
+        }
+    }
+    limits
+}
+
+fn read_limit(mut table: Table<'_, '_>, name: QuantityName) -> LimitDraft {
+    let limit = LimitDraft {
+        at: if name == QuantityName::OffCurrent { table.quantity("at") } else { None },
+        min: table.optional_value("min", name.unit()),
+        max: table.optional_value("max", name.unit()),
+    };
+    if !table.has("min") && !table.has("max") {
+        table.problem_here(format!("limits.{} limits nothing; wanted \"min\", \"max\" or both", name.key()));
+    }
+    limit
+}
