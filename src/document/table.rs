@@ -78,7 +78,12 @@ impl<'d, 't> Table<'d, 't> {
 
     /// A required text.
     pub fn text(&mut self, key: &str) -> Option<At<String>> {
-        self.required(key, "a text in quotes")?;
+        self.text_for(key, "a text in quotes")
+    }
+
+    /// A required text of which the message for a missing one says what it is for.
+    pub fn text_for(&mut self, key: &str, wanted: &str) -> Option<At<String>> {
+        self.required(key, wanted)?;
         self.optional_text(key)
     }
 
@@ -138,6 +143,12 @@ impl<'d, 't> Table<'d, 't> {
         }
     }
 
+    /// A required list of texts.
+    pub fn texts(&mut self, key: &str) -> Option<At<Vec<At<String>>>> {
+        self.required(key, "a list of texts")?;
+        self.optional_texts(key)
+    }
+
     /// A list of texts that may be left out.
     pub fn optional_texts(&mut self, key: &str) -> Option<At<Vec<At<String>>>> {
         let value = self.look(key)?;
@@ -185,13 +196,18 @@ impl<'d, 't> Table<'d, 't> {
         }
     }
 
-    /// The tables of a list such as `[[range]]`; empty when the key is left out.
+    /// The tables of a required list such as `[[range]]`; empty when a problem was noted.
     pub fn tables(&mut self, key: &str) -> Vec<Table<'d, 't>> {
+        let wanted = format!("at least one [[{}]]", self.name_of(key));
+        self.required(key, &wanted);
         let Some(value) = self.look(key) else { return Vec::new() };
         let Some(array) = value.get_ref().as_array() else {
-            self.wrong_type::<()>(key, value, "a list of tables");
+            self.wrong_type::<()>(key, value, &wanted);
             return Vec::new();
         };
+        if array.is_empty() {
+            self.problem(&self.at(key, value, ()), &format!("wanted {wanted}"));
+        }
         let mut tables = Vec::new();
         for (index, item) in array.iter().enumerate() {
             match item.get_ref().as_table() {

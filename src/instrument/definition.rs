@@ -2,11 +2,17 @@
 //!
 //! Commands follow SCPI-1999 and IEEE 488.2. A number goes where a command has `{}`; volts and amperes, without unit.
 
+mod builtin;
+mod check;
 mod command;
 mod meter;
+mod read;
+#[cfg(test)]
+mod sample;
 mod serial;
 mod source;
 
+pub use builtin::{builtin, builtin_names};
 pub use command::Template;
 pub use meter::{Ammeter, Meter, Range, RangeCommands, Voltmeter};
 pub use serial::{DataBits, FlowControl, Parity, SerialSettings, StopBits, Terminator};

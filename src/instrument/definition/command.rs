@@ -1,4 +1,6 @@
-//! A command with a place for one number.
+//! Lines to send: plain commands, questions, and commands with a place for one number.
+
+use crate::document::{At, Table};
 
 /// Text of a command with exactly one `{}`, where the number goes.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -25,6 +27,69 @@ fn decimal(value: f64) -> String {
     let text = format!("{value:.9}");
     let text = text.trim_end_matches('0').trim_end_matches('.');
     if text == "-0" { "0".to_owned() } else { text.to_owned() }
+}
+
+/// A required command that is not answered.
+pub(super) fn command(table: &mut Table<'_, '_>, key: &str) -> Option<String> {
+    let text = table.text_for(key, "a command")?;
+    statement(&text, table)
+}
+
+/// Commands that are not answered, in order; none when the key is left out.
+pub(super) fn commands(table: &mut Table<'_, '_>, key: &str) -> Option<Vec<String>> {
+    if !table.has(key) {
+        table.optional_texts(key);
+        return Some(Vec::new());
+    }
+    let texts = table.optional_texts(key)?;
+    // All are looked at before any is missed, so that every problem is noted.
+    let read: Vec<_> = texts.value.iter().map(|text| statement(text, table)).collect();
+    read.into_iter().collect()
+}
+
+/// A required question.
+pub(super) fn question(table: &mut Table<'_, '_>, key: &str) -> Option<String> {
+    let text = table.text_for(key, "a question such as \"VOLT?\"")?;
+    if !is_line(&text, table) {
+        return None;
+    }
+    if !text.value.contains('?') {
+        table.problem(&text, "not a question; wanted one with \"?\", such as \"VOLT?\"");
+        return None;
+    }
+    Some(text.value)
+}
+
+/// A required command with a place for a number.
+pub(super) fn template(table: &mut Table<'_, '_>, key: &str) -> Option<Template> {
+    let text = table.text_for(key, "a command such as \"VOLT {}\"")?;
+    let command = statement(&text, table)?;
+    let template = Template::new(&command);
+    if template.is_none() {
+        table.problem(&text, "wanted a command with one \"{}\" where the number goes, such as \"VOLT {}\"");
+    }
+    template
+}
+
+fn statement(text: &At<String>, table: &Table<'_, '_>) -> Option<String> {
+    if !is_line(text, table) {
+        return None;
+    }
+    if text.value.contains('?') {
+        table.problem(text, "a question, whose reply nobody would read; wanted a command without \"?\"");
+        return None;
+    }
+    Some(text.value.clone())
+}
+
+/// One program message unit: printable ASCII, and no `;`, so that every line has at most one reply.
+fn is_line(text: &At<String>, table: &Table<'_, '_>) -> bool {
+    let printable = text.value.chars().all(|c| matches!(c, ' '..='~'));
+    if text.value.trim().is_empty() || !printable || text.value.contains(';') {
+        table.problem(text, "wanted one command in printable ASCII, without \";\" and without line end");
+        return false;
+    }
+    true
 }
 
 #[cfg(test)]

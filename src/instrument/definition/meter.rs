@@ -1,6 +1,8 @@
 //! The part of a definition that describes a meter: its ranges with the maker's claims, and its commands.
 
-use super::Template;
+use super::check::{above_zero, not_negative};
+use super::command::{self, Template};
+use crate::document::{At, Table};
 use crate::trace::{Accuracy, RangeAccuracy};
 use crate::units::{Amps, Ohms, Quantity, Volts};
 use std::time::Duration;
@@ -49,10 +51,79 @@ pub struct RangeCommands {
 }
 
 impl<Q: Quantity> Meter<Q> {
+    /// `resistance` is the key of a range's resistance: a burden or an input resistance.
+    pub(super) fn read(mut table: Table<'_, '_>, resistance: &str) -> Option<Self> {
+        let integration = table.duration("integration");
+        let setup = command::commands(&mut table, "setup");
+        let ranges = read_ranges(&mut table, resistance);
+        let commands = table.table("commands");
+        let several = ranges.as_ref().is_some_and(|ranges| ranges.len() > 1);
+        let (read, range) = commands.and_then(|commands| read_commands(commands, several))?;
+        Some(Self { ranges: ranges?, integration: integration?.value, setup: setup?, read, range })
+    }
+
     /// The smallest range that holds `value`, if any does.
     pub fn range_for(&self, value: Q) -> Option<&Range<Q>> {
         self.ranges.iter().find(|range| value.si().abs() <= range.full_scale.si())
     }
+}
+
+fn read_commands(mut table: Table<'_, '_>, several_ranges: bool) -> Option<(String, Option<RangeCommands>)> {
+    let read = command::question(&mut table, "read");
+    let ranged = several_ranges || table.has("set_range") || table.has("ask_range");
+    if !ranged {
+        table.optional_text("set_range");
+        table.optional_text("ask_range");
+        return Some((read?, None));
+    }
+    let set = command::template(&mut table, "set_range");
+    let ask = command::question(&mut table, "ask_range");
+    Some((read?, Some(RangeCommands { set: set?, ask: ask? })))
+}
+
+fn read_ranges<Q: Quantity>(table: &mut Table<'_, '_>, resistance: &str) -> Option<Vec<Range<Q>>> {
+    // All are read before any is missed, so that every problem is noted.
+    let read: Vec<_> = table.tables("range").into_iter().map(|range| read_range(range, resistance)).collect();
+    let read: Vec<(At<Q>, Range<Q>)> = read.into_iter().collect::<Option<_>>()?;
+    for pair in read.windows(2) {
+        if let [(smaller, _), (larger, _)] = pair
+            && smaller.value.si() >= larger.value.si()
+        {
+            table.problem(larger, &format!("not above {smaller}; wanted the smallest range first"));
+        }
+    }
+    (!read.is_empty()).then(|| read.into_iter().map(|(_, range)| range).collect())
+}
+
+/// A range, and where its full scale stands.
+fn read_range<Q: Quantity>(mut table: Table<'_, '_>, resistance: &str) -> Option<(At<Q>, Range<Q>)> {
+    let full_scale = table.quantity::<Q>("full_scale");
+    let of_reading = table.fraction("of_reading");
+    let of_range = table.optional_fraction("of_range");
+    let fixed = table.optional_quantity::<Q>("fixed");
+    let counts = table.optional_integer("counts");
+    let resolution = table.quantity::<Q>("resolution");
+    let ohms = table.quantity::<Ohms>(resistance);
+    let settle = table.duration("settle");
+    above_zero(&full_scale, &table);
+    above_zero(&resolution, &table);
+    for share in [&of_reading, &of_range] {
+        not_negative(share, &table);
+    }
+    not_negative(&fixed.as_ref().map(|fixed| fixed.with(fixed.value.si())), &table);
+    not_negative(&counts.as_ref().map(|counts| counts.with(counts.value as f64)), &table);
+    not_negative(&ohms.as_ref().map(|ohms| ohms.with(ohms.value.0)), &table);
+    let (full_scale, resolution) = (full_scale?, resolution?.value.si());
+    let absolute = of_range.map_or(0.0, |share| share.value) * full_scale.value.si()
+        + fixed.map_or(0.0, |fixed| fixed.value.si())
+        + counts.map_or(0.0, |counts| counts.value as f64) * resolution;
+    let range = Range {
+        full_scale: full_scale.value,
+        accuracy: Accuracy { relative: of_reading?.value, absolute, resolution },
+        resistance: ohms?.value,
+        settle: settle?.value,
+    };
+    Some((full_scale, range))
 }
 
 impl Meter<Amps> {
@@ -61,5 +132,60 @@ impl Meter<Amps> {
         let line =
             |range: &Range<Amps>| RangeAccuracy { full_scale: range.full_scale, accuracy: range.accuracy };
         self.ranges.iter().map(line).collect()
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::sample::{good, problems};
+    use super::*;
+    use insta::assert_snapshot as says;
+
+    const AMMETER: &str = "bench-meter-current";
+
+    /// Figures of the 6.5-digit class: 0.05 % of reading + 0.025 % of 100 uA = 25 nA; see the definition.
+    #[test]
+    fn the_smallest_range_that_holds_a_value_is_found_with_its_claim() {
+        let meter = good(AMMETER).ammeter.expect("it is an ammeter");
+        let smallest = meter.range_for(Amps(2.4e-6)).expect("100 uA holds it");
+        assert_eq!(smallest.full_scale, Amps(1e-4));
+        assert!((smallest.accuracy.relative - 0.0005).abs() < 1e-12, "{:?}", smallest.accuracy);
+        assert!((smallest.accuracy.absolute - 25e-9).abs() < 1e-15, "{:?}", smallest.accuracy);
+        assert_eq!(smallest.resistance, Ohms(100.0));
+        assert_eq!(meter.range_for(Amps(-0.35)).map(|range| range.full_scale), Some(Amps(1.0)));
+        assert_eq!(meter.range_for(Amps(3.1)), None);
+        assert_eq!(meter.claims().len(), 6);
+    }
+
+    #[test]
+    fn counts_times_resolution_and_fixed_parts_add_up() {
+        let text = super::super::builtin(AMMETER).expect("built in");
+        let text = text.replacen("of_range = \"0.025 %\"", "counts = 4\nfixed = \"5 nA\"", 1);
+        let meter = super::super::Definition::read("d.toml", &text).ok().and_then(|read| read.ammeter);
+        let claim = meter.expect("still good").ranges[0].accuracy;
+        assert!((claim.absolute - 5.4e-9).abs() < 1e-18, "4 x 100 pA + 5 nA, read {}", claim.absolute);
+    }
+
+    #[test]
+    fn a_meter_of_one_range_needs_no_range_commands_and_of_several_does() {
+        let voltmeter = good("source-measure-unit").voltmeter.expect("it is a voltmeter");
+        assert_eq!(voltmeter.range, None);
+        says!(problems(AMMETER, &[("set_range = \"SENS:CURR:RANG {}\"", "")]),
+            @r#"d.toml:84:1: [ammeter.commands] has no key "set_range"; wanted a command such as "VOLT {}""#);
+    }
+
+    #[test]
+    fn ranges_that_cannot_be_are_refused() {
+        says!(problems(AMMETER, &[("full_scale = \"1 mA\"", "full_scale = \"1 uA\"")]),
+            @r#"d.toml:45:14: ammeter.range[2].full_scale = "1 uA": not above ammeter.range[1].full_scale = "100 uA"; wanted the smallest range first"#);
+        says!(problems(AMMETER, &[("\"100 pA\"", "\"0 pA\""), ("\"0.05 %\"", "\"-1 %\""), ("\"100 ohm\"", "\"-1 ohm\"")]), @r#"
+        d.toml:38:14: ammeter.range[1].of_reading = "-1 %": below zero
+        d.toml:40:14: ammeter.range[1].resolution = "0 pA": not above zero
+        d.toml:41:10: ammeter.range[1].burden = "-1 ohm": below zero
+        "#);
+        says!(problems("source-measure-unit", &[("[[voltmeter.range]]", "[voltmeter.rnge]")]), @r#"
+        d.toml:93:1: [voltmeter] has no key "range"; wanted at least one [[voltmeter.range]]
+        d.toml:97:12: unknown key "rnge" in [voltmeter]; did you mean "range"?
+        "#);
     }
 }

@@ -1,5 +1,6 @@
 //! How an instrument's serial port is opened and how lines are sent to it.
 
+use crate::document::Table;
 use std::time::Duration;
 
 /// Settings of a serial port and habits of the link.
@@ -23,7 +24,46 @@ pub struct SerialSettings {
     pub settle: Duration,
 }
 
+/// Symbol rates of real ports.
+const BAUD: std::ops::RangeInclusive<i64> = 300..=4_000_000;
+
 impl SerialSettings {
+    pub(super) fn read(mut table: Table<'_, '_>) -> Option<Self> {
+        let baud = table.integer("baud");
+        let data_bits = table.integer_choice("data_bits", &[(8, DataBits::Eight), (7, DataBits::Seven)]);
+        let parity =
+            table.choice("parity", &[("none", Parity::None), ("even", Parity::Even), ("odd", Parity::Odd)]);
+        let stop_bits = table.integer_choice("stop_bits", &[(1, StopBits::One), (2, StopBits::Two)]);
+        let flow = table.choice(
+            "flow",
+            &[
+                ("none", FlowControl::None),
+                ("xon_xoff", FlowControl::XonXoff),
+                ("rts_cts", FlowControl::RtsCts),
+            ],
+        );
+        let terminator = table.choice(
+            "terminator",
+            &[("lf", Terminator::Lf), ("crlf", Terminator::CrLf), ("cr", Terminator::Cr)],
+        );
+        let gap = table.duration("gap");
+        let settle = table.duration("settle");
+        let baud = baud?;
+        if !BAUD.contains(&baud.value) {
+            table.problem(&baud, "wanted 300 to 4000000");
+        }
+        Some(Self {
+            baud: u32::try_from(baud.value).ok()?,
+            data_bits: data_bits?.value,
+            parity: parity?.value,
+            stop_bits: stop_bits?.value,
+            flow: flow?.value,
+            terminator: terminator?.value,
+            gap: gap?.value,
+            settle: settle?.value,
+        })
+    }
+
     /// Time `characters` spend on the wire: a start bit, the data, parity and stop bits each.
     pub fn wire_time(&self, characters: u32) -> Duration {
         let data = match self.data_bits {
