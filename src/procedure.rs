@@ -8,6 +8,7 @@ mod ability;
 mod action;
 mod confirm;
 mod desk;
+mod fit;
 mod off_current;
 mod plan;
 mod pre_check;
@@ -19,6 +20,7 @@ mod walk;
 
 pub use ability::Ability;
 pub use action::{Action, Event};
+pub use fit::{Misfit, fits};
 pub use plan::Plan;
 pub use progress::{Progress, Stage};
 

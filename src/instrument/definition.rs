@@ -8,13 +8,14 @@ mod command;
 mod meter;
 mod read;
 #[cfg(test)]
-mod sample;
+pub(super) mod sample;
 mod serial;
 mod source;
 
 pub use builtin::{builtin, builtin_names};
 pub use command::Template;
 pub use meter::{Ammeter, Meter, Range, RangeCommands, Voltmeter};
+pub(super) use read::read_roles;
 pub use serial::{DataBits, FlowControl, Parity, SerialSettings, StopBits, Terminator};
 pub use source::{LimitedQuery, Source, SourceCommands, Span};
 

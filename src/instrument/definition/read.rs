@@ -58,7 +58,10 @@ fn part<T>(part: Option<Option<T>>) -> Option<Option<T>> {
 }
 
 /// The roles in a list of their names; each at most once, at least one.
-fn read_roles(list: &At<Vec<At<String>>>, table: &Table<'_, '_>) -> Option<At<BTreeSet<Role>>> {
+pub(in crate::instrument) fn read_roles(
+    list: &At<Vec<At<String>>>,
+    table: &Table<'_, '_>,
+) -> Option<At<BTreeSet<Role>>> {
     let mut roles = BTreeSet::new();
     for word in &list.value {
         let Some((_, role)) = Role::NAMES.iter().find(|(name, _)| *name == word.value) else {

@@ -1,0 +1,90 @@
+//! Which instruments make up a bench, on which ports, in which roles: a checked bench file.
+//!
+//! ```toml
+//! schema = 1                              # version of this format
+//! name = "first-bench"                    # short; records and lock files use it
+//! title = "Bench by the window"           # for people
+//!
+//! [fixture]                               # may be left out
+//! lead_resistance = "80 mohm"             # both leads together; used when no voltmeter sits at the board
+//!
+//! [[instrument]]                          # one block each
+//! name = "supply"                         # how messages call it
+//! definition = "programmable-supply"      # one that comes with the program, or a path to a TOML beside this file
+//! port = "/dev/serial/by-id/..."          # a path that stays the same when cables are replugged
+//! roles = ["source"]
+//! calibration_due = 2027-03-31            # may be left out
+//! identity = { maker = "...", model = "...", serial = "..." }   # each may be left out; compared with *IDN?
+//! ```
+
+mod ability;
+mod identity;
+mod parts;
+mod read;
+#[cfg(test)]
+mod sample;
+
+pub use identity::{Identity, WrongIdentity};
+pub use parts::RoleMissing;
+
+use super::definition::{Definition, Role};
+use crate::units::Ohms;
+use jiff::civil::Date;
+use parts::Parts;
+use std::collections::BTreeSet;
+
+/// The instruments of one bench. One that exists has a source and an ammeter.
+#[derive(Clone, Debug)]
+pub struct BenchFile {
+    /// Short name.
+    pub name: String,
+    /// What it is, for people.
+    pub title: String,
+    /// Resistance of both leads between supply and board together, where it is known.
+    pub lead_resistance: Option<Ohms>,
+    instruments: Vec<BenchInstrument>,
+    parts: Parts,
+}
+
+/// One instrument on a bench.
+#[derive(Clone, Debug, PartialEq)]
+pub struct BenchInstrument {
+    /// How messages call it.
+    pub name: String,
+    /// What it can do and what to send it.
+    pub definition: Definition,
+    /// Path of its serial port.
+    pub port: String,
+    /// Roles it plays here, all among those its definition offers.
+    pub roles: BTreeSet<Role>,
+    /// What its reply to `*IDN?` must say.
+    pub identity: Identity,
+    /// Day until which its calibration holds, where it is known.
+    pub calibration_due: Option<Date>,
+}
+
+impl BenchFile {
+    /// A bench of `instruments`.
+    ///
+    /// # Errors
+    /// When none plays the source, or none the ammeter.
+    pub fn new(
+        name: &str,
+        title: &str,
+        lead_resistance: Option<Ohms>,
+        instruments: Vec<BenchInstrument>,
+    ) -> Result<Self, RoleMissing> {
+        let parts = Parts::of(&instruments)?;
+        Ok(Self { name: name.to_owned(), title: title.to_owned(), lead_resistance, instruments, parts })
+    }
+
+    /// All instruments, in the order of the file.
+    pub fn instruments(&self) -> &[BenchInstrument] {
+        &self.instruments
+    }
+
+    /// The instrument that plays `role`.
+    pub fn player(&self, role: Role) -> Option<&BenchInstrument> {
+        self.instruments.iter().find(|instrument| instrument.roles.contains(&role))
+    }
+}
