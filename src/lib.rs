@@ -9,6 +9,7 @@
 //! - [`trace`]: what was measured
 //! - [`analysis`]: from a trace to quantities with uncertainty, and findings (pure)
 //! - [`verdict`]: quantities and limits to decisions and one outcome (pure)
+//! - [`sim`]: a board's physics on a bench, in simulated time
 //!
 //! [`units`] and [`document`] serve them all: quantities with units, and files read with every problem at its place.
 
@@ -18,6 +19,7 @@ pub mod document;
 pub mod instrument;
 pub mod procedure;
 pub mod profile;
+pub mod sim;
 pub mod trace;
 pub mod units;
 pub mod verdict;

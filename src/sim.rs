@@ -1,0 +1,22 @@
+//! A board's physics on a bench, in simulated time and deterministic from a seed.
+//!
+//! [`Setup`] holds plain parameters: a board, a supply, meters and the wiring between them, drawn from a seed around
+//! what a profile describes and a named [`Condition`]. [`World`] plays them: it knows voltages, currents and time,
+//! and neither text nor procedures. Time moves only when told to.
+
+mod board;
+mod condition;
+mod draw;
+mod meter;
+mod setup;
+mod supply;
+mod wiring;
+mod world;
+
+pub use board::{BoardModel, DeepConduction, PullUp, Switch};
+pub use condition::{Condition, UnknownCondition};
+pub use meter::{AmmeterModel, AmmeterRange, MeterRange, VoltmeterModel};
+pub use setup::Setup;
+pub use supply::SupplyModel;
+pub use wiring::{LoadWiring, Polarity, Wiring};
+pub use world::{Mark, Truth, World};
