@@ -5,11 +5,19 @@
 //! and neither text nor procedures. Time moves only when told to.
 
 mod board;
+mod circuit;
+mod class;
 mod condition;
+mod course;
+mod detector;
 mod draw;
+mod good_board;
 mod meter;
+mod motion;
+mod output;
 mod setup;
 mod supply;
+mod truth;
 mod wiring;
 mod world;
 
@@ -18,5 +26,6 @@ pub use condition::{Condition, UnknownCondition};
 pub use meter::{AmmeterModel, AmmeterRange, MeterRange, VoltmeterModel};
 pub use setup::Setup;
 pub use supply::SupplyModel;
+pub use truth::Truth;
 pub use wiring::{LoadWiring, Polarity, Wiring};
-pub use world::{Mark, Truth, World};
+pub use world::{Mark, World};

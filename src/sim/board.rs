@@ -1,5 +1,7 @@
 //! The parameters of one board: detector, switch, currents and capacitors.
 
+use super::circuit::BODY_DIODE;
+use super::{LoadWiring, Polarity, Wiring};
 use crate::units::{Amps, Farads, Ohms, Siemens, Volts};
 use std::time::Duration;
 
@@ -82,4 +84,73 @@ impl BoardModel {
     pub fn re_enable(&self) -> Volts {
         self.trip + self.hysteresis
     }
+
+    /// The lowest voltage at which the detector works, kept clear of zero.
+    pub(super) fn lowest_operating(&self) -> f64 {
+        self.minimum_operating.0.max(1e-3)
+    }
+
+    /// Whether the switch conducts when the detector says `on`.
+    pub(super) fn closed(&self, on: bool) -> bool {
+        match self.switch {
+            Switch::Working => on,
+            Switch::StuckClosed => true,
+            Switch::StuckOpen => false,
+        }
+    }
+
+    /// Resistance of what hangs behind the switch, a voltmeter of `voltmeter` siemens included.
+    pub(super) fn load_resistance(&self, wiring: &Wiring, voltmeter: f64) -> f64 {
+        match wiring.load {
+            LoadWiring::Connected => 1.0 / (1.0 / self.load.0 + voltmeter),
+            LoadWiring::Lifted => 1.0 / voltmeter.max(1e-12),
+        }
+    }
+
+    /// The currents at `volts` across the terminals, the load's capacitor settled.
+    pub(super) fn branches(&self, wiring: &Wiring, on: bool, voltmeter: f64, volts: f64) -> Branches {
+        let load = self.load_resistance(wiring, voltmeter);
+        if wiring.polarity == Polarity::Reversed {
+            let current = (volts - BODY_DIODE).max(0.0) / (load + self.on_resistance.0);
+            return Branches { beside: 0.0, load_current: current, load_volts: -current * load };
+        }
+        // Towards zero volts a constant current fades away.
+        let awake = (volts / self.lowest_operating()).clamp(0.0, 1.0);
+        let pull_up_conducts = match self.pull_up_conducts {
+            PullUp::WhenOff => !on,
+            PullUp::WhenOn => on,
+            PullUp::Always => true,
+        };
+        let pull_up = if pull_up_conducts { volts / self.pull_up.0 } else { 0.0 };
+        let load_current = if self.closed(on) {
+            volts / (load + self.on_resistance.0)
+        } else if wiring.load == LoadWiring::Lifted {
+            0.0
+        } else {
+            self.leakage.0 * awake + self.leakage_conductance.0 * volts + self.deep_current(volts)
+        };
+        Branches {
+            beside: pull_up + self.detector_current.0 * awake,
+            load_current,
+            load_volts: load_current * load,
+        }
+    }
+
+    fn deep_current(&self, volts: f64) -> f64 {
+        let Some(DeepConduction { from, to, peak }) = self.deep_conduction else { return 0.0 };
+        let half_width = (to - from).0 / 2.0;
+        let from_middle = (volts - (from + to).0 / 2.0).abs();
+        peak.0 * (1.0 - from_middle / half_width).max(0.0)
+    }
+}
+
+/// The currents of a board at one voltage.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct Branches {
+    /// Through the detector and the pull-up, A.
+    pub(super) beside: f64,
+    /// Through switch and load, A.
+    pub(super) load_current: f64,
+    /// Across the load, V; negative on a reversed board.
+    pub(super) load_volts: f64,
 }

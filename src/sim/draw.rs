@@ -7,7 +7,10 @@ use rand_chacha::ChaCha8Rng;
 #[derive(Clone, Copy, Debug)]
 pub(super) enum Concern {
     Board = 0,
+    Supply = 1,
+    MeterErrors = 2,
     MeterNoise = 3,
+    DetectorNoise = 4,
 }
 
 /// The stream of one concern.
@@ -27,6 +30,11 @@ impl Draw {
         low + (high - low) * self.0.random::<f64>()
     }
 
+    /// Uniform in a window of low and high.
+    pub(super) fn in_window(&mut self, (low, high): (f64, f64)) -> f64 {
+        self.between(low, high)
+    }
+
     /// Uniform between minus and plus `half_width`.
     pub(super) fn within(&mut self, half_width: f64) -> f64 {
         self.between(-half_width, half_width)
@@ -35,5 +43,10 @@ impl Draw {
     /// Normal, mean zero and standard deviation one.
     pub(super) fn normal(&mut self) -> f64 {
         self.0.sample(rand_distr::StandardNormal)
+    }
+
+    /// Exponential, mean one.
+    pub(super) fn exponential(&mut self) -> f64 {
+        -(-self.0.random::<f64>()).ln_1p()
     }
 }

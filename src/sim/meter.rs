@@ -1,7 +1,8 @@
 //! The parameters of the meters, and how a true mean becomes a reading.
 
-use crate::trace::Accuracy;
-use crate::units::{Amps, Ohms};
+use super::draw::Draw;
+use crate::trace::{Accuracy, Current};
+use crate::units::{Amps, Ohms, Volts};
 use std::time::Duration;
 
 /// One range of a meter, its errors already drawn.
@@ -50,10 +51,83 @@ pub struct VoltmeterModel {
     pub input_resistance: Ohms,
 }
 
+/// A meter reads up to this multiple of a range's full scale; a fifth more is common practice for bench meters.
+const OVER_RANGE: f64 = 1.2;
+
+/// Error just after a change of the ammeter's range, as a share of its full scale.
+const RANGE_CHANGE_ERROR: f64 = 0.01;
+
+/// Time constants of that error in the stated settling time: it has fallen to a thousandth.
+const RANGE_SETTLE_CONSTANTS: f64 = 7.0;
+
+/// Shortest averaging that noise is scaled to, s.
+const SHORTEST_APERTURE: f64 = 1e-4;
+
+impl MeterRange {
+    /// Whether the range can show `value`.
+    pub(super) fn holds(&self, value: f64) -> bool {
+        value.abs() <= OVER_RANGE * self.full_scale
+    }
+
+    /// The reading of `value` with a draw of noise, `normal` of it, scaled to the averaging time.
+    fn reading(&self, value: f64, normal: f64, averaging: f64) -> f64 {
+        let exact = value * (1.0 + self.gain_error) + self.offset_error + self.noise * normal * averaging;
+        round_to(exact, self.claim.resolution)
+    }
+}
+
+/// Rounds to a step; a step of zero leaves the value alone.
+pub(super) fn round_to(value: f64, step: f64) -> f64 {
+    if step > 0.0 { (value / step).round() * step } else { value }
+}
+
+/// How much larger the noise of a reading over `aperture` is than at the meter's own integration time.
+fn averaging(integration: Duration, aperture: Duration) -> f64 {
+    (integration.as_secs_f64() / aperture.as_secs_f64().max(SHORTEST_APERTURE)).sqrt()
+}
+
 impl AmmeterModel {
     /// Index of the smallest range that holds `current`, or of the largest.
     pub(super) fn range_for(&self, current: Amps) -> usize {
         let holds = |range: &AmmeterRange| range.meter.full_scale * 1.000_001 >= current.0.abs();
-        self.ranges.iter().position(holds).unwrap_or(self.ranges.len().saturating_sub(1))
+        self.ranges.iter().position(holds).unwrap_or(self.largest())
+    }
+
+    /// Index of the largest range.
+    pub(super) fn largest(&self) -> usize {
+        self.ranges.len().saturating_sub(1)
+    }
+
+    /// The reading of a true mean over `aperture`, `settled` after the range was last changed.
+    pub(super) fn read(
+        &self,
+        range: usize,
+        mean: f64,
+        aperture: Duration,
+        settled: Duration,
+        noise: &mut Draw,
+    ) -> Current {
+        let range = &self.ranges[range].meter;
+        let constants = RANGE_SETTLE_CONSTANTS / self.range_settle.as_secs_f64().max(1e-9);
+        let disturbance = RANGE_CHANGE_ERROR * range.full_scale * (-settled.as_secs_f64() * constants).exp();
+        if !range.holds(mean) {
+            return Current::OVERLOAD;
+        }
+        let noise = noise.normal();
+        Current::Value(Amps(range.reading(mean + disturbance, noise, averaging(self.integration, aperture))))
+    }
+}
+
+impl VoltmeterModel {
+    /// The range on which it reads `volts`, by its own choice.
+    pub fn range_for(&self, volts: Volts) -> Option<&MeterRange> {
+        self.ranges.iter().find(|range| range.holds(volts.0)).or(self.ranges.last())
+    }
+
+    /// The reading of a true mean over `aperture`.
+    pub(super) fn read(&self, mean: f64, aperture: Duration, noise: &mut Draw) -> Volts {
+        let normal = noise.normal();
+        let averaging = averaging(self.integration, aperture);
+        Volts(self.range_for(Volts(mean)).map_or(mean, |range| range.reading(mean, normal, averaging)))
     }
 }

@@ -1,14 +1,23 @@
 //! A board and a bench drawn from a seed, around what a profile describes and a named condition.
 
 use super::draw::{Concern, Draw};
-use super::*;
+use super::good_board::{good_board, window};
+use super::{
+    AmmeterModel, AmmeterRange, BoardModel, Condition, LoadWiring, Polarity, SupplyModel, Switch,
+    VoltmeterModel, Wiring, class,
+};
 use crate::procedure::Ability;
 use crate::profile::{Profile, QuantityName};
-use crate::trace::{Accuracy, Claims, RangeAccuracy};
-use crate::units::{Amps, Farads, Ohms, Siemens, Volts};
-use std::time::Duration;
+use crate::trace::{Claims, RangeAccuracy};
+use crate::units::{Amps, Ohms, Volts};
 
-/// Everything a [`World`] needs: plain parameters.
+/// Time constants a small step needs to arrive within a digit.
+const SETTLE_CONSTANTS: u32 = 5;
+
+/// The highest voltage a run is likely to use, as a multiple of the re-enable voltage.
+const HIGHEST_OF_RE_ENABLE: f64 = 1.25;
+
+/// Everything a [`World`](super::World) needs: plain parameters.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Setup {
     /// The board.
@@ -28,101 +37,80 @@ pub struct Setup {
 }
 
 impl Setup {
-    /// Draws a board and a bench.
+    /// Draws a board and a bench. The same seed gives the same board under every condition, but for what the
+    /// condition changes.
     pub fn new(profile: &Profile, condition: Condition, seed: u64) -> Self {
-        let _ = condition;
-        let middle = |name: QuantityName| {
-            let limit = profile.limits.get(&name)?;
-            Some((limit.min? + limit.max?) / 2.0)
-        };
         let mut draw = Draw::new(seed, Concern::Board);
-        let trip = Volts(middle(QuantityName::Trip).unwrap_or(6.0) + draw.within(0.02));
-        let board = BoardModel {
-            trip,
-            hysteresis: Volts(middle(QuantityName::Hysteresis).unwrap_or(0.4)),
-            detect_delay: profile.timing.detect_delay / 2,
-            release_delay: profile.timing.release_delay / 2,
-            noise: Volts(100e-6),
-            noise_rate: 100.0,
-            minimum_operating: Volts(0.8),
-            pull_up: Ohms(3.3e6),
-            pull_up_conducts: PullUp::WhenOff,
-            detector_current: Amps(0.6e-6),
-            leakage: Amps(20e-9),
-            leakage_conductance: Siemens(5e-9),
-            input_capacitance: Farads(1e-6),
-            load: profile.load.resistance,
-            load_capacitance: Farads(10e-6),
-            switch: Switch::Working,
-            on_resistance: Ohms(0.06),
-            deep_conduction: None,
+        let board = good_board(profile, &mut draw);
+        let (ammeter, voltmeter, load_voltmeter) = class::meters(seed);
+        let wiring = Wiring {
+            lead_resistance: Ohms(draw.between(0.04, 0.12)),
+            load: LoadWiring::Connected,
+            polarity: Polarity::Right,
         };
-        Self {
-            board,
-            supply: SupplyModel {
-                max_voltage: Volts(32.0),
-                max_current: Amps(3.0),
-                min_current: Amps(1e-3),
-                set_step: Volts(1e-3),
-                claim: Accuracy { relative: 0.0005, absolute: 0.005, resolution: 0.001 },
-                gain_error: 0.0,
-                offset_error: Volts::ZERO,
-                read_back_voltage_error: Volts::ZERO,
-                read_back_current_error: Amps::ZERO,
-                time_constant: Duration::from_millis(3),
-                slew: 2000.0,
-                overshoot: 0.0,
-                sinks: true,
-                output_capacitance: Farads(470e-6),
-                bleed: Amps(1e-3),
-                off_resistance: Ohms(100.0),
-            },
-            ammeter: AmmeterModel {
-                ranges: [(100e-6, 100.0), (1e-3, 100.0), (0.01, 1.0), (0.1, 1.0), (1.0, 0.1), (3.0, 0.1)]
-                    .map(|(full_scale, burden)| AmmeterRange {
-                        meter: MeterRange {
-                            full_scale,
-                            claim: Accuracy {
-                                relative: 0.0005,
-                                absolute: full_scale * 2.5e-4,
-                                resolution: 0.0,
-                            },
-                            gain_error: 0.0,
-                            offset_error: 0.0,
-                            noise: 0.0,
-                        },
-                        burden: Ohms(burden),
-                    })
-                    .to_vec(),
-                integration: Duration::from_millis(20),
-                range_settle: Duration::from_millis(50),
-            },
-            voltmeter: voltmeter(),
-            load_voltmeter: voltmeter(),
-            wiring: Wiring {
-                lead_resistance: Ohms(0.05),
-                load: LoadWiring::Connected,
-                polarity: Polarity::Right,
-            },
-            seed,
+        let supply = class::supply(seed);
+        let mut setup = Self { board, supply, ammeter, voltmeter, load_voltmeter, wiring, seed };
+        setup.apply(condition, profile, &mut draw);
+        setup
+    }
+
+    fn apply(&mut self, condition: Condition, profile: &Profile, draw: &mut Draw) {
+        let limits = |name| window(profile, name);
+        let board = &mut self.board;
+        match condition {
+            Condition::Good => {}
+            Condition::NeverTrips => board.switch = Switch::StuckClosed,
+            Condition::NeverOn => board.switch = Switch::StuckOpen,
+            Condition::HighTrip => {
+                let (min, max) = limits(QuantityName::Trip).unwrap_or((board.trip.0, board.trip.0 * 1.02));
+                let trip = max + (max - min) * draw.between(0.4, 0.9);
+                board.trip = Volts(trip).min(profile.supply.start - board.hysteresis * 1.5);
+            }
+            Condition::NarrowHysteresis => {
+                let least = limits(QuantityName::Hysteresis).map_or(board.hysteresis.0, |(min, _)| min);
+                board.hysteresis = Volts(least * draw.between(0.3, 0.7));
+            }
+            Condition::LeakingSwitch => {
+                let most = limits(QuantityName::OffCurrent).map_or(10e-6, |(_, max)| max);
+                board.leakage = Amps(most * draw.between(1.5, 5.0));
+            }
+            Condition::LowPullUp => board.pull_up = board.pull_up / 10.0,
+            Condition::SlowDetector => {
+                board.detect_delay = profile.timing.detect_delay.mul_f64(draw.between(4.0, 8.0));
+            }
+            Condition::NoLoad => self.wiring.load = LoadWiring::Lifted,
+            Condition::Reversed => self.wiring.polarity = Polarity::Reversed,
+            Condition::Chatter => {
+                let drop = board.hysteresis * draw.between(1.3, 1.6);
+                self.wiring.lead_resistance = drop / (board.trip / board.load);
+            }
+            Condition::NoSink => {
+                self.supply.sinks = false;
+                self.supply.bleed = Amps(0.1e-3);
+                self.supply.off_resistance = Ohms(10e3);
+            }
         }
     }
 
     /// What this bench can do.
     pub fn ability(&self) -> Ability {
+        let smallest = self.ammeter.ranges.first();
+        let supply = &self.supply;
         Ability {
             voltmeter: true,
             load_voltmeter: true,
             ranges: self.ammeter.ranges.iter().map(|range| Amps(range.meter.full_scale)).collect(),
             range_settle: self.ammeter.range_settle,
-            max_voltage: self.supply.max_voltage,
-            max_current: self.supply.max_current,
-            min_current: self.supply.min_current,
-            set_step: self.supply.set_step,
-            settle: self.supply.time_constant * 5,
+            max_voltage: supply.max_voltage,
+            max_current: supply.max_current,
+            min_current: supply.min_current,
+            set_step: supply.set_step,
+            settle: supply.time_constant * SETTLE_CONSTANTS,
             read_time: self.ammeter.integration.max(self.voltmeter.integration),
-            arrival_tolerance: Volts(0.01),
-            off_current_uncertainty: Amps(20e-9),
+            arrival_tolerance: Volts(supply.claim.limit(self.highest_voltage().0)) + supply.set_step,
+            off_current_uncertainty: Amps(
+                smallest.map_or(f64::INFINITY, |range| range.meter.claim.standard_uncertainty(0.0)),
+            ),
         }
     }
 
@@ -134,23 +122,13 @@ impl Setup {
         };
         Claims {
             set: Some(self.supply.claim),
-            sense: self.voltmeter.ranges.first().map(|range| range.claim),
+            sense: self.voltmeter.range_for(self.highest_voltage()).map(|range| range.claim),
             current: self.ammeter.ranges.iter().map(line).collect(),
             lead_resistance: None,
         }
     }
-}
 
-fn voltmeter() -> VoltmeterModel {
-    VoltmeterModel {
-        ranges: vec![MeterRange {
-            full_scale: 10.0,
-            claim: Accuracy { relative: 3.5e-5, absolute: 5e-5, resolution: 1e-5 },
-            gain_error: 0.0,
-            offset_error: 0.0,
-            noise: 3e-6,
-        }],
-        integration: Duration::from_millis(20),
-        input_resistance: Ohms(10e9),
+    fn highest_voltage(&self) -> Volts {
+        self.board.re_enable() * HIGHEST_OF_RE_ENABLE
     }
 }

@@ -1,5 +1,6 @@
 //! The parameters of one programmable supply.
 
+use super::meter::round_to;
 use crate::trace::Accuracy;
 use crate::units::{Amps, Farads, Ohms, Volts};
 use std::time::Duration;
@@ -39,4 +40,40 @@ pub struct SupplyModel {
     pub bleed: Amps,
     /// Resistor across the output while it is switched off.
     pub off_resistance: Ohms,
+}
+
+/// Digit of the supply's own voltage and current readings, V and A.
+const READ_BACK_DIGIT: f64 = 1e-3;
+
+/// Over-voltage level of a supply just switched on, as a multiple of its highest voltage.
+const OVER_VOLTAGE_AT_START: f64 = 1.1;
+
+impl SupplyModel {
+    /// A set-point as the supply keeps it: clipped to its range and rounded to its step.
+    pub(super) fn kept(&self, volts: Volts) -> Volts {
+        Volts(round_to(volts.max(Volts::ZERO).min(self.max_voltage).0, self.set_step.0))
+    }
+
+    /// The true voltage behind a kept set-point.
+    pub(super) fn true_output(&self, kept: Volts) -> f64 {
+        (kept.0 * (1.0 + self.gain_error) + self.offset_error.0).max(0.0)
+    }
+
+    /// A current limit as the supply keeps it.
+    pub(super) fn kept_limit(&self, limit: Amps) -> Amps {
+        limit.max(self.min_current).min(self.max_current)
+    }
+
+    /// The over-voltage level of a supply just switched on.
+    pub(super) fn first_over_voltage(&self) -> Volts {
+        self.max_voltage * OVER_VOLTAGE_AT_START
+    }
+
+    /// What the supply says of its own output.
+    pub(super) fn read_back(&self, volts: f64, amps: f64) -> (Volts, Amps) {
+        (
+            Volts(round_to(volts + self.read_back_voltage_error.0, READ_BACK_DIGIT)),
+            Amps(round_to(amps + self.read_back_current_error.0, READ_BACK_DIGIT)),
+        )
+    }
 }

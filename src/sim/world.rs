@@ -1,10 +1,10 @@
-//! The board on its bench, moving in simulated time.
+//! The board on its bench, moving in simulated time: a supply's front panel, meters, and a clock.
 
 use super::draw::{Concern, Draw};
-use super::meter::MeterRange;
-use super::{LoadWiring, Setup, Switch};
+use super::motion::{Motion, Sums};
+use super::{Setup, Truth};
 use crate::trace::Current;
-use crate::units::{Amps, Ohms, Volts};
+use crate::units::{Amps, Volts};
 use std::time::Duration;
 
 /// A board on its bench.
@@ -12,50 +12,47 @@ use std::time::Duration;
 pub struct World {
     setup: Setup,
     now: Duration,
+    motion: Motion,
     noise: Draw,
     set: Volts,
     current_limit: Amps,
     over_voltage: Volts,
-    output: bool,
     range: usize,
-    on: bool,
+    range_changed: Duration,
 }
 
-/// A moment from which meters integrate.
+/// A moment from which meters average.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Mark {
     at: Duration,
+    sums: Sums,
 }
 
-/// What the board really is, noise apart, at its terminals.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Truth {
-    /// Voltage below which the switch opens.
-    pub trip: Volts,
-    /// Voltage above which it closes.
-    pub re_enable: Volts,
-    /// Re-enable less trip.
-    pub hysteresis: Volts,
-    /// Time below the trip until the switch opens.
-    pub detect_delay: Duration,
-    /// Time above the re-enable until it closes.
-    pub release_delay: Duration,
+/// Means between a mark and the present.
+struct Means {
+    terminals: f64,
+    current: f64,
+    load: f64,
+    aperture: Duration,
 }
 
 impl World {
-    /// A bench just switched on: output off, supply at zero volts, ammeter on its largest range.
+    /// A bench just switched on: output off and at zero volts, ammeter on its largest range.
     pub fn new(setup: &Setup) -> Self {
-        Self {
+        let range = setup.ammeter.largest();
+        let mut world = Self {
+            motion: Motion::new(setup, setup.ammeter.ranges[range].burden.0),
             setup: setup.clone(),
             now: Duration::ZERO,
             noise: Draw::new(setup.seed, Concern::MeterNoise),
             set: Volts::ZERO,
-            current_limit: setup.supply.max_current,
-            over_voltage: setup.supply.max_voltage * 1.1,
-            output: false,
-            range: setup.ammeter.ranges.len().saturating_sub(1),
-            on: false,
-        }
+            current_limit: Amps::ZERO,
+            over_voltage: Volts::ZERO,
+            range,
+            range_changed: Duration::ZERO,
+        };
+        world.restart_supply();
+        world
     }
 
     /// Time since the bench was switched on.
@@ -65,21 +62,16 @@ impl World {
 
     /// Lets time pass until `until`; does nothing when that is in the past.
     pub fn advance_to(&mut self, until: Duration) {
-        self.now = self.now.max(until);
-        let board = &self.setup.board;
-        let volts = self.terminals();
-        if volts < board.trip {
-            self.on = false;
-        } else if volts > board.re_enable() {
-            self.on = true;
+        if until > self.now {
+            self.motion.advance_to(&self.setup, until.as_secs_f64());
+            self.now = until;
         }
     }
 
-    /// Sets the voltage, as the supply keeps it: clipped to its range and rounded to its step.
+    /// Sets the voltage, clipped to the supply's range and rounded to its step.
     pub fn set_volts(&mut self, volts: Volts) {
-        let supply = &self.setup.supply;
-        let clipped = volts.max(Volts::ZERO).min(supply.max_voltage);
-        self.set = Volts((clipped / supply.set_step).round() * supply.set_step.0);
+        self.set = self.setup.supply.kept(volts);
+        self.motion.head_for(&self.setup, self.setup.supply.true_output(self.set));
     }
 
     /// The voltage as the supply keeps it.
@@ -89,8 +81,8 @@ impl World {
 
     /// Sets the current limit, clipped to the supply's range.
     pub fn set_current_limit(&mut self, limit: Amps) {
-        let supply = &self.setup.supply;
-        self.current_limit = limit.max(supply.min_current).min(supply.max_current);
+        self.current_limit = self.setup.supply.kept_limit(limit);
+        self.motion.limit_current(&self.setup, self.current_limit.0);
     }
 
     /// The current limit as the supply keeps it.
@@ -100,7 +92,8 @@ impl World {
 
     /// Sets the level at which the supply switches its output off by itself.
     pub fn set_over_voltage(&mut self, level: Volts) {
-        self.over_voltage = level;
+        self.over_voltage = level.max(Volts::ZERO).min(self.setup.supply.first_over_voltage());
+        self.motion.protect(&self.setup, self.over_voltage.0);
     }
 
     /// The over-voltage level as the supply keeps it.
@@ -110,35 +103,35 @@ impl World {
 
     /// True after over-voltage protection has switched the output off, until it is switched on again.
     pub fn over_voltage_tripped(&self) -> bool {
-        false
+        self.motion.over_voltage_tripped()
     }
 
     /// Switches the output.
     pub fn set_output(&mut self, on: bool) {
-        self.output = on;
+        self.motion.switch_output(&self.setup, on);
     }
 
     /// Whether the output is on.
     pub fn output(&self) -> bool {
-        self.output
+        self.motion.output_on()
     }
 
-    /// Whether the supply is limiting the current.
+    /// Whether the supply is limiting the current at this moment.
     pub fn limited(&self) -> bool {
-        false
+        self.motion.limited()
     }
 
-    /// What a power cut leaves: output off, everything set forgotten.
+    /// What a power cut leaves: output off, everything set forgotten. The capacitors keep their charge.
     pub fn restart_supply(&mut self) {
-        self.output = false;
-        self.set = Volts::ZERO;
-        self.current_limit = self.setup.supply.max_current;
-        self.over_voltage = self.setup.supply.max_voltage * 1.1;
+        self.set_output(false);
+        self.set_volts(Volts::ZERO);
+        self.set_current_limit(self.setup.supply.max_current);
+        self.set_over_voltage(self.setup.supply.first_over_voltage());
     }
 
     /// Puts the ammeter on its smallest range that holds `current`, or its largest; returns the full scale.
     pub fn set_range(&mut self, current: Amps) -> Amps {
-        self.range = self.setup.ammeter.range_for(current);
+        self.use_range(self.setup.ammeter.range_for(current));
         self.range()
     }
 
@@ -149,75 +142,71 @@ impl World {
 
     /// Puts the ammeter on its largest range, as when it is switched on.
     pub fn reset_meter_range(&mut self) {
-        self.range = self.setup.ammeter.ranges.len().saturating_sub(1);
+        self.use_range(self.setup.ammeter.largest());
     }
 
-    /// The moment from which a reading is averaged.
+    fn use_range(&mut self, range: usize) {
+        if range != self.range {
+            self.range = range;
+            self.range_changed = self.now;
+            self.motion.put_in_line(&self.setup, self.setup.ammeter.ranges[range].burden.0);
+        }
+    }
+
+    /// The present moment, to average readings from.
     pub fn mark(&self) -> Mark {
-        Mark { at: self.now }
+        Mark { at: self.now, sums: self.motion.sums() }
     }
 
     /// Reads the voltmeter at the board's terminals, averaged since the mark.
     pub fn read_sense(&mut self, since: &Mark) -> Volts {
-        let _ = since.at;
-        self.terminals()
+        let means = self.means(since);
+        self.setup.voltmeter.read(means.terminals, means.aperture, &mut self.noise)
     }
 
     /// Reads the voltmeter at the load, averaged since the mark.
     pub fn read_load(&mut self, since: &Mark) -> Volts {
-        let _ = since.at;
-        if self.closed() { self.terminals() } else { Volts::ZERO }
+        let means = self.means(since);
+        self.setup.load_voltmeter.read(means.load, means.aperture, &mut self.noise)
     }
 
     /// Reads the ammeter on its present range, averaged since the mark.
     pub fn read_current(&mut self, since: &Mark) -> Current {
-        let _ = since.at;
-        let range: MeterRange = self.setup.ammeter.ranges[self.range].meter;
-        let current = self.current();
-        if current.0.abs() > 1.2 * range.full_scale {
-            return Current::OVERLOAD;
-        }
-        Current::Value(Amps(current.0 + range.noise * self.noise.normal()))
+        let means = self.means(since);
+        let settled = (self.now - means.aperture / 2).saturating_sub(self.range_changed);
+        self.setup.ammeter.read(self.range, means.current, means.aperture, settled, &mut self.noise)
     }
 
     /// The supply's own reading of its output, averaged since the mark.
     pub fn read_supply(&mut self, since: &Mark) -> (Volts, Amps) {
-        let _ = since.at;
-        (self.terminals(), self.current())
+        let means = self.means(since);
+        let volts = means.terminals + means.current * self.motion.series_resistance();
+        self.setup.supply.read_back(volts, means.current)
     }
 
     /// What the board really is.
     pub fn truth(&self) -> Truth {
-        let board = &self.setup.board;
-        Truth {
-            trip: board.trip,
-            re_enable: board.re_enable(),
-            hysteresis: board.hysteresis,
-            detect_delay: board.detect_delay,
-            release_delay: board.release_delay,
+        Truth::of(&self.setup.board, &self.setup.wiring)
+    }
+
+    /// Whether the board's detector says at this moment that the board is on.
+    pub fn board_on(&self) -> bool {
+        self.motion.board_on()
+    }
+
+    /// Means since the mark; the present values when no time has passed.
+    fn means(&self, since: &Mark) -> Means {
+        let aperture = self.now.saturating_sub(since.at);
+        if aperture.is_zero() {
+            let now = self.motion.instant(&self.setup);
+            return Means { terminals: now.terminals, current: now.current, load: now.load, aperture };
         }
-    }
-
-    fn closed(&self) -> bool {
-        match self.setup.board.switch {
-            Switch::Working => self.on,
-            Switch::StuckClosed => true,
-            Switch::StuckOpen => false,
+        let (from, to, time) = (since.sums, self.motion.sums(), aperture.as_secs_f64());
+        Means {
+            terminals: (to.terminals - from.terminals) / time,
+            current: (to.current - from.current) / time,
+            load: (to.load - from.load) / time,
+            aperture,
         }
-    }
-
-    fn terminals(&self) -> Volts {
-        if self.output { self.set } else { Volts::ZERO }
-    }
-
-    fn current(&self) -> Amps {
-        let board = &self.setup.board;
-        let volts = self.terminals();
-        let through = if self.closed() && self.setup.wiring.load == LoadWiring::Connected {
-            volts / Ohms(board.load.0 + board.on_resistance.0)
-        } else {
-            volts / board.pull_up
-        };
-        through + board.detector_current
     }
 }

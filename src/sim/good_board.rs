@@ -1,0 +1,95 @@
+//! A board as its profile describes it: parameters drawn from a seed, well inside the limits.
+
+use super::draw::Draw;
+use super::{BoardModel, PullUp, Switch};
+use crate::profile::{Profile, QuantityName};
+use crate::units::{Amps, Farads, Ohms, Siemens, Volts};
+
+/// Share of a limit's width in which good boards lie, around its middle.
+const CENTRAL: f64 = 0.7;
+
+/// Shares of the longest delay between which good boards lie.
+const DELAY: (f64, f64) = (0.2, 0.8);
+
+/// Share of the detect delay that charging the load's capacitor against the current limit may take.
+const CHARGE: f64 = 0.2;
+
+/// Off current, and the voltage it is measured at as a share of the trip, where the profile says nothing.
+const OFF_CURRENT: f64 = 2.5e-6;
+const OFF_AT: f64 = 0.95;
+
+/// Hysteresis as a share of the trip, where the profile says nothing; the usual share of plain detectors.
+const HYSTERESIS: f64 = 0.05;
+
+/// A range of values, low and high.
+pub(super) type Window = (f64, f64);
+
+/// The limits of a quantity as a window, a missing side put where the quantity would still be likely.
+pub(super) fn window(profile: &Profile, name: QuantityName) -> Option<Window> {
+    let limit = profile.limits.get(&name)?;
+    match (limit.min, limit.max) {
+        (Some(min), Some(max)) => Some((min, max)),
+        (Some(min), None) => Some((min, min * 1.5)),
+        (None, Some(max)) => Some((max * 0.5, max)),
+        (None, None) => None,
+    }
+}
+
+fn central((low, high): Window) -> Window {
+    let (middle, half_width) = ((low + high) / 2.0, (high - low) / 2.0 * CENTRAL);
+    (middle - half_width, middle + half_width)
+}
+
+/// Draws a good board.
+pub(super) fn good_board(profile: &Profile, draw: &mut Draw) -> BoardModel {
+    let supply = &profile.supply;
+    let likely_trip = supply.floor.0 + (supply.start - supply.floor).0 / 3.0;
+    let trip_window = window(profile, QuantityName::Trip).unwrap_or((likely_trip * 0.98, likely_trip * 1.02));
+    let trip = draw.in_window(central(trip_window));
+    let hysteresis = draw.in_window(hysteresis_window(profile, trip));
+    let detect_delay = profile.timing.detect_delay.mul_f64(draw.in_window(DELAY));
+    let release_delay = profile.timing.release_delay.mul_f64(draw.in_window(DELAY));
+    let off_current =
+        window(profile, QuantityName::OffCurrent).map_or(OFF_CURRENT, |w| draw.in_window(central(w)));
+    let off_at = profile.limits.get(&QuantityName::OffCurrent).and_then(|limit| limit.at);
+    let off_at = off_at.map_or(OFF_AT * trip, |volts| volts.0);
+    let detector_current = off_current * draw.between(0.22, 0.28);
+    let leakage = off_current * draw.between(0.0, 0.02);
+    let chargeable = CHARGE * detect_delay.as_secs_f64() * supply.current_limit.0 / supply.start.0;
+    BoardModel {
+        trip: Volts(trip),
+        hysteresis: Volts(hysteresis),
+        detect_delay,
+        release_delay,
+        noise: Volts(100e-6),
+        noise_rate: 100.0,
+        minimum_operating: Volts(draw.between(0.7, 1.0)),
+        pull_up: Ohms(off_at / (off_current - detector_current - 2.0 * leakage)),
+        pull_up_conducts: PullUp::WhenOff,
+        detector_current: Amps(detector_current),
+        leakage: Amps(leakage),
+        leakage_conductance: Siemens(leakage / off_at),
+        input_capacitance: Farads(1e-6),
+        load: profile.load.resistance * (1.0 + draw.within(profile.load.tolerance * CENTRAL)),
+        load_capacitance: Farads(chargeable.min(10e-6)),
+        switch: Switch::Working,
+        on_resistance: Ohms(draw.between(0.04, 0.08)),
+        deep_conduction: None,
+    }
+}
+
+/// Where hysteresis and re-enable are both well inside their limits; the hysteresis' own middle where they cannot be.
+fn hysteresis_window(profile: &Profile, trip: f64) -> Window {
+    let re_enable = window(profile, QuantityName::ReEnable).map(central);
+    let from_re_enable = re_enable.map(|(low, high)| (low - trip, high - trip));
+    let own = window(profile, QuantityName::Hysteresis).map(central);
+    match (own, from_re_enable) {
+        (Some(own), Some(other)) => {
+            let both = (own.0.max(other.0), own.1.min(other.1));
+            let middle = (own.0 + own.1) / 2.0;
+            if both.0 <= both.1 { both } else { (middle, middle) }
+        }
+        (Some(only), None) | (None, Some(only)) => only,
+        (None, None) => (HYSTERESIS * trip * 0.9, HYSTERESIS * trip * 1.1),
+    }
+}

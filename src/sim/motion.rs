@@ -1,0 +1,291 @@
+//! Supply, circuit and detector moving together.
+//!
+//! Between two events everything is a straight line or an exponential, so time jumps from event to event: an edge of
+//! the circuit or the detector passed, a delay that ends, an output that has arrived. Small steps are needed only
+//! while the load's capacitor charges against the current limit and while noise can cross a moving threshold.
+
+use super::Setup;
+use super::circuit::{Circuit, Piece, Surroundings};
+use super::course::Course;
+use super::detector::Detector;
+use super::output::{Output, STILL};
+
+/// How far beyond an edge the output is put when it passes one, V: clear of rounding, far below any reading.
+const STEP_OVER: f64 = STILL / 2.0;
+
+/// Parts into which one charge of the load's capacitor is cut.
+const CHARGE_STEPS: f64 = 64.0;
+
+/// Parts of the detector's noise the voltage may move in one step while noise matters.
+const NOISE_STEP: f64 = 0.5;
+
+/// Integrals over time since the bench was switched on.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub(super) struct Sums {
+    /// Of the voltage at the board's terminals, V s.
+    pub(super) terminals: f64,
+    /// Of the current through the ammeter, A s.
+    pub(super) current: f64,
+    /// Of the voltage at the load, V s.
+    pub(super) load: f64,
+}
+
+/// The present values of what [`Sums`] integrates.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct Instant {
+    /// Voltage at the board's terminals, V.
+    pub(super) terminals: f64,
+    /// Current through the ammeter, A.
+    pub(super) current: f64,
+    /// Voltage at the load, V.
+    pub(super) load: f64,
+}
+
+/// Everything that moves.
+#[derive(Clone, Debug)]
+pub(super) struct Motion {
+    now: f64,
+    output: Output,
+    detector: Detector,
+    circuit: Circuit,
+    surroundings: Surroundings,
+    limit: f64,
+    over_voltage: f64,
+    over_voltage_tripped: bool,
+    load_volts: f64,
+    load_resistance: f64,
+    charging: bool,
+    sums: Sums,
+}
+
+impl Motion {
+    /// A bench at rest with its output off.
+    pub(super) fn new(setup: &Setup, burden: f64) -> Self {
+        let conductance = |resistance: f64| if resistance > 0.0 { 1.0 / resistance } else { 0.0 };
+        let surroundings = Surroundings {
+            on: false,
+            series: setup.wiring.lead_resistance.0 + burden,
+            voltmeter: conductance(setup.voltmeter.input_resistance.0),
+            load_voltmeter: conductance(setup.load_voltmeter.input_resistance.0),
+            limit: f64::INFINITY,
+        };
+        Self {
+            now: 0.0,
+            output: Output::new(&setup.supply, setup.board.input_capacitance.0),
+            detector: Detector::new(&setup.board, setup.seed),
+            circuit: Circuit::solve(&setup.board, &setup.wiring, &surroundings),
+            surroundings,
+            limit: setup.supply.max_current.0,
+            over_voltage: f64::INFINITY,
+            over_voltage_tripped: false,
+            load_volts: 0.0,
+            load_resistance: setup.board.load_resistance(&setup.wiring, surroundings.load_voltmeter),
+            charging: false,
+            sums: Sums::default(),
+        }
+    }
+
+    /// Lets time pass until `until`, in seconds.
+    pub(super) fn advance_to(&mut self, setup: &Setup, until: f64) {
+        while self.now < until {
+            self.move_on(setup, until);
+            self.react(setup);
+        }
+    }
+
+    /// Sends the output to a true voltage.
+    pub(super) fn head_for(&mut self, setup: &Setup, goal: f64) {
+        self.output.head_for(goal);
+        self.react(setup);
+    }
+
+    /// Switches the output; switching on forgets an over-voltage trip.
+    pub(super) fn switch_output(&mut self, setup: &Setup, on: bool) {
+        self.output.switch(on);
+        self.over_voltage_tripped &= !on;
+        self.solve(setup);
+    }
+
+    /// Sets the current limit.
+    pub(super) fn limit_current(&mut self, setup: &Setup, limit: f64) {
+        self.limit = limit;
+        self.solve(setup);
+    }
+
+    /// Sets the over-voltage level.
+    pub(super) fn protect(&mut self, setup: &Setup, level: f64) {
+        self.over_voltage = level;
+        self.react(setup);
+    }
+
+    /// Puts another ammeter resistance into the line.
+    pub(super) fn put_in_line(&mut self, setup: &Setup, burden: f64) {
+        self.surroundings.series = setup.wiring.lead_resistance.0 + burden;
+        self.solve(setup);
+    }
+
+    pub(super) fn output_on(&self) -> bool {
+        self.output.on
+    }
+
+    pub(super) fn over_voltage_tripped(&self) -> bool {
+        self.over_voltage_tripped
+    }
+
+    /// Whether the supply limits the current.
+    pub(super) fn limited(&self) -> bool {
+        self.charging || self.piece().limited
+    }
+
+    /// Whether the detector says that the board is on.
+    pub(super) fn board_on(&self) -> bool {
+        self.detector.on()
+    }
+
+    pub(super) fn sums(&self) -> Sums {
+        self.sums
+    }
+
+    /// Resistance between the supply's terminals and the board's.
+    pub(super) fn series_resistance(&self) -> f64 {
+        self.surroundings.series
+    }
+
+    /// What there is at this moment.
+    pub(super) fn instant(&self, setup: &Setup) -> Instant {
+        let (piece, e) = (self.piece(), self.output.volts);
+        if self.charging {
+            let terminals = self.load_volts + self.limit * setup.board.on_resistance.0;
+            return Instant { terminals, current: self.limit, load: self.load_volts };
+        }
+        Instant { terminals: piece.terminals.at(e), current: piece.current.at(e), load: self.load_volts }
+    }
+
+    fn piece(&self) -> &Piece {
+        self.circuit.piece_at(self.output.volts).0
+    }
+
+    /// Solves the circuit for the present state.
+    fn solve(&mut self, setup: &Setup) {
+        self.surroundings.on = self.detector.on();
+        self.surroundings.limit = if self.output.on { self.limit } else { f64::INFINITY };
+        self.circuit = Circuit::solve(&setup.board, &setup.wiring, &self.surroundings);
+        self.charging = setup.board.closed(self.detector.on()) && self.charge_is_limited(setup);
+        self.react(setup);
+    }
+
+    /// Whether an empty load capacitor would take more than the current limit.
+    fn charge_is_limited(&self, setup: &Setup) -> bool {
+        let resistance = self.surroundings.series + setup.board.on_resistance.0;
+        let full = self.limit * self.load_resistance * (1.0 - 1e-6);
+        let forward = setup.wiring.polarity == super::Polarity::Right;
+        forward
+            && self.output.on
+            && self.load_volts < full
+            && self.output.volts - self.load_volts > self.limit * resistance
+    }
+
+    /// Lets output and detector react to the present voltages.
+    fn react(&mut self, setup: &Setup) {
+        self.output.look();
+        if self.output.on && self.output.volts > self.over_voltage && !self.limited() {
+            self.over_voltage_tripped = true;
+            self.output.switch(false);
+            return self.solve(setup);
+        }
+        if self.detector.change_if_due(self.now) {
+            return self.solve(setup);
+        }
+        if !self.charging && setup.board.closed(self.detector.on()) {
+            self.load_volts = self.piece().load.at(self.output.volts);
+        }
+        self.detector.look(self.now, self.instant(setup).terminals);
+    }
+
+    /// One stretch without events, at most until `until`.
+    fn move_on(&mut self, setup: &Setup, until: f64) {
+        let from = self.output.volts;
+        let (piece, lower) = self.circuit.piece_at(from);
+        let piece = *piece;
+        let (course, end) = self.output.course(&piece);
+        let mut time = until - self.now;
+        if let Some(due) = self.detector.due() {
+            time = time.min((due - self.now).max(0.0));
+        }
+        if self.charging {
+            return self.charge(setup, course, time);
+        }
+        let crossings = self.detector.noise_crossings(piece.terminals.at(from));
+        if crossings > 0.0 {
+            let move_time = NOISE_STEP * setup.board.noise.0 / course.rate(from).abs();
+            time = time.min(move_time).min(self.detector.time_to_crossing(crossings));
+        }
+        let mut to = course.after(from, time);
+        let [near, far] = self.detector.edges().map(|volts| {
+            (piece.terminals.slope > 0.0).then(|| (volts - piece.terminals.offset) / piece.terminals.slope)
+        });
+        let edges = [Some(piece.upto), Some(lower), end, near, far, Some(self.over_voltage)];
+        if let Some(beyond) = nearest_passed(from, to, edges) {
+            time = time.min(course.time_between(from, beyond).max(0.0));
+            to = beyond;
+        }
+        self.sum_up(setup, &piece, course, from, to, time);
+        self.output.volts = to;
+        self.now += time;
+        self.detector.endure(self.now, crossings, time);
+    }
+
+    fn sum_up(&mut self, setup: &Setup, piece: &Piece, course: Course, from: f64, to: f64, time: f64) {
+        let area = course.area(from, to, time);
+        self.sums.terminals += piece.terminals.slope * area + piece.terminals.offset * time;
+        self.sums.current += piece.current.slope * area + piece.current.offset * time;
+        let settled_area = piece.load.slope * area + piece.load.offset * time;
+        if setup.board.closed(self.detector.on()) {
+            self.sums.load += settled_area;
+            self.load_volts = piece.load.at(to);
+            return;
+        }
+        let settled = piece.load.at(to);
+        let excess = self.load_volts - settled;
+        if excess.abs() < STILL {
+            self.sums.load += settled_area;
+            self.load_volts = settled;
+        } else {
+            let time_constant = self.load_resistance * setup.board.load_capacitance.0.max(1e-15);
+            let left = excess * (-time / time_constant).exp();
+            self.sums.load += settled_area + (excess - left) * time_constant;
+            self.load_volts = settled + left;
+        }
+    }
+
+    /// A step of charging the load's capacitor with the limited current.
+    fn charge(&mut self, setup: &Setup, course: Course, most: f64) {
+        let capacitance = setup.board.load_capacitance.0.max(1e-15);
+        let time_constant = self.load_resistance * capacitance;
+        let whole = capacitance * self.output.volts / self.limit;
+        let time = most.min((whole / CHARGE_STEPS).max(1e-9));
+        let full = self.limit * self.load_resistance;
+        let before = self.load_volts;
+        self.load_volts = before - (full - before) * (-time / time_constant).exp_m1();
+        let mean = (before + self.load_volts) / 2.0;
+        self.sums.load += mean * time;
+        self.sums.terminals += (mean + self.limit * setup.board.on_resistance.0) * time;
+        self.sums.current += self.limit * time;
+        self.output.volts = course.after(self.output.volts, time);
+        self.now += time;
+        self.charging = self.charge_is_limited(setup);
+    }
+}
+
+/// The nearest edge that lies between `from` and `to`, with a little beyond it.
+fn nearest_passed(from: f64, to: f64, edges: [Option<f64>; 6]) -> Option<f64> {
+    let direction = (to - from).signum();
+    let way = (to - from).abs();
+    edges
+        .into_iter()
+        .flatten()
+        .map(|edge| (edge - from) * direction)
+        .filter(|distance| *distance >= 0.0 && distance + STEP_OVER < way)
+        .min_by(f64::total_cmp)
+        .map(|distance| from + direction * (distance + STEP_OVER))
+}
