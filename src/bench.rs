@@ -1,8 +1,10 @@
 //! Carries out a procedure: in real time over serial ports, or in virtual time on the simulation.
 
 mod drive;
+mod virtual_time;
 
 pub use drive::{Watch, drive};
+pub use virtual_time::{VirtualBench, run_ready};
 
 use crate::procedure::{Action, Event};
 use std::time::Duration;

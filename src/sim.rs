@@ -11,6 +11,7 @@ mod condition;
 mod course;
 mod detector;
 mod draw;
+mod faults;
 mod good_board;
 mod meter;
 mod motion;
@@ -23,6 +24,7 @@ mod world;
 
 pub use board::{BoardModel, DeepConduction, PullUp, Switch};
 pub use condition::{Condition, UnknownCondition};
+pub use faults::{Faults, Mishap};
 pub use meter::{AmmeterModel, AmmeterRange, MeterRange, VoltmeterModel};
 pub use setup::Setup;
 pub use supply::SupplyModel;

@@ -9,8 +9,8 @@ use super::{BoardModel, Polarity, Wiring};
 /// Forward voltage of the body diode, V; 0.8 V to 0.9 V is common practice for a power transistor.
 pub(super) const BODY_DIODE: f64 = 0.8;
 
-/// The most pieces a board has: five knots, the current limit and the open end.
-const MOST_PIECES: usize = 8;
+/// The most pieces a circuit has: one up to each of four knots, the open end, and the current limit.
+const MOST_PIECES: usize = 6;
 
 /// All that a solution depends on besides the board and its wiring.
 #[derive(Clone, Copy, Debug, PartialEq)]

@@ -12,21 +12,19 @@ use std::time::Duration;
 /// Averaging time of all meters: one period of 50 Hz mains.
 const INTEGRATION: Duration = Duration::from_millis(20);
 
-/// Full scale in A, claim in share of reading and share of range, burden in ohm.
-const AMMETER_RANGES: [(f64, f64, f64, f64); 6] = [
-    (100e-6, 0.05e-2, 0.025e-2, 100.0),
-    (1e-3, 0.05e-2, 0.006e-2, 100.0),
-    (10e-3, 0.05e-2, 0.02e-2, 1.0),
-    (100e-3, 0.05e-2, 0.005e-2, 1.0),
-    (1.0, 0.1e-2, 0.01e-2, 0.1),
-    (3.0, 0.12e-2, 0.02e-2, 0.1),
+/// Full scale in A, claim in share of reading and share of range, last digit in A, burden in ohm.
+const AMMETER_RANGES: [(f64, f64, f64, f64, f64); 6] = [
+    (100e-6, 0.05e-2, 0.025e-2, 100e-12, 100.0),
+    (1e-3, 0.05e-2, 0.006e-2, 1e-9, 100.0),
+    (10e-3, 0.05e-2, 0.02e-2, 10e-9, 1.0),
+    (100e-3, 0.05e-2, 0.005e-2, 100e-9, 1.0),
+    (1.0, 0.1e-2, 0.01e-2, 1e-6, 0.1),
+    (3.0, 0.12e-2, 0.02e-2, 10e-6, 0.1),
 ];
 
-/// Full scale in V, claim in share of reading and share of range.
-const VOLTMETER_RANGES: [(f64, f64, f64); 2] = [(10.0, 0.0035e-2, 0.0005e-2), (100.0, 0.0045e-2, 0.0006e-2)];
-
-/// Last digit of a six-and-a-half-digit meter, as a share of its range.
-const DIGIT: f64 = 1e-6;
+/// Full scale in V, claim in share of reading and share of range, last digit in V.
+const VOLTMETER_RANGES: [(f64, f64, f64, f64); 2] =
+    [(10.0, 0.0035e-2, 0.0005e-2, 10e-6), (100.0, 0.0045e-2, 0.0006e-2, 100e-6)];
 
 /// Noise of an ammeter's reading, as a share of its range.
 const AMMETER_NOISE: f64 = 5e-6;
@@ -40,6 +38,7 @@ pub(super) fn supply(seed: u64) -> SupplyModel {
     let claim = Accuracy { relative: 0.05e-2, absolute: 5e-3, resolution: 1e-3 };
     SupplyModel {
         max_voltage: Volts(32.0),
+        max_over_voltage: Volts(35.0),
         max_current: Amps(3.0),
         min_current: Amps(1e-3),
         set_step: Volts(1e-3),
@@ -61,9 +60,8 @@ pub(super) fn supply(seed: u64) -> SupplyModel {
 /// Draws an ammeter and two voltmeters, at the terminals and at the load.
 pub(super) fn meters(seed: u64) -> (AmmeterModel, VoltmeterModel, VoltmeterModel) {
     let mut draw = Draw::new(seed, Concern::MeterErrors);
-    let mut range = |full_scale: f64, of_reading: f64, of_range: f64, noise: f64| {
-        let resolution = DIGIT * full_scale;
-        let claim = Accuracy { relative: of_reading, absolute: of_range * full_scale, resolution };
+    let mut range = |full_scale: f64, relative: f64, of_range: f64, resolution: f64, noise: f64| {
+        let claim = Accuracy { relative, absolute: of_range * full_scale, resolution };
         MeterRange {
             full_scale,
             claim,
@@ -72,13 +70,15 @@ pub(super) fn meters(seed: u64) -> (AmmeterModel, VoltmeterModel, VoltmeterModel
             noise: noise * full_scale,
         }
     };
-    let ranges = AMMETER_RANGES.map(|(full_scale, of_reading, of_range, burden)| AmmeterRange {
-        meter: range(full_scale, of_reading, of_range, AMMETER_NOISE),
+    let ranges = AMMETER_RANGES.map(|(scale, relative, of_range, digit, burden)| AmmeterRange {
+        meter: range(scale, relative, of_range, digit, AMMETER_NOISE),
         burden: Ohms(burden),
     });
     let mut voltmeter = || VoltmeterModel {
         ranges: VOLTMETER_RANGES
-            .map(|(scale, gain, zero)| range(scale, gain, zero, VOLTMETER_NOISE))
+            .map(|(scale, relative, of_range, digit)| {
+                range(scale, relative, of_range, digit, VOLTMETER_NOISE)
+            })
             .to_vec(),
         integration: INTEGRATION,
         input_resistance: Ohms(10e9),
@@ -86,7 +86,7 @@ pub(super) fn meters(seed: u64) -> (AmmeterModel, VoltmeterModel, VoltmeterModel
     let ammeter = AmmeterModel {
         ranges: ranges.to_vec(),
         integration: INTEGRATION,
-        range_settle: Duration::from_millis(50),
+        range_settle: Duration::from_millis(60),
     };
     (ammeter, voltmeter(), voltmeter())
 }

@@ -11,6 +11,7 @@ pub(super) enum Concern {
     MeterErrors = 2,
     MeterNoise = 3,
     DetectorNoise = 4,
+    Faults = 5,
 }
 
 /// The stream of one concern.
@@ -48,5 +49,16 @@ impl Draw {
     /// Exponential, mean one.
     pub(super) fn exponential(&mut self) -> f64 {
         -(-self.0.random::<f64>()).ln_1p()
+    }
+
+    /// True with this probability.
+    pub(super) fn chance(&mut self, probability: f64) -> bool {
+        self.0.random::<f64>() < probability
+    }
+
+    /// One of some, all equally likely; `None` of none.
+    pub(super) fn one_of<T: Copy>(&mut self, all: &[T]) -> Option<T> {
+        let index = (self.0.random::<f64>() * all.len() as f64) as usize;
+        all.get(index).copied()
     }
 }

@@ -78,7 +78,12 @@ impl MeterRange {
 
 /// Rounds to a step; a step of zero leaves the value alone.
 pub(super) fn round_to(value: f64, step: f64) -> f64 {
-    if step > 0.0 { (value / step).round() * step } else { value }
+    if step <= 0.0 {
+        return value;
+    }
+    let (steps, per_unit) = ((value / step).round(), (1.0 / step).round());
+    // Dividing by a whole number gives the very number a decimal text would: 7.6 and not 7.600_000_000_000_000_5.
+    if (per_unit * step - 1.0).abs() < 1e-9 { steps / per_unit } else { steps * step }
 }
 
 /// How much larger the noise of a reading over `aperture` is than at the meter's own integration time.
@@ -129,5 +134,20 @@ impl VoltmeterModel {
         let normal = noise.normal();
         let averaging = averaging(self.integration, aperture);
         Volts(self.range_for(Volts(mean)).map_or(mean, |range| range.reading(mean, normal, averaging)))
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn rounding_gives_the_number_a_decimal_text_would() {
+        for (value, step, text) in
+            [(7.600_04, 1e-3, "7.6"), (2.774_62e-6, 1e-10, "0.0000027746"), (7.6, 0.0, "7.6")]
+        {
+            assert_eq!(round_to(value, step).to_string(), text);
+        }
+        assert!((round_to(7.6, 0.3) - 7.5).abs() < 1e-12);
     }
 }

@@ -88,9 +88,9 @@ impl Output {
         let regulated_rate = way.abs() / self.time_constant;
         if way < 0.0 && !self.sinks {
             let drain = piece.current.at(self.volts) + self.bleed;
-            if drain / self.capacitance < regulated_rate.min(self.slew) {
-                let regulation = self.regulation_regained(piece.current, aim);
-                return self.discharge(piece.current, 0.0, regulation.max(aim));
+            let regained = self.regulation_regained(piece.current, aim).max(aim);
+            if drain / self.capacitance < regulated_rate.min(self.slew) && self.volts > regained {
+                return self.discharge(piece.current, 0.0, regained);
             }
         }
         if regulated_rate > self.slew * (1.0 + 1e-9) {

@@ -11,8 +11,11 @@ use crate::profile::{Profile, QuantityName};
 use crate::trace::{Claims, RangeAccuracy};
 use crate::units::{Amps, Ohms, Volts};
 
-/// Time constants a small step needs to arrive within a digit.
+/// Time constants until a small step has arrived.
 const SETTLE_CONSTANTS: u32 = 5;
+
+/// How close to its final value the output then is.
+const SETTLED_WITHIN: Volts = Volts(2e-3);
 
 /// The highest voltage a run is likely to use, as a multiple of the re-enable voltage.
 const HIGHEST_OF_RE_ENABLE: f64 = 1.25;
@@ -96,6 +99,9 @@ impl Setup {
     pub fn ability(&self) -> Ability {
         let smallest = self.ammeter.ranges.first();
         let supply = &self.supply;
+        let highest = self.highest_voltage().0;
+        let sense = self.voltmeter.range_for(Volts(highest));
+        let sense_limit = sense.map_or(0.0, |range| range.claim.limit(highest));
         Ability {
             voltmeter: true,
             load_voltmeter: true,
@@ -107,7 +113,7 @@ impl Setup {
             set_step: supply.set_step,
             settle: supply.time_constant * SETTLE_CONSTANTS,
             read_time: self.ammeter.integration.max(self.voltmeter.integration),
-            arrival_tolerance: Volts(supply.claim.limit(self.highest_voltage().0)) + supply.set_step,
+            arrival_tolerance: SETTLED_WITHIN + Volts(supply.claim.limit(highest) + sense_limit),
             off_current_uncertainty: Amps(
                 smallest.map_or(f64::INFINITY, |range| range.meter.claim.standard_uncertainty(0.0)),
             ),

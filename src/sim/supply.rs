@@ -10,6 +10,8 @@ use std::time::Duration;
 pub struct SupplyModel {
     /// Highest voltage it can be set to.
     pub max_voltage: Volts,
+    /// Highest level of its over-voltage protection, and the level after switching on.
+    pub max_over_voltage: Volts,
     /// Highest current it can be limited to.
     pub max_current: Amps,
     /// Lowest current it can be limited to.
@@ -45,9 +47,6 @@ pub struct SupplyModel {
 /// Digit of the supply's own voltage and current readings, V and A.
 const READ_BACK_DIGIT: f64 = 1e-3;
 
-/// Over-voltage level of a supply just switched on, as a multiple of its highest voltage.
-const OVER_VOLTAGE_AT_START: f64 = 1.1;
-
 impl SupplyModel {
     /// A set-point as the supply keeps it: clipped to its range and rounded to its step.
     pub(super) fn kept(&self, volts: Volts) -> Volts {
@@ -64,9 +63,9 @@ impl SupplyModel {
         limit.max(self.min_current).min(self.max_current)
     }
 
-    /// The over-voltage level of a supply just switched on.
-    pub(super) fn first_over_voltage(&self) -> Volts {
-        self.max_voltage * OVER_VOLTAGE_AT_START
+    /// An over-voltage level as the supply keeps it.
+    pub(super) fn kept_over_voltage(&self, level: Volts) -> Volts {
+        level.max(Volts::ZERO).min(self.max_over_voltage)
     }
 
     /// What the supply says of its own output.

@@ -92,7 +92,7 @@ impl World {
 
     /// Sets the level at which the supply switches its output off by itself.
     pub fn set_over_voltage(&mut self, level: Volts) {
-        self.over_voltage = level.max(Volts::ZERO).min(self.setup.supply.first_over_voltage());
+        self.over_voltage = self.setup.supply.kept_over_voltage(level);
         self.motion.protect(&self.setup, self.over_voltage.0);
     }
 
@@ -126,7 +126,7 @@ impl World {
         self.set_output(false);
         self.set_volts(Volts::ZERO);
         self.set_current_limit(self.setup.supply.max_current);
-        self.set_over_voltage(self.setup.supply.first_over_voltage());
+        self.set_over_voltage(self.setup.supply.max_over_voltage);
     }
 
     /// Puts the ammeter on its smallest range that holds `current`, or its largest; returns the full scale.
