@@ -1,1 +1,3 @@
 //! Integration tests, a module per theme.
+
+mod sim;
