@@ -125,3 +125,47 @@ impl Output {
         if slope > 0.0 { offset / slope } else { aim }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::units::{Amps, Farads, Ohms};
+    use std::time::Duration;
+
+    #[test]
+    fn a_falling_output_is_as_slow_as_the_slower_of_regulation_and_discharge() {
+        let supply = SupplyModel {
+            sinks: false,
+            bleed: Amps(1e-3),
+            output_capacitance: Farads(470e-6),
+            time_constant: Duration::from_millis(3),
+            off_resistance: Ohms(100.0),
+            ..super::super::class::supply(1)
+        };
+        let siemens = 1e-3;
+        let piece = Piece {
+            upto: f64::INFINITY,
+            terminals: Line { slope: 1.0, offset: 0.0 },
+            current: Line { slope: siemens, offset: 0.0 },
+            load: Line::default(),
+            limited: false,
+        };
+        let mut output = Output::new(&supply, 0.0);
+        (output.on, output.volts) = (true, 5.0);
+        output.head_for(4.9);
+        let (mut volts, mut left) = (5.0_f64, 15e-3_f64);
+        while left > 0.0 {
+            let (course, end) = output.course(&piece);
+            let to_end = end.map_or(f64::INFINITY, |end| course.time_between(output.volts, end));
+            let time = left.min(to_end + 1e-9);
+            output.volts = course.after(output.volts, time);
+            left -= time;
+        }
+        // The same in steps of 1 µs.
+        for _ in 0..15_000 {
+            volts -= 1e-6 * f64::min((volts - 4.9) / 3e-3, (volts * siemens + 1e-3) / 470e-6);
+        }
+        assert!((output.volts - volts).abs() < 5e-6, "{} V, {volts} V in small steps", output.volts);
+        assert!(volts - 4.9 > 1e-3, "still on its way");
+    }
+}

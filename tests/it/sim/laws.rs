@@ -189,6 +189,32 @@ fn a_load_capacitor_too_large_for_the_current_limit_keeps_the_board_from_coming_
 }
 
 #[test]
+fn behind_the_open_switch_the_load_s_capacitor_empties_through_the_load() {
+    for seed in SEEDS {
+        let mut setup = prompt(seed);
+        setup.board.detect_delay = Duration::from_millis(5);
+        setup.board.load_capacitance = Farads(1e-3);
+        let mut world = armed(&setup);
+        world.set_volts(Volts(5.0));
+        world.advance_to(world.now() + Duration::from_micros(5100));
+        assert!(!world.board_on(), "seed {seed}");
+        let at_once = world.mark();
+        let start = world.read_load(&at_once).0;
+        wait(&mut world, 20);
+        let mean = world.read_load(&at_once).0;
+        let end = world.mark();
+        let end = world.read_load(&end).0;
+        let time_constant = setup.board.load.0 * 1e-3;
+        assert!(
+            (end - start * (-0.020 / time_constant).exp()).abs() < 1e-3,
+            "seed {seed}: {start} V to {end} V"
+        );
+        let expected = (start - end) * time_constant / 0.020;
+        assert!((mean - expected).abs() < 1e-3, "seed {seed}: {mean} V on average, {expected} V expected");
+    }
+}
+
+#[test]
 fn a_board_with_deep_conduction_draws_its_peak_below_the_operating_voltage() {
     let mut setup = quiet(3);
     setup.board.deep_conduction = Some(DeepConduction { from: Volts(0.4), to: Volts(0.7), peak: Amps(0.02) });
