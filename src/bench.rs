@@ -5,6 +5,7 @@ mod virtual_time;
 
 pub use drive::{Watch, drive};
 pub use virtual_time::{VirtualBench, run_ready};
+pub mod clock;
 
 use crate::procedure::{Action, Event};
 use std::time::Duration;
