@@ -4,6 +4,7 @@
 //! what a profile describes and a named [`Condition`]. [`World`] plays them: it knows voltages, currents and time,
 //! and neither text nor procedures. Time moves only when told to.
 
+pub mod bench;
 mod board;
 mod circuit;
 mod class;
@@ -14,6 +15,7 @@ pub mod device;
 mod draw;
 mod faults;
 mod good_board;
+pub mod link_faults;
 mod meter;
 mod motion;
 mod output;
@@ -21,6 +23,7 @@ mod setup;
 mod shared_world;
 mod supply;
 mod truth;
+pub mod terminal;
 mod wiring;
 mod world;
 
@@ -34,3 +37,6 @@ pub use supply::SupplyModel;
 pub use truth::Truth;
 pub use wiring::{LoadWiring, Polarity, Wiring};
 pub use world::{Mark, World};
+pub use world::{Mark, Truth, World};
+
+use shared_world::lock;

@@ -78,6 +78,11 @@ impl Device {
         replies.line()
     }
 
+    /// What kind of device it is.
+    pub fn kind(&self) -> Kind {
+        self.kind
+    }
+
     /// The reply to `*IDN?`.
     pub fn identity(&self) -> &str {
         &self.identity

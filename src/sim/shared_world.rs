@@ -1,7 +1,7 @@
 //! One world that several instruments act on at once, and the clock that moves it.
 
 use super::World;
-use std::sync::{Arc, Mutex, PoisonError};
+use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 use std::time::Duration;
 
 /// Tells the simulated time and waits for it.
@@ -40,11 +40,15 @@ impl SharedWorld {
 
     /// Looks at the world as it is now, or changes it.
     pub fn with<T>(&self, act: impl FnOnce(&mut World) -> T) -> T {
-        // A panic elsewhere must not keep anybody from switching the output off.
-        let mut world = self.world.lock().unwrap_or_else(PoisonError::into_inner);
+        let mut world = lock(&self.world);
         world.advance_to(self.clock.now());
         act(&mut world)
     }
+}
+
+/// Locks, even after a panic elsewhere: that must not keep anybody from switching the output off.
+pub(super) fn lock<T>(mutex: &Mutex<T>) -> MutexGuard<'_, T> {
+    mutex.lock().unwrap_or_else(PoisonError::into_inner)
 }
 
 /// A clock that jumps to wherever it is asked to wait for.
@@ -53,11 +57,11 @@ pub struct JumpingClock(Mutex<Duration>);
 
 impl SimulationClock for JumpingClock {
     fn now(&self) -> Duration {
-        *self.0.lock().unwrap_or_else(PoisonError::into_inner)
+        *lock(&self.0)
     }
 
     fn sleep_until(&self, time: Duration) {
-        let mut now = self.0.lock().unwrap_or_else(PoisonError::into_inner);
+        let mut now = lock(&self.0);
         *now = time.max(*now);
     }
 }

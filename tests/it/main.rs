@@ -1,3 +1,5 @@
 //! Integration tests, a module per theme.
 
 mod sim;
+#[cfg(unix)]
+mod simulated_bench;
