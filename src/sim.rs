@@ -21,9 +21,10 @@ mod motion;
 mod output;
 mod setup;
 mod shared_world;
+mod source_measure_unit;
 mod supply;
-mod truth;
 pub mod terminal;
+mod truth;
 mod wiring;
 mod world;
 
@@ -37,6 +38,5 @@ pub use supply::SupplyModel;
 pub use truth::Truth;
 pub use wiring::{LoadWiring, Polarity, Wiring};
 pub use world::{Mark, World};
-pub use world::{Mark, Truth, World};
 
 use shared_world::lock;

@@ -35,7 +35,8 @@ pub enum Arrangement {
     /// Supply, ammeter, voltmeter and load voltmeter, each on its port.
     #[default]
     Separate,
-    /// A source-measure unit for all at the board's input, and a load voltmeter.
+    /// A source-measure unit for all at the board's input, in place of the setup's instruments there, and a load
+    /// voltmeter.
     SourceMeasureUnit,
 }
 
@@ -83,11 +84,15 @@ impl SimulatedBench {
                 (directory.path().to_owned(), Some(directory))
             }
         };
-        let world = SharedWorld::new(World::new(setup), Arc::new(options.clock));
+        let setup = match options.arrangement {
+            Arrangement::Separate => setup.clone(),
+            Arrangement::SourceMeasureUnit => setup.with_source_measure_unit(),
+        };
+        let world = SharedWorld::new(World::new(&setup), Arc::new(options.clock));
         let faults = Arc::new(Mutex::new(LinkFaults::new(options.faults)));
         let mut terminals = Vec::new();
         for kind in options.arrangement.kinds() {
-            let device = Device::new(*kind, setup);
+            let device = Device::new(*kind, &setup);
             let port = path.join(Entry::of(*kind).name);
             let terminal = Terminal::start(device, &port, &world, options.pace, faults.clone());
             terminals.push(terminal.map_err(|error| about(&port, &error))?);

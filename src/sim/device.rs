@@ -159,4 +159,4 @@ impl Device {
 }
 
 #[cfg(test)]
-mod tests;
+pub(super) mod tests;

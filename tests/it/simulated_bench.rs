@@ -306,6 +306,8 @@ fn a_source_measure_unit_plays_three_roles_on_one_port() {
     let bench = SimulatedBench::start(&setup(), Options { arrangement, ..options() }).expect("a bench");
     assert_eq!(bench.port(Kind::Supply), None);
     let mut unit = Client::of(&bench, Kind::SourceMeasureUnit);
+    unit.tell("SENS:CURR:RANG 1E-5");
+    assert_eq!(unit.ask("SENS:CURR:RANG?"), "+1.0000000E-05");
     unit.ask("VOLT 7.6;:SENS:CURR:RANG 1;:OUTP ON;*OPC?");
     bench.world().pass(Duration::from_secs(1));
     assert!((unit.number("MEAS:VOLT?") - 7.6).abs() < 0.1);
