@@ -1,11 +1,11 @@
 //! Carries out a procedure: in real time over serial ports, or in virtual time on the simulation.
 
+pub mod clock;
 mod drive;
 mod virtual_time;
 
 pub use drive::{Watch, drive};
 pub use virtual_time::{VirtualBench, run_ready};
-pub mod clock;
 
 use crate::procedure::{Action, Event};
 use std::time::Duration;

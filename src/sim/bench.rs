@@ -112,15 +112,20 @@ impl SimulatedBench {
             let entry = Entry::of(terminal.kind());
             let quoted = |text: &str| toml::Value::from(text).to_string();
             let roles: Vec<String> = entry.roles.iter().map(|role| quoted(role)).collect();
+            let identity: Vec<String> = ["maker", "model", "serial"]
+                .iter()
+                .zip(terminal.identity().split(','))
+                .map(|(key, field)| format!("{key} = {}", quoted(field)))
+                .collect();
             // Writing to a string cannot fail.
             let _ = write!(
                 text,
-                "\n[[instrument]]\nname = {}\ndefinition = {}\nport = {}\nroles = [{}]\nidentity = {}\n",
+                "\n[[instrument]]\nname = {}\ndefinition = {}\nport = {}\nroles = [{}]\nidentity = {{ {} }}\n",
                 quoted(entry.name),
                 quoted(entry.definition),
                 quoted(&terminal.port().to_string_lossy()),
                 roles.join(", "),
-                quoted(terminal.identity()),
+                identity.join(", "),
             );
         }
         text

@@ -47,7 +47,8 @@ pub struct Device {
 impl Device {
     /// A device just switched on, with the ranges of `setup`. Its serial number follows from the seed.
     pub fn new(kind: Kind, setup: &Setup) -> Self {
-        let identity = format!("EBBMARK,{},{:08},1.0", kind.model(), setup.seed % 100_000_000);
+        let serial = format!("{}{:07}", kind.letter(), setup.seed % 10_000_000);
+        let identity = format!("EBBMARK,{},{serial},1.0", kind.model());
         let mut device = Self {
             kind,
             identity,

@@ -128,6 +128,17 @@ impl Kind {
             Self::SourceMeasureUnit => "SIM-SMU",
         }
     }
+
+    /// The first letter of its serial number, so that no two instruments of a bench have the same.
+    pub(super) fn letter(self) -> char {
+        match self {
+            Self::Supply => 'S',
+            Self::Ammeter => 'A',
+            Self::Voltmeter => 'V',
+            Self::LoadVoltmeter => 'L',
+            Self::SourceMeasureUnit => 'U',
+        }
+    }
 }
 
 #[cfg(test)]
