@@ -52,7 +52,7 @@ impl Device {
         let mut device = Self {
             kind,
             identity,
-            ratings: Ratings::of(setup),
+            ratings: Ratings::of(kind, setup),
             table: kind.rows().map(|(header, meaning)| (Pattern::new(header), *meaning)).collect(),
             status: Status::at_power_on(),
             function: None,

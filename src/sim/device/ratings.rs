@@ -1,5 +1,6 @@
 //! What the instruments of a setup can be set to.
 
+use super::Kind;
 use super::datum::Bounds;
 use crate::sim::Setup;
 
@@ -12,13 +13,17 @@ pub(super) struct Ratings {
     pub(super) line_cycles: Bounds,
     /// Full scales of the ammeter, A, smallest first.
     pub(super) current_ranges: Vec<f64>,
-    /// Full scales of a voltmeter, V, smallest first.
+    /// Full scales of its voltmeter, V, smallest first.
     pub(super) voltage_ranges: Vec<f64>,
 }
 
 impl Ratings {
-    pub(super) fn of(setup: &Setup) -> Self {
+    pub(super) fn of(kind: Kind, setup: &Setup) -> Self {
         let supply = &setup.supply;
+        let voltmeter = match kind {
+            Kind::LoadVoltmeter => &setup.load_voltmeter,
+            _ => &setup.voltmeter,
+        };
         // Protection must be able to stand above every set-point.
         let over_voltage = supply.max_voltage.0 * 1.1;
         Self {
@@ -31,7 +36,7 @@ impl Ratings {
             over_voltage: Bounds { least: 0.0, most: over_voltage, default: over_voltage },
             line_cycles: Bounds { least: 0.02, most: 100.0, default: 1.0 },
             current_ranges: setup.ammeter.ranges.iter().map(|range| range.meter.full_scale).collect(),
-            voltage_ranges: setup.voltmeter.ranges.iter().map(|range| range.full_scale).collect(),
+            voltage_ranges: voltmeter.ranges.iter().map(|range| range.full_scale).collect(),
         }
     }
 }

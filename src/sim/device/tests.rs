@@ -226,6 +226,14 @@ fn a_source_measure_unit_supplies_and_measures_through_one_port() {
 }
 
 #[test]
+fn the_voltmeter_at_the_load_has_ranges_of_its_own() {
+    let setup = setup(7).with_source_measure_unit();
+    let world = SharedWorld::new(World::new(&setup), Arc::new(JumpingClock::default()));
+    let mut meter = Device::new(Kind::LoadVoltmeter, &setup);
+    assert_eq!(meter.execute("VOLT:RANG 100;RANG?", &world).as_deref(), Some("+1.0000000E+02"));
+}
+
+#[test]
 fn the_last_reading_is_stale_until_there_is_one() {
     let replies = talk(Kind::Voltmeter, &["FETC?", "SYST:ERR?", "INIT", "FETC?"]);
     assert_eq!(replies[1], "-230,\"Data corrupt or stale\"");
