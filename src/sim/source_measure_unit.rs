@@ -60,6 +60,7 @@ fn supply(seed: u64) -> SupplyModel {
     let claim = Accuracy { relative: 0.02e-2, absolute: 2.4e-3, resolution: 0.5e-3 };
     SupplyModel {
         max_voltage: Volts(20.0),
+        max_over_voltage: Volts(22.0),
         max_current: Amps(1.0),
         min_current: Amps(1e-6),
         set_step: Volts(0.5e-3),

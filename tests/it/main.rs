@@ -1,5 +1,7 @@
 //! Integration tests, a module per theme.
 
+#[cfg(unix)]
+mod definitions_on_simulation;
 mod sim;
 #[cfg(unix)]
 mod simulated_bench;

@@ -3,13 +3,12 @@
 #![expect(clippy::expect_used, reason = "a test fails by panicking")]
 
 use ebbmark::bench::clock::Clock;
-use ebbmark::profile::{Load, Profile, Ramp, Supply, Timing};
+use ebbmark::profile::Profile;
 use ebbmark::sim::bench::{Arrangement, Options, SimulatedBench};
 use ebbmark::sim::device::{Kind, ScpiError};
 use ebbmark::sim::link_faults::{Effect, Lasting, LinkFault, When};
 use ebbmark::sim::terminal::Pace;
 use ebbmark::sim::{Condition, Setup};
-use ebbmark::units::{Amps, Ohms, Volts, Watts};
 use serialport::SerialPort;
 use std::io::{ErrorKind, Read, Write};
 use std::path::Path;
@@ -27,23 +26,9 @@ const IMPATIENCE: Duration = Duration::from_millis(40);
 /// How late a late reply is, on the wall.
 const LATE: Duration = Duration::from_millis(300);
 
-fn setup() -> Setup {
-    let profile = Profile {
-        board: "B".to_owned(),
-        revision: "A".to_owned(),
-        title: String::new(),
-        serial_number: regex_lite::Regex::new(".*").expect("a pattern"),
-        supply: Supply {
-            start: Volts(7.6),
-            floor: Volts(5.2),
-            maximum: Volts(8.4),
-            current_limit: Amps(0.35),
-        },
-        load: Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0) },
-        timing: Timing { detect_delay: Duration::from_millis(5), release_delay: Duration::from_millis(20) },
-        ramp: Ramp::Staircase { step: Volts(0.01) },
-        limits: std::collections::BTreeMap::new(),
-    };
+pub(crate) fn setup() -> Setup {
+    let text = include_str!("../../profiles/river-node.toml");
+    let profile = Profile::read("river-node.toml", text).expect("a sound profile");
     Setup::new(&profile, Condition::Good, 1)
 }
 

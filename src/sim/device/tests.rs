@@ -1,9 +1,8 @@
 //! A device as a whole, against the rules of IEEE 488.2 and SCPI-1999.
 
 use super::*;
-use crate::profile::{Load, Profile, Ramp, Supply, Timing};
+use crate::profile::Profile;
 use crate::sim::{Condition, JumpingClock, World};
-use crate::units::{Amps, Ohms, Volts, Watts};
 use proptest::prelude::*;
 use std::sync::Arc;
 use std::time::Duration;
@@ -13,22 +12,8 @@ pub(in crate::sim) fn setup(seed: u64) -> Setup {
 }
 
 fn setup_of(condition: Condition, seed: u64) -> Setup {
-    let profile = Profile {
-        board: "B".to_owned(),
-        revision: "A".to_owned(),
-        title: String::new(),
-        serial_number: regex_lite::Regex::new(".*").expect("a pattern"),
-        supply: Supply {
-            start: Volts(7.6),
-            floor: Volts(5.2),
-            maximum: Volts(8.4),
-            current_limit: Amps(0.35),
-        },
-        load: Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0) },
-        timing: Timing { detect_delay: Duration::from_millis(5), release_delay: Duration::from_millis(20) },
-        ramp: Ramp::Staircase { step: Volts(0.01) },
-        limits: BTreeMap::new(),
-    };
+    let text = include_str!("../../../profiles/river-node.toml");
+    let profile = Profile::read("river-node.toml", text).expect("a sound profile");
     Setup::new(&profile, condition, seed)
 }
 
