@@ -10,6 +10,7 @@
 //! - [`analysis`]: from a trace to quantities with uncertainty, and findings (pure)
 //! - [`verdict`]: quantities and limits to decisions and one outcome (pure)
 //! - [`sim`]: a board's physics on a bench, in simulated time
+//! - [`record`]: what is kept of a run, and the append-only log that keeps it
 //!
 //! [`units`] and [`document`] serve them all: quantities with units, and files read with every problem at its place.
 
@@ -19,6 +20,7 @@ pub mod document;
 pub mod instrument;
 pub mod procedure;
 pub mod profile;
+pub mod record;
 pub mod sim;
 pub mod trace;
 pub mod units;

@@ -2,6 +2,8 @@
 
 #[cfg(unix)]
 mod definitions_on_simulation;
+mod log;
+mod run_sample;
 mod sim;
 #[cfg(unix)]
 mod simulated_bench;

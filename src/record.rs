@@ -1,0 +1,18 @@
+//! What is kept of every run, and the append-only log that keeps it.
+//!
+//! A run leaves two lines: its whole [`crate::trace::Trace`], and a short [`Run`] that says who, what, when and with
+//! which outcome. A run that never ended leaves a mark that the next start finds. Nothing here judges a board.
+
+mod identity;
+mod log;
+mod moment;
+mod run;
+mod stamp;
+
+pub use identity::{
+    BenchUsed, BoardUnderTest, Identity, Instrument, ProfileUsed, RunId, Simulated, Software, Subject,
+};
+pub use log::{Finished, Leftover, Log, LogError, LogFolder, Opened, Rescue, Runs, Torn, Unreadable};
+pub use moment::Moment;
+pub use run::{Run, SCHEMA, TraceReference};
+pub use stamp::now;
