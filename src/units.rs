@@ -7,7 +7,7 @@
 mod display;
 mod parse;
 
-pub use display::{prefixed, with_decimals_of};
+pub use display::{prefixed, under_prefix_of, with_decimals_of};
 pub use parse::{UnitError, parse_duration, parse_fraction, parse_quantity};
 
 use serde::{Deserialize, Serialize};

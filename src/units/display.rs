@@ -33,6 +33,12 @@ pub fn with_decimals_of(value: f64, uncertainty: f64, unit: Unit) -> (String, St
     )
 }
 
+/// The number that `value` is under the prefix that [`with_decimals_of`] gives `reference`, so that limits can be
+/// written in the unit of the value beside them.
+pub fn under_prefix_of(value: f64, reference: f64, unit: Unit) -> f64 {
+    value / prefix_for(reference, unit).0
+}
+
 fn prefix_for(value: f64, unit: Unit) -> (f64, &'static str) {
     if unit == Unit::Percent {
         return (0.01, "");
@@ -59,6 +65,16 @@ mod tests {
         assert_eq!(prefixed(0.01, Unit::Percent), "1.000 %");
         assert_eq!(prefixed(0.0, Unit::Volt), "0.000 V");
         assert_eq!(prefixed(4.7e6, Unit::Ohm), "4.700 MΩ");
+    }
+
+    #[test]
+    fn a_limit_takes_the_prefix_of_its_value() {
+        for (value, reference, unit, number) in
+            [(0.5, 0.4, Unit::Volt, 500.0), (1.5, 0.4, Unit::Volt, 1500.0), (0.02, 0.5, Unit::Percent, 2.0)]
+        {
+            let found = under_prefix_of(value, reference, unit);
+            assert!((found - number).abs() < 1e-9 * number, "{value} beside {reference}: {found}");
+        }
     }
 
     #[test]
