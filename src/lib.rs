@@ -11,6 +11,7 @@
 //! - [`verdict`]: quantities and limits to decisions and one outcome (pure)
 //! - [`sim`]: a board's physics on a bench, in simulated time
 //! - [`record`]: what is kept of a run, and the append-only log that keeps it
+//! - [`report`]: what a run says, for people and for programs
 //!
 //! [`units`] and [`document`] serve them all: quantities with units, and files read with every problem at its place.
 
@@ -21,6 +22,7 @@ pub mod instrument;
 pub mod procedure;
 pub mod profile;
 pub mod record;
+pub mod report;
 pub mod sim;
 pub mod trace;
 pub mod units;

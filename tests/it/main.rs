@@ -3,6 +3,7 @@
 #[cfg(unix)]
 mod definitions_on_simulation;
 mod log;
+mod report;
 mod run_sample;
 mod sim;
 #[cfg(unix)]

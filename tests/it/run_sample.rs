@@ -1,7 +1,7 @@
 //! Runs made up for the tests of the log and of the reports.
 #![expect(clippy::expect_used, reason = "a test that cannot be set up has failed")]
 
-use ebbmark::analysis::{Contribution, Quantity};
+use ebbmark::analysis::{About, Contribution, Finding, FindingCode, Quantity};
 use ebbmark::profile::{Limit, QuantityName};
 use ebbmark::record::{
     BenchUsed, BoardUnderTest, Finished, Instrument, Moment, ProfileUsed, Simulated, Subject,
@@ -77,6 +77,10 @@ pub(crate) fn passing() -> Verdict {
         ],
         findings: Vec::new(),
     }
+}
+
+pub(crate) fn finding(code: FindingCode, about: About, text: &str) -> Finding {
+    Finding { code, about, text: text.to_owned() }
 }
 
 /// A short trace that ended as it should.

@@ -1,0 +1,60 @@
+//! The one thing to do next, in plain language.
+
+use super::{Sheet, quantities, words};
+use crate::analysis::{About, Finding};
+use crate::trace::OutputState;
+use crate::verdict::{Decision, Outcome};
+
+/// What outranks every other instruction while the output is not known to be off.
+pub const OUTPUT_MAY_BE_ON: &str = "THE OUTPUT MAY STILL BE ON: switch the supply off at its own switch or at the \
+     mains, then measure zero volts at the board before you touch it.";
+
+/// The one thing to do next.
+pub fn next_action(sheet: &Sheet<'_>) -> String {
+    if sheet.output == Some(OutputState::MayBeOn) {
+        return OUTPUT_MAY_BE_ON.to_owned();
+    }
+    match sheet.outcome {
+        Outcome::Pass => "Take the board off and scan the next one.".to_owned(),
+        Outcome::ConditionalPass => format!(
+            "Take the board off and scan the next one. It passes with a note: {}.",
+            reasons(sheet, Decision::ConditionalPass, About::Board)
+        ),
+        Outcome::ConditionalFail => format!(
+            "Put the board aside with a tag for the engineer: {}.",
+            reasons(sheet, Decision::ConditionalFail, About::Board)
+        ),
+        Outcome::Fail => {
+            format!("Put the board aside with a fail tag: {}.", reasons(sheet, Decision::Fail, About::Board))
+        }
+        Outcome::Invalid => format!(
+            "The bench could not judge the board ({}). Look at what is named above, then test the same board again.",
+            reasons(sheet, Decision::Fail, About::Bench)
+        ),
+        Outcome::Aborted => {
+            "The run was stopped. Test the same board again before it goes anywhere else.".to_owned()
+        }
+        Outcome::Incomplete => {
+            "The run never ended. Make sure that the output is off, then test the same board again."
+                .to_owned()
+        }
+    }
+}
+
+/// Why, in a few words: the quantities decided as badly as `decision`, else the findings about the board or the bench.
+fn reasons(sheet: &Sheet<'_>, decision: Decision, about: About) -> String {
+    let complaints: Vec<String> = sheet
+        .quantities
+        .iter()
+        .filter(|judged| about == About::Board && judged.decision == Some(decision))
+        .map(quantities::complaint)
+        .collect();
+    let spoken = |finding: &Finding| words::spoken(&words::code(finding.code));
+    let diagnoses: Vec<String> =
+        sheet.findings.iter().filter(|finding| finding.about == about).map(spoken).collect();
+    match (complaints.is_empty(), diagnoses.is_empty()) {
+        (false, _) => complaints.join("; "),
+        (true, false) => diagnoses.join("; "),
+        (true, true) => "the reason is in the table above".to_owned(),
+    }
+}
