@@ -1,7 +1,7 @@
 //! Quantities as newtypes over `f64` in SI base units.
 //!
 //! The compiler keeps volts and amps apart; only operations with a physical meaning exist. Prefixes and unit
-//! symbols live at the edge: [`parse`] reads `"250 mV"`, [`display`] writes it. Time in the core is
+//! symbols live at the edge: `parse` reads `"250 mV"`, `display` writes it. Time in the core is
 //! [`std::time::Duration`] since the start of the run.
 
 mod display;
