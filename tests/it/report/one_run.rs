@@ -1,14 +1,16 @@
 //! The result of one run, for the technician and for programs.
 
-use crate::run_sample::{finding, finished, judged, moment, passing, subject, trace};
+use crate::run_sample::{finding, finished, judged, limits, moment, passing, subject, trace};
 use ebbmark::analysis::{About, FindingCode};
-use ebbmark::profile::QuantityName;
+use ebbmark::profile::{Load, Profile, QuantityName, Ramp, Supply, Timing};
 use ebbmark::record::{Log, Run};
-use ebbmark::report::{OUTPUT_MAY_BE_ON, Paint, Sheet, full, next_action, run_json, text};
+use ebbmark::report::{OUTPUT_MAY_BE_ON, Paint, Sheet, full, json, next_action, run_json, text};
 use ebbmark::trace::OutputState;
+use ebbmark::units::{Amps, Ohms, Volts, Watts};
 use ebbmark::verdict::{Decision, Outcome, Verdict};
-use serde_json::{Value, json};
+use serde_json::Value;
 use std::path::Path;
+use std::time::Duration;
 
 /// The run a log would keep of `verdict`, with the output as given.
 fn run(verdict: Verdict, output: OutputState) -> Run {
@@ -247,8 +249,11 @@ fn the_json_has_exactly_these_keys() {
     quantity.extend(["expanded_uncertainty", "min", "max", "decision"]);
     quantity.sort_unstable();
     assert_eq!(keys(&value["quantities"][0]), quantity);
-    assert_eq!(value["findings"], json!([{ "code": "never_trips", "about": "board", "text": "..." }]));
-    assert_eq!((&value["schema"], &value["outcome"]), (&json!(1), &json!("PASS")));
+    assert_eq!(
+        value["findings"],
+        serde_json::json!([{ "code": "never_trips", "about": "board", "text": "..." }])
+    );
+    assert_eq!((&value["schema"], &value["outcome"]), (&Value::from(1), &Value::from("PASS")));
 }
 
 #[test]
@@ -258,6 +263,38 @@ fn what_is_not_known_is_absent_from_the_json() {
     let on_current = &value["quantities"][3];
     assert_eq!(on_current["name"], "on_current");
     assert!(["min", "max", "decision"].iter().all(|key| on_current.get(key).is_none()), "{on_current}");
+}
+
+/// A trace that was judged without a bench: there is no record, and perhaps no serial number.
+#[test]
+fn a_trace_without_a_record_has_the_same_json_but_for_what_is_not_known() {
+    let profile = Profile {
+        board: "RN-204".to_owned(),
+        revision: "C".to_owned(),
+        title: "River-level logger".to_owned(),
+        serial_number: regex_lite::Regex::new("RN[0-9]{6}").expect("a pattern"),
+        supply: Supply {
+            start: Volts(7.6),
+            floor: Volts(5.2),
+            maximum: Volts(8.4),
+            current_limit: Amps(0.35),
+        },
+        load: Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0) },
+        timing: Timing { detect_delay: Duration::ZERO, release_delay: Duration::ZERO },
+        ramp: Ramp::Staircase { step: Volts(0.01) },
+        limits: limits().into_iter().collect(),
+    };
+    let verdict = passing();
+    let sheet = Sheet::of_trace(&profile, None, &verdict, OutputState::Off);
+    let recorded = run(passing(), OutputState::Off);
+    let mut expected: Value = serde_json::from_str(&run_json(&recorded)).expect("JSON");
+    let keys = expected.as_object_mut().expect("an object");
+    for unknown in ["serial_number", "run", "station", "attempt", "started", "ended", "simulated"] {
+        assert!(keys.remove(unknown).is_some(), "{unknown}");
+    }
+    assert_eq!(serde_json::from_str::<Value>(&json(&sheet)).expect("JSON"), expected);
+    let shown = text(&sheet, Paint::Plain);
+    assert!(!shown.contains("Recorded") && !shown.contains("serial number"), "{shown}");
 }
 
 #[test]
