@@ -3,6 +3,7 @@
 use super::Moment;
 use crate::profile::{Limit, QuantityName};
 use jiff::Timestamp;
+use jiff::civil::Date;
 use serde::{Deserialize, Serialize};
 use std::collections::BTreeMap;
 
@@ -121,9 +122,9 @@ pub struct Instrument {
     pub firmware: String,
     /// The port it is on.
     pub port: String,
-    /// Day its calibration runs out, where the bench file says so.
+    /// Day until which its calibration holds, where the bench file says so.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub calibration_due: Option<String>,
+    pub calibration_due: Option<Date>,
 }
 
 /// What was simulated.

@@ -53,7 +53,7 @@ fn instruments(instruments: &[Instrument]) -> String {
             instrument.serial_number.clone(),
             instrument.firmware.clone(),
             instrument.port.clone(),
-            instrument.calibration_due.clone().unwrap_or_else(|| "-".to_owned()),
+            instrument.calibration_due.map_or_else(|| "-".to_owned(), |day| day.to_string()),
             instrument.roles.join(", "),
         ]
     }));

@@ -38,7 +38,7 @@ pub(crate) fn subject(serial_number: &str) -> Subject {
                 serial_number: "1".to_owned(),
                 firmware: "0.1".to_owned(),
                 port: "/dev/pts/3".to_owned(),
-                calibration_due: Some("2027-01-31".to_owned()),
+                calibration_due: Some(jiff::civil::date(2027, 1, 31)),
             }],
             simulated: Some(Simulated { condition: "good".to_owned(), seed: 7 }),
         },

@@ -1,16 +1,14 @@
 //! The result of one run, for the technician and for programs.
 
-use crate::run_sample::{finding, finished, judged, limits, moment, passing, subject, trace};
+use crate::run_sample::{finding, finished, judged, moment, passing, subject, trace};
 use ebbmark::analysis::{About, FindingCode};
-use ebbmark::profile::{Load, Profile, QuantityName, Ramp, Supply, Timing};
+use ebbmark::profile::{Profile, QuantityName};
 use ebbmark::record::{Log, Run};
 use ebbmark::report::{OUTPUT_MAY_BE_ON, Paint, Sheet, full, json, next_action, run_json, text};
 use ebbmark::trace::OutputState;
-use ebbmark::units::{Amps, Ohms, Volts, Watts};
 use ebbmark::verdict::{Decision, Outcome, Verdict};
 use serde_json::Value;
 use std::path::Path;
-use std::time::Duration;
 
 /// The run a log would keep of `verdict`, with the output as given.
 fn run(verdict: Verdict, output: OutputState) -> Run {
@@ -268,22 +266,8 @@ fn what_is_not_known_is_absent_from_the_json() {
 /// A trace that was judged without a bench: there is no record, and perhaps no serial number.
 #[test]
 fn a_trace_without_a_record_has_the_same_json_but_for_what_is_not_known() {
-    let profile = Profile {
-        board: "RN-204".to_owned(),
-        revision: "C".to_owned(),
-        title: "River-level logger".to_owned(),
-        serial_number: regex_lite::Regex::new("RN[0-9]{6}").expect("a pattern"),
-        supply: Supply {
-            start: Volts(7.6),
-            floor: Volts(5.2),
-            maximum: Volts(8.4),
-            current_limit: Amps(0.35),
-        },
-        load: Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0) },
-        timing: Timing { detect_delay: Duration::ZERO, release_delay: Duration::ZERO },
-        ramp: Ramp::Staircase { step: Volts(0.01) },
-        limits: limits().into_iter().collect(),
-    };
+    let text_of_profile = include_str!("../../../profiles/river-node.toml");
+    let profile = Profile::read("profiles/river-node.toml", text_of_profile).expect("a checked profile");
     let verdict = passing();
     let sheet = Sheet::of_trace(&profile, None, &verdict, OutputState::Off);
     let recorded = run(passing(), OutputState::Off);
