@@ -6,7 +6,7 @@ use std::io::{Read, Seek, SeekFrom, Write};
 
 /// Held as long as the log is open; the system lets go of it even when the program is killed.
 #[derive(Debug)]
-pub(super) struct Lock(#[expect(dead_code, reason = "held for its lock, never read")] File);
+pub(super) struct Lock(File);
 
 impl Lock {
     pub(super) fn take(folder: &LogFolder) -> Result<Self, LogError> {
@@ -35,5 +35,14 @@ impl Lock {
             .and_then(|_| writeln!(file, "process {}", std::process::id()))
             .map_err(cannot())?;
         Ok(Self(file))
+    }
+}
+
+impl Drop for Lock {
+    /// Closing alone would not do: a child process that has been forked and not yet started its own program shares
+    /// the open file, and with it the lock.
+    fn drop(&mut self) {
+        // A lock that cannot be given back ends with the program.
+        let _ = self.0.unlock();
     }
 }
