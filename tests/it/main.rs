@@ -5,6 +5,10 @@ mod definitions_on_simulation;
 mod log;
 mod report;
 mod run_sample;
+#[cfg(unix)]
+mod scripted;
+#[cfg(unix)]
+mod session;
 mod sim;
 #[cfg(unix)]
 mod simulated_bench;

@@ -1,0 +1,107 @@
+//! The first words with an instrument: is it there, is it the right one, does it echo, has it anything to report?
+
+use super::Session;
+use crate::instrument::error::InstrumentError;
+use crate::instrument::scpi::{DeviceError, Identity};
+use std::sync::Arc;
+
+const QUESTION: &str = "*IDN?";
+
+/// Times the first question is asked: the first bytes after opening a port may be lost or garbled.
+const TRIES: u32 = 3;
+
+/// Who must answer; a field left out may be anything.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct Expected {
+    /// Maker, in any case of letters.
+    pub maker: Option<String>,
+    /// Model, in any case of letters.
+    pub model: Option<String>,
+    /// Serial number, exactly.
+    pub serial: Option<String>,
+}
+
+/// What came of the first words.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Greeting {
+    /// Who answered.
+    pub identity: Identity,
+    /// Whether the instrument sends each command back.
+    pub echoes: bool,
+    /// What its error queue held from before.
+    pub old_errors: Vec<DeviceError>,
+}
+
+impl Session {
+    /// Waits until the instrument has settled, finds out who it is, and empties its registers and error queue.
+    ///
+    /// # Errors
+    /// No reply, another instrument than expected, or the link is lost. Nothing but `*IDN?` has then been sent.
+    pub fn greet(&mut self, expected: &Expected) -> Result<Greeting, InstrumentError> {
+        self.link.pause(self.settle);
+        self.link.clear()?;
+        // Ends half a command that an earlier program may have left; an instrument answers nothing to it.
+        self.link.write("", self.timing.reply_deadline)?;
+        let identity = self.first_identity()?;
+        self.expect(&identity, expected)?;
+        self.greeted = true;
+        self.check_step()?;
+        // Being switched on before the program started is no restart: this reads the bit and clears it.
+        self.event_status()?;
+        let old_errors = self.errors()?;
+        Ok(Greeting { identity, echoes: self.link.echoes(), old_errors })
+    }
+
+    /// Asks who is there until an answer has the form of an identity.
+    fn first_identity(&mut self) -> Result<Identity, InstrumentError> {
+        let mut tries = TRIES;
+        loop {
+            tries -= 1;
+            match self.try_identity() {
+                Ok(identity) => return Ok(identity),
+                Err(error @ InstrumentError::LinkLost { .. }) => return Err(error),
+                Err(error) if tries == 0 => return Err(error),
+                Err(_) => self.link.drain(self.timing.reply_deadline)?,
+            }
+        }
+    }
+
+    fn try_identity(&mut self) -> Result<Identity, InstrumentError> {
+        let wait = self.timing.reply_deadline;
+        self.link.write(QUESTION, wait)?;
+        let first = self.link.receive(QUESTION, wait)?;
+        let echoes = first.trim() == QUESTION;
+        let line = if echoes { self.link.receive(QUESTION, wait)? } else { first };
+        let Some(identity) = Identity::parse(&line) else {
+            return Err(self.link.bad_reply(QUESTION, line, "maker, model, serial number and firmware"));
+        };
+        self.link.set_echoes(echoes);
+        self.link.set_in_step(true);
+        Ok(identity)
+    }
+
+    fn expect(&self, identity: &Identity, expected: &Expected) -> Result<(), InstrumentError> {
+        let wrong = |field, read: &str, wanted: &str| InstrumentError::WrongInstrument {
+            place: Arc::clone(self.place()),
+            field,
+            read: read.to_owned(),
+            wanted: wanted.to_owned(),
+        };
+        if let Some(maker) =
+            expected.maker.as_ref().filter(|maker| !maker.eq_ignore_ascii_case(&identity.maker))
+        {
+            return Err(wrong("the maker", &identity.maker, maker));
+        }
+        if let Some(model) =
+            expected.model.as_ref().filter(|model| !model.eq_ignore_ascii_case(&identity.model))
+        {
+            return Err(wrong("the model", &identity.model, model));
+        }
+        if let Some(serial) =
+            expected.serial.as_ref().filter(|serial| Some(*serial) != identity.serial.as_ref())
+        {
+            return Err(wrong("the serial number", identity.serial.as_deref().unwrap_or("0"), serial));
+        }
+        Ok(())
+    }
+}
