@@ -2,6 +2,7 @@
 
 pub mod clock;
 mod drive;
+pub mod serial;
 mod virtual_time;
 
 pub use drive::{Watch, drive};

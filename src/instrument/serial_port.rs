@@ -85,13 +85,13 @@ impl ByteStream for SerialStream {
 
     fn settings(&self) -> Option<String> {
         let baud = self.0.baud_rate().ok()?;
-        let data = self.0.data_bits().ok()?;
+        let data = u8::from(self.0.data_bits().ok()?);
         let parity = match self.0.parity().ok()? {
             serialport::Parity::None => 'N',
             serialport::Parity::Even => 'E',
             serialport::Parity::Odd => 'O',
         };
-        let stop = self.0.stop_bits().ok()?;
+        let stop = u8::from(self.0.stop_bits().ok()?);
         let flow = match self.0.flow_control().ok()? {
             serialport::FlowControl::None => "no handshake",
             serialport::FlowControl::Software => "XON/XOFF",

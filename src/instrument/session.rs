@@ -134,7 +134,7 @@ impl Session {
     /// As for [`Session::query`], and a reply that is no register.
     pub fn event_status(&mut self) -> Result<EventStatus, InstrumentError> {
         self.get_ready()?;
-        self.read_event_status()
+        self.read_event_status(self.timing.reply_deadline)
     }
 
     /// Makes sure that the instrument was not switched on again since it was last asked.
@@ -142,10 +142,8 @@ impl Session {
     /// # Errors
     /// It was, or as for [`Session::event_status`].
     pub fn refuse_restart(&mut self) -> Result<(), InstrumentError> {
-        if self.event_status()?.power_on() {
-            return Err(self.restarted("the power-on bit of *ESR? is set".to_owned()));
-        }
-        Ok(())
+        self.get_ready()?;
+        self.refuse_power_on(self.timing.reply_deadline)
     }
 
     /// Makes sure that the instrument has not restarted and has nothing to report; `after` is what was sent last.
@@ -153,7 +151,16 @@ impl Session {
     /// # Errors
     /// It restarted, its error queue was not empty, or as for [`Session::errors`].
     pub fn refuse_errors(&mut self, after: &str) -> Result<(), InstrumentError> {
-        self.refuse_restart()?;
+        self.refuse_errors_within(after, self.timing.reply_deadline)
+    }
+
+    /// As [`Session::refuse_errors`], where what was sent last may keep the instrument from answering for `wait`.
+    ///
+    /// # Errors
+    /// As for [`Session::refuse_errors`].
+    pub fn refuse_errors_within(&mut self, after: &str, wait: Duration) -> Result<(), InstrumentError> {
+        self.get_ready()?;
+        self.refuse_power_on(wait)?;
         let errors = self.errors()?;
         if let Some(error) = errors.iter().find(|error| error.class() == ErrorClass::PowerOn) {
             return Err(self.restarted(format!("it reports {error}")));
@@ -193,11 +200,18 @@ impl Session {
         Ok(errors)
     }
 
-    fn read_event_status(&mut self) -> Result<EventStatus, InstrumentError> {
+    fn read_event_status(&mut self, wait: Duration) -> Result<EventStatus, InstrumentError> {
         const QUESTION: &str = "*ESR?";
-        let reply = self.exchange(QUESTION, self.timing.reply_deadline)?;
+        let reply = self.exchange(QUESTION, wait)?;
         EventStatus::parse(&reply)
             .ok_or_else(|| self.link.bad_reply(QUESTION, reply, "a register from 0 to 255"))
+    }
+
+    fn refuse_power_on(&mut self, wait: Duration) -> Result<(), InstrumentError> {
+        if self.read_event_status(wait)?.power_on() {
+            return Err(self.restarted("the power-on bit of *ESR? is set".to_owned()));
+        }
+        Ok(())
     }
 
     fn restarted(&mut self, evidence: String) -> InstrumentError {

@@ -8,6 +8,8 @@ mod run_sample;
 #[cfg(unix)]
 mod scripted;
 #[cfg(unix)]
+mod serial_bench;
+#[cfg(unix)]
 mod session;
 mod sim;
 #[cfg(unix)]

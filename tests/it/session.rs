@@ -16,6 +16,7 @@ fn volts(volts: f64) -> Setting {
         question: "VOLT?".to_owned(),
         wanted: volts,
         tolerance: 0.006,
+        deadline: DEADLINE,
     }
 }
 

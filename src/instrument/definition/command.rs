@@ -1,6 +1,7 @@
 //! Lines to send: plain commands, questions, and commands with a place for one number.
 
 use crate::document::{At, Table};
+use crate::instrument::scpi::write_number;
 
 /// Text of a command with exactly one `{}`, where the number goes.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -16,17 +17,8 @@ impl Template {
 
     /// The command with `value` in its place, in SI units.
     pub fn with(&self, value: f64) -> String {
-        self.0.replace(Self::PLACE, &decimal(value))
+        self.0.replace(Self::PLACE, &write_number(value))
     }
-}
-
-/// `value` as decimal numeric program data in NR2 form (IEEE 488.2, 7.7.2): no exponent, no unit.
-///
-/// Nine decimals: a nanovolt or nanoampere, finer than anything that can be set.
-fn decimal(value: f64) -> String {
-    let text = format!("{value:.9}");
-    let text = text.trim_end_matches('0').trim_end_matches('.');
-    if text == "-0" { "0".to_owned() } else { text.to_owned() }
 }
 
 /// A required command that is not answered.
@@ -97,7 +89,7 @@ mod tests {
     use super::*;
 
     #[test]
-    fn the_number_stands_in_its_place_without_exponent_or_rounding_dust() {
+    fn the_number_stands_in_its_place_without_rounding_dust() {
         let set = Template::new("VOLT {}").expect("one place");
         assert_eq!(set.with(6.0), "VOLT 6");
         assert_eq!(set.with(0.1 + 0.2), "VOLT 0.3");

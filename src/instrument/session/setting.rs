@@ -4,6 +4,7 @@ use super::Session;
 use crate::instrument::error::InstrumentError;
 use crate::instrument::scpi::{Number, write_number};
 use std::sync::Arc;
+use std::time::Duration;
 
 /// One setting: what to send, how to ask for it, and what the answer must be.
 #[derive(Clone, Debug, PartialEq)]
@@ -16,6 +17,8 @@ pub struct Setting {
     pub wanted: f64,
     /// How far the answer may lie from it: the instrument rounds to its own steps.
     pub tolerance: f64,
+    /// How long the answer may take; relays are slower than registers.
+    pub deadline: Duration,
 }
 
 impl Session {
@@ -25,7 +28,7 @@ impl Session {
     /// It did not take (with what the instrument says about it), the instrument restarted, or the link failed.
     pub fn set(&mut self, setting: &Setting) -> Result<(), InstrumentError> {
         self.command(&setting.command)?;
-        let read = self.query_number(&setting.question)?;
+        let read = self.query_number_within(&setting.question, setting.deadline)?;
         if let Number::Value(value) = read
             && (value - setting.wanted).abs() <= setting.tolerance
         {

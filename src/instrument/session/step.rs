@@ -56,9 +56,7 @@ impl Session {
     /// A restart must not go unnoticed; the errors that half a command has left are of no further interest.
     fn after_resynchronising(&mut self) -> Result<(), InstrumentError> {
         tracing::warn!("{}: the link was out of step and is in step again", self.place());
-        if self.read_event_status()?.power_on() {
-            return Err(self.restarted("the power-on bit of *ESR? is set".to_owned()));
-        }
+        self.refuse_power_on(self.timing.reply_deadline)?;
         for error in self.read_errors()? {
             tracing::warn!("{}: while out of step it reported {error}", self.place());
         }

@@ -1,0 +1,175 @@
+//! The bench of real time: carries actions out over serial ports, and confirms each one.
+//!
+//! It obeys and reports; what to do next, and what a reading means, is decided elsewhere. Instruments on different
+//! ports are asked together, the roles of one instrument one after the other.
+
+mod check;
+mod connect;
+mod reading;
+mod settings;
+
+pub use check::{Report, check};
+pub use connect::{ConnectError, Seat, connect};
+
+use crate::bench::Bench;
+use crate::bench::clock::Clock;
+use crate::instrument::definition::{Ammeter, Source, Timing};
+use crate::instrument::error::InstrumentError;
+use crate::instrument::port::{Answer, Instrument};
+use crate::instrument::session::Session;
+use crate::procedure::{Action, Event};
+use crate::trace::BenchFault;
+use crate::units::{Amps, Volts};
+use reading::Reading;
+use std::sync::Arc;
+use std::time::Duration;
+
+/// The last stretch of a wait, slept through on the thread: the runtime's timer counts whole milliseconds and may be
+/// late by two.
+const TIMER_SLACK: Duration = Duration::from_millis(2);
+
+/// Instruments that are connected, identified and set up.
+pub struct SerialBench {
+    source: Playing<Source>,
+    ammeter: Playing<Ammeter>,
+    /// Every instrument once, with what it is asked for at each reading.
+    instruments: Vec<Asked>,
+    clock: Clock,
+    /// The last voltage set and confirmed.
+    set: Volts,
+    /// Full scale of the ammeter's range, once set and confirmed.
+    range: Option<Amps>,
+    /// When the power-on bits were last looked at.
+    watched: Duration,
+}
+
+/// An instrument in one of its roles.
+struct Playing<Part> {
+    instrument: Arc<Instrument>,
+    part: Part,
+    timing: Timing,
+}
+
+/// An instrument and its share of each reading.
+struct Asked {
+    instrument: Arc<Instrument>,
+    readings: Arc<[Reading]>,
+}
+
+impl Bench for SerialBench {
+    fn now(&self) -> Duration {
+        self.clock.now()
+    }
+
+    async fn perform(&mut self, action: &Action) -> Event {
+        let outcome = match action {
+            Action::Protect { over_voltage, current_limit } => {
+                self.protect(*over_voltage, *current_limit).await
+            }
+            Action::LimitCurrent(limit) => self.limit_current(*limit).await,
+            Action::SetVolts(volts) => self.set_volts(*volts).await,
+            Action::OutputOn => self.output_on().await,
+            Action::OutputOff => self.output_off().await,
+            Action::Range(current) => self.put_on_range_for(*current).await,
+            Action::Read => match self.read().await {
+                Ok(sample) => return Event::Reading(sample),
+                Err(error) => Err(error),
+            },
+            Action::WaitUntil(until) => {
+                self.wait_until(*until).await;
+                Ok(())
+            }
+            Action::Finish(_) => Ok(()),
+        };
+        match outcome {
+            Ok(()) => Event::Done,
+            Err(error) => Event::Failed(error.into()),
+        }
+    }
+}
+
+impl SerialBench {
+    /// Begins the run of one board: time starts at zero, every link is proven in step, nothing may have restarted or
+    /// wait in an error queue, and the ammeter stands on its largest range.
+    ///
+    /// # Errors
+    /// The first instrument that is not fit for a run.
+    pub async fn begin_run(&mut self) -> Result<(), BenchFault> {
+        self.clock = self.clock.restarted();
+        self.watched = Duration::ZERO;
+        let fit = |session: &mut Session| {
+            session.check_step()?;
+            session.refuse_errors("the last run")
+        };
+        let answers: Vec<Answer<()>> =
+            self.instruments.iter().map(|asked| asked.instrument.ask(fit)).collect();
+        for answer in answers {
+            answer.wait().await?;
+        }
+        self.range = None;
+        if let Some(largest) = self.ammeter.part.ranges.last() {
+            self.put_on_range_for(largest.full_scale).await?;
+        }
+        Ok(())
+    }
+
+    async fn protect(&mut self, over_voltage: Volts, current_limit: Amps) -> Result<(), InstrumentError> {
+        let source = &self.source;
+        let settings =
+            [settings::over_voltage(source, over_voltage)?, settings::current_limit(source, current_limit)?];
+        source
+            .instrument
+            .ask(move |session| {
+                settings.iter().try_for_each(|setting| session.set(setting))?;
+                session.refuse_errors("the protection")
+            })
+            .wait()
+            .await
+    }
+
+    async fn limit_current(&mut self, limit: Amps) -> Result<(), InstrumentError> {
+        let setting = settings::current_limit(&self.source, limit)?;
+        self.source.instrument.ask(move |session| session.set(&setting)).wait().await
+    }
+
+    async fn set_volts(&mut self, volts: Volts) -> Result<(), InstrumentError> {
+        let setting = settings::voltage(&self.source, volts)?;
+        self.source.instrument.ask(move |session| session.set(&setting)).wait().await?;
+        self.set = volts;
+        Ok(())
+    }
+
+    async fn output_on(&mut self) -> Result<(), InstrumentError> {
+        let orders = settings::switch_off(&self.source.part);
+        let command = self.source.part.commands.output_on.clone();
+        self.source.instrument.ask(move |session| session.switch_on(&command, &orders)).wait().await
+    }
+
+    async fn output_off(&mut self) -> Result<(), InstrumentError> {
+        let orders = settings::switch_off(&self.source.part);
+        self.source.instrument.insist(move |session| session.switch_off(&orders)).wait().await?;
+        self.set = Volts::ZERO;
+        Ok(())
+    }
+
+    async fn put_on_range_for(&mut self, current: Amps) -> Result<(), InstrumentError> {
+        let range = *self.ammeter.range_for(current)?;
+        if self.range == Some(range.full_scale) {
+            return Ok(());
+        }
+        if let Some(setting) = settings::range(&self.ammeter.part, &range, self.ammeter.timing) {
+            self.ammeter.instrument.ask(move |session| session.set(&setting)).wait().await?;
+        }
+        self.range = Some(range.full_scale);
+        Ok(())
+    }
+
+    async fn wait_until(&self, until: Duration) {
+        let left = || self.clock.wall(until.saturating_sub(self.clock.now()));
+        let coarse = left().saturating_sub(TIMER_SLACK);
+        if !coarse.is_zero() {
+            tokio::time::sleep(coarse).await;
+        }
+        std::thread::sleep(left());
+    }
+}
