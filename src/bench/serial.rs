@@ -9,7 +9,7 @@ mod reading;
 mod settings;
 
 pub use check::{Report, check};
-pub use connect::{ConnectError, Seat, connect};
+pub use connect::{ConnectError, connect};
 
 use crate::bench::Bench;
 use crate::bench::clock::Clock;

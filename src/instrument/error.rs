@@ -145,7 +145,7 @@ pub enum InstrumentError {
     },
     /// Another instrument answers than the bench file names.
     #[error(
-        "{place} is not the instrument named in the bench file: {field} is {read:?}, wanted {wanted:?}; check which cable goes where"
+        "{place} is not the instrument named in the bench file: its {field} is {read:?}, wanted {wanted:?}; check which cable goes where"
     )]
     WrongInstrument {
         /// Where.

@@ -9,7 +9,7 @@ mod output;
 mod setting;
 mod step;
 
-pub use greeting::{Expected, Greeting};
+pub use greeting::Greeting;
 pub use output::SwitchOff;
 pub use setting::Setting;
 

@@ -5,14 +5,13 @@
 use crate::scripted::{Act, DEADLINE, Device, Scripted, say};
 use ebbmark::bench::Bench;
 use ebbmark::bench::clock::Clock;
-use ebbmark::bench::serial::{ConnectError, Seat, SerialBench, check, connect};
+use ebbmark::bench::serial::{ConnectError, SerialBench, check, connect};
+use ebbmark::instrument::bench_file::{BenchFile, BenchInstrument, Identity};
 use ebbmark::instrument::definition::{Definition, Role, builtin};
-use ebbmark::instrument::error::{InstrumentError, Place};
-use ebbmark::instrument::session::Expected;
+use ebbmark::instrument::error::InstrumentError;
 use ebbmark::procedure::{Action, Event};
 use ebbmark::trace::{Current, FaultKind, Sample};
 use ebbmark::units::{Amps, Volts};
-use std::collections::BTreeSet;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 use std::time::Duration;
@@ -20,28 +19,34 @@ use std::time::Duration;
 const MAXIMUM: Volts = Volts(8.4);
 
 /// The definition called `name`, with deadlines fit for a test.
-fn definition(name: &str) -> Arc<Definition> {
+fn definition(name: &str) -> Definition {
     let text = builtin(name).expect("it comes with the program");
     let mut definition = Definition::read(name, text).unwrap_or_else(|problems| panic!("{problems}"));
     definition.timing.reply_deadline = DEADLINE;
     definition.timing.reset_deadline = DEADLINE;
     definition.timing.range_deadline = DEADLINE;
     definition.serial.settle = Duration::ZERO;
-    Arc::new(definition)
+    definition
 }
 
-fn seat(scripted: &Scripted, name: &str, roles: &[Role]) -> Seat {
-    Seat {
-        place: Arc::clone(&scripted.place),
+fn seat(scripted: &Scripted, name: &str, roles: &[Role]) -> BenchInstrument {
+    BenchInstrument {
+        name: scripted.place.instrument.clone(),
         definition: definition(name),
+        port: scripted.place.port.clone(),
         roles: roles.iter().copied().collect(),
-        expected: Expected::default(),
+        identity: Identity::default(),
+        calibration_due: None,
     }
 }
 
 /// One instrument in the three roles of a source-measure unit.
-fn unit(scripted: &Scripted) -> Seat {
+fn unit(scripted: &Scripted) -> BenchInstrument {
     seat(scripted, "source-measure-unit", &[Role::Source, Role::Ammeter, Role::Voltmeter])
+}
+
+fn bench_of(instruments: Vec<BenchInstrument>) -> BenchFile {
+    BenchFile::new("test", "Bench of a test", None, instruments).expect("a source and an ammeter")
 }
 
 fn block_on<T>(work: impl Future<Output = T>) -> T {
@@ -49,7 +54,9 @@ fn block_on<T>(work: impl Future<Output = T>) -> T {
 }
 
 async fn connected(scripted: &Scripted) -> SerialBench {
-    connect(&[unit(scripted)], MAXIMUM, Clock::real()).await.unwrap_or_else(|error| panic!("{error}"))
+    connect(&bench_of(vec![unit(scripted)]), MAXIMUM, Clock::real())
+        .await
+        .unwrap_or_else(|error| panic!("{error}"))
 }
 
 /// The events of these actions, in order.
@@ -182,7 +189,8 @@ fn a_meter_that_restarts_is_noticed_within_a_second_of_bench_time() {
     });
     let kinds = block_on(async {
         let clock = Clock::faster(1000.0);
-        let mut bench = connect(&[self::unit(&unit)], MAXIMUM, clock).await.expect("a good bench");
+        let mut bench =
+            connect(&bench_of(vec![self::unit(&unit)]), MAXIMUM, clock).await.expect("a good bench");
         bench.begin_run().await.expect("a good start");
         std::thread::sleep(clock.wall(Duration::from_secs(2)));
         let before = bench.perform(&Action::Read).await;
@@ -228,12 +236,12 @@ fn instruments_on_different_ports_are_asked_together() {
         })
     };
     let (supply, meter) = (meeting(0), meeting(1));
-    let seats = [
+    let seats = vec![
         seat(&supply, "source-measure-unit", &[Role::Source, Role::Ammeter]),
         seat(&meter, "source-measure-unit", &[Role::Voltmeter]),
     ];
     let event = block_on(async {
-        let mut bench = connect(&seats, MAXIMUM, Clock::real()).await.expect("a good bench");
+        let mut bench = connect(&bench_of(seats), MAXIMUM, Clock::real()).await.expect("a good bench");
         bench.perform(&Action::Read).await
     });
     assert!(matches!(event, Event::Reading(_)), "{event:?}");
@@ -287,15 +295,17 @@ fn the_output_goes_off_when_the_program_panics_with_it_on() {
 #[test]
 fn all_that_is_wrong_with_a_bench_is_told_at_once() {
     let (supply, meter) = (Scripted::well_behaved(), Scripted::well_behaved());
-    let missing = Place { instrument: "ammeter".to_owned(), port: "/dev/no-such-port".to_owned() };
-    let seats = [
-        Seat {
-            expected: Expected { model: Some("PS-31".to_owned()), ..Expected::default() },
+    let seats = vec![
+        BenchInstrument {
+            identity: Identity { model: Some("PS-31".to_owned()), ..Identity::default() },
             ..seat(&supply, "programmable-supply", &[Role::Source])
         },
-        Seat { place: Arc::new(missing), ..seat(&meter, "bench-meter-current", &[Role::Ammeter]) },
+        BenchInstrument {
+            port: "/dev/no-such-port".to_owned(),
+            ..seat(&meter, "bench-meter-current", &[Role::Ammeter])
+        },
     ];
-    let error = block_on(connect(&seats, MAXIMUM, Clock::real())).err().expect("two mistakes");
+    let error = block_on(connect(&bench_of(seats), MAXIMUM, Clock::real())).err().expect("two mistakes");
     let ConnectError::Instruments { errors } = error else { panic!("{error}") };
     assert!(
         matches!(errors[..], [InstrumentError::WrongInstrument { .. }, InstrumentError::UnknownPort { .. }]),
@@ -304,21 +314,14 @@ fn all_that_is_wrong_with_a_bench_is_told_at_once() {
 }
 
 #[test]
-fn a_bench_without_ammeter_is_refused() {
-    let supply = Scripted::well_behaved();
-    let seats = [seat(&supply, "source-measure-unit", &[Role::Source])];
-    let error = block_on(connect(&seats, MAXIMUM, Clock::real())).err().expect("no ammeter");
-    assert_eq!(error, ConnectError::NoRole { role: Role::Ammeter });
-}
-
-#[test]
 fn a_setup_command_the_instrument_does_not_know_is_named() {
     let unit = Scripted::start(Device::default(), |device, line| match line {
         "SENS:CURR:NPLC 1" => device.fail("-113,\"Undefined header\""),
         line => device.obey(line),
     });
-    let error =
-        block_on(connect(&[self::unit(&unit)], MAXIMUM, Clock::real())).err().expect("an unknown command");
+    let error = block_on(connect(&bench_of(vec![self::unit(&unit)]), MAXIMUM, Clock::real()))
+        .err()
+        .expect("an unknown command");
     assert!(error.to_string().contains("command error) after \"SENS:CURR:NPLC 1\""), "{error}");
 }
 
@@ -328,10 +331,11 @@ fn a_check_reports_on_every_instrument() {
         Device { errors: vec!["-350,\"Queue overflow\"".to_owned()], ..Device::default() },
         |device, line| device.obey(line),
     );
-    let missing = Place { instrument: "voltmeter".to_owned(), port: "/dev/no-such-port".to_owned() };
-    let seats =
-        [self::unit(&unit), Seat { place: Arc::new(missing), roles: BTreeSet::new(), ..self::unit(&unit) }];
-    let reports = block_on(check(&seats, MAXIMUM, Clock::real()));
+    let seats = vec![
+        self::unit(&unit),
+        BenchInstrument { port: "/dev/no-such-port".to_owned(), ..self::unit(&unit) },
+    ];
+    let reports = block_on(check(&bench_of(seats), MAXIMUM, Clock::real()));
     assert!(matches!(reports[1], Err(InstrumentError::UnknownPort { .. })), "{reports:?}");
     let report = reports[0].as_ref().expect("the first is there");
     assert_eq!(report.greeting.identity.model, "PS-30");

@@ -3,11 +3,12 @@
 #![expect(clippy::expect_used, reason = "helpers of tests fail as tests do")]
 
 use crate::scripted::{Act, DEADLINE, Device, Scripted, definition, say};
+use ebbmark::instrument::bench_file::Identity;
 use ebbmark::instrument::error::{InstrumentError, Place};
 use ebbmark::instrument::port::Instrument;
 use ebbmark::instrument::scpi::Number;
 use ebbmark::instrument::serial_port;
-use ebbmark::instrument::session::{Expected, Session, Setting, SwitchOff};
+use ebbmark::instrument::session::{Session, Setting, SwitchOff};
 use std::sync::Arc;
 
 fn volts(volts: f64) -> Setting {
@@ -252,7 +253,7 @@ fn an_instrument_that_echoes_is_understood() {
         acts
     });
     let mut session = supply.session();
-    let greeting = session.greet(&Expected::default()).expect("echo or not");
+    let greeting = session.greet(&Identity::default()).expect("echo or not");
     assert!(greeting.echoes);
     session.set(&volts(5.97)).expect("it takes");
     assert_eq!(number(&mut session, "VOLT?"), Some(5.97));
@@ -264,15 +265,15 @@ fn an_instrument_that_echoes_is_understood() {
 #[test]
 fn another_instrument_than_expected_is_refused_and_left_alone() {
     let supply = Scripted::well_behaved();
-    let expected = |maker: &str, model: &str, serial: &str| Expected {
+    let expected = |maker: &str, model: &str, serial: &str| Identity {
         maker: Some(maker.to_owned()),
         model: Some(model.to_owned()),
         serial: Some(serial.to_owned()),
     };
     for (wrong, field) in [
-        (expected("OTHER", "PS-30", "SN0042"), "the maker is \"EXAMPLE\", wanted \"OTHER\""),
-        (expected("EXAMPLE", "PS-31", "SN0042"), "the model is \"PS-30\", wanted \"PS-31\""),
-        (expected("EXAMPLE", "PS-30", "SN0043"), "the serial number is \"SN0042\", wanted \"SN0043\""),
+        (expected("OTHER", "PS-30", "SN0042"), "maker is \"EXAMPLE\", wanted \"OTHER\""),
+        (expected("EXAMPLE", "PS-31", "SN0042"), "model is \"PS-30\", wanted \"PS-31\""),
+        (expected("EXAMPLE", "PS-30", "SN0043"), "serial number is \"SN0042\", wanted \"SN0043\""),
     ] {
         let error = supply.session().greet(&wrong).expect_err("another one");
         assert!(error.to_string().contains(field), "{error}");
@@ -284,7 +285,7 @@ fn another_instrument_than_expected_is_refused_and_left_alone() {
 #[test]
 fn a_first_answer_spoilt_by_opening_the_port_is_asked_for_again() {
     let supply = spoiling("*IDN?", 1, vec![Act::Say("\u{1}\u{2}boot 1.0\n".to_owned())]);
-    let identity = supply.session().greet(&Expected::default()).expect("the second answer is good").identity;
+    let identity = supply.session().greet(&Identity::default()).expect("the second answer is good").identity;
     assert_eq!(identity.model, "PS-30");
 }
 

@@ -1,7 +1,8 @@
 //! Looks at every instrument of a bench without running a board.
 
-use super::connect::{Seat, open};
+use super::connect::{greeted, open};
 use crate::bench::clock::Clock;
+use crate::instrument::bench_file::BenchFile;
 use crate::instrument::error::{InstrumentError, Place};
 use crate::instrument::session::{Greeting, Session};
 use crate::units::Volts;
@@ -26,16 +27,13 @@ pub struct Report {
 
 /// Connects each instrument as for a run, and reports on it; the output stays off.
 ///
-/// An entry for each seat, in order; an instrument that fails does not hide the others.
-pub async fn check(seats: &[Seat], maximum: Volts, clock: Clock) -> Vec<Result<Report, InstrumentError>> {
-    let opened: Vec<_> = seats.iter().map(|seat| open(seat, maximum, clock)).collect();
+/// An entry for each instrument, in the order of the file; one that fails does not hide the others.
+pub async fn check(bench: &BenchFile, maximum: Volts, clock: Clock) -> Vec<Result<Report, InstrumentError>> {
+    let opened: Vec<_> = bench.instruments().iter().map(|seat| open(seat, maximum, clock)).collect();
     let mut reports = Vec::with_capacity(opened.len());
     for opened in opened {
-        reports.push(match opened {
-            Ok((instrument, greeting)) => match greeting.wait().await {
-                Ok(greeting) => instrument.ask(move |session| report(session, greeting)).wait().await,
-                Err(error) => Err(error),
-            },
+        reports.push(match greeted(opened).await {
+            Ok((instrument, greeting)) => instrument.ask(|session| report(session, greeting)).wait().await,
             Err(error) => Err(error),
         });
     }

@@ -3,38 +3,22 @@
 use super::reading::readings;
 use super::{Asked, Playing, SerialBench, settings};
 use crate::bench::clock::Clock;
+use crate::instrument::bench_file::{BenchFile, BenchInstrument, Identity, RoleMissing};
 use crate::instrument::definition::{Definition, Role};
 use crate::instrument::error::{InstrumentError, Place};
 use crate::instrument::port::{Answer, Instrument};
 use crate::instrument::serial_port;
-use crate::instrument::session::{Expected, Greeting, Session, Setting, SwitchOff};
+use crate::instrument::session::{Greeting, Session, Setting, SwitchOff};
 use crate::units::Volts;
-use std::collections::BTreeSet;
 use std::sync::Arc;
 use std::time::Duration;
-
-/// One instrument of a bench: what it is, where it is, and what it does there.
-#[derive(Clone, Debug)]
-pub struct Seat {
-    /// What the bench calls it, and its port.
-    pub place: Arc<Place>,
-    /// What kind of instrument it is.
-    pub definition: Arc<Definition>,
-    /// The roles it plays on this bench; its definition has the part for each.
-    pub roles: BTreeSet<Role>,
-    /// Who must answer.
-    pub expected: Expected,
-}
 
 /// Why a bench cannot be used.
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
 pub enum ConnectError {
     /// No instrument plays a role that every bench needs.
-    #[error("the bench has no instrument in the role {role}; give it one in the bench file")]
-    NoRole {
-        /// The role.
-        role: Role,
-    },
+    #[error(transparent)]
+    Role(#[from] RoleMissing),
     /// Instruments that do not answer, or not as they should; never empty.
     #[error("{}", lines(.errors))]
     Instruments {
@@ -49,24 +33,21 @@ fn lines(errors: &[InstrumentError]) -> String {
 
 /// Opens all ports, finds out who is there, switches the output off, and sets the instruments up.
 ///
-/// Voltmeters are put on the smallest range that holds `maximum`, the ammeter on its largest. What an earlier program
-/// left in an error queue is logged and forgotten.
+/// Voltmeters are put on the smallest range that holds `maximum`, or their largest; the ammeter on its largest. What
+/// an earlier program left in an error queue is logged and forgotten. The bench's time runs on `clock`: real, unless
+/// all instruments are simulated ones that keep the same time.
 ///
 /// # Errors
 /// Every instrument that failed. The others are let go again, with their front panels given back.
-pub async fn connect(seats: &[Seat], maximum: Volts, clock: Clock) -> Result<SerialBench, ConnectError> {
-    let mut ready = Vec::new();
-    let mut errors = Vec::new();
+pub async fn connect(bench: &BenchFile, maximum: Volts, clock: Clock) -> Result<SerialBench, ConnectError> {
+    let seats = bench.instruments();
     let opened: Vec<_> = seats.iter().map(|seat| (seat, open(seat, maximum, clock))).collect();
+    let (mut ready, mut errors) = (Vec::new(), Vec::new());
     for (seat, opened) in opened {
-        let connected = match opened {
-            Ok((instrument, answer)) => answer.wait().await.map(|greeting| (instrument, greeting)),
-            Err(error) => Err(error),
-        };
-        match connected {
+        match greeted(opened).await {
             Ok((instrument, greeting)) => {
                 for error in greeting.old_errors {
-                    tracing::warn!("{}: left from before: {error}", seat.place);
+                    tracing::warn!("{}: left from before: {error}", instrument.place());
                 }
                 ready.push((seat, Arc::new(instrument)));
             }
@@ -76,23 +57,29 @@ pub async fn connect(seats: &[Seat], maximum: Volts, clock: Clock) -> Result<Ser
     if errors.is_empty() { seated(&ready, clock) } else { Err(ConnectError::Instruments { errors }) }
 }
 
+/// An instrument that is being made ready, and what will come of it.
+pub(super) type Opened = Result<(Instrument, Answer<Greeting>), InstrumentError>;
+
 /// Opens one port and queues all that makes its instrument ready.
-pub(super) fn open(
-    seat: &Seat,
-    maximum: Volts,
-    clock: Clock,
-) -> Result<(Instrument, Answer<Greeting>), InstrumentError> {
-    let preparation = Preparation::of(seat, maximum)?;
-    let stream = serial_port::open(&seat.place, &seat.definition.serial)?;
-    let session = Session::new(stream, Arc::clone(&seat.place), &seat.definition, clock);
-    let instrument = Instrument::start(session)?;
+pub(super) fn open(seat: &BenchInstrument, maximum: Volts, clock: Clock) -> Opened {
+    let place = Arc::new(Place { instrument: seat.name.clone(), port: seat.port.clone() });
+    let preparation = Preparation::of(seat, maximum);
+    let stream = serial_port::open(&place, &seat.definition.serial)?;
+    let instrument = Instrument::start(Session::new(stream, place, &seat.definition, clock))?;
     let answer = instrument.ask(move |session| preparation.carry_out(session));
     Ok((instrument, answer))
 }
 
+/// Waits until an instrument is ready.
+pub(super) async fn greeted(opened: Opened) -> Result<(Instrument, Greeting), InstrumentError> {
+    let (instrument, answer) = opened?;
+    let greeting = answer.wait().await?;
+    Ok((instrument, greeting))
+}
+
 /// All that is sent to an instrument before its first run.
 struct Preparation {
-    expected: Expected,
+    expected: Identity,
     /// Of a source: before anything else, its output goes off.
     off: Option<SwitchOff>,
     commands: Vec<String>,
@@ -102,7 +89,7 @@ struct Preparation {
 }
 
 impl Preparation {
-    fn of(seat: &Seat, maximum: Volts) -> Result<Self, InstrumentError> {
+    fn of(seat: &BenchInstrument, maximum: Volts) -> Self {
         let (definition, roles) = (&seat.definition, &seat.roles);
         let source = definition.source.as_ref().filter(|_| roles.contains(&Role::Source));
         let ammeter = definition.ammeter.as_ref().filter(|_| roles.contains(&Role::Ammeter));
@@ -120,20 +107,18 @@ impl Preparation {
         {
             ranges.extend(settings::range(part, largest, definition.timing));
         }
-        if let Some(part) = voltmeter {
-            let range = part.range_for(maximum).ok_or_else(|| InstrumentError::CannotDo {
-                place: Arc::clone(&seat.place),
-                what: format!("it has no range that holds {maximum}"),
-            })?;
+        if let Some(part) = voltmeter
+            && let Some(range) = part.range_for(maximum).or_else(|| part.ranges.last())
+        {
             ranges.extend(settings::range(part, range, definition.timing));
         }
-        Ok(Self {
-            expected: seat.expected.clone(),
+        Self {
+            expected: seat.identity.clone(),
             off: source.map(settings::switch_off),
             commands,
             ranges,
             deadline: definition.timing.reset_deadline,
-        })
+        }
     }
 
     fn carry_out(&self, session: &mut Session) -> Result<Greeting, InstrumentError> {
@@ -150,7 +135,7 @@ impl Preparation {
     }
 }
 
-fn seated(ready: &[(&Seat, Arc<Instrument>)], clock: Clock) -> Result<SerialBench, ConnectError> {
+fn seated(ready: &[(&BenchInstrument, Arc<Instrument>)], clock: Clock) -> Result<SerialBench, ConnectError> {
     let source = playing(ready, Role::Source, |definition| definition.source.clone())?;
     let ammeter = playing(ready, Role::Ammeter, |definition| definition.ammeter.clone())?;
     let instruments = ready
@@ -165,10 +150,10 @@ fn seated(ready: &[(&Seat, Arc<Instrument>)], clock: Clock) -> Result<SerialBenc
 }
 
 fn playing<Part>(
-    ready: &[(&Seat, Arc<Instrument>)],
+    ready: &[(&BenchInstrument, Arc<Instrument>)],
     role: Role,
     part: impl Fn(&Definition) -> Option<Part>,
-) -> Result<Playing<Part>, ConnectError> {
+) -> Result<Playing<Part>, RoleMissing> {
     ready
         .iter()
         .filter(|(seat, _)| seat.roles.contains(&role))
@@ -176,5 +161,5 @@ fn playing<Part>(
             let timing = seat.definition.timing;
             Some(Playing { instrument: Arc::clone(instrument), part: part(&seat.definition)?, timing })
         })
-        .ok_or(ConnectError::NoRole { role })
+        .ok_or(RoleMissing(role))
 }

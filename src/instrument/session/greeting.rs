@@ -1,6 +1,7 @@
 //! The first words with an instrument: is it there, is it the right one, does it echo, has it anything to report?
 
 use super::Session;
+use crate::instrument::bench_file::Identity as Expected;
 use crate::instrument::error::InstrumentError;
 use crate::instrument::scpi::{DeviceError, Identity};
 use std::sync::Arc;
@@ -9,17 +10,6 @@ const QUESTION: &str = "*IDN?";
 
 /// Times the first question is asked: the first bytes after opening a port may be lost or garbled.
 const TRIES: u32 = 3;
-
-/// Who must answer; a field left out may be anything.
-#[derive(Clone, Debug, Default, PartialEq, Eq)]
-pub struct Expected {
-    /// Maker, in any case of letters.
-    pub maker: Option<String>,
-    /// Model, in any case of letters.
-    pub model: Option<String>,
-    /// Serial number, exactly.
-    pub serial: Option<String>,
-}
 
 /// What came of the first words.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -81,27 +71,11 @@ impl Session {
     }
 
     fn expect(&self, identity: &Identity, expected: &Expected) -> Result<(), InstrumentError> {
-        let wrong = |field, read: &str, wanted: &str| InstrumentError::WrongInstrument {
+        expected.check(&identity.to_string()).map_err(|wrong| InstrumentError::WrongInstrument {
             place: Arc::clone(self.place()),
-            field,
-            read: read.to_owned(),
-            wanted: wanted.to_owned(),
-        };
-        if let Some(maker) =
-            expected.maker.as_ref().filter(|maker| !maker.eq_ignore_ascii_case(&identity.maker))
-        {
-            return Err(wrong("the maker", &identity.maker, maker));
-        }
-        if let Some(model) =
-            expected.model.as_ref().filter(|model| !model.eq_ignore_ascii_case(&identity.model))
-        {
-            return Err(wrong("the model", &identity.model, model));
-        }
-        if let Some(serial) =
-            expected.serial.as_ref().filter(|serial| Some(*serial) != identity.serial.as_ref())
-        {
-            return Err(wrong("the serial number", identity.serial.as_deref().unwrap_or("0"), serial));
-        }
-        Ok(())
+            field: wrong.field,
+            read: wrong.found,
+            wanted: wrong.wanted,
+        })
     }
 }
