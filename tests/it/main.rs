@@ -3,6 +3,8 @@
 #[cfg(unix)]
 mod definitions_on_simulation;
 mod log;
+#[cfg(unix)]
+mod outside_parser;
 mod report;
 mod run_sample;
 #[cfg(unix)]

@@ -6,6 +6,7 @@
 
 use super::Session;
 use crate::instrument::error::InstrumentError;
+use crate::instrument::scpi::Number;
 use std::time::Duration;
 
 /// Largest token: bit 7 is left alone.
@@ -75,7 +76,7 @@ impl Session {
         loop {
             match self.link.receive(QUESTION, wait) {
                 Ok(line) if self.link.echoes() && [order.as_str(), QUESTION].contains(&line.trim()) => {}
-                Ok(line) => return Ok(line.trim().trim_start_matches('+').parse() == Ok(self.token)),
+                Ok(line) => return Ok(Number::parse(&line) == Ok(Number::Value(f64::from(self.token)))),
                 Err(error @ InstrumentError::LinkLost { .. }) => return Err(error),
                 Err(_) => return Ok(false),
             }
