@@ -235,3 +235,109 @@ enum Heard {
 fn is_timeout(error: &io::Error) -> bool {
     matches!(error.kind(), io::ErrorKind::TimedOut | io::ErrorKind::WouldBlock)
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::instrument::definition::{Definition, builtin};
+
+    const WAIT: Duration = Duration::from_millis(20);
+
+    /// A stream that gives what it was told to give, in order, and after that nothing.
+    struct Told {
+        reads: VecDeque<io::Result<&'static [u8]>>,
+        written: Vec<u8>,
+        interruptions: u32,
+    }
+
+    impl ByteStream for Told {
+        fn read(&mut self, buffer: &mut [u8], wait: Duration) -> io::Result<usize> {
+            let Some(next) = self.reads.pop_front() else {
+                std::thread::sleep(wait);
+                return Err(io::ErrorKind::TimedOut.into());
+            };
+            let bytes = next?;
+            buffer[..bytes.len()].copy_from_slice(bytes);
+            Ok(bytes.len())
+        }
+
+        fn write(&mut self, bytes: &[u8], _: Duration) -> io::Result<usize> {
+            if self.interruptions > 0 {
+                self.interruptions -= 1;
+                return Err(io::ErrorKind::Interrupted.into());
+            }
+            self.written.extend_from_slice(&bytes[..bytes.len().min(3)]);
+            Ok(bytes.len().min(3))
+        }
+
+        fn clear_input(&mut self) -> io::Result<()> {
+            Ok(())
+        }
+
+        fn settings(&self) -> Option<String> {
+            Some(String::from_utf8_lossy(&self.written).into_owned())
+        }
+    }
+
+    fn link(reads: Vec<io::Result<&'static [u8]>>) -> Link {
+        let text = builtin("programmable-supply").expect("built in");
+        let definition = Definition::read("supply", text).unwrap_or_else(|problems| panic!("{problems}"));
+        let place = Arc::new(Place { instrument: "supply".to_owned(), port: "told".to_owned() });
+        let stream = Told { reads: reads.into(), written: Vec::new(), interruptions: 2 };
+        Link::new(Box::new(stream), place, definition.serial, Clock::real())
+    }
+
+    fn interrupted() -> io::Result<&'static [u8]> {
+        Err(io::ErrorKind::Interrupted.into())
+    }
+
+    #[test]
+    fn a_signal_does_not_end_a_wait_and_pieces_make_one_line() {
+        let mut link = link(vec![interrupted(), Ok(b"+1.2"), interrupted(), Ok(b"5\r"), Ok(b"\n")]);
+        assert_eq!(link.receive("VOLT?", WAIT), Ok("+1.25".to_owned()));
+        assert!(link.in_step());
+    }
+
+    #[test]
+    fn a_command_is_written_whole_in_spite_of_signals_and_small_buffers() {
+        let mut link = link(Vec::new());
+        link.write("VOLT 5.97", WAIT).expect("it is written");
+        assert_eq!(link.settings().as_deref(), Some("VOLT 5.97\n"));
+    }
+
+    #[test]
+    fn signals_without_end_do_not_stretch_the_deadline() {
+        let mut link = link((0..1000).map(|_| interrupted()).collect());
+        let clock = Clock::real();
+        assert!(matches!(link.receive("VOLT?", Duration::ZERO), Err(InstrumentError::NoReply { .. })));
+        assert!(clock.now() < Duration::from_secs(1));
+        assert!(!link.in_step());
+    }
+
+    #[test]
+    fn a_stream_that_ends_is_a_lost_link() {
+        for read in [Ok(&b""[..]), Err(io::ErrorKind::BrokenPipe.into()), Err(io::Error::other("I/O error"))]
+        {
+            let mut link = link(vec![Ok(b"+1.2"), read]);
+            assert!(matches!(link.receive("VOLT?", WAIT), Err(InstrumentError::LinkLost { .. })));
+            assert!(!link.in_step());
+        }
+    }
+
+    #[test]
+    fn a_line_without_end_is_given_up() {
+        let mut link = link((0..20).map(|_| Ok(&[b'x'; 400][..])).collect());
+        let error = link.receive("VOLT?", WAIT).expect_err("no line");
+        assert!(
+            error.to_string().contains("answered \"VOLT?\" with \"an endless line\", wanted one line"),
+            "{error}"
+        );
+        assert!(!link.in_step());
+    }
+
+    #[test]
+    fn an_instrument_that_never_falls_silent_is_given_up() {
+        let mut link = link((0..100_000).map(|_| Ok(&b"9\n"[..])).collect());
+        assert!(matches!(link.drain(Duration::from_micros(100)), Err(InstrumentError::LinkLost { .. })));
+    }
+}

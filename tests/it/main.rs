@@ -16,3 +16,5 @@ mod session;
 mod sim;
 #[cfg(unix)]
 mod simulated_bench;
+#[cfg(unix)]
+mod switching_off;

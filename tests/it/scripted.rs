@@ -8,7 +8,7 @@ use ebbmark::instrument::definition::{
 };
 use ebbmark::instrument::error::{InstrumentError, Place};
 use ebbmark::instrument::serial_port;
-use ebbmark::instrument::session::Session;
+use ebbmark::instrument::session::{Session, SwitchOff};
 use rustix::fs::{Mode, OFlags};
 use rustix::pty::{OpenptFlags, grantpt, openpt, ptsname, unlockpt};
 use rustix::termios::{OptionalActions, tcgetattr, tcsetattr};
@@ -235,6 +235,20 @@ impl Drop for Scripted {
             assert!(ended.is_ok() || std::thread::panicking(), "the scripted instrument panicked");
         }
     }
+}
+
+/// An instrument whose `n`-th answer to `question` is replaced by `acts`.
+pub(crate) fn spoiling(question: &'static str, n: usize, acts: Vec<Act>) -> Scripted {
+    let mut asked = 0;
+    Scripted::start(Device::default(), move |device, line| {
+        asked += usize::from(line == question);
+        if line == question && asked == n { acts.clone() } else { device.obey(line) }
+    })
+}
+
+/// What switches the output of a [`Device`] off.
+pub(crate) fn off() -> SwitchOff {
+    SwitchOff { commands: vec!["VOLT 0".to_owned(), "OUTP OFF".to_owned()], question: "OUTP?".to_owned() }
 }
 
 /// A definition without roles: what a session needs.
