@@ -5,7 +5,7 @@
 //! - [`profile`]: what a board must do, read from a file and checked
 //! - [`procedure`]: what to do next; one answer in, one action out (pure)
 //! - [`instrument`]: roles, definitions and bench files; what the instruments can do and what to send them
-//! - [`bench`]: carries the actions out, over serial ports or in virtual time
+//! - [`mod@bench`]: carries the actions out, over serial ports or in virtual time
 //! - [`trace`]: what was measured
 //! - [`analysis`]: from a trace to quantities with uncertainty, and findings (pure)
 //! - [`verdict`]: quantities and limits to decisions and one outcome (pure)

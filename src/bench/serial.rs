@@ -157,6 +157,8 @@ impl SerialBench {
         if self.range == Some(range.full_scale) {
             return Ok(());
         }
+        // Given up half way, the meter may stand on either range.
+        self.range = None;
         if let Some(setting) = settings::range(&self.ammeter.part, &range, self.ammeter.timing) {
             self.ammeter.instrument.ask(move |session| session.set(&setting)).wait().await?;
         }
