@@ -6,6 +6,8 @@ mod log;
 #[cfg(unix)]
 mod outside_parser;
 mod report;
+#[cfg(unix)]
+mod run_over_serial;
 mod run_sample;
 #[cfg(unix)]
 mod scripted;
