@@ -3,6 +3,7 @@
 //! The trace is the only thing the analysis sees, so the same trace gives the same answer whether it came from a
 //! bench a second ago, from a record of last year or from a CSV file.
 
+pub mod csv;
 mod ending;
 mod switch_state;
 
