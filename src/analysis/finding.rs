@@ -77,4 +77,6 @@ pub enum FindingCode {
     OutputMayBeOn,
     /// The trace holds too little to find any threshold.
     NothingToSee,
+    /// A limit asks for a quantity that was not measured, or there is no limit at all.
+    NotJudged,
 }
