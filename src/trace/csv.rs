@@ -4,9 +4,14 @@
 //! Columns: `time_s`, `set_v`, `sense_v`, `current_a`, and if wanted `load_v`, `range_a`, `limit`, in any order. An empty
 //! cell of an optional reading means it was not taken; `overload` in `current_a` means the meter was above its range.
 
+mod problems;
+
+pub use problems::{CsvFlaw, CsvProblem, CsvProblems};
+
 use super::{Claims, Current, Ending, OutputState, Sample, Stop, Trace};
 use crate::units::{Amps, Volts};
 use ::csv::{ReaderBuilder, StringRecord, Trim};
+use problems::FEWEST_ROWS;
 use std::fmt::Write as _;
 use std::time::Duration;
 
@@ -40,99 +45,6 @@ impl Column {
 
     fn required(self) -> bool {
         matches!(self, Self::Time | Self::Set | Self::Sense | Self::Current)
-    }
-}
-
-/// Fewest rows that can hold a change.
-const FEWEST_ROWS: usize = 2;
-
-/// All that is wrong in one file, in the order of its text. Never empty.
-#[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
-#[error("{}", .problems.iter().map(|problem| format!("{file}:{problem}")).collect::<Vec<_>>().join("\n"))]
-pub struct CsvProblems {
-    /// The file's name.
-    pub file: String,
-    /// Its problems.
-    pub problems: Vec<CsvProblem>,
-}
-
-/// One thing that is wrong, and the line where.
-#[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
-#[error("{line}: {what}")]
-pub struct CsvProblem {
-    /// Line in the file, counted from 1.
-    pub line: u64,
-    /// What is wrong there.
-    pub what: CsvFlaw,
-}
-
-/// Sorts of problems of a trace file.
-#[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
-pub enum CsvFlaw {
-    /// The bytes are no CSV at all.
-    #[error("not readable as CSV: {reason}")]
-    Unreadable {
-        /// What the reader of the format says.
-        reason: String,
-    },
-    /// The header lacks a column.
-    #[error("the header has no column \"{column}\"; wanted time_s, set_v, sense_v and current_a")]
-    MissingColumn {
-        /// The column that is not there.
-        column: &'static str,
-    },
-    /// The header names a column nobody knows.
-    #[error("unknown column \"{read}\"; {}", nearest_column(read))]
-    UnknownColumn {
-        /// The name as found.
-        read: String,
-    },
-    /// The header names a column twice.
-    #[error("column \"{column}\" stands twice in the header")]
-    RepeatedColumn {
-        /// The column.
-        column: &'static str,
-    },
-    /// A row has more or fewer cells than the header.
-    #[error("read {read} cells, wanted {wanted} as in the header")]
-    CellCount {
-        /// Cells in the row.
-        read: usize,
-        /// Columns in the header.
-        wanted: usize,
-    },
-    /// A cell does not hold what its column wants.
-    #[error("{column}: read \"{read}\", wanted {wanted}")]
-    Cell {
-        /// The column.
-        column: &'static str,
-        /// The text of the cell.
-        read: String,
-        /// What the column takes.
-        wanted: &'static str,
-    },
-    /// A time before that of the row above.
-    #[error("time_s: read \"{read}\", wanted {before} or later as in the row above: time runs backwards")]
-    TimeBackwards {
-        /// The text of the cell.
-        read: String,
-        /// The time of the row above, in seconds.
-        before: String,
-    },
-    /// Not enough rows to see anything.
-    #[error("read {read} rows of readings, wanted at least {FEWEST_ROWS}")]
-    TooFewRows {
-        /// Rows found.
-        read: usize,
-    },
-}
-
-fn nearest_column(read: &str) -> String {
-    let names = Column::ALL.map(Column::name);
-    let distance = |name: &str| strsim::damerau_levenshtein(&read.to_lowercase(), name);
-    match names.into_iter().min_by_key(|name| distance(name)).filter(|name| distance(name) <= name.len() / 2) {
-        Some(name) => format!("did you mean \"{name}\"?"),
-        None => format!("known columns: {}", names.join(", ")),
     }
 }
 
@@ -371,7 +283,8 @@ mod tests {
 
     #[test]
     fn columns_may_stand_in_any_order_after_a_byte_order_mark() {
-        let text = "\u{feff}set_v, current_a ,sense_v,time_s,limit\r\n7.6,0.138,7.595,0.5,1\r\n7.5,0.1,7.4,0.6,\r\n";
+        let text =
+            "\u{feff}set_v, current_a ,sense_v,time_s,limit\r\n7.6,0.138,7.595,0.5,1\r\n7.5,0.1,7.4,0.6,\r\n";
         let trace = read("t.csv", text).expect("a good file");
         assert_eq!(trace.samples[0].set, Volts(7.6));
         assert_eq!(trace.samples[0].limited, Some(true));
@@ -412,7 +325,7 @@ mod tests {
         assert_eq!(problems("").len(), 4);
         assert_eq!(
             problems(&format!("{HEADER}0.5,7.6,7.595,0.138\n")),
-            ["t.csv:3: read 1 rows of readings, wanted at least 2"]
+            ["t.csv:3: rows of readings: 1, wanted at least 2"]
         );
     }
 
