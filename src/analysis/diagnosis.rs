@@ -1,0 +1,270 @@
+//! What the course of the state says about the board: never on, never trips, never comes back, cannot rest.
+
+use super::edges::{Direction, Edges};
+use super::finding::{About, Finding, FindingCode};
+use super::plateau::{Course, Plateau};
+use super::state::State;
+use crate::trace::{Sample, Stop};
+use crate::units::{Amps, Ohms, Volts};
+
+/// The supply may fall short of a voltage of the profile by this share: its step, its accuracy.
+const REACHED: f64 = 0.005;
+/// Share of the terminal voltage above which the load voltmeter shows a closed switch.
+const LOAD_LIVE: f64 = 0.5;
+
+/// Diagnoses of the switch. At most one of them explains a missing threshold.
+pub(super) fn diagnose(course: &Course<'_>, found: &Edges) -> Option<Finding> {
+    if !found.reversals.is_empty() {
+        return Some(chatter(course, found));
+    }
+    let ever_on = course.in_scope().any(|plateau| plateau.settled == State::On);
+    let ever = |direction| found.edges.iter().any(|edge| edge.direction == direction);
+    if !ever_on {
+        return never_on(course).or_else(|| neither(course)).or_else(|| nothing(course));
+    }
+    if !ever(Direction::Down) {
+        return never_trips(course).or_else(|| neither(course));
+    }
+    if !ever(Direction::Up) {
+        return never_re_enables(course, found).or_else(|| neither(course));
+    }
+    neither(course)
+}
+
+/// Source and leads: the board's own current moves its terminals by more than half its hysteresis.
+pub(super) fn source_resistance(resistance: Ohms, current: Amps, hysteresis: Volts) -> Option<Finding> {
+    let swing = current * resistance;
+    let restless = swing.0 > 0.5 * hysteresis.0 && hysteresis.0 > 0.0;
+    restless.then(|| {
+        bench(
+            FindingCode::SourceResistance,
+            format!(
+                "source and leads of {resistance} move the terminals by {swing} when the board switches {current}; its hysteresis is \
+                 {hysteresis}. A board needs twice the swing to rest: shorten the leads, clean the contacts, or sense at the board."
+            ),
+        )
+    })
+}
+
+/// The supply limited the current while the board was not off.
+pub(super) fn current_limit(course: &Course<'_>) -> Option<Finding> {
+    let limited = |plateau: &&Plateau| {
+        let sample = &course.trace.samples[plateau.samples.end - 1];
+        plateau.settled != State::Off && sample.limited == Some(true)
+    };
+    let first = course.in_scope().find(limited)?;
+    let count = course.in_scope().filter(limited).count();
+    Some(bench(
+        FindingCode::CurrentLimit,
+        format!(
+            "the supply limited the current at {count} set-points, first at {}. Raise the current limit (set: {}) or look for \
+             a load too small.",
+            first.set, course.profile.supply.current_limit
+        ),
+    ))
+}
+
+fn chatter(course: &Course<'_>, found: &Edges) -> Finding {
+    let sets = || found.reversals.iter().map(|plateau| course.plateaus[*plateau].set);
+    let lowest = sets().fold(Volts(f64::INFINITY), Volts::min);
+    let highest = sets().fold(Volts(f64::NEG_INFINITY), Volts::max);
+    board(
+        FindingCode::Chatter,
+        format!(
+            "the board switched by itself {} times, at set-points from {lowest} to {highest}, so no threshold is stated. Look \
+             first at the resistance of source and leads against the hysteresis, then at the detector's hysteresis and \
+             delay parts.",
+            found.reversals.len()
+        ),
+    )
+}
+
+fn never_on(course: &Course<'_>) -> Option<Finding> {
+    let start = course.profile.supply.start;
+    let at_start =
+        |plateau: &&Plateau| plateau.settled == State::Off && plateau.set >= start * (1.0 - REACHED);
+    let sample = course
+        .in_scope()
+        .filter(at_start)
+        .last()
+        .map(|plateau| &course.trace.samples[plateau.samples.end - 1])
+        .or_else(|| match course.trace.ending.stop {
+            Stop::NotOn { .. } => course.trace.samples.last(),
+            _ => None,
+        })?;
+    let at = course.terminals(sample);
+    let current = sample.current.amps().map_or_else(|| "overload".to_owned(), |amps| amps.to_string());
+    let load = course.profile.load.resistance;
+    Some(match sample.load {
+        Some(volts) if volts > at * LOAD_LIVE => bench(
+            FindingCode::NoLoad,
+            format!(
+                "{volts} stands at the load's terminals but only {current} flows: the switch is closed and the load of {load} is not \
+                 connected. Connect the load and test again."
+            ),
+        ),
+        Some(volts) => board(
+            FindingCode::NeverOn,
+            format!(
+                "with {at} at the board only {volts} reaches the load and {current} flows: the switch stays open. Look first at \
+                 the switch, its gate drive and the detector's output."
+            ),
+        ),
+        None => bench(
+            FindingCode::NoCurrent,
+            format!(
+                "only {current} flows at {at}, where the load of {load} would draw {}. Without a voltmeter at the load an open switch \
+                 looks like a missing load: look first whether the load is connected and the ammeter's fuse is whole.",
+                at / load
+            ),
+        ),
+    })
+}
+
+fn never_trips(course: &Course<'_>) -> Option<Finding> {
+    let floor = course.profile.supply.floor;
+    let lowest = lowest_on(course).filter(|plateau| plateau.set <= floor * (1.0 + REACHED))?;
+    let sample = last_sample(course, lowest);
+    let at = course.terminals(sample);
+    let current = sample.current.amps().map_or_else(|| "an overload".to_owned(), |amps| amps.to_string());
+    Some(board(
+        FindingCode::NeverTrips,
+        format!(
+            "the board is still on at {at}, the end of the ramp: {current} flows, the load alone draws {}. Look first for a \
+             shorted switch, then at its gate drive and the detector's part number.",
+            at / course.profile.load.resistance
+        ),
+    ))
+}
+
+fn never_re_enables(course: &Course<'_>, found: &Edges) -> Option<Finding> {
+    let tripped = found.edges.iter().find(|edge| edge.direction == Direction::Down)?.plateau;
+    let start = course.profile.supply.start;
+    let off_again = course.plateaus[tripped..]
+        .iter()
+        .find(|plateau| plateau.settled == State::Off && plateau.set >= start * (1.0 - REACHED))?;
+    let at = course.terminals(last_sample(course, off_again));
+    Some(board(
+        FindingCode::NeverReEnables,
+        format!(
+            "the board tripped and is still off at {at}, where it was on before. Look first at the detector's hysteresis \
+             parts and at a latching gate."
+        ),
+    ))
+}
+
+fn neither(course: &Course<'_>) -> Option<Finding> {
+    let between = |plateau: &&Plateau| {
+        plateau.settled == State::Neither && last_sample(course, plateau).current.amps().is_some()
+    };
+    let first = course.in_scope().find(between)?;
+    let count = course.in_scope().filter(between).count();
+    let sample = last_sample(course, first);
+    let at = course.terminals(sample);
+    let current = sample.current.amps()?;
+    Some(bench(
+        FindingCode::NeitherOnNorOff,
+        format!(
+            "at {count} set-points the current was neither the load's nor that of an open switch, first {current} at {at} where the \
+             load draws {}. Look first at contacts and the load, then for a switch driven half on.",
+            at / course.profile.load.resistance
+        ),
+    ))
+}
+
+fn nothing(course: &Course<'_>) -> Option<Finding> {
+    // A run that stopped early says why by its ending.
+    matches!(course.trace.ending.stop, Stop::Completed).then(|| {
+        bench(
+            FindingCode::NothingToSee,
+            format!(
+                "the trace shows no board that was on: {} readings, none at {} or above with the load's current.",
+                course.trace.samples.len(),
+                course.profile.supply.floor
+            ),
+        )
+    })
+}
+
+fn lowest_on<'c>(course: &'c Course<'_>) -> Option<&'c Plateau> {
+    course
+        .in_scope()
+        .filter(|plateau| plateau.settled == State::On)
+        .min_by(|a, b| a.set.0.total_cmp(&b.set.0))
+}
+
+fn last_sample<'t>(course: &Course<'t>, plateau: &Plateau) -> &'t Sample {
+    &course.trace.samples[plateau.samples.end - 1]
+}
+
+fn board(code: FindingCode, text: String) -> Finding {
+    Finding { code, about: About::Board, text }
+}
+
+fn bench(code: FindingCode, text: String) -> Finding {
+    Finding { code, about: About::Bench, text }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::fixture::{off, on, profile, staircase};
+    use super::*;
+    use crate::trace::Trace;
+
+    fn code(trace: &Trace) -> Option<FindingCode> {
+        let profile = profile();
+        let course = Course::new(trace, &profile);
+        diagnose(&course, &Edges::find(&course)).map(|finding| finding.code)
+    }
+
+    fn of(readings: &[(f64, f64)]) -> Option<FindingCode> {
+        code(&staircase(readings))
+    }
+
+    #[test]
+    fn a_good_staircase_has_no_diagnosis() {
+        assert_eq!(of(&[on(7.6), on(6.1), off(5.9), off(5.2), off(6.3), on(6.4), on(7.6)]), None);
+    }
+
+    #[test]
+    fn on_at_the_floor_never_trips_but_an_early_end_says_nothing() {
+        assert_eq!(of(&[on(7.6), on(6.0), on(5.2)]), Some(FindingCode::NeverTrips));
+        assert_eq!(of(&[on(7.6), on(6.0)]), None);
+    }
+
+    #[test]
+    fn off_at_the_start_after_a_trip_never_re_enables() {
+        assert_eq!(of(&[on(7.6), off(5.9), off(6.5), off(7.6)]), Some(FindingCode::NeverReEnables));
+        assert_eq!(of(&[on(7.6), off(5.9), off(6.5)]), None);
+    }
+
+    #[test]
+    fn the_load_voltmeter_tells_an_open_switch_from_a_missing_load() {
+        let with_load = |volts: Option<f64>| {
+            let mut trace = staircase(&[(0.3, 0.0), off(7.6), off(7.6)]);
+            for sample in &mut trace.samples {
+                sample.load = volts.map(Volts);
+            }
+            code(&trace)
+        };
+        assert_eq!(with_load(Some(0.01)), Some(FindingCode::NeverOn));
+        assert_eq!(with_load(Some(7.59)), Some(FindingCode::NoLoad));
+        assert_eq!(with_load(None), Some(FindingCode::NoCurrent));
+    }
+
+    #[test]
+    fn switching_by_itself_comes_before_all_else() {
+        assert_eq!(of(&[on(7.6), off(6.0), on(5.9), on(5.2)]), Some(FindingCode::Chatter));
+    }
+
+    #[test]
+    fn half_the_current_is_neither() {
+        assert_eq!(of(&[on(7.6), (6.1, 0.03), off(5.9), on(6.5)]), Some(FindingCode::NeitherOnNorOff));
+    }
+
+    #[test]
+    fn a_swing_of_more_than_half_the_hysteresis_is_the_source() {
+        let found = |ohms| source_resistance(Ohms(ohms), Amps(0.1), Volts(0.4)).is_some();
+        assert!(found(2.1) && !found(1.9));
+    }
+}

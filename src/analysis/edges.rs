@@ -1,0 +1,273 @@
+//! Where the board changed state, where it stayed, and where it switched by itself.
+//!
+//! A change bounds a threshold from beyond, whatever the delay: the terminals had been no farther than that. Staying
+//! bounds it from before, but only if the board was given more time than its delay; so every stay carries its time.
+
+use super::plateau::{Course, SAME_SET};
+use super::state::State;
+use crate::profile::Timing;
+use crate::units::Volts;
+use std::time::Duration;
+
+/// Which threshold.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) enum Direction {
+    /// On to off: the trip.
+    Down,
+    /// Off to on: the re-enable.
+    Up,
+}
+
+impl Direction {
+    /// The direction in which a board in `state` may change; `None` for neither.
+    pub(super) fn from(state: State) -> Option<Self> {
+        match state {
+            State::On => Some(Direction::Down),
+            State::Off => Some(Direction::Up),
+            State::Neither => None,
+        }
+    }
+
+    /// Distance along the direction: larger is nearer to the change, or farther beyond it.
+    pub(super) fn along(self, volts: Volts) -> f64 {
+        match self {
+            Direction::Down => -volts.0,
+            Direction::Up => volts.0,
+        }
+    }
+
+    /// The voltage at a distance along the direction.
+    pub(super) fn volts(self, along: f64) -> Volts {
+        match self {
+            Direction::Down => Volts(-along),
+            Direction::Up => Volts(along),
+        }
+    }
+
+    /// The slowest the design allows.
+    pub(super) fn delay(self, timing: &Timing) -> Duration {
+        match self {
+            Direction::Down => timing.detect_delay,
+            Direction::Up => timing.release_delay,
+        }
+    }
+}
+
+/// A change of state.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Edge {
+    /// Which threshold was passed.
+    pub(super) direction: Direction,
+    /// The plateau on which the change was seen.
+    pub(super) plateau: usize,
+    /// The last sample of that plateau still in the state before.
+    pub(super) last_before: Option<usize>,
+    /// The first sample in the state after.
+    pub(super) seen: usize,
+}
+
+/// A plateau on which the board did not change.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Stay {
+    /// Which threshold was not passed.
+    pub(super) direction: Direction,
+    /// The plateau.
+    pub(super) plateau: usize,
+    /// For how long this set-point, or one farther along, stood without a change.
+    pub(super) time: Duration,
+    /// The set-point was reached in the direction of the threshold.
+    pub(super) approached: bool,
+}
+
+/// What happened to the state in the course of a run.
+#[derive(Debug, Default)]
+pub(super) struct Edges {
+    /// Changes, in order.
+    pub(super) edges: Vec<Edge>,
+    /// Stays, in no particular order.
+    pub(super) stays: Vec<Stay>,
+    /// Plateaus on which the board switched although the set-point gave no cause.
+    pub(super) reversals: Vec<usize>,
+}
+
+impl Edges {
+    /// Walks through `course` once.
+    pub(super) fn find(course: &Course<'_>) -> Self {
+        let mut walk =
+            Walk { course, found: Self::default(), state: None, run: 0, run_began: Duration::ZERO };
+        for plateau in 0..course.plateaus.len() {
+            walk.step(plateau);
+        }
+        if let (Some(direction), Some(last)) = (walk.state, course.plateaus.last()) {
+            walk.end_run(direction, course.plateaus.len(), last.ended);
+        }
+        walk.found
+    }
+}
+
+/// The walk: the state the board is in, and the run of plateaus on which it has been moving towards the change.
+struct Walk<'c, 't> {
+    course: &'c Course<'t>,
+    found: Edges,
+    state: Option<Direction>,
+    run: usize,
+    run_began: Duration,
+}
+
+impl Walk<'_, '_> {
+    fn step(&mut self, index: usize) {
+        let plateau = &self.course.plateaus[index];
+        if !plateau.in_scope {
+            if let Some(direction) = self.state.take() {
+                self.end_run(direction, index, plateau.began);
+            }
+            return;
+        }
+        let flips = self.flips(index);
+        let Some(direction) = self.state else {
+            // Rising from pre-check to start the board may turn on once; that is no edge of a ramp.
+            if flips.count > 1 {
+                self.found.reversals.push(index);
+            }
+            self.state = Direction::from(plateau.settled);
+            self.begin_run(index, plateau.began);
+            return;
+        };
+        if self.moved_back(direction, index) {
+            self.end_run(direction, index, plateau.began);
+            self.begin_run(index, plateau.began);
+        }
+        let Some(seen) = flips.seen else {
+            if Direction::from(plateau.settled).is_none() {
+                self.end_run(direction, index, self.time_of(flips.last_before).unwrap_or(plateau.began));
+                self.begin_run(index + 1, plateau.ended);
+            }
+            return;
+        };
+        self.end_run(direction, index, self.time_of(flips.last_before).unwrap_or(plateau.began));
+        if flips.count > 1 || self.moved_back(direction, index) {
+            self.found.reversals.push(index);
+        } else {
+            self.found.edges.push(Edge { direction, plateau: index, last_before: flips.last_before, seen });
+        }
+        self.state = Some(flips.direction);
+        self.begin_run(index, self.time_of(Some(seen)).unwrap_or(plateau.ended));
+    }
+
+    /// How often the state changed within one plateau, readings that are neither left aside.
+    fn flips(&self, index: usize) -> Flips {
+        let samples = self.course.plateaus[index].samples.clone();
+        let first = samples.clone().find_map(|sample| Direction::from(self.course.states[sample]));
+        let mut now = self.state.or(first).unwrap_or(Direction::Down);
+        let mut flips = Flips { count: 0, last_before: None, seen: None, direction: now };
+        for sample in samples {
+            let Some(direction) = Direction::from(self.course.states[sample]) else { continue };
+            if direction != now {
+                now = direction;
+                flips.count += 1;
+                flips.seen = flips.seen.or(Some(sample));
+            } else if flips.count == 0 {
+                flips.last_before = Some(sample);
+            }
+        }
+        flips.direction = now;
+        flips
+    }
+
+    fn time_of(&self, sample: Option<usize>) -> Option<Duration> {
+        Some(self.course.trace.samples.get(sample?)?.at)
+    }
+
+    /// True when the step to this plateau led away from the change.
+    fn moved_back(&self, direction: Direction, index: usize) -> bool {
+        self.advance(direction, index).is_some_and(|advance| advance < -SAME_SET)
+    }
+
+    /// How far the step to this plateau led along the direction.
+    fn advance(&self, direction: Direction, index: usize) -> Option<f64> {
+        let before = self.course.plateaus.get(index.checked_sub(1)?)?;
+        Some(direction.along(self.course.plateaus[index].set) - direction.along(before.set))
+    }
+
+    fn begin_run(&mut self, plateau: usize, at: Duration) {
+        self.run = plateau;
+        self.run_began = at;
+    }
+
+    /// Every plateau since the run began stood unchanged until `last`.
+    fn end_run(&mut self, direction: Direction, end: usize, last: Duration) {
+        for plateau in self.run..end {
+            let began =
+                if plateau == self.run { self.run_began } else { self.course.plateaus[plateau].began };
+            let approached = self.advance(direction, plateau).is_some_and(|advance| advance > 0.0);
+            let time = last.saturating_sub(began);
+            self.found.stays.push(Stay { direction, plateau, time, approached });
+        }
+    }
+}
+
+struct Flips {
+    count: usize,
+    last_before: Option<usize>,
+    seen: Option<usize>,
+    direction: Direction,
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::fixture::{off, on, profile, staircase};
+    use super::*;
+
+    fn edges(readings: &[(f64, f64)]) -> Edges {
+        let (trace, profile) = (staircase(readings), profile());
+        Edges::find(&Course::new(&trace, &profile))
+    }
+
+    #[test]
+    fn a_staircase_down_and_up_has_two_edges() {
+        let found = edges(&[on(7.6), on(6.1), on(6.0), off(5.9), off(5.8), off(6.3), off(6.4), on(6.5)]);
+        let seen: Vec<_> = found.edges.iter().map(|edge| (edge.direction, edge.plateau)).collect();
+        assert_eq!(seen, [(Direction::Down, 3), (Direction::Up, 7)]);
+        assert!(found.reversals.is_empty());
+    }
+
+    #[test]
+    fn the_last_plateau_before_a_change_stayed_shortest() {
+        let found = edges(&[on(7.6), on(6.1), on(6.0), off(5.9)]);
+        let times: Vec<_> = found.stays.iter().map(|stay| (stay.plateau, stay.time.as_millis())).collect();
+        assert_eq!(times, [(0, 200), (1, 200), (2, 100), (3, 0)]);
+    }
+
+    #[test]
+    fn pre_check_and_discharge_are_no_edges() {
+        let found = edges(&[(0.3, 0.0), (1.0, 0.018), (7.6, 1e-6), on(7.6), on(6.0), (0.0, 0.0), (0.0, 0.0)]);
+        assert!(found.edges.is_empty() && found.reversals.is_empty(), "{found:?}");
+    }
+
+    #[test]
+    fn coming_back_on_the_way_down_is_a_reversal() {
+        let found = edges(&[on(7.6), on(6.1), off(6.0), on(5.9), off(5.8)]);
+        assert_eq!(found.reversals, [3]);
+    }
+
+    #[test]
+    fn switching_twice_at_one_set_point_is_a_reversal() {
+        assert_eq!(edges(&[on(7.6), on(6.1), off(6.1), on(6.1)]).reversals, [1]);
+    }
+
+    #[test]
+    fn a_change_while_held_keeps_the_last_sample_before() {
+        let found = edges(&[on(7.6), on(6.1), on(6.1), off(6.1)]);
+        let edge = &found.edges[0];
+        assert_eq!((edge.last_before, edge.seen), (Some(2), 3));
+        assert!(found.stays.iter().all(|stay| stay.direction != Direction::Down || stay.plateau != 1));
+    }
+
+    #[test]
+    fn neither_ends_a_stay_without_being_a_change() {
+        let found = edges(&[on(7.6), on(6.1), (6.0, 0.02), off(5.9)]);
+        assert_eq!(found.edges.len(), 1);
+        assert_eq!(found.edges[0].plateau, 3);
+        assert!(found.stays.iter().all(|stay| stay.plateau != 2));
+    }
+}

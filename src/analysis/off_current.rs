@@ -1,0 +1,278 @@
+//! The off current at the voltage its limit names, on the smallest range that could show it.
+//!
+//! It counts only where the board is certainly off (below every set-point at which it was ever on), the terminals have
+//! arrived and the reading has settled.
+
+use super::finding::{About, Finding, FindingCode};
+use super::line::{Line, Point};
+use super::off_limits::{adequate, coarse_finding, outside_finding};
+use super::plateau::{Course, SAME_SET};
+use super::quantity::{Contribution, Quantity};
+use super::settled::Settled;
+use super::state::State;
+use crate::profile::QuantityName;
+use crate::units::{Amps, Volts};
+
+/// Readings within this share of the wanted voltage count for it.
+const NEAR: f64 = 0.02;
+/// Spread of voltage over which a line is worth drawing, as a share.
+const SPAN: f64 = 0.002;
+/// Terminals this near to the set-point, in volts and as a share of it, have arrived.
+const ARRIVED: (f64, f64) = (0.02, 0.01);
+
+/// The off current, and what is to be said about it.
+pub(super) fn off_current(course: &Course<'_>) -> (Option<Quantity>, Vec<Finding>) {
+    let readings = Readings::find(course);
+    let limit = course.profile.limits.get(&QuantityName::OffCurrent).copied().unwrap_or_default();
+    let Some(at) = limit.at.or_else(|| readings.highest()) else {
+        return (None, readings.overload_finding().into_iter().collect());
+    };
+    let mut coarse = None;
+    for range in readings.ranges() {
+        let on_range: Vec<Settled> =
+            readings.settled.iter().filter(|settled| same(settled.range, range)).copied().collect();
+        let Some(quantity) = estimate(course, &on_range, at) else { continue };
+        if adequate(&quantity, &limit) {
+            let finding = outside_finding(&quantity, &limit, at, &on_range);
+            return (Some(quantity), finding.into_iter().collect());
+        }
+        coarse = coarse.or_else(|| Some(coarse_finding(&quantity, range)));
+    }
+    (None, coarse.or_else(|| readings.overload_finding()).into_iter().collect())
+}
+
+/// All settled readings that count, and the ranges that overflowed.
+struct Readings {
+    settled: Vec<Settled>,
+    overloaded: Option<(Volts, Option<Amps>)>,
+}
+
+impl Readings {
+    fn find(course: &Course<'_>) -> Self {
+        let mut found = Self { settled: Vec::new(), overloaded: None };
+        let was_on = |samples: &std::ops::Range<usize>| course.states[samples.clone()].contains(&State::On);
+        let Some(armed) =
+            course.plateaus.iter().position(|plateau| plateau.in_scope && was_on(&plateau.samples))
+        else {
+            return found;
+        };
+        let lowest_on =
+            course.in_scope().filter(|plateau| was_on(&plateau.samples)).map(|plateau| plateau.set.0);
+        let below = lowest_on.fold(f64::INFINITY, f64::min) - SAME_SET;
+        for (index, plateau) in course.plateaus.iter().enumerate().skip(armed) {
+            if plateau.set.0 <= SAME_SET || plateau.set.0 > below {
+                continue;
+            }
+            let last = course.settled(index);
+            let off_set = (course.terminals(last) - plateau.set).abs().0;
+            if off_set > ARRIVED.0 + ARRIVED.1 * plateau.set.0 {
+                continue;
+            }
+            if last.current.amps().is_none() {
+                found.overloaded = Some((plateau.set, last.range));
+            } else if plateau.settled == State::Off {
+                found.settled.extend(Settled::of(course, index));
+            }
+        }
+        found
+    }
+
+    /// Ranges seen, smallest first; an unknown range comes last.
+    fn ranges(&self) -> Vec<Option<Amps>> {
+        let mut ranges: Vec<Option<Amps>> = self.settled.iter().map(|settled| settled.range).collect();
+        let key = |range: &Option<Amps>| range.map_or(f64::INFINITY, |range| range.0);
+        ranges.sort_by(|a, b| key(a).total_cmp(&key(b)));
+        ranges.dedup_by(|a, b| same(*a, *b));
+        ranges
+    }
+
+    fn highest(&self) -> Option<Volts> {
+        self.settled.iter().map(|settled| settled.volts).max_by(|a, b| a.0.total_cmp(&b.0))
+    }
+
+    fn overload_finding(&self) -> Option<Finding> {
+        let (set, range) = self.overloaded?;
+        let range = range.map_or_else(String::new, |range| format!(" on the {range} range"));
+        Some(Finding {
+            code: FindingCode::RangeNotAdequate,
+            about: About::Bench,
+            text: format!(
+                "with the board off at {set} the ammeter overloaded{range}: the off current is larger than the \
+                 range. Measure it on the next larger range."
+            ),
+        })
+    }
+}
+
+fn same(a: Option<Amps>, b: Option<Amps>) -> bool {
+    match (a, b) {
+        (Some(a), Some(b)) => a.0.total_cmp(&b.0).is_eq(),
+        (None, None) => true,
+        _ => false,
+    }
+}
+
+/// The current at `at`: the line through the readings around it, the mean of those at it, the straight line between the
+/// nearest on either side, or the mean of those near it.
+fn estimate(course: &Course<'_>, readings: &[Settled], at: Volts) -> Option<Quantity> {
+    let within = |share: f64| -> Vec<Settled> {
+        let close = |settled: &&Settled| (settled.volts - at).abs().0 <= share * at.0.abs();
+        readings.iter().filter(close).copied().collect()
+    };
+    let (here, near) = (within(SPAN), within(NEAR));
+    let (value, mut parts) = if let Some(line) = line_through(&near, at) {
+        let scatter = line.uncertainty_at(at.0, line.scatter.unwrap_or(0.0));
+        (line.at(at.0), vec![Contribution::new(SCATTER, scatter)])
+    } else if !here.is_empty() {
+        mean(&here, at)
+    } else if let Some(between) = between(readings, at) {
+        between
+    } else if !near.is_empty() {
+        mean(&near, at)
+    } else {
+        return None;
+    };
+    let range = readings.first()?.range;
+    if let Some(accuracy) = course.trace.claims.current_accuracy(range, Amps(value)) {
+        parts.push(Contribution::new("ammeter", accuracy.standard_uncertainty(value)));
+    }
+    Some(Quantity::new(QuantityName::OffCurrent, value, parts))
+}
+
+/// Name of the readings' own scatter in the budget.
+const SCATTER: &str = "scatter of the readings";
+
+/// A line, where there are enough plateaus at different voltages on both sides.
+fn line_through(near: &[Settled], at: Volts) -> Option<Line> {
+    let lowest = near.iter().map(|settled| settled.volts.0).fold(f64::INFINITY, f64::min);
+    let highest = near.iter().map(|settled| settled.volts.0).fold(f64::NEG_INFINITY, f64::max);
+    let around = lowest <= at.0 && at.0 <= highest && highest - lowest >= SPAN * at.0;
+    (near.len() > 3 && around).then(|| Line::fit(near.iter().map(point))).flatten()
+}
+
+/// A plateau's mean, with its readings as weight.
+pub(super) fn point(settled: &Settled) -> Point {
+    Point { x: settled.volts.0, y: settled.amps.0, weight: settled.count as f64 }
+}
+
+/// The mean over several plateaus, its scatter, and what their distance to `at` may do.
+fn mean(plateaus: &[Settled], at: Volts) -> (f64, Vec<Contribution>) {
+    let count: f64 = plateaus.iter().map(|settled| settled.count as f64).sum();
+    let weighted = |value: &dyn Fn(&Settled) -> f64| {
+        plateaus.iter().map(|settled| settled.count as f64 * value(settled)).sum::<f64>() / count
+    };
+    let mean = weighted(&|settled| settled.amps.0);
+    let volts = Volts(weighted(&|settled| settled.volts.0));
+    // The current changes with voltage at most in proportion, so this is the rectangle's half-width.
+    let distance = mean * ((volts - at) / at);
+    let mut parts =
+        vec![Contribution::new("distance to the wanted voltage", distance.abs() / 3.0_f64.sqrt())];
+    if count > 1.0 {
+        let own: f64 = plateaus.iter().map(|settled| settled.squares).sum();
+        let among = count * weighted(&|settled| (settled.amps.0 - mean).powi(2));
+        parts.push(Contribution::new(SCATTER, ((own + among) / (count - 1.0) / count).sqrt()));
+    }
+    (mean, parts)
+}
+
+/// The current at `at` on the straight line between the nearest plateaus below and above, and their scatter.
+fn between(readings: &[Settled], at: Volts) -> Option<(f64, Vec<Contribution>)> {
+    let by_volts = |a: &&Settled, b: &&Settled| a.volts.0.total_cmp(&b.volts.0);
+    let below = readings.iter().filter(|settled| settled.volts < at).max_by(by_volts)?;
+    let above = readings.iter().filter(|settled| settled.volts > at).min_by(by_volts)?;
+    let share = (at - below.volts) / (above.volts - below.volts);
+    let scatter = |settled: &Settled| settled.scatter().unwrap_or(0.0);
+    let combined = ((1.0 - share) * scatter(below)).hypot(share * scatter(above));
+    let value = below.amps.0 + share * (above.amps.0 - below.amps.0);
+    Some((value, vec![Contribution::new(SCATTER, combined)]))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::fixture::{off, on, profile, staircase};
+    use super::*;
+    use crate::trace::{Accuracy, Current, RangeAccuracy, Trace};
+
+    /// Off at the voltages and currents given, each read three times on `range`, between a trip and a re-enable.
+    fn run(readings: &[(f64, f64)], range: f64) -> Trace {
+        let down = [on(7.6), on(6.1), off(5.9), off(5.2)];
+        let up = [off(6.3), on(6.5)];
+        let read: Vec<(f64, f64)> = readings.iter().flat_map(|reading| [*reading; 3]).collect();
+        let mut trace = staircase(&[&down[..], &read[..], &up[..]].concat());
+        for (index, sample) in trace.samples.iter_mut().enumerate() {
+            let low = (down.len()..down.len() + read.len()).contains(&index);
+            sample.range = Some(Amps(if low { range } else { 1.0 }));
+        }
+        let line = |full_scale: f64| RangeAccuracy {
+            full_scale: Amps(full_scale),
+            accuracy: Accuracy { relative: 1e-3, absolute: full_scale * 1e-4, resolution: 0.0 },
+        };
+        trace.claims.current = vec![line(1e-4), line(1e-2), line(1.0)];
+        trace
+    }
+
+    fn found(trace: &Trace) -> (Option<Quantity>, Vec<FindingCode>) {
+        let profile = profile();
+        let (quantity, findings) = off_current(&Course::new(trace, &profile));
+        (quantity, findings.iter().map(|finding| finding.code).collect())
+    }
+
+    #[test]
+    fn the_smallest_range_counts_with_its_own_claim() {
+        let (quantity, findings) = found(&run(&[(5.5, 2.4e-6), (5.8, 2.5e-6)], 1e-4));
+        let quantity = quantity.expect("an off current");
+        assert!((quantity.value - 2.5e-6).abs() < 1e-12);
+        // 0.1 % of 2.5 uA and 10 nA as a rectangle: 12.5 nA / sqrt(3).
+        assert!((quantity.standard_uncertainty - 12.5e-9 / 3.0_f64.sqrt()).abs() < 1e-11, "{quantity:?}");
+        assert!(findings.is_empty(), "{findings:?}");
+    }
+
+    #[test]
+    fn between_two_plateaus_it_is_interpolated() {
+        let (quantity, _) = found(&run(&[(5.5, 2.2e-6), (5.9, 2.6e-6)], 1e-4));
+        assert!((quantity.expect("an off current").value - 2.5e-6).abs() < 1e-12);
+    }
+
+    #[test]
+    fn a_range_that_cannot_see_it_gives_no_number() {
+        let (quantity, findings) = found(&run(&[(5.5, 2.4e-6), (5.8, 2.5e-6)], 0.1));
+        assert_eq!(quantity, None);
+        assert_eq!(findings, [FindingCode::RangeNotAdequate]);
+    }
+
+    #[test]
+    fn an_overloaded_range_gives_no_number() {
+        let mut trace = run(&[(5.8, 2.5e-6)], 1e-4);
+        for sample in trace.samples.iter_mut().filter(|sample| sample.range == Some(Amps(1e-4))) {
+            sample.current = Current::OVERLOAD;
+        }
+        trace.samples.retain(|sample| sample.set != Volts(5.9) && sample.set != Volts(5.2));
+        assert_eq!(found(&trace), (None, vec![FindingCode::RangeNotAdequate]));
+    }
+
+    #[test]
+    fn a_coarse_range_still_fails_what_is_far_outside() {
+        let (quantity, findings) = found(&run(&[(5.5, 90e-6), (5.8, 100e-6)], 1e-2));
+        assert!(quantity.is_some());
+        assert_eq!(findings, [FindingCode::OffCurrentHigh]);
+    }
+
+    #[test]
+    fn a_current_still_falling_does_not_count() {
+        let mut trace = run(&[(5.8, 2.5e-6)], 1e-4);
+        for (index, sample) in trace.samples.iter_mut().filter(|sample| sample.set == Volts(5.8)).enumerate()
+        {
+            sample.current = Current::Value(Amps(9e-6 - 2e-6 * index as f64));
+        }
+        assert_eq!(found(&trace).0, None);
+    }
+
+    #[test]
+    fn terminals_that_have_not_come_down_do_not_count() {
+        let mut trace = run(&[(5.8, 2.5e-6)], 1e-4);
+        for sample in trace.samples.iter_mut().filter(|sample| sample.set == Volts(5.8)) {
+            sample.sense = Some(Volts(6.0));
+        }
+        assert_eq!(found(&trace).0, None);
+    }
+}

@@ -1,0 +1,132 @@
+//! A trace cut into plateaus: consecutive samples at one set-point, of which the last is the settled one.
+
+use super::state::State;
+use crate::profile::Profile;
+use crate::trace::{Claims, Sample, Trace};
+use crate::units::{Amps, Volts};
+use std::ops::Range;
+use std::time::Duration;
+
+/// Set-points closer than this are the same set-point; no supply of a bench resolves less.
+pub(super) const SAME_SET: f64 = 10e-6;
+
+/// Share of the floor below which a board may be under its lowest operating voltage and read anything: the
+/// pre-check and the discharge at the end lie there.
+const IN_SCOPE: f64 = 0.5;
+
+/// Consecutive samples at one set-point.
+#[derive(Clone, Debug)]
+pub(super) struct Plateau {
+    /// The set-point.
+    pub(super) set: Volts,
+    /// Its samples.
+    pub(super) samples: Range<usize>,
+    /// Time of the last sample at the set-point before: the step came right after it.
+    pub(super) began: Duration,
+    /// Time of its last sample.
+    pub(super) ended: Duration,
+    /// State at the last sample.
+    pub(super) settled: State,
+    /// High enough for a board to work; thresholds are looked for only there.
+    pub(super) in_scope: bool,
+}
+
+/// The samples of a trace with their states and plateaus.
+pub(super) struct Course<'t> {
+    pub(super) trace: &'t Trace,
+    pub(super) profile: &'t Profile,
+    pub(super) states: Vec<State>,
+    pub(super) plateaus: Vec<Plateau>,
+}
+
+impl<'t> Course<'t> {
+    /// Cuts `trace` into plateaus.
+    pub(super) fn new(trace: &'t Trace, profile: &'t Profile) -> Self {
+        let states: Vec<State> =
+            trace.samples.iter().map(|sample| state_of(sample, &trace.claims, profile)).collect();
+        let scope = profile.supply.floor * IN_SCOPE;
+        let mut plateaus: Vec<Plateau> = Vec::new();
+        for (index, sample) in trace.samples.iter().enumerate() {
+            match plateaus.last_mut() {
+                Some(last) if (last.set - sample.set).abs().0 < SAME_SET => {
+                    last.samples.end = index + 1;
+                    last.ended = sample.at;
+                    last.settled = states[index];
+                }
+                last => {
+                    let began = last.map_or(sample.at, |last| last.ended);
+                    plateaus.push(Plateau {
+                        set: sample.set,
+                        samples: index..index + 1,
+                        began,
+                        ended: sample.at,
+                        settled: states[index],
+                        in_scope: sample.set >= scope,
+                    });
+                }
+            }
+        }
+        Self { trace, profile, states, plateaus }
+    }
+
+    /// The settled sample of a plateau.
+    pub(super) fn settled(&self, plateau: usize) -> &'t Sample {
+        &self.trace.samples[self.plateaus[plateau].samples.end - 1]
+    }
+
+    /// Voltage at the board's terminals: sensed, or the set-point less the drop in the leads as far as it is claimed.
+    pub(super) fn terminals(&self, sample: &Sample) -> Volts {
+        terminals(sample, &self.trace.claims)
+    }
+
+    /// Standard uncertainty of a current reading, as claimed; zero without a claim.
+    pub(super) fn current_uncertainty(&self, range: Option<Amps>, reading: Amps) -> Amps {
+        current_uncertainty(&self.trace.claims, range, reading)
+    }
+
+    /// Plateaus on which thresholds may lie, in the order of the run.
+    pub(super) fn in_scope(&self) -> impl Iterator<Item = &Plateau> {
+        self.plateaus.iter().filter(|plateau| plateau.in_scope)
+    }
+
+    /// True when a voltmeter sits at the terminals.
+    pub(super) fn has_voltmeter(&self) -> bool {
+        self.trace.samples.iter().any(|sample| sample.sense.is_some())
+    }
+}
+
+fn state_of(sample: &Sample, claims: &Claims, profile: &Profile) -> State {
+    let reading = sample.current.amps().unwrap_or(Amps::ZERO);
+    let uncertainty = current_uncertainty(claims, sample.range, reading);
+    State::of(sample.current, sample.range, uncertainty, terminals(sample, claims), &profile.load)
+}
+
+fn terminals(sample: &Sample, claims: &Claims) -> Volts {
+    sample.sense.unwrap_or_else(|| {
+        let drop = claims.lead_resistance.zip(sample.current.amps()).map(|(leads, amps)| amps * leads);
+        sample.set - drop.unwrap_or(Volts::ZERO)
+    })
+}
+
+fn current_uncertainty(claims: &Claims, range: Option<Amps>, reading: Amps) -> Amps {
+    let accuracy = claims.current_accuracy(range, reading);
+    Amps(accuracy.map_or(0.0, |accuracy| accuracy.standard_uncertainty(reading.0)))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::fixture::{profile, staircase};
+    use super::*;
+
+    #[test]
+    fn samples_at_one_set_point_are_one_plateau_and_the_last_one_counts() {
+        let trace = staircase(&[(7.6, 0.0), (7.6, 0.138), (7.5, 0.136), (0.3, 0.0), (0.3, 0.0)]);
+        let profile = profile();
+        let course = Course::new(&trace, &profile);
+        let lengths: Vec<usize> = course.plateaus.iter().map(|plateau| plateau.samples.len()).collect();
+        assert_eq!(lengths, [2, 1, 2]);
+        assert_eq!(course.plateaus[0].settled, State::On);
+        assert_eq!(course.plateaus[1].began, course.plateaus[0].ended);
+        assert!(course.plateaus[1].in_scope && !course.plateaus[2].in_scope);
+    }
+}

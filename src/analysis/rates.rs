@@ -1,0 +1,167 @@
+//! Thresholds and delays from ramps of several rates.
+//!
+//! While the set-point keeps moving, a board with delay `d` changes when the voltage has gone `rate * d` past the
+//! threshold. So the voltage at the change against the rate is a straight line: its intercept is the threshold at
+//! rest, its slope the delay, with whatever the readings themselves lag behind.
+
+use super::diagnosis;
+use super::edges::{Direction, Edge, Edges};
+use super::finding::Finding;
+use super::hysteresis::voltage_claim;
+use super::line::{Line, Point};
+use super::plateau::Course;
+use super::quantity::{Contribution, Quantity};
+use super::terminals::Rail;
+use super::{Analysis, trust};
+use crate::profile::{Profile, QuantityName};
+use crate::trace::Trace;
+
+/// Steps before a change over which the rate is taken.
+const RATE_STEPS: usize = 10;
+
+/// Reads the thresholds at rest, the hysteresis and the delays from ramps of one board at two or more rates.
+///
+/// The findings are those of the single ramps that concern the switch or the trust in the numbers.
+pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
+    let mut analysis = Analysis::default();
+    let courses: Vec<Course<'_>> = traces.iter().map(|trace| Course::new(trace, profile)).collect();
+    let found: Vec<Edges> = courses.iter().map(Edges::find).collect();
+    let [down, up] = [Direction::Down, Direction::Up].map(|direction| {
+        let ramps =
+            courses.iter().zip(&found).filter_map(|(course, found)| Ramp::of(course, found, direction));
+        AtRest::fit(&ramps.collect::<Vec<_>>(), direction)
+    });
+    let claim = courses.first().and_then(voltage_claim);
+    let claimed = |value: f64| {
+        claim.map(|(source, accuracy)| Contribution::new(source, accuracy.standard_uncertainty(value)))
+    };
+    let threshold = |name, at_rest: &AtRest| {
+        let parts = at_rest.contribution().into_iter().chain(claimed(at_rest.value));
+        Quantity::new(name, at_rest.value, parts.collect())
+    };
+    let delay = |name, at_rest: &AtRest| {
+        let part = Contribution::new("line through the rates", at_rest.delay_uncertainty);
+        Quantity::new(name, at_rest.delay, vec![part])
+    };
+    analysis.quantities.extend(down.as_ref().map(|down| threshold(QuantityName::Trip, down)));
+    analysis.quantities.extend(up.as_ref().map(|up| threshold(QuantityName::ReEnable, up)));
+    if let (Some(down), Some(up)) = (&down, &up) {
+        let value = up.value - down.value;
+        let parts = down.contribution().into_iter().chain(up.contribution()).chain(claimed(value));
+        analysis.quantities.push(Quantity::new(QuantityName::Hysteresis, value, parts.collect()));
+    }
+    analysis.quantities.extend(down.as_ref().map(|down| delay(QuantityName::DetectDelay, down)));
+    analysis.quantities.extend(up.as_ref().map(|up| delay(QuantityName::ReleaseDelay, up)));
+    for (course, found) in courses.iter().zip(&found) {
+        note(&mut analysis.findings, diagnosis::diagnose(course, found));
+        for finding in trust::accuracy(course) {
+            note(&mut analysis.findings, Some(finding));
+        }
+    }
+    analysis
+}
+
+/// Keeps one finding of a sort, however many ramps show it.
+fn note(findings: &mut Vec<Finding>, finding: Option<Finding>) {
+    if let Some(finding) = finding.filter(|new| findings.iter().all(|old| old.code != new.code)) {
+        findings.push(finding);
+    }
+}
+
+/// The change of one ramp.
+#[derive(Clone, Copy, Debug)]
+struct Ramp {
+    /// Rate at the terminals, V/s, positive in the direction of the change.
+    rate: f64,
+    /// Voltage at the terminals halfway between the last sample before and the first after.
+    volts: f64,
+    /// Its standard uncertainty: the step as a rectangle (JCGM 100:2008, 4.3.7), and the readings' scatter.
+    uncertainty: f64,
+}
+
+impl Ramp {
+    fn of(course: &Course<'_>, found: &Edges, direction: Direction) -> Option<Self> {
+        if !found.reversals.is_empty() {
+            return None;
+        }
+        let edge: &Edge = found.edges.iter().find(|edge| edge.direction == direction)?;
+        let before = edge.seen.checked_sub(1)?;
+        let earlier = edge.seen.checked_sub(RATE_STEPS)?;
+        let samples = &course.trace.samples;
+        let along = |sample: usize| direction.along(samples[sample].set);
+        let time = (samples[edge.seen].at.saturating_sub(samples[earlier].at)).as_secs_f64();
+        let rail = Rail::near(course, &found.stays, direction, samples[edge.seen].set)?;
+        let rate = (along(edge.seen) - along(earlier)) / time * rail.slope();
+        let set = direction.volts((along(before) + along(edge.seen)) / 2.0);
+        let width = (along(edge.seen) - along(before)).abs() * rail.slope();
+        let uncertainty = (width.powi(2) / 12.0 + rail.uncertainty(set).powi(2)).sqrt();
+        (rate.is_finite() && rate > 0.0 && uncertainty > 0.0).then(|| Self {
+            rate,
+            volts: rail.at(set).0,
+            uncertainty,
+        })
+    }
+}
+
+/// A threshold and its delay, from a line through several rates.
+#[derive(Clone, Copy, Debug)]
+struct AtRest {
+    value: f64,
+    uncertainty: f64,
+    delay: f64,
+    delay_uncertainty: f64,
+}
+
+impl AtRest {
+    fn fit(ramps: &[Ramp], direction: Direction) -> Option<Self> {
+        let points =
+            ramps.iter().map(|ramp| Point { x: ramp.rate, y: ramp.volts, weight: ramp.uncertainty.powi(-2) });
+        let line = Line::fit(points)?;
+        let towards = match direction {
+            Direction::Down => -1.0,
+            Direction::Up => 1.0,
+        };
+        Some(Self {
+            value: line.at(0.0),
+            uncertainty: line.uncertainty_at(0.0, 1.0),
+            delay: towards * line.slope,
+            delay_uncertainty: line.slope_uncertainty(1.0),
+        })
+    }
+
+    fn contribution(&self) -> Option<Contribution> {
+        Some(Contribution::new("line through the rates", self.uncertainty))
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::fixture::{off, on, profile, staircase};
+    use super::*;
+
+    /// A ramp down at `rate` V/s that trips at 6 V with `delay` seconds, read every 100 ms.
+    fn ramp(rate: f64, delay: f64) -> Trace {
+        let steps = (1.8 / (rate * 0.1)) as u32;
+        let readings: Vec<(f64, f64)> = (0..steps)
+            .map(|step| 7.6 - rate * 0.1 * f64::from(step))
+            .map(|volts| if volts + rate * delay >= 6.0 { on(volts) } else { off(volts) })
+            .collect();
+        staircase(&readings)
+    }
+
+    #[test]
+    fn two_rates_give_the_threshold_at_rest_and_the_delay() {
+        let analysis = from_rates(&[ramp(0.013, 0.5), ramp(0.11, 0.5)], &profile());
+        for (name, truth) in [(QuantityName::Trip, 6.0), (QuantityName::DetectDelay, 0.5)] {
+            let quantity = analysis.quantities.iter().find(|quantity| quantity.name == name).expect("found");
+            let error = (quantity.value - truth).abs();
+            assert!(error <= 2.0 * quantity.standard_uncertainty, "{quantity:?}");
+        }
+    }
+
+    #[test]
+    fn one_rate_gives_neither() {
+        assert!(from_rates(&[ramp(0.1, 0.5)], &profile()).quantities.is_empty());
+        assert!(from_rates(&[], &profile()).quantities.is_empty());
+    }
+}
