@@ -1,11 +1,13 @@
 //! Integration tests, a module per theme.
 
+mod circuit;
 #[cfg(unix)]
 mod definitions_on_simulation;
 mod log;
 #[cfg(unix)]
 mod outside_parser;
 mod report;
+mod river;
 #[cfg(unix)]
 mod run_over_serial;
 mod run_sample;
@@ -18,5 +20,6 @@ mod session;
 mod sim;
 #[cfg(unix)]
 mod simulated_bench;
+mod staircase;
 #[cfg(unix)]
 mod switching_off;
