@@ -18,14 +18,14 @@ impl SwitchState {
     /// Tells the state from the current the load would draw at this voltage, not from one fixed number.
     ///
     /// On above half of `volts / load`; off below a hundredth of it, or below five standard uncertainties of the
-    /// reading where that is more. An overloaded meter carries at least its range: on. A voltage of zero tells
-    /// nothing.
+    /// reading where that is more, either way: a large current out of the board is no open switch. An overloaded meter
+    /// carries at least its range: on. A voltage of zero tells nothing.
     pub fn of(current: Current, volts: Volts, load: Ohms, uncertainty: Amps) -> Self {
         let Some(current) = current.amps() else { return Self::On };
         let full = volts / load;
         if volts > Volts::ZERO && current > full * ON_SHARE {
             Self::On
-        } else if current < (full * OFF_SHARE).max(uncertainty * OFF_UNCERTAINTIES) {
+        } else if current.abs() < (full * OFF_SHARE).max(uncertainty * OFF_UNCERTAINTIES) {
             Self::Off
         } else {
             Self::Neither
@@ -47,6 +47,7 @@ mod tests {
         assert_eq!(state(0.1), SwitchState::On);
         assert_eq!(state(0.03), SwitchState::Neither);
         assert_eq!(state(2.4e-6), SwitchState::Off);
+        assert_eq!(state(-0.1), SwitchState::Neither);
         assert_eq!(state(f64::NAN), SwitchState::Neither);
         assert_eq!(SwitchState::of(Current::OVERLOAD, Volts(5.5), Ohms(55.0), Amps::ZERO), SwitchState::On);
     }
