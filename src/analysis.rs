@@ -1,6 +1,6 @@
 //! From a trace to quantities with uncertainty, and findings about the board or the bench. Pure.
 //!
-//! A trace is cut into plateaus ([`State`] by the load's current), the changes and stays of the board are collected,
+//! A trace is cut into plateaus ([`crate::trace::SwitchState`] by the load's current), the changes and stays of the board are collected,
 //! and each threshold is read from them at the terminal voltage that stood before the change.
 
 mod diagnosis;
@@ -17,7 +17,6 @@ mod plateau;
 mod quantity;
 mod rates;
 mod settled;
-mod state;
 mod stop;
 mod terminals;
 mod threshold;
@@ -26,7 +25,6 @@ mod trust;
 pub use finding::{About, Finding, FindingCode};
 pub use quantity::{Contribution, Quantity};
 pub use rates::from_rates;
-pub use state::State;
 
 use crate::profile::{Profile, QuantityName};
 use crate::trace::Trace;

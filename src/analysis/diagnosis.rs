@@ -2,13 +2,10 @@
 
 use super::edges::{Direction, Edges};
 use super::finding::{About, Finding, FindingCode};
-use super::plateau::{Course, Plateau};
-use super::state::State;
-use crate::trace::{Sample, Stop};
+use super::plateau::{Course, Plateau, REACHED};
+use crate::trace::{Sample, Stop, SwitchState};
 use crate::units::{Amps, Ohms, Volts};
 
-/// The supply may fall short of a voltage of the profile by this share: its step, its accuracy.
-const REACHED: f64 = 0.005;
 /// Share of the terminal voltage above which the load voltmeter shows a closed switch.
 const LOAD_LIVE: f64 = 0.5;
 
@@ -17,7 +14,7 @@ pub(super) fn diagnose(course: &Course<'_>, found: &Edges) -> Option<Finding> {
     if !found.reversals.is_empty() {
         return Some(chatter(course, found));
     }
-    let ever_on = course.in_scope().any(|plateau| plateau.settled == State::On);
+    let ever_on = course.in_scope().any(|plateau| plateau.settled == SwitchState::On);
     let ever = |direction| found.edges.iter().any(|edge| edge.direction == direction);
     if !ever_on {
         return never_on(course).or_else(|| neither(course)).or_else(|| nothing(course));
@@ -50,7 +47,7 @@ pub(super) fn source_resistance(resistance: Ohms, current: Amps, hysteresis: Vol
 pub(super) fn current_limit(course: &Course<'_>) -> Option<Finding> {
     let limited = |plateau: &&Plateau| {
         let sample = &course.trace.samples[plateau.samples.end - 1];
-        plateau.settled != State::Off && sample.limited == Some(true)
+        plateau.settled != SwitchState::Off && sample.limited == Some(true)
     };
     let first = course.in_scope().find(limited)?;
     let count = course.in_scope().filter(limited).count();
@@ -82,7 +79,7 @@ fn chatter(course: &Course<'_>, found: &Edges) -> Finding {
 fn never_on(course: &Course<'_>) -> Option<Finding> {
     let start = course.profile.supply.start;
     let at_start =
-        |plateau: &&Plateau| plateau.settled == State::Off && plateau.set >= start * (1.0 - REACHED);
+        |plateau: &&Plateau| plateau.settled == SwitchState::Off && plateau.set >= start * (1.0 - REACHED);
     let sample = course
         .in_scope()
         .filter(at_start)
@@ -142,7 +139,7 @@ fn never_re_enables(course: &Course<'_>, found: &Edges) -> Option<Finding> {
     let start = course.profile.supply.start;
     let off_again = course.plateaus[tripped..]
         .iter()
-        .find(|plateau| plateau.settled == State::Off && plateau.set >= start * (1.0 - REACHED))?;
+        .find(|plateau| plateau.settled == SwitchState::Off && plateau.set >= start * (1.0 - REACHED))?;
     let at = course.terminals(last_sample(course, off_again));
     Some(board(
         FindingCode::NeverReEnables,
@@ -155,7 +152,7 @@ fn never_re_enables(course: &Course<'_>, found: &Edges) -> Option<Finding> {
 
 fn neither(course: &Course<'_>) -> Option<Finding> {
     let between = |plateau: &&Plateau| {
-        plateau.settled == State::Neither && last_sample(course, plateau).current.amps().is_some()
+        plateau.settled == SwitchState::Neither && last_sample(course, plateau).current.amps().is_some()
     };
     let first = course.in_scope().find(between)?;
     let count = course.in_scope().filter(between).count();
@@ -189,7 +186,7 @@ fn nothing(course: &Course<'_>) -> Option<Finding> {
 fn lowest_on<'c>(course: &'c Course<'_>) -> Option<&'c Plateau> {
     course
         .in_scope()
-        .filter(|plateau| plateau.settled == State::On)
+        .filter(|plateau| plateau.settled == SwitchState::On)
         .min_by(|a, b| a.set.0.total_cmp(&b.set.0))
 }
 

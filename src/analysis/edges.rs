@@ -4,8 +4,8 @@
 //! bounds it from before, but only if the board was given more time than its delay; so every stay carries its time.
 
 use super::plateau::{Course, SAME_SET};
-use super::state::State;
 use crate::profile::Timing;
+use crate::trace::SwitchState;
 use crate::units::Volts;
 use std::time::Duration;
 
@@ -20,11 +20,11 @@ pub(super) enum Direction {
 
 impl Direction {
     /// The direction in which a board in `state` may change; `None` for neither.
-    pub(super) fn from(state: State) -> Option<Self> {
+    pub(super) fn from(state: SwitchState) -> Option<Self> {
         match state {
-            State::On => Some(Direction::Down),
-            State::Off => Some(Direction::Up),
-            State::Neither => None,
+            SwitchState::On => Some(Direction::Down),
+            SwitchState::Off => Some(Direction::Up),
+            SwitchState::Neither => None,
         }
     }
 

@@ -1,35 +1,13 @@
 //! A profile and short traces for the tests of this room.
 
-use crate::profile::{Limit, Load, Profile, QuantityName, Ramp, Supply, Timing};
+use crate::profile::Profile;
 use crate::trace::{Claims, Current, Ending, OutputState, Sample, Stop, Trace};
-use crate::units::{Amps, Ohms, Volts, Watts};
-use std::collections::BTreeMap;
+use crate::units::{Amps, Volts};
 use std::time::Duration;
 
-/// A logger's cut-off near 6 V with a 55 ohm load.
+/// A logger's cut-off near 6 V with a 55 ohm load: delays of 5 ms and 20 ms.
 pub(crate) fn profile() -> Profile {
-    let limit = |min, max| Limit { at: None, min: Some(min), max: Some(max) };
-    Profile {
-        board: "RN-204".to_owned(),
-        revision: "C".to_owned(),
-        title: "test board".to_owned(),
-        serial_number: regex_lite::Regex::new("RN[0-9]{6}").expect("a pattern"),
-        supply: Supply {
-            start: Volts(7.6),
-            floor: Volts(5.2),
-            maximum: Volts(8.4),
-            current_limit: Amps(0.35),
-        },
-        load: Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0) },
-        timing: Timing { detect_delay: Duration::from_millis(5), release_delay: Duration::from_millis(20) },
-        ramp: Ramp::Staircase { step: Volts(0.01) },
-        limits: BTreeMap::from([
-            (QuantityName::Trip, limit(5.88, 6.12)),
-            (QuantityName::ReEnable, limit(6.24, 6.56)),
-            (QuantityName::Hysteresis, limit(0.3, 0.5)),
-            (QuantityName::OffCurrent, Limit { at: Some(Volts(5.8)), ..limit(1e-6, 4e-6) }),
-        ]),
-    }
+    Profile::read("river-node.toml", include_str!("../../profiles/river-node.toml")).expect("a good profile")
 }
 
 /// A completed trace of `(set-point in V, current in A)` at 100 ms a sample, terminals at the set-point.

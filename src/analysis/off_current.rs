@@ -9,9 +9,10 @@ use super::off_limits::{adequate, coarse_finding, outside_finding};
 use super::plateau::{Course, SAME_SET};
 use super::quantity::{Contribution, Quantity};
 use super::settled::Settled;
-use super::state::State;
 use crate::profile::QuantityName;
+use crate::trace::SwitchState;
 use crate::units::{Amps, Volts};
+use std::ops::Range;
 
 /// Readings within this share of the wanted voltage count for it.
 const NEAR: f64 = 0.02;
@@ -50,7 +51,7 @@ struct Readings {
 impl Readings {
     fn find(course: &Course<'_>) -> Self {
         let mut found = Self { settled: Vec::new(), overloaded: None };
-        let was_on = |samples: &std::ops::Range<usize>| course.states[samples.clone()].contains(&State::On);
+        let was_on = |samples: &Range<usize>| course.states[samples.clone()].contains(&SwitchState::On);
         let Some(armed) =
             course.plateaus.iter().position(|plateau| plateau.in_scope && was_on(&plateau.samples))
         else {
@@ -63,18 +64,25 @@ impl Readings {
             if plateau.set.0 <= SAME_SET || plateau.set.0 > below {
                 continue;
             }
-            let last = course.settled(index);
-            let off_set = (course.terminals(last) - plateau.set).abs().0;
-            if off_set > ARRIVED.0 + ARRIVED.1 * plateau.set.0 {
-                continue;
-            }
-            if last.current.amps().is_none() {
-                found.overloaded = Some((plateau.set, last.range));
-            } else if plateau.settled == State::Off {
-                found.settled.extend(Settled::of(course, index));
+            for samples in course.ranges(index) {
+                found.take(course, samples);
             }
         }
         found
+    }
+
+    /// The readings of one plateau on one range.
+    fn take(&mut self, course: &Course<'_>, samples: Range<usize>) {
+        let Some(last) = course.trace.samples.get(samples.end - 1) else { return };
+        let off_set = (course.terminals(last) - last.set).abs().0;
+        if off_set > ARRIVED.0 + ARRIVED.1 * last.set.0 {
+            return;
+        }
+        if last.current.amps().is_none() {
+            self.overloaded = Some((last.set, last.range));
+        } else if course.states[samples.end - 1] == SwitchState::Off {
+            self.settled.extend(Settled::of(course, samples));
+        }
     }
 
     /// Ranges seen, smallest first; an unknown range comes last.

@@ -8,7 +8,7 @@ use crate::profile::QuantityName;
 
 /// The settled current on the plateau next to `trip`.
 pub(super) fn on_current(course: &Course<'_>, trip: &Threshold) -> Option<Quantity> {
-    let settled = Settled::of(course, trip.stayed)?;
+    let settled = Settled::of(course, course.ranges(trip.stayed).last()?)?;
     let mut parts = Vec::new();
     if let Some(scatter) = settled.scatter() {
         parts.push(Contribution::new("scatter of the readings", scatter));

@@ -1,8 +1,7 @@
 //! A trace cut into plateaus: consecutive samples at one set-point, of which the last is the settled one.
 
-use super::state::State;
 use crate::profile::Profile;
-use crate::trace::{Claims, Sample, Trace};
+use crate::trace::{Claims, Current, Sample, SwitchState, Trace};
 use crate::units::{Amps, Volts};
 use std::ops::Range;
 use std::time::Duration;
@@ -11,8 +10,10 @@ use std::time::Duration;
 pub(super) const SAME_SET: f64 = 10e-6;
 
 /// Share of the floor below which a board may be under its lowest operating voltage and read anything: the
-/// pre-check and the discharge at the end lie there.
-const IN_SCOPE: f64 = 0.5;
+/// discharge at the end lies there.
+const IN_SCOPE: f64 = 0.75;
+/// The supply may fall short of a voltage of the profile by this share: its step, its accuracy.
+pub(super) const REACHED: f64 = 0.005;
 
 /// Consecutive samples at one set-point.
 #[derive(Clone, Debug)]
@@ -25,8 +26,8 @@ pub(super) struct Plateau {
     pub(super) began: Duration,
     /// Time of its last sample.
     pub(super) ended: Duration,
-    /// State at the last sample.
-    pub(super) settled: State,
+    /// SwitchState at the last sample.
+    pub(super) settled: SwitchState,
     /// High enough for a board to work; thresholds are looked for only there.
     pub(super) in_scope: bool,
 }
@@ -35,18 +36,23 @@ pub(super) struct Plateau {
 pub(super) struct Course<'t> {
     pub(super) trace: &'t Trace,
     pub(super) profile: &'t Profile,
-    pub(super) states: Vec<State>,
+    pub(super) states: Vec<SwitchState>,
     pub(super) plateaus: Vec<Plateau>,
 }
 
 impl<'t> Course<'t> {
     /// Cuts `trace` into plateaus.
     pub(super) fn new(trace: &'t Trace, profile: &'t Profile) -> Self {
-        let states: Vec<State> =
+        let states: Vec<SwitchState> =
             trace.samples.iter().map(|sample| state_of(sample, &trace.claims, profile)).collect();
-        let scope = profile.supply.floor * IN_SCOPE;
+        let supply = &profile.supply;
+        // Before the board was armed at the start voltage, the pre-check may have stood as high as the floor.
+        let (mut scope, armed) = (supply.floor * (1.0 + REACHED), supply.start * (1.0 - REACHED));
         let mut plateaus: Vec<Plateau> = Vec::new();
         for (index, sample) in trace.samples.iter().enumerate() {
+            if sample.set >= armed {
+                scope = supply.floor * IN_SCOPE;
+            }
             match plateaus.last_mut() {
                 Some(last) if (last.set - sample.set).abs().0 < SAME_SET => {
                     last.samples.end = index + 1;
@@ -74,6 +80,18 @@ impl<'t> Course<'t> {
         &self.trace.samples[self.plateaus[plateau].samples.end - 1]
     }
 
+    /// The samples of a plateau in groups of one ammeter range each.
+    pub(super) fn ranges(&self, plateau: usize) -> impl Iterator<Item = Range<usize>> {
+        let all = self.plateaus[plateau].samples.clone();
+        let samples = &self.trace.samples[all.clone()];
+        let mut start = all.start;
+        samples.chunk_by(|a, b| a.range == b.range).map(move |group| {
+            let group = start..start + group.len();
+            start = group.end;
+            group
+        })
+    }
+
     /// Voltage at the board's terminals: sensed, or the set-point less the drop in the leads as far as it is claimed.
     pub(super) fn terminals(&self, sample: &Sample) -> Volts {
         terminals(sample, &self.trace.claims)
@@ -95,10 +113,18 @@ impl<'t> Course<'t> {
     }
 }
 
-fn state_of(sample: &Sample, claims: &Claims, profile: &Profile) -> State {
-    let reading = sample.current.amps().unwrap_or(Amps::ZERO);
+fn state_of(sample: &Sample, claims: &Claims, profile: &Profile) -> SwitchState {
+    let (volts, load) = (terminals(sample, claims), profile.load.resistance);
+    let Some(reading) = sample.current.amps() else {
+        // An overload on a range too small to show an open switch with a leak says nothing about the load.
+        let least = Current::Value(sample.range.unwrap_or(volts / load));
+        return match SwitchState::of(least, volts, load, Amps::ZERO) {
+            SwitchState::Off => SwitchState::Neither,
+            SwitchState::On | SwitchState::Neither => SwitchState::On,
+        };
+    };
     let uncertainty = current_uncertainty(claims, sample.range, reading);
-    State::of(sample.current, sample.range, uncertainty, terminals(sample, claims), &profile.load)
+    SwitchState::of(sample.current, volts, load, uncertainty)
 }
 
 fn terminals(sample: &Sample, claims: &Claims) -> Volts {
@@ -125,7 +151,7 @@ mod tests {
         let course = Course::new(&trace, &profile);
         let lengths: Vec<usize> = course.plateaus.iter().map(|plateau| plateau.samples.len()).collect();
         assert_eq!(lengths, [2, 1, 2]);
-        assert_eq!(course.plateaus[0].settled, State::On);
+        assert_eq!(course.plateaus[0].settled, SwitchState::On);
         assert_eq!(course.plateaus[1].began, course.plateaus[0].ended);
         assert!(course.plateaus[1].in_scope && !course.plateaus[2].in_scope);
     }

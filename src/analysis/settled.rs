@@ -1,7 +1,9 @@
-//! The settled readings of a plateau: its last ones, as far back as they agree.
+//! The settled readings at one set-point and range: the last ones, as far back as they agree.
 
 use super::plateau::Course;
+use crate::trace::Sample;
 use crate::units::{Amps, Volts};
+use std::ops::Range;
 
 /// Readings that differ from the last by less than this share of it have settled.
 const AGREES: f64 = 0.02;
@@ -22,33 +24,30 @@ pub(super) struct Settled {
 }
 
 impl Settled {
-    /// The settled readings of `plateau`; `None` when the last is overloaded or does not agree with the one before it
-    /// on the same range.
-    pub(super) fn of(course: &Course<'_>, plateau: usize) -> Option<Self> {
-        let samples = &course.trace.samples[course.plateaus[plateau].samples.clone()];
+    /// The settled readings at the end of `samples`, which share one range; `None` when the last is overloaded or
+    /// does not agree with the one before it.
+    pub(super) fn of(course: &Course<'_>, samples: Range<usize>) -> Option<Self> {
+        let samples = &course.trace.samples[samples];
         let last = samples.last()?;
         let last_amps = last.current.amps()?;
         let tolerance = (last_amps.abs() * AGREES).max(course.current_uncertainty(last.range, last_amps));
-        let same_range = |index: usize| samples[index].range == last.range;
-        let agrees = |index: usize| {
-            same_range(index)
-                && samples[index].current.amps().is_some_and(|amps| (amps - last_amps).abs() <= tolerance)
+        let agrees = |sample: &&Sample| {
+            sample.current.amps().is_some_and(|amps| (amps - last_amps).abs() <= tolerance)
         };
-        let count = (0..samples.len()).rev().take_while(|index| agrees(*index)).count();
-        let alone = samples.len() < 2 || !same_range(samples.len() - 2);
-        if count == 0 || (count == 1 && !alone) {
+        let count = samples.iter().rev().take_while(agrees).count();
+        if count == 0 || (count == 1 && samples.len() > 1) {
             return None;
         }
         let settled = &samples[samples.len() - count..];
-        let mean = |values: &mut dyn Iterator<Item = f64>| values.sum::<f64>() / count as f64;
-        let amps = mean(&mut settled.iter().filter_map(|sample| sample.current.amps()).map(|amps| amps.0));
-        let squares = settled.iter().filter_map(|sample| sample.current.amps());
+        let mean = |value: &dyn Fn(&Sample) -> f64| settled.iter().map(value).sum::<f64>() / count as f64;
+        let amps = |sample: &Sample| sample.current.amps().map_or(f64::NAN, |amps| amps.0);
+        let mean_amps = mean(&amps);
         Some(Self {
-            volts: Volts(mean(&mut settled.iter().map(|sample| course.terminals(sample).0))),
-            amps: Amps(amps),
+            volts: Volts(mean(&|sample| course.terminals(sample).0)),
+            amps: Amps(mean_amps),
             range: last.range,
             count,
-            squares: squares.map(|reading| (reading.0 - amps).powi(2)).sum(),
+            squares: settled.iter().map(|sample| (amps(sample) - mean_amps).powi(2)).sum(),
         })
     }
 
@@ -67,7 +66,7 @@ mod tests {
     fn settled(amps: &[f64]) -> Option<Settled> {
         let readings: Vec<(f64, f64)> = amps.iter().map(|amps| (5.8, *amps)).collect();
         let (trace, profile) = (staircase(&readings), profile());
-        Settled::of(&Course::new(&trace, &profile), 0)
+        Settled::of(&Course::new(&trace, &profile), 0..amps.len())
     }
 
     #[test]
