@@ -17,6 +17,7 @@ mod plateau;
 mod quantity;
 mod rates;
 mod settled;
+mod slow;
 mod stop;
 mod terminals;
 mod threshold;

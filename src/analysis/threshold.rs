@@ -9,6 +9,7 @@
 use super::edges::{Direction, Edge, Edges};
 use super::plateau::{Course, SAME_SET};
 use super::quantity::Contribution;
+use super::slow::Slow;
 use super::terminals::Rail;
 use crate::units::{Ohms, Volts};
 use std::time::Duration;
@@ -55,15 +56,6 @@ pub(super) struct Smear {
     pub(super) steps: usize,
 }
 
-/// At one set-point the board took this long to change, longer than its design allows: between the two times.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub(super) struct Slow {
-    /// Still in the state before.
-    pub(super) longer_than: Duration,
-    /// Seen in the state after.
-    pub(super) at_most: Duration,
-}
-
 /// What a trace says about one threshold.
 #[derive(Clone, Debug, Default)]
 pub(super) struct Search {
@@ -102,37 +94,17 @@ impl Search {
         let edges: Vec<&Edge> = found.edges.iter().filter(|edge| edge.direction == direction).collect();
         let near = edges.last().map_or(course.profile.supply.floor, |edge| course.plateaus[edge.plateau].set);
         let Some(rail) = Rail::near(course, &found.stays, direction, near) else { return Self::default() };
+        // A board that switches by itself has neither a threshold nor a delay to state.
+        if !found.reversals.is_empty() {
+            return Self { rail: Some(rail), ..Self::default() };
+        }
         let declared = direction.delay(&course.profile.timing);
-        let slow = edges
-            .iter()
-            .filter_map(|edge| time_at_rest(course, edge, &rail))
-            .filter(|slow| slow.longer_than > declared)
-            .max_by_key(|slow| slow.at_most);
+        let slow = Slow::find(course, found, direction, &rail);
         let delay = slow.map_or(declared, |slow| slow.at_most.max(declared));
-        // A board that switches by itself has no threshold to state.
-        let threshold = if found.reversals.is_empty() {
-            Stays::sorted(course, found, direction, &rail, delay).threshold(course, &edges, &rail)
-        } else {
-            None
-        };
+        let threshold =
+            Stays::sorted(course, found, direction, &rail, delay).threshold(course, &edges, &rail);
         Self { rail: Some(rail), threshold, slow }
     }
-}
-
-/// For a change while the set-point rested: how long the terminals had been there, at least and at most.
-fn time_at_rest(course: &Course<'_>, edge: &Edge, rail: &Rail) -> Option<Slow> {
-    let last = edge.last_before?;
-    let plateau = &course.plateaus[edge.plateau];
-    let mut before = plateau.samples.start..last + 1;
-    let arrived = before.find(|sample| {
-        let sample = &course.trace.samples[*sample];
-        (course.terminals(sample) - rail.at(sample.set)).abs().0 <= rail.tolerance()
-    })?;
-    let at = |sample: usize| course.trace.samples[sample].at;
-    Some(Slow {
-        longer_than: at(last).saturating_sub(at(arrived)),
-        at_most: at(edge.seen).saturating_sub(plateau.began),
-    })
 }
 
 /// The stays that count as evidence in one direction, by distance along it.
@@ -326,19 +298,6 @@ mod tests {
         let trip = search.threshold.expect("a trip");
         // Beyond is the set-point of the hold; before, what stood for 400 ms and a step: on until 600 ms, begun by 100 ms.
         assert!((trip.value.0 - (6.0 + 6.08) / 2.0).abs() < 1e-9, "{}", trip.value);
-    }
-
-    #[test]
-    fn arrival_polls_before_the_change_are_no_slow_detector() {
-        let mut trace = staircase(&[on(7.6), on(6.1), on(6.0), on(5.9), on(5.9), on(5.9), off(5.9)]);
-        for (sample, volts) in trace.samples.iter_mut().skip(3).zip([5.99, 5.97, 5.95]) {
-            sample.sense = Some(Volts(volts));
-        }
-        let profile = profile();
-        let course = Course::new(&trace, &profile);
-        let search = Search::run(&course, &Edges::find(&course), Direction::Down);
-        assert_eq!(search.slow, None);
-        assert!(search.threshold.is_some());
     }
 
     #[test]

@@ -8,6 +8,7 @@ mod log;
 mod outside_parser;
 mod report;
 mod river;
+mod run;
 #[cfg(unix)]
 mod run_over_serial;
 mod run_sample;

@@ -1,0 +1,277 @@
+//! Whole runs without instruments: the procedure asks, an exact board behind a lead resistance answers, and the analysis
+//! must find that board again.
+//!
+//! The board has delays, hysteresis and an off current; supply and meters are ideal but for a settling time, noise and
+//! a small gain error.
+
+use crate::river;
+use ebbmark::analysis::{Analysis, FindingCode, analyse};
+use ebbmark::procedure::{Ability, Action, Event, Plan, Procedure};
+use ebbmark::profile::QuantityName;
+use ebbmark::trace::{Accuracy, Claims, Current, RangeAccuracy, Sample, Trace};
+use ebbmark::units::{Amps, Volts};
+use ebbmark::verdict::{Outcome, Verdict, judge};
+use rand::{RngExt, SeedableRng};
+use rand_chacha::ChaCha8Rng;
+use std::time::Duration;
+
+const LOAD: f64 = 55.0;
+const SETTLE: Duration = Duration::from_millis(15);
+const READ: Duration = Duration::from_millis(20);
+const VOLTMETER: Accuracy = Accuracy { relative: 1e-4, absolute: 2e-4, resolution: 1e-5 };
+const RANGES: [f64; 3] = [1e-4, 1e-3, 1.0];
+
+/// What a board is and where it stands.
+#[derive(Clone, Debug)]
+struct Board {
+    trip: f64,
+    re_enable: f64,
+    detect: Duration,
+    release: Duration,
+    lead: f64,
+    off_amps: f64,
+    /// Stuck open or closed.
+    stuck: Option<bool>,
+    load_connected: bool,
+}
+
+impl Board {
+    fn good(rng: &mut ChaCha8Rng) -> Self {
+        let trip = rng.random_range(5.9..6.1);
+        Self {
+            trip,
+            re_enable: trip + rng.random_range(0.36..0.44),
+            detect: Duration::from_micros(rng.random_range(100..5000)),
+            release: Duration::from_micros(rng.random_range(1000..20_000)),
+            lead: rng.random_range(0.02..0.6),
+            off_amps: rng.random_range(1.5e-6..3.5e-6),
+            stuck: None,
+            load_connected: true,
+        }
+    }
+}
+
+struct Bench {
+    rng: ChaCha8Rng,
+    board: Board,
+    gain: f64,
+    load_voltmeter: bool,
+    now: Duration,
+    output: bool,
+    set: f64,
+    range: f64,
+    closed: bool,
+    /// Since when the voltage has stood beyond the threshold that is next.
+    beyond: Option<Duration>,
+    samples: Vec<Sample>,
+}
+
+impl Bench {
+    fn new(seed: u64, board: Board) -> Self {
+        let mut rng = ChaCha8Rng::seed_from_u64(seed);
+        let gain = rng.random_range(-VOLTMETER.relative..VOLTMETER.relative);
+        Self {
+            rng,
+            board,
+            gain,
+            load_voltmeter: false,
+            now: Duration::ZERO,
+            output: false,
+            set: 0.0,
+            range: 1.0,
+            closed: false,
+            beyond: None,
+            samples: Vec::new(),
+        }
+    }
+
+    fn terminals(&self) -> f64 {
+        let source = if self.output { self.set } else { 0.0 };
+        if self.closed && self.board.load_connected {
+            source * LOAD / (LOAD + self.board.lead)
+        } else {
+            source
+        }
+    }
+
+    /// Lets the board live until `end`: set-points are steps, so every change falls on a time that is known.
+    fn advance(&mut self, end: Duration) {
+        if let Some(stuck) = self.board.stuck {
+            self.closed = stuck;
+        } else {
+            loop {
+                let volts = self.terminals();
+                let wants = if self.closed { volts < self.board.trip } else { volts >= self.board.re_enable };
+                if !wants {
+                    self.beyond = None;
+                    break;
+                }
+                let delay = if self.closed { self.board.detect } else { self.board.release };
+                let change = *self.beyond.get_or_insert(self.now) + delay;
+                if change > end {
+                    break;
+                }
+                self.now = self.now.max(change);
+                self.closed = !self.closed;
+                self.beyond = None;
+            }
+        }
+        self.now = self.now.max(end);
+    }
+
+    fn pass(&mut self, time: Duration) {
+        self.advance(self.now + time);
+    }
+
+    fn perform(&mut self, action: &Action) -> Event {
+        match action {
+            Action::SetVolts(volts) => {
+                self.pass(SETTLE);
+                self.set = volts.0;
+            }
+            Action::OutputOn => self.output = true,
+            Action::OutputOff => (self.set, self.output) = (0.0, false),
+            Action::Range(amps) => {
+                self.range = RANGES.into_iter().find(|range| *range >= amps.0).unwrap_or(RANGES[2]);
+            }
+            Action::Read => return self.read(),
+            Action::WaitUntil(until) => self.advance(*until),
+            Action::Protect { .. } | Action::LimitCurrent(_) | Action::Finish(_) => {}
+        }
+        self.pass(Duration::from_millis(1));
+        Event::Done
+    }
+
+    fn read(&mut self) -> Event {
+        self.pass(READ / 2);
+        let volts = self.terminals();
+        let loaded = self.closed && self.board.load_connected;
+        let amps = if loaded { volts / LOAD } else { self.board.off_amps * volts / 5.8 };
+        let noise = self.rng.random_range(-2e-4..2e-4);
+        let sample = Sample {
+            at: self.now,
+            set: Volts(self.set),
+            sense: Some(Volts(volts * (1.0 + self.gain) + noise)),
+            current: if amps > self.range * 1.1 { Current::OVERLOAD } else { Current::Value(Amps(amps)) },
+            load: self.load_voltmeter.then_some(Volts(if self.closed { volts } else { 0.0 })),
+            range: Some(Amps(self.range)),
+            limited: Some(false),
+        };
+        self.pass(READ / 2);
+        self.samples.push(sample);
+        Event::Reading(sample)
+    }
+
+    fn run(mut self) -> (Analysis, Verdict) {
+        let profile = river::profile();
+        let mut procedure = Procedure::new(Plan::new(&profile, &ability()));
+        let mut event = Event::Start;
+        let ending = loop {
+            match procedure.handle(self.now, event) {
+                Action::Finish(ending) => break ending,
+                action => event = self.perform(&action),
+            }
+        };
+        let current = RANGES.map(|range| RangeAccuracy {
+            full_scale: Amps(range),
+            accuracy: Accuracy { relative: 1e-3, absolute: range * 1e-4, resolution: range * 1e-6 },
+        });
+        let claims =
+            Claims { set: None, sense: Some(VOLTMETER), current: current.to_vec(), lead_resistance: None };
+        let trace = Trace { samples: self.samples, settings: Vec::new(), claims, ending };
+        let analysis = analyse(&trace, &profile);
+        let verdict = judge(&analysis, &profile, &trace.ending);
+        (analysis, verdict)
+    }
+}
+
+fn ability() -> Ability {
+    Ability {
+        voltmeter: true,
+        load_voltmeter: false,
+        ranges: RANGES.map(Amps).to_vec(),
+        range_settle: Duration::from_millis(20),
+        max_voltage: Volts(32.0),
+        max_current: Amps(3.0),
+        min_current: Amps(1e-3),
+        set_step: Volts(1e-3),
+        settle: SETTLE,
+        read_time: READ,
+        arrival_tolerance: Volts(0.02),
+        off_current_uncertainty: Amps(2e-8),
+    }
+}
+
+fn inside(analysis: &Analysis, name: QuantityName, truth: f64) -> bool {
+    let found = analysis.quantities.iter().find(|quantity| quantity.name == name);
+    found.is_some_and(|found| (found.value - truth).abs() <= 2.0 * found.standard_uncertainty)
+}
+
+fn found(analysis: &Analysis, code: FindingCode) -> bool {
+    analysis.findings.iter().any(|finding| finding.code == code)
+}
+
+#[test]
+fn good_boards_pass_with_the_truth_inside_and_nothing_to_remark() {
+    let seeds = 200;
+    let mut covered = [0_u64; 4];
+    for seed in 0..seeds {
+        let board = Board::good(&mut ChaCha8Rng::seed_from_u64(seed));
+        let (analysis, verdict) = Bench::new(seed, board.clone()).run();
+        assert_eq!(verdict.outcome, Outcome::Pass, "seed {seed}: {board:?} {verdict:#?}");
+        assert!(analysis.findings.is_empty(), "seed {seed}: {:?}", analysis.findings);
+        let truths = [
+            (QuantityName::Trip, board.trip),
+            (QuantityName::ReEnable, board.re_enable),
+            (QuantityName::Hysteresis, board.re_enable - board.trip),
+            (QuantityName::OffCurrent, board.off_amps),
+        ];
+        for ((name, truth), covered) in truths.into_iter().zip(&mut covered) {
+            *covered += u64::from(inside(&analysis, name, truth));
+        }
+    }
+    assert!(covered.iter().all(|count| count * 20 >= seeds * 19), "inside of {seeds}: {covered:?}");
+}
+
+#[test]
+fn slow_boards_are_named_and_their_thresholds_still_lie_inside() {
+    for seed in 0..100 {
+        let mut rng = ChaCha8Rng::seed_from_u64(seed);
+        let mut board = Board::good(&mut rng);
+        board.detect = Duration::from_millis(rng.random_range(60..160));
+        let (analysis, _) = Bench::new(seed, board.clone()).run();
+        assert!(found(&analysis, FindingCode::DwellShorterThanDelay), "seed {seed}: {board:?} {analysis:#?}");
+        assert!(inside(&analysis, QuantityName::Trip, board.trip), "seed {seed}: {board:?} {analysis:#?}");
+        assert!(inside(&analysis, QuantityName::ReEnable, board.re_enable), "seed {seed}: {analysis:#?}");
+    }
+}
+
+#[test]
+fn boards_and_benches_that_cannot_be_measured_are_told_apart() {
+    let outcome = |change: fn(&mut Bench)| {
+        let mut bench = Bench::new(3, Board::good(&mut ChaCha8Rng::seed_from_u64(3)));
+        change(&mut bench);
+        let (analysis, verdict) = bench.run();
+        (verdict.outcome, analysis.findings.first().map(|finding| finding.code))
+    };
+    let stuck_closed: fn(&mut Bench) = |bench| bench.board.stuck = Some(true);
+    let stuck_open: fn(&mut Bench) = |bench| {
+        (bench.board.stuck, bench.load_voltmeter) = (Some(false), true);
+    };
+    let stuck_open_unseen: fn(&mut Bench) = |bench| bench.board.stuck = Some(false);
+    let no_load: fn(&mut Bench) = |bench| {
+        (bench.board.load_connected, bench.load_voltmeter) = (false, true);
+    };
+    let latched: fn(&mut Bench) = |bench| {
+        (bench.board.re_enable, bench.closed, bench.output, bench.set) = (7.59, false, false, 0.0);
+    };
+    let restless: fn(&mut Bench) = |bench| bench.board.lead = 6.0;
+    let leaking: fn(&mut Bench) = |bench| bench.board.off_amps = 29e-6;
+    assert_eq!(outcome(stuck_closed), (Outcome::Fail, Some(FindingCode::NeverTrips)));
+    assert_eq!(outcome(stuck_open), (Outcome::Fail, Some(FindingCode::NeverOn)));
+    assert_eq!(outcome(stuck_open_unseen), (Outcome::Invalid, Some(FindingCode::NoCurrent)));
+    assert_eq!(outcome(no_load), (Outcome::Invalid, Some(FindingCode::NoLoad)));
+    assert_eq!(outcome(latched).0, Outcome::Fail);
+    assert_eq!(outcome(restless), (Outcome::Invalid, Some(FindingCode::Chatter)));
+    assert_eq!(outcome(leaking), (Outcome::Fail, Some(FindingCode::OffCurrentHigh)));
+}
