@@ -33,7 +33,26 @@ impl Slow {
         edges
             .filter_map(|edge| Self::at_rest(course, found, edge, rail))
             .filter(|slow| slow.longer_than > declared)
+            .filter(|slow| !slow.refuted(course, found, direction))
             .max_by_key(|slow| slow.at_most)
+    }
+
+    /// True when no single delay explains what all passes show: noise at the threshold moved it.
+    ///
+    /// A board that needs longer than `longer_than` was beyond its threshold that long before each of its changes was
+    /// seen. And where it stayed for `at_most` or longer, it was not beyond. Both at one set-point is within the noise.
+    fn refuted(&self, course: &Course<'_>, found: &Edges, direction: Direction) -> bool {
+        let along = |plateau: usize| direction.along(course.plateaus[plateau].set);
+        let beyond = found.edges.iter().filter(|edge| edge.direction == direction).map(|edge| {
+            let crossed = course.trace.samples[edge.seen].at.saturating_sub(self.longer_than);
+            let before = course.plateaus[..edge.plateau].partition_point(|plateau| plateau.ended < crossed);
+            along(before)
+        });
+        let stayed =
+            found.stays.iter().filter(|stay| stay.direction == direction && stay.time >= self.at_most);
+        let farthest = stayed.map(|stay| along(stay.plateau)).max_by(f64::total_cmp);
+        let nearest = beyond.min_by(f64::total_cmp);
+        farthest.zip(nearest).is_some_and(|(stayed, beyond)| stayed > beyond + SAME_SET)
     }
 
     /// For a change while the set-point rested: how long that took, at least and at most.
@@ -90,6 +109,15 @@ mod tests {
         let first = [on(7.6), on(6.04), on(6.02), on(6.0), off(5.98), off(5.0), on(6.5), on(7.6)];
         let held = [on(6.0), off(6.0)];
         assert_eq!(slow(&staircase(&[&first[..], &held[..]].concat())), Some((100, 200)));
+    }
+
+    #[test]
+    fn a_long_stay_beyond_what_it_once_changed_at_is_noise_and_no_delay() {
+        let changed =
+            [on(7.6), on(6.2), on(6.1), on(6.0), on(6.0), on(6.0), off(6.0), off(5.0), on(6.5), on(7.6)];
+        assert!(slow(&staircase(&changed)).is_some());
+        let stayed = [on(5.98); 8];
+        assert_eq!(slow(&staircase(&[&changed[..], &stayed[..]].concat())), None);
     }
 
     #[test]

@@ -1,7 +1,7 @@
 //! Whole runs without instruments: the procedure asks, an exact board behind a lead resistance answers, and the analysis
 //! must find that board again.
 //!
-//! The board has delays, hysteresis and an off current; supply and meters are ideal but for a settling time, noise and
+//! The board has delays, hysteresis, a little noise and an off current; supply and meters are ideal but for a settling time, noise and
 //! a small gain error.
 
 use crate::river;
@@ -15,6 +15,8 @@ use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 use std::time::Duration;
 
+/// Noise at the detector's input each time the board is looked at, V.
+const DETECTOR_NOISE: f64 = 1e-4;
 const LOAD: f64 = 55.0;
 const SETTLE: Duration = Duration::from_millis(15);
 const READ: Duration = Duration::from_millis(20);
@@ -94,13 +96,13 @@ impl Bench {
         }
     }
 
-    /// Lets the board live until `end`: set-points are steps, so every change falls on a time that is known.
+    /// Lets the board live until `end`: set-points are steps, so a change comes one delay after its cause.
     fn advance(&mut self, end: Duration) {
         if let Some(stuck) = self.board.stuck {
             self.closed = stuck;
         } else {
             loop {
-                let volts = self.terminals();
+                let volts = self.terminals() + DETECTOR_NOISE * self.deviate();
                 let wants = if self.closed { volts < self.board.trip } else { volts >= self.board.re_enable };
                 if !wants {
                     self.beyond = None;
@@ -117,6 +119,11 @@ impl Bench {
             }
         }
         self.now = self.now.max(end);
+    }
+
+    /// A value of a distribution close to the standard normal: the sum of twelve rectangles.
+    fn deviate(&mut self) -> f64 {
+        (0..12).map(|_| self.rng.random_range(-0.5..0.5)).sum()
     }
 
     fn pass(&mut self, time: Duration) {
