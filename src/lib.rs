@@ -12,11 +12,13 @@
 //! - [`sim`]: a board's physics on a bench, in simulated time
 //! - [`record`]: what is kept of a run, and the append-only log that keeps it
 //! - [`report`]: what a run says, for people and for programs
+//! - [`cli`]: the commands
 //!
 //! [`units`] and [`document`] serve them all: quantities with units, and files read with every problem at its place.
 
 pub mod analysis;
 pub mod bench;
+pub mod cli;
 pub mod document;
 pub mod instrument;
 pub mod procedure;

@@ -1,3 +1,5 @@
 //! Parses the command line, runs one command, maps the result to an exit code.
 
-fn main() {}
+fn main() -> std::process::ExitCode {
+    ebbmark::cli::run(std::env::args_os())
+}

@@ -1,8 +1,8 @@
 //! What to do next: one answer in, one action out. Pure: no clock, no port, no file.
 //!
 //! [`Procedure::handle`] takes what came of the last action and the time since the start of the run, and returns the
-//! next action. Inside, a run is told from top to bottom ([`script`]): prepare, pre-check, arm, survey, off current,
-//! narrow, confirm. Whatever happens on the way, the script's only way out is [`switch_off`].
+//! next action. Inside, a run is told from top to bottom (`script`): prepare, pre-check, arm, survey, off current,
+//! narrow, confirm. Whatever happens on the way, the script's only way out is `switch_off`.
 
 mod ability;
 mod action;

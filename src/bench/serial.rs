@@ -16,6 +16,7 @@ use crate::bench::clock::Clock;
 use crate::instrument::definition::{Ammeter, Source, Timing};
 use crate::instrument::error::InstrumentError;
 use crate::instrument::port::{Answer, Instrument};
+use crate::instrument::scpi::Identity;
 use crate::instrument::session::Session;
 use crate::procedure::{Action, Event};
 use crate::trace::BenchFault;
@@ -53,6 +54,7 @@ struct Playing<Part> {
 /// An instrument and its share of each reading.
 struct Asked {
     instrument: Arc<Instrument>,
+    identity: Identity,
     readings: Arc<[Reading]>,
 }
 
@@ -89,6 +91,11 @@ impl Bench for SerialBench {
 }
 
 impl SerialBench {
+    /// Who the instruments say they are, in the order of the bench file.
+    pub fn identities(&self) -> impl Iterator<Item = &Identity> {
+        self.instruments.iter().map(|asked| &asked.identity)
+    }
+
     /// Begins the run of one board: time starts at zero, every link is proven in step, nothing may have restarted or
     /// wait in an error queue, and the ammeter stands on its largest range.
     ///

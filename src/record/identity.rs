@@ -116,10 +116,12 @@ pub struct Instrument {
     pub maker: String,
     /// Second field.
     pub model: String,
-    /// Third field: its serial number.
-    pub serial_number: String,
-    /// Fourth field.
-    pub firmware: String,
+    /// Third field: its serial number, where it has one.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub serial_number: Option<String>,
+    /// Fourth field, where it says one.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub firmware: Option<String>,
     /// The port it is on.
     pub port: String,
     /// Day until which its calibration holds, where the bench file says so.

@@ -20,6 +20,11 @@ impl Moment {
         Self { utc, local: utc.display_with_offset(zone.to_offset(utc)).to_string() }
     }
 
+    /// The day in UTC.
+    pub fn date(&self) -> jiff::civil::Date {
+        TimeZone::UTC.to_datetime(self.utc).date()
+    }
+
     /// Year and month in UTC, as in the names of the log's files: `2026-10`.
     pub fn month(&self) -> String {
         self.utc.strftime("%Y-%m").to_string()

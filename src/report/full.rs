@@ -50,14 +50,19 @@ fn instruments(instruments: &[Instrument]) -> String {
     rows.extend(instruments.iter().map(|instrument| {
         vec![
             format!("{} {}", instrument.maker, instrument.model),
-            instrument.serial_number.clone(),
-            instrument.firmware.clone(),
+            known(instrument.serial_number.as_ref()),
+            known(instrument.firmware.as_ref()),
             instrument.port.clone(),
-            instrument.calibration_due.map_or_else(|| "-".to_owned(), |day| day.to_string()),
+            known(instrument.calibration_due.as_ref()),
             instrument.roles.join(", "),
         ]
     }));
     aligned(&rows).join("\n") + "\n"
+}
+
+/// A dash for what nobody said.
+fn known(field: Option<&impl ToString>) -> String {
+    field.map_or_else(|| "-".to_owned(), ToString::to_string)
 }
 
 /// What every uncertainty is made of, as standard uncertainties.

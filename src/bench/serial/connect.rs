@@ -7,6 +7,7 @@ use crate::instrument::bench_file::{BenchFile, BenchInstrument, Identity, RoleMi
 use crate::instrument::definition::{Definition, Role};
 use crate::instrument::error::{InstrumentError, Place};
 use crate::instrument::port::{Answer, Instrument};
+use crate::instrument::scpi;
 use crate::instrument::serial_port;
 use crate::instrument::session::{Greeting, Session, Setting, SwitchOff};
 use crate::units::Volts;
@@ -49,12 +50,12 @@ pub async fn connect(bench: &BenchFile, maximum: Volts, clock: Clock) -> Result<
                 for error in greeting.old_errors {
                     tracing::warn!("{}: left from before: {error}", instrument.place());
                 }
-                ready.push((seat, Arc::new(instrument)));
+                ready.push((seat, Arc::new(instrument), greeting.identity));
             }
             Err(error) => errors.push(error),
         }
     }
-    if errors.is_empty() { seated(&ready, clock) } else { Err(ConnectError::Instruments { errors }) }
+    if errors.is_empty() { seated(ready, clock) } else { Err(ConnectError::Instruments { errors }) }
 }
 
 /// An instrument that is being made ready, and what will come of it.
@@ -135,13 +136,17 @@ impl Preparation {
     }
 }
 
-fn seated(ready: &[(&BenchInstrument, Arc<Instrument>)], clock: Clock) -> Result<SerialBench, ConnectError> {
-    let source = playing(ready, Role::Source, |definition| definition.source.clone())?;
-    let ammeter = playing(ready, Role::Ammeter, |definition| definition.ammeter.clone())?;
+/// An instrument that is ready, where it sits on the bench, and who it says it is.
+type Ready<'b> = (&'b BenchInstrument, Arc<Instrument>, scpi::Identity);
+
+fn seated(ready: Vec<Ready<'_>>, clock: Clock) -> Result<SerialBench, ConnectError> {
+    let source = playing(&ready, Role::Source, |definition| definition.source.clone())?;
+    let ammeter = playing(&ready, Role::Ammeter, |definition| definition.ammeter.clone())?;
     let instruments = ready
-        .iter()
-        .map(|(seat, instrument)| Asked {
-            instrument: Arc::clone(instrument),
+        .into_iter()
+        .map(|(seat, instrument, identity)| Asked {
+            instrument,
+            identity,
             readings: readings(&seat.definition, &seat.roles),
         })
         .collect();
@@ -150,14 +155,14 @@ fn seated(ready: &[(&BenchInstrument, Arc<Instrument>)], clock: Clock) -> Result
 }
 
 fn playing<Part>(
-    ready: &[(&BenchInstrument, Arc<Instrument>)],
+    ready: &[Ready<'_>],
     role: Role,
     part: impl Fn(&Definition) -> Option<Part>,
 ) -> Result<Playing<Part>, RoleMissing> {
     ready
         .iter()
-        .filter(|(seat, _)| seat.roles.contains(&role))
-        .find_map(|(seat, instrument)| {
+        .filter(|(seat, ..)| seat.roles.contains(&role))
+        .find_map(|(seat, instrument, _)| {
             let timing = seat.definition.timing;
             Some(Playing { instrument: Arc::clone(instrument), part: part(&seat.definition)?, timing })
         })

@@ -1,0 +1,105 @@
+//! The command line: one file a command, each arguments and the glue to the rooms.
+
+mod analyse;
+mod bench;
+mod demo;
+mod exit;
+mod files;
+mod live;
+mod log;
+mod one_run;
+mod show;
+mod sim;
+mod simulated;
+mod stop;
+mod test;
+mod who;
+
+pub use exit::{Exit, Failure};
+
+use clap::{Parser, Subcommand, ValueEnum};
+use std::process::ExitCode;
+
+/// Tests boards with an undervoltage cut-off: drives a programmable supply down and back up over serial SCPI, finds
+/// trip, re-enable, hysteresis and off current with their uncertainty, judges them, and keeps the record.
+#[derive(Debug, Parser)]
+#[command(version, max_term_width = 100, after_help = EXIT_CODES)]
+pub struct Cli {
+    /// Write what passes over the wire to standard error; twice for every byte.
+    #[arg(short, long, global = true, action = clap::ArgAction::Count)]
+    verbose: u8,
+    #[command(subcommand)]
+    command: Command,
+}
+
+#[derive(Debug, Subcommand)]
+enum Command {
+    /// Watch two simulated boards being tested over real serial ports.
+    Demo(demo::Arguments),
+    /// Test one board.
+    Test(test::Arguments),
+    /// Judge a trace (CSV) made elsewhere.
+    Analyse(analyse::Arguments),
+    /// Look at a bench: check its instruments, list what is known.
+    Bench(bench::Arguments),
+    /// Start a simulated bench and keep it up for other programs.
+    Sim(sim::Arguments),
+    /// Read the log of tested boards.
+    Log(log::Arguments),
+}
+
+/// How a result is written to standard output.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, ValueEnum)]
+enum Format {
+    /// For people.
+    #[default]
+    Text,
+    /// For programs: one JSON object.
+    Json,
+}
+
+const EXIT_CODES: &str = "\
+Exit codes:
+  0  pass, or conditional pass
+  1  fail, or conditional fail
+  2  usage, profile, definition or file error
+  3  invalid: the bench could not judge the board
+  4  aborted
+  5  the output may still be on";
+
+/// Runs the command of `arguments` and returns the exit code of the process.
+pub fn run<T: Into<std::ffi::OsString> + Clone>(arguments: impl IntoIterator<Item = T>) -> ExitCode {
+    let cli = match Cli::try_parse_from(arguments) {
+        Ok(cli) => cli,
+        Err(error) => {
+            // clap prints help to standard output and mistakes to standard error; a closed pipe is nobody's fault.
+            let _ = error.print();
+            return if error.use_stderr() { Exit::Usage } else { Exit::Pass }.into();
+        }
+    };
+    start_diagnostics(cli.verbose);
+    let result = match cli.command {
+        Command::Demo(arguments) => arguments.run(),
+        Command::Test(arguments) => arguments.run(),
+        Command::Analyse(arguments) => arguments.run(),
+        Command::Bench(arguments) => arguments.run(),
+        Command::Sim(arguments) => arguments.run(),
+        Command::Log(arguments) => arguments.run(),
+    };
+    match result {
+        Ok(exit) => exit.into(),
+        Err(failure) => {
+            anstream::eprintln!("error: {:#}", failure.error);
+            failure.exit.into()
+        }
+    }
+}
+
+fn start_diagnostics(verbose: u8) {
+    let level = match verbose {
+        0 => tracing::Level::WARN,
+        1 => tracing::Level::DEBUG,
+        _ => tracing::Level::TRACE,
+    };
+    tracing_subscriber::fmt().with_max_level(level).with_writer(std::io::stderr).without_time().init();
+}

@@ -1,0 +1,61 @@
+//! What is simulated, as the command line says it.
+
+use super::Failure;
+use crate::bench::clock::Clock;
+use crate::instrument::bench_file::BenchFile;
+use crate::instrument::library;
+use crate::profile::Profile;
+use crate::record::Simulated;
+use crate::sim::bench::{Arrangement, Options, SimulatedBench};
+use crate::sim::{Condition, Setup};
+use anyhow::Context;
+use clap::Args;
+use sha2::{Digest, Sha256};
+use std::path::Path;
+
+#[derive(Clone, Debug, Args)]
+pub(super) struct Simulation {
+    /// Condition of the simulated board; `ebbmark sim --help` lists them.
+    #[arg(long, value_name = "NAME", default_value = "good", help_heading = "Simulated bench")]
+    pub(super) condition: Condition,
+    /// Seed of the simulated board and its instruments; taken from the serial number when left out.
+    #[arg(long, help_heading = "Simulated bench")]
+    pub(super) seed: Option<u64>,
+    /// Let simulated time run so many times faster than the clock on the wall.
+    #[arg(long, default_value_t = 1.0, value_name = "FACTOR", help_heading = "Simulated bench")]
+    pub(super) speed: f64,
+}
+
+impl Simulation {
+    /// The condition and the seed for the board called `serial_number`: the same board each time it is tested.
+    pub(super) fn of_board(&self, serial_number: &str) -> Simulated {
+        let seed = self.seed.unwrap_or_else(|| {
+            let digest = Sha256::digest(serial_number.as_bytes());
+            digest.iter().take(4).fold(0, |seed, byte| seed << 8 | u64::from(*byte))
+        });
+        Simulated { condition: self.condition.key().to_owned(), seed }
+    }
+
+    /// Starts instruments on pseudo-terminals, with a board drawn from the seed between them.
+    pub(super) fn start(
+        &self,
+        profile: &Profile,
+        simulated: &Simulated,
+        arrangement: Arrangement,
+    ) -> Result<SimulatedBench, Failure> {
+        let setup = Setup::new(profile, self.condition, simulated.seed);
+        let options = Options { arrangement, clock: Clock::faster(self.speed), ..Options::default() };
+        Ok(SimulatedBench::start(&setup, options).context("the simulated bench cannot be started")?)
+    }
+
+    /// The clock of a simulated bench, for the program's side.
+    pub(super) fn clock(&self) -> Clock {
+        Clock::faster(self.speed)
+    }
+}
+
+/// The bench file of a simulated bench, read like any other.
+pub(super) fn bench_file(bench: &SimulatedBench) -> Result<BenchFile, Failure> {
+    let find = |name: &str| library::find(name, Path::new("."));
+    Ok(BenchFile::read("simulated bench", &bench.bench_file(), &find)?)
+}

@@ -1,0 +1,155 @@
+//! `test`: one board on a bench, from scan to kept record.
+
+use super::one_run::{Kept, Order};
+use super::show::print_result;
+use super::simulated::{Simulation, bench_file};
+use super::{Exit, Failure, Format, files};
+use crate::bench::clock::Clock;
+use crate::profile::Profile;
+use crate::record::BoardUnderTest;
+use crate::report::CAUTIONS;
+use crate::sim::bench::Arrangement;
+use clap::Args;
+use std::io::IsTerminal;
+use std::path::{Path, PathBuf};
+
+#[derive(Debug, Args)]
+#[command(after_help = "\
+Example:
+  ebbmark test profiles/river-node.toml --bench sim --serial-number RN000123
+
+The exit code is the outcome: 0 pass, 1 fail, 3 invalid, 4 aborted, 5 the output may still be on.")]
+pub(super) struct Arguments {
+    /// Profile of the board.
+    profile: PathBuf,
+    /// Bench file, or `sim` for a simulated bench, or `sim-smu` for one with a source-measure unit.
+    #[arg(long, value_name = "FILE|sim|sim-smu")]
+    bench: PathBuf,
+    /// Serial number, as scanned.
+    #[arg(long, value_name = "NUMBER")]
+    serial_number: String,
+    /// How the result is written to standard output.
+    #[arg(long, value_enum, default_value_t)]
+    format: Format,
+    #[command(flatten)]
+    keeping: Keeping,
+    #[command(flatten)]
+    simulation: Simulation,
+}
+
+/// What goes into the record, and where that goes.
+#[derive(Debug, Args)]
+pub(super) struct Keeping {
+    /// Folder of the logs.
+    #[arg(long, value_name = "FOLDER", default_value = "logs")]
+    pub(super) logs: PathBuf,
+    /// Where the bench stands; the name of the bench when left out.
+    #[arg(long, value_name = "NAME")]
+    pub(super) station: Option<String>,
+    /// Who tests.
+    #[arg(long, value_name = "NAME")]
+    pub(super) operator: Option<String>,
+    /// Batch the board came from.
+    #[arg(long, value_name = "NAME")]
+    pub(super) batch: Option<String>,
+    /// Order it is built under.
+    #[arg(long, value_name = "NAME")]
+    pub(super) work_order: Option<String>,
+}
+
+impl Arguments {
+    pub(super) fn run(self) -> Result<Exit, Failure> {
+        let profile = files::profile(&self.profile)?;
+        let path = self.profile.display().to_string();
+        let kept = match arrangement(&self.bench) {
+            Some(arrangement) => self.on_simulation(&profile, path, arrangement)?,
+            None => self.on_bench(&profile, path)?,
+        };
+        print_result(&kept, self.format)
+    }
+
+    fn on_bench(&self, profile: &Profile, profile_path: String) -> Result<Kept, Failure> {
+        let bench = files::bench(&self.bench)?;
+        if self.format == Format::Text && std::io::stderr().is_terminal() {
+            anstream::eprintln!("{CAUTIONS}");
+        }
+        Order {
+            profile,
+            profile_path,
+            bench: &bench,
+            clock: Clock::real(),
+            simulated: None,
+            board: self.keeping.board(profile, &self.serial_number)?,
+            operator: self.keeping.operator.clone(),
+            logs: self.keeping.logs.clone(),
+            station: self.keeping.station.clone().unwrap_or_else(|| bench.name.clone()),
+        }
+        .carry_out()
+    }
+
+    fn on_simulation(
+        &self,
+        profile: &Profile,
+        profile_path: String,
+        arrangement: Arrangement,
+    ) -> Result<Kept, Failure> {
+        let board = self.keeping.board(profile, &self.serial_number)?;
+        on_simulation(&self.simulation, profile, profile_path, arrangement, board, &self.keeping)
+    }
+}
+
+/// Tests one simulated board over pseudo-terminals.
+pub(super) fn on_simulation(
+    simulation: &Simulation,
+    profile: &Profile,
+    profile_path: String,
+    arrangement: Arrangement,
+    board: BoardUnderTest,
+    keeping: &Keeping,
+) -> Result<Kept, Failure> {
+    let simulated = simulation.of_board(&board.serial_number);
+    let instruments = simulation.start(profile, &simulated, arrangement)?;
+    let bench = bench_file(&instruments)?;
+    Order {
+        profile,
+        profile_path,
+        bench: &bench,
+        clock: simulation.clock(),
+        simulated: Some(simulated),
+        board,
+        operator: keeping.operator.clone(),
+        logs: keeping.logs.clone(),
+        station: keeping.station.clone().unwrap_or_else(|| "simulated".to_owned()),
+    }
+    .carry_out()
+}
+
+impl Keeping {
+    /// The board's identity; its serial number must be one of the profile's.
+    pub(super) fn board(&self, profile: &Profile, serial_number: &str) -> Result<BoardUnderTest, Failure> {
+        if !profile.matches(serial_number) {
+            let error = anyhow::anyhow!(
+                "serial number \"{serial_number}\" is none of board {}: wanted one like {}; \
+                 scan again, or choose the profile of this board",
+                profile.board,
+                profile.serial_number
+            );
+            return Err(error.into());
+        }
+        Ok(BoardUnderTest {
+            board: profile.board.clone(),
+            revision: profile.revision.clone(),
+            serial_number: serial_number.to_owned(),
+            batch: self.batch.clone(),
+            work_order: self.work_order.clone(),
+        })
+    }
+}
+
+fn arrangement(bench: &Path) -> Option<Arrangement> {
+    match bench.to_str() {
+        Some("sim") => Some(Arrangement::Separate),
+        Some("sim-smu") => Some(Arrangement::SourceMeasureUnit),
+        _ => None,
+    }
+}
