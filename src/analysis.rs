@@ -52,22 +52,19 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     let up = Search::run(&course, &found, Direction::Up);
     let (off_current, off_findings) = off_current::off_current(&course);
 
+    let restless = source_resistance(&course, &down, &up);
+
     let mut quantities = Vec::new();
-    if let Some(trip) = &down.threshold {
-        quantities.push(hysteresis::threshold_quantity(&course, QuantityName::Trip, trip));
+    // What a board seems to do that cannot rest on this source is not its own.
+    if restless.is_none() {
+        quantities.extend(thresholds(&course, &down, &up));
     }
-    if let Some(re_enable) = &up.threshold {
-        quantities.push(hysteresis::threshold_quantity(&course, QuantityName::ReEnable, re_enable));
-    }
-    if let (Some(trip), Some(re_enable)) = (&down.threshold, &up.threshold) {
-        quantities.push(hysteresis::hysteresis(&course, trip, re_enable));
-    }
-    quantities.extend(down.threshold.as_ref().and_then(|trip| on_current::on_current(&course, trip)));
     quantities.extend(off_current);
 
     let mut findings = stop::stop_findings(&trace.ending);
-    findings.extend(diagnosis::diagnose(&course, &found));
-    findings.extend(source_resistance(&course, &down, &up, &quantities));
+    let diagnosis = diagnosis::diagnose(&course, &found);
+    findings.extend(diagnosis.filter(|new| findings.iter().all(|old| old.code != new.code)));
+    findings.extend(restless);
     findings.extend(off_findings);
     findings.extend(diagnosis::current_limit(&course));
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));
@@ -75,18 +72,28 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     Analysis { quantities, findings }
 }
 
-/// Holds the swing of the terminals against the hysteresis measured, or the least the profile allows.
-fn source_resistance(
-    course: &Course<'_>,
-    down: &Search,
-    up: &Search,
-    quantities: &[Quantity],
-) -> Option<Finding> {
-    let trip = down.threshold.as_ref().map_or(course.profile.supply.floor, |trip| trip.value);
-    let resistance = terminals::source_resistance(course, down.rail.as_ref(), up.rail.as_ref(), trip)?;
-    let measured = quantities.iter().find(|quantity| quantity.name == QuantityName::Hysteresis);
+/// Trip, re-enable, hysteresis and on current, as far as they were found.
+fn thresholds(course: &Course<'_>, down: &Search, up: &Search) -> Vec<Quantity> {
+    let (trip, re_enable) = (down.threshold.as_ref(), up.threshold.as_ref());
+    let of = |name, threshold| hysteresis::threshold_quantity(course, name, threshold);
+    let mut quantities = Vec::new();
+    quantities.extend(trip.map(|trip| of(QuantityName::Trip, trip)));
+    quantities.extend(re_enable.map(|re_enable| of(QuantityName::ReEnable, re_enable)));
+    quantities
+        .extend(trip.zip(re_enable).map(|(trip, re_enable)| hysteresis::hysteresis(course, trip, re_enable)));
+    quantities.extend(trip.and_then(|trip| on_current::on_current(course, trip)));
+    quantities
+}
+
+/// Holds the swing of the terminals against the least hysteresis the profile allows, or that of the board.
+fn source_resistance(course: &Course<'_>, down: &Search, up: &Search) -> Option<Finding> {
+    let trip = down.threshold.as_ref().map(|trip| trip.value);
+    let re_enable = up.threshold.as_ref().map(|re_enable| re_enable.value);
     let allowed =
         course.profile.limits.get(&QuantityName::Hysteresis).and_then(|limit| limit.min.or(limit.max));
-    let hysteresis = measured.map(|quantity| quantity.value).or(allowed)?;
-    diagnosis::source_resistance(resistance, trip / course.profile.load.resistance, Volts(hysteresis))
+    let measured = trip.zip(re_enable).map(|(trip, re_enable)| re_enable - trip);
+    let hysteresis = allowed.map(Volts).or(measured)?;
+    let at = trip.unwrap_or(course.profile.supply.floor);
+    let resistance = terminals::source_resistance(course)?;
+    diagnosis::source_resistance(resistance, at / course.profile.load.resistance, hysteresis)
 }

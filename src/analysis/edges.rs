@@ -124,11 +124,10 @@ impl Walk<'_, '_> {
             return;
         }
         let flips = self.flips(index);
+        if flips.restless() {
+            self.found.reversals.push(index);
+        }
         let Some(direction) = self.state else {
-            // Rising from pre-check to start the board may turn on once; that is no edge of a ramp.
-            if flips.count > 1 {
-                self.found.reversals.push(index);
-            }
             self.state = Direction::from(plateau.settled);
             self.begin_run(index, plateau.began);
             return;
@@ -137,40 +136,57 @@ impl Walk<'_, '_> {
             self.end_run(direction, index, plateau.began);
             self.begin_run(index, plateau.began);
         }
+        let last_before = self.time_of(flips.last_before).unwrap_or(plateau.began);
         let Some(seen) = flips.seen else {
             if Direction::from(plateau.settled).is_none() {
-                self.end_run(direction, index, self.time_of(flips.last_before).unwrap_or(plateau.began));
+                self.end_run(direction, index, last_before);
                 self.begin_run(index + 1, plateau.ended);
+                self.note_half_seen(direction, index, flips.last_before);
             }
             return;
         };
-        self.end_run(direction, index, self.time_of(flips.last_before).unwrap_or(plateau.began));
-        if flips.count > 1 || self.moved_back(direction, index) {
+        self.end_run(direction, index, last_before);
+        if flips.count == 1 && self.moved_back(direction, index) {
             self.found.reversals.push(index);
-        } else {
+        } else if flips.count == 1 {
             self.found.edges.push(Edge { direction, plateau: index, last_before: flips.last_before, seen });
         }
         self.state = Some(flips.direction);
         self.begin_run(index, self.time_of(Some(seen)).unwrap_or(plateau.ended));
     }
 
-    /// How often the state changed within one plateau, readings that are neither left aside.
+    /// A set-point rested, and the last reading caught the board in the middle of its change.
+    fn note_half_seen(&mut self, direction: Direction, plateau: usize, last_before: Option<usize>) {
+        let seen = self.course.plateaus[plateau].samples.end - 1;
+        if last_before.is_some() && self.course.is_between(seen) {
+            self.found.edges.push(Edge { direction, plateau, last_before, seen });
+            self.state = None;
+        }
+    }
+
+    /// How often the state changed within one plateau.
     fn flips(&self, index: usize) -> Flips {
         let samples = self.course.plateaus[index].samples.clone();
         let first = samples.clone().find_map(|sample| Direction::from(self.course.states[sample]));
-        let mut now = self.state.or(first).unwrap_or(Direction::Down);
-        let mut flips = Flips { count: 0, last_before: None, seen: None, direction: now };
+        let now = self.state.or(first).unwrap_or(Direction::Down);
+        let mut flips = Flips { count: 0, returns: 0, last_before: None, seen: None, direction: now };
+        let mut left = false;
+        let mut any = false;
         for sample in samples {
-            let Some(direction) = Direction::from(self.course.states[sample]) else { continue };
-            if direction != now {
-                now = direction;
+            let Some(direction) = Direction::from(self.course.states[sample]) else {
+                left |= any && self.course.is_between(sample);
+                continue;
+            };
+            if direction != flips.direction {
+                flips.direction = direction;
                 flips.count += 1;
                 flips.seen = flips.seen.or(Some(sample));
             } else if flips.count == 0 {
                 flips.last_before = Some(sample);
             }
+            flips.returns += usize::from(left && direction == flips.direction && flips.seen != Some(sample));
+            (left, any) = (false, true);
         }
-        flips.direction = now;
         flips
     }
 
@@ -206,11 +222,25 @@ impl Walk<'_, '_> {
     }
 }
 
+/// What the state did within one plateau.
 struct Flips {
+    /// Changes between on and off.
     count: usize,
+    /// Times it left a state without reaching the other, and came back.
+    returns: usize,
+    /// Last reading in the state before.
     last_before: Option<usize>,
+    /// First reading in the state after.
     seen: Option<usize>,
+    /// The state at the end.
     direction: Direction,
+}
+
+impl Flips {
+    /// Switching by itself: more than the one change a set-point can cause. A board just connected may turn on once.
+    fn restless(&self) -> bool {
+        self.count > 1 || self.returns > 0
+    }
 }
 
 #[cfg(test)]
@@ -253,6 +283,21 @@ mod tests {
     #[test]
     fn switching_twice_at_one_set_point_is_a_reversal() {
         assert_eq!(edges(&[on(7.6), on(6.1), off(6.1), on(6.1)]).reversals, [1]);
+    }
+
+    #[test]
+    fn leaving_a_state_half_way_and_coming_back_is_a_reversal() {
+        let half = (7.6, 0.03);
+        assert_eq!(edges(&[off(7.6), half, half, off(7.6), half]).reversals, [0]);
+        assert!(edges(&[off(7.6), half, on(7.6), on(6.1), (6.0, 0.02), off(6.0)]).reversals.is_empty());
+    }
+
+    #[test]
+    fn a_reading_that_catches_the_change_at_rest_is_an_edge() {
+        let found = edges(&[on(7.6), on(6.1), on(6.1), (6.1, 0.03), on(7.6)]);
+        assert_eq!(found.edges.len(), 1);
+        assert_eq!((found.edges[0].plateau, found.edges[0].last_before), (1, Some(2)));
+        assert!(found.reversals.is_empty());
     }
 
     #[test]

@@ -163,7 +163,10 @@ pub(super) fn point(settled: &Settled) -> Point {
     Point { x: settled.volts.0, y: settled.amps.0, weight: settled.count as f64 }
 }
 
-/// The mean over several plateaus, its scatter, and what their distance to `at` may do.
+/// The mean over several plateaus brought to `at`, its scatter, and what their distance to `at` may do.
+///
+/// The current changes with voltage by something between nothing and in proportion: the middle of the two is taken, as a
+/// rectangle (JCGM 100:2008, 4.3.7).
 fn mean(plateaus: &[Settled], at: Volts) -> (f64, Vec<Contribution>) {
     let count: f64 = plateaus.iter().map(|settled| settled.count as f64).sum();
     let weighted = |value: &dyn Fn(&Settled) -> f64| {
@@ -171,16 +174,15 @@ fn mean(plateaus: &[Settled], at: Volts) -> (f64, Vec<Contribution>) {
     };
     let mean = weighted(&|settled| settled.amps.0);
     let volts = Volts(weighted(&|settled| settled.volts.0));
-    // The current changes with voltage at most in proportion, so this is the rectangle's half-width.
-    let distance = mean * ((volts - at) / at);
+    let half_way = mean * ((at - volts) / volts) / 2.0;
     let mut parts =
-        vec![Contribution::new("distance to the wanted voltage", distance.abs() / 3.0_f64.sqrt())];
+        vec![Contribution::new("distance to the wanted voltage", half_way.abs() / 3.0_f64.sqrt())];
     if count > 1.0 {
         let own: f64 = plateaus.iter().map(|settled| settled.squares).sum();
         let among = count * weighted(&|settled| (settled.amps.0 - mean).powi(2));
         parts.push(Contribution::new(SCATTER, ((own + among) / (count - 1.0) / count).sqrt()));
     }
-    (mean, parts)
+    (mean + half_way, parts)
 }
 
 /// The current at `at` on the straight line between the nearest plateaus below and above, and their scatter.

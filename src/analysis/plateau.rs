@@ -102,8 +102,29 @@ impl<'t> Course<'t> {
         current_uncertainty(&self.trace.claims, range, reading)
     }
 
+    /// True for a current that is a number but neither the load's nor that of an open switch.
+    pub(super) fn is_between(&self, sample: usize) -> bool {
+        self.states[sample] == SwitchState::Neither && self.trace.samples[sample].current.amps().is_some()
+    }
+
+    /// The first of two successive samples in scope that both answer `wanted`, and how many do in all; one alone may have
+    /// caught a change.
+    pub(super) fn lasting(&self, wanted: impl Fn(usize) -> bool) -> Option<(&'t Sample, usize)> {
+        let mut samples =
+            self.in_scope().flat_map(|plateau| plateau.samples.clone()).filter(|at| wanted(*at));
+        let mut before = samples.next()?;
+        let (mut first, mut count) = (None, 1);
+        for sample in samples {
+            if sample == before + 1 {
+                first = first.or(Some(before));
+            }
+            (before, count) = (sample, count + 1);
+        }
+        Some((&self.trace.samples[first?], count))
+    }
+
     /// Plateaus on which thresholds may lie, in the order of the run.
-    pub(super) fn in_scope(&self) -> impl Iterator<Item = &Plateau> {
+    pub(super) fn in_scope(&self) -> impl Iterator<Item = &Plateau> + Clone {
         self.plateaus.iter().filter(|plateau| plateau.in_scope)
     }
 

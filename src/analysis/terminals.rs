@@ -133,22 +133,26 @@ fn point(course: &Course<'_>, plateau: usize) -> Point {
     Point::plain(sample.set.0, course.terminals(sample).0)
 }
 
-/// Resistance of source and leads: by how much the terminals fall at one set-point when the board turns on, over the
-/// current it draws. `None` without a voltmeter at the terminals, or while only one state has been seen.
-pub(super) fn source_resistance(
-    course: &Course<'_>,
-    on: Option<&Rail>,
-    off: Option<&Rail>,
-    set: Volts,
-) -> Option<Ohms> {
+/// Resistance of source and leads: the slope of set-point less terminal voltage against current. Without a voltmeter it
+/// is what the bench claims; `None` where no current ever flowed.
+pub(super) fn source_resistance(course: &Course<'_>) -> Option<Ohms> {
     if !course.has_voltmeter() {
         return course.trace.claims.lead_resistance;
     }
-    let loaded = on?.at(set);
-    let drop = off.map_or(set, |off| off.at(set)) - loaded;
-    let resistance = drop / (loaded / course.profile.load.resistance);
-    resistance.is_finite().then(|| resistance.max(Ohms::ZERO))
+    let samples = course.in_scope().flat_map(|plateau| &course.trace.samples[plateau.samples.clone()]);
+    let drops = samples.filter_map(|sample| {
+        let (amps, sense) = (sample.current.amps()?, sample.sense?);
+        let drop = (sample.set - sense).0;
+        // Terminals far above the set-point are a supply that has not come down.
+        let came_down = drop > -(LAGS.0 + LAGS.1 * sample.set.0) && drop.is_finite() && amps.is_finite();
+        came_down.then_some(Point::plain(amps.0, drop))
+    });
+    let slope = Line::fit(drops)?.slope;
+    Some(Ohms(slope.max(0.0)))
 }
+
+/// Volts, and share of the set-point, by which terminals above it lag behind.
+const LAGS: (f64, f64) = (0.02, 0.01);
 
 #[cfg(test)]
 mod tests {
@@ -176,8 +180,8 @@ mod tests {
         let (on, off) = (rail(Direction::Down), rail(Direction::Up));
         assert!((on.at(Volts(6.0)).0 - 6.0 * (1.0 - 2.0 / 55.0)).abs() < 1e-9);
         assert!((off.at(Volts(6.0)).0 - 6.0).abs() < 1e-4);
-        let resistance = source_resistance(&course, Some(&on), Some(&off), Volts(6.0)).expect("both states");
-        assert!((resistance.0 - 2.0).abs() < 0.1, "{resistance}");
+        let resistance = source_resistance(&course).expect("both states");
+        assert!((resistance.0 - 2.0).abs() < 1e-6, "{resistance}");
     }
 
     #[test]

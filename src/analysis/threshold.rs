@@ -59,8 +59,6 @@ pub(super) struct Smear {
 /// What a trace says about one threshold.
 #[derive(Clone, Debug, Default)]
 pub(super) struct Search {
-    /// Terminal voltage against set-point in the state before the change.
-    pub(super) rail: Option<Rail>,
     /// The threshold, once changed and stayed.
     pub(super) threshold: Option<Threshold>,
     /// Evidence of a delay beyond the design's.
@@ -96,14 +94,14 @@ impl Search {
         let Some(rail) = Rail::near(course, &found.stays, direction, near) else { return Self::default() };
         // A board that switches by itself has neither a threshold nor a delay to state.
         if !found.reversals.is_empty() {
-            return Self { rail: Some(rail), ..Self::default() };
+            return Self::default();
         }
         let declared = direction.delay(&course.profile.timing);
         let slow = Slow::find(course, found, direction, &rail);
         let delay = slow.map_or(declared, |slow| slow.at_most.max(declared));
         let threshold =
             Stays::sorted(course, found, direction, &rail, delay).threshold(course, &edges, &rail);
-        Self { rail: Some(rail), threshold, slow }
+        Self { threshold, slow }
     }
 }
 

@@ -44,22 +44,20 @@ pub fn judge(analysis: &Analysis, profile: &Profile, ending: &Ending) -> Verdict
 
 /// True when something on the bench was wrong with the readings, so that no decision may rest on them.
 fn readings_in_doubt(findings: &[Finding]) -> bool {
-    let found = |code| findings.iter().any(|finding| finding.code == code);
-    // A board that cannot rest on this source says nothing about the board.
-    (found(FindingCode::Chatter) && found(FindingCode::SourceResistance))
-        || findings.iter().any(|finding| {
-            matches!(
-                finding.code,
-                FindingCode::BenchFault
-                    | FindingCode::NoLoad
-                    | FindingCode::NoCurrent
-                    | FindingCode::Reversed
-                    | FindingCode::BackFeed
-                    | FindingCode::LiveBoard
-                    | FindingCode::SupplyNotArrived
-                    | FindingCode::CurrentLimit
-            )
-        })
+    findings.iter().any(|finding| {
+        matches!(
+            finding.code,
+            FindingCode::BenchFault
+                | FindingCode::NoLoad
+                | FindingCode::NoCurrent
+                | FindingCode::Reversed
+                | FindingCode::BackFeed
+                | FindingCode::LiveBoard
+                | FindingCode::SupplyNotArrived
+                | FindingCode::CurrentLimit
+                | FindingCode::SourceResistance
+        )
+    })
 }
 
 /// True for what no board may do, limits or not.
@@ -226,12 +224,7 @@ mod tests {
         let mut analysis = good();
         analysis.findings = with(
             About::Bench,
-            &[
-                FindingCode::AccuracyNotIncluded,
-                FindingCode::NoVoltmeter,
-                FindingCode::SourceResistance,
-                FindingCode::DwellShorterThanDelay,
-            ],
+            &[FindingCode::AccuracyNotIncluded, FindingCode::NoVoltmeter, FindingCode::DwellShorterThanDelay],
         );
         assert_eq!(outcome(&analysis), Outcome::Pass);
     }

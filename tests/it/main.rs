@@ -3,6 +3,7 @@
 mod circuit;
 #[cfg(unix)]
 mod definitions_on_simulation;
+mod judged;
 mod log;
 #[cfg(unix)]
 mod outside_parser;
