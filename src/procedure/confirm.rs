@@ -57,6 +57,8 @@ async fn hold(
     let mut sample = first;
     loop {
         if state(plan, &sample) != expected {
+            // Once more, so that the trace shows where it came to rest and not only that it moved.
+            desk.read().await?;
             return Ok(Confirmed::Moved);
         }
         if desk.now() >= end {

@@ -17,7 +17,7 @@ pub enum Condition {
     LeakingSwitch,
     /// The pull-up resistor is a decade too low.
     LowPullUp,
-    /// The detector is several times slower than its design allows.
+    /// The detector is many times slower than its design allows: it takes about a tenth of a second.
     SlowDetector,
     /// The load is not connected.
     NoLoad,
@@ -82,7 +82,7 @@ impl Condition {
             Self::NarrowHysteresis => "hysteresis below its limit, trip intact",
             Self::LeakingSwitch => "the open switch leaks more than the off current may be",
             Self::LowPullUp => "pull-up resistor a decade too low",
-            Self::SlowDetector => "detector several times slower than the design allows",
+            Self::SlowDetector => "detector many times slower than the design allows",
             Self::NoLoad => "load not connected",
             Self::Reversed => "board connected the wrong way round",
             Self::Chatter => "leads so resistive that the load's drop exceeds the hysteresis",

@@ -10,6 +10,7 @@ use crate::procedure::Ability;
 use crate::profile::{Profile, QuantityName};
 use crate::trace::{Claims, RangeAccuracy};
 use crate::units::{Amps, Ohms, Volts};
+use std::time::Duration;
 
 /// Time constants until a small step has arrived.
 const SETTLE_CONSTANTS: u32 = 5;
@@ -79,7 +80,8 @@ impl Setup {
             }
             Condition::LowPullUp => board.pull_up = board.pull_up / 10.0,
             Condition::SlowDetector => {
-                board.detect_delay = profile.timing.detect_delay.mul_f64(draw.between(4.0, 8.0));
+                let slow = Duration::from_secs_f64(draw.between(0.06, 0.12));
+                board.detect_delay = (profile.timing.detect_delay * 4).max(slow);
             }
             Condition::NoLoad => self.wiring.load = LoadWiring::Lifted,
             Condition::Reversed => self.wiring.polarity = Polarity::Reversed,

@@ -1,6 +1,7 @@
 //! Integration tests, a module per theme.
 
 mod circuit;
+mod conditions;
 #[cfg(unix)]
 mod definitions_on_simulation;
 mod judged;
@@ -13,6 +14,7 @@ mod run;
 #[cfg(unix)]
 mod run_over_serial;
 mod run_sample;
+mod runs;
 #[cfg(unix)]
 mod scripted;
 #[cfg(unix)]
@@ -25,3 +27,4 @@ mod simulated_bench;
 mod staircase;
 #[cfg(unix)]
 mod switching_off;
+mod virtual_run;

@@ -1,0 +1,62 @@
+//! A whole run in virtual time: procedure, simulated bench, analysis and verdict.
+
+use ebbmark::analysis::analyse;
+use ebbmark::bench::{VirtualBench, drive, run_ready};
+use ebbmark::procedure::{Plan, Procedure};
+use ebbmark::profile::{Profile, QuantityName};
+use ebbmark::sim::{Condition, Faults, Setup, Truth};
+use ebbmark::trace::Trace;
+use ebbmark::verdict::{Verdict, judge};
+use std::time::Duration;
+
+/// What came of a run, and what the board really was.
+pub(crate) struct Run {
+    pub(crate) trace: Trace,
+    pub(crate) verdict: Verdict,
+    pub(crate) truth: Truth,
+}
+
+impl Run {
+    /// The true value of a quantity of this profile, where it is known.
+    pub(crate) fn true_value(&self, name: QuantityName, profile: &Profile) -> Option<f64> {
+        let truth = &self.truth;
+        match name {
+            QuantityName::Trip => Some(truth.trip.0),
+            QuantityName::ReEnable => Some(truth.re_enable.0),
+            QuantityName::Hysteresis => Some(truth.hysteresis.0),
+            QuantityName::OnCurrent => Some(truth.on_current(truth.trip).0),
+            QuantityName::OffCurrent => profile.limits.get(&name)?.at.map(|at| truth.off_current(at).0),
+            _ => None,
+        }
+    }
+
+    /// What was measured, with its expanded uncertainty.
+    pub(crate) fn measured(&self, name: QuantityName) -> Option<(f64, f64)> {
+        let judged = self.verdict.judged.iter().find(|judged| judged.quantity.name == name)?;
+        Some((judged.quantity.value, judged.expanded_uncertainty()))
+    }
+}
+
+/// Tests the board of `condition` and `seed`.
+pub(crate) fn run(profile: &Profile, condition: Condition, seed: u64) -> Run {
+    let setup = Setup::new(profile, condition, seed);
+    let mut bench = VirtualBench::new(&setup, setup.ability());
+    let trace = run_on(profile, &setup, &mut bench);
+    let verdict = judge(&analyse(&trace, profile), profile, &trace.ending);
+    Run { trace, verdict, truth: bench.world().truth() }
+}
+
+/// Tests a board while faults strike the bench; also tells whether the output was on at the end.
+pub(crate) fn faulty_run(profile: &Profile, condition: Condition, seed: u64) -> (Trace, bool) {
+    /// About as long as a run takes, so that faults strike anywhere in it.
+    const HORIZON: Duration = Duration::from_secs(10);
+    let setup = Setup::new(profile, condition, seed);
+    let mut bench = VirtualBench::new(&setup, setup.ability()).with_faults(Faults::random(seed, HORIZON));
+    let trace = run_on(profile, &setup, &mut bench);
+    (trace, bench.output_is_on())
+}
+
+fn run_on(profile: &Profile, setup: &Setup, bench: &mut VirtualBench) -> Trace {
+    let procedure = Procedure::new(Plan::new(profile, &setup.ability()));
+    run_ready(drive(procedure, bench, setup.claims(), &mut (), std::future::pending()))
+}
