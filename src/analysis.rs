@@ -62,9 +62,10 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     quantities.extend(off_current);
 
     let mut findings = stop::stop_findings(&trace.ending);
+    // A source that lets no board rest explains what the board seems to do.
+    findings.extend(restless);
     let diagnosis = diagnosis::diagnose(&course, &found);
     findings.extend(diagnosis.filter(|new| findings.iter().all(|old| old.code != new.code)));
-    findings.extend(restless);
     findings.extend(off_findings);
     findings.extend(diagnosis::current_limit(&course));
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));

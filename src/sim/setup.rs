@@ -68,7 +68,7 @@ impl Setup {
             Condition::HighTrip => {
                 let (min, max) = limits(QuantityName::Trip).unwrap_or((board.trip.0, board.trip.0 * 1.02));
                 let trip = max + (max - min) * draw.between(0.4, 0.9);
-                board.trip = Volts(trip).min(profile.supply.start - board.hysteresis * 1.5);
+                board.trip = Volts(trip).min(profile.supply.start - board.hysteresis * 1.1);
             }
             Condition::NarrowHysteresis => {
                 let least = limits(QuantityName::Hysteresis).map_or(board.hysteresis.0, |(min, _)| min);

@@ -30,7 +30,7 @@ const EXPECTED: [(Condition, &[Outcome], Option<FindingCode>); 12] = [
     ),
     (Condition::NoLoad, &[Outcome::Invalid], Some(FindingCode::NoLoad)),
     (Condition::Reversed, &[Outcome::Invalid], Some(FindingCode::Reversed)),
-    (Condition::Chatter, &[Outcome::Invalid], Some(FindingCode::Chatter)),
+    (Condition::Chatter, &[Outcome::Invalid], Some(FindingCode::SourceResistance)),
     (Condition::NoSink, &[Outcome::Pass, Outcome::ConditionalPass], None),
 ];
 

@@ -4,7 +4,6 @@ mod circuit;
 mod conditions;
 #[cfg(unix)]
 mod definitions_on_simulation;
-mod judged;
 mod log;
 #[cfg(unix)]
 mod outside_parser;
