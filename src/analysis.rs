@@ -61,9 +61,9 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     }
     quantities.extend(off_current);
 
-    let mut findings = stop::stop_findings(&trace.ending);
     // A source that lets no board rest explains what the board seems to do.
-    findings.extend(restless);
+    let mut findings: Vec<Finding> = restless.into_iter().collect();
+    findings.extend(stop::stop_findings(&trace.ending));
     let diagnosis = diagnosis::diagnose(&course, &found);
     findings.extend(diagnosis.filter(|new| findings.iter().all(|old| old.code != new.code)));
     findings.extend(off_findings);

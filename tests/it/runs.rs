@@ -36,7 +36,6 @@ fn the_stated_uncertainty_covers_the_truth() {
     }
     for name in MEASURED {
         let share = covered[&name] as f64 / SEEDS as f64;
-        println!("{}: U covers the truth in {:.1} % of {SEEDS} seeds", name.key(), 100.0 * share);
         assert!(share >= LEAST_COVERAGE, "{}: {share} of {SEEDS} seeds", name.key());
     }
 }
@@ -95,7 +94,6 @@ fn whatever_fails_the_output_is_off_or_reported() {
             OutputState::MayBeOn => reported += 1,
         }
     }
-    println!("{reported} of {RUNS} runs reported that the output may still be on");
     assert!(reported > 0, "no run exercised the report");
 }
 
