@@ -279,6 +279,6 @@ fn boards_and_benches_that_cannot_be_measured_are_told_apart() {
     assert_eq!(outcome(stuck_open_unseen), (Outcome::Invalid, Some(FindingCode::NoCurrent)));
     assert_eq!(outcome(no_load), (Outcome::Invalid, Some(FindingCode::NoLoad)));
     assert_eq!(outcome(latched).0, Outcome::Fail);
-    assert_eq!(outcome(restless), (Outcome::Invalid, Some(FindingCode::Chatter)));
+    assert_eq!(outcome(restless), (Outcome::Invalid, Some(FindingCode::SourceResistance)));
     assert_eq!(outcome(leaking), (Outcome::Fail, Some(FindingCode::OffCurrentHigh)));
 }
