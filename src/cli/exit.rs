@@ -71,3 +71,21 @@ impl<E: Into<anyhow::Error>> From<E> for Failure {
         Self { exit: Exit::Usage, error: error.into() }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::trace::Stop;
+
+    #[test]
+    fn an_output_that_may_be_on_outweighs_every_outcome() {
+        let codes = |output| {
+            Outcome::ALL.map(|outcome| Exit::of_run(outcome, &Ending { stop: Stop::Completed, output }))
+        };
+        assert!(codes(OutputState::MayBeOn).iter().all(|exit| *exit == Exit::OutputMayBeOn));
+        assert_eq!(
+            codes(OutputState::Off),
+            [Exit::Pass, Exit::Pass, Exit::Fail, Exit::Fail, Exit::Invalid, Exit::Aborted, Exit::Invalid]
+        );
+    }
+}

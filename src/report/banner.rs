@@ -39,7 +39,6 @@ pub(super) fn banner(word: &str) -> Vec<String> {
 mod tests {
     use super::*;
     use crate::report::columns::WIDTH;
-    use crate::report::words;
     use crate::verdict::Outcome;
 
     #[test]
@@ -53,9 +52,9 @@ mod tests {
             Outcome::Aborted,
             Outcome::Incomplete,
         ] {
-            let word = words::outcome(outcome);
+            let word = outcome.word();
             assert!(word.chars().all(|letter| LETTERS.iter().any(|(known, _)| *known == letter)), "{word}");
-            assert!(banner(&word).iter().all(|row| row.chars().count() <= WIDTH), "{word}");
+            assert!(banner(word).iter().all(|row| row.chars().count() <= WIDTH), "{word}");
         }
     }
 

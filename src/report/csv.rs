@@ -61,7 +61,7 @@ fn fields(run: &Run) -> Vec<String> {
         board.batch.clone().unwrap_or_default(),
         identity.attempt.to_string(),
         u8::from(run.is_simulated()).to_string(),
-        words::outcome(run.outcome),
+        run.outcome.to_string(),
         findings.join(" "),
     ];
     for name in QuantityName::ALL {

@@ -2,10 +2,9 @@
 
 use super::Sheet;
 use crate::analysis::Finding;
-use crate::profile::QuantityName;
 use crate::record::{Moment, Run, RunId, SCHEMA, Simulated};
 use crate::trace::OutputState;
-use crate::verdict::{Decision, Judged, Outcome};
+use crate::verdict::{Outcome, QuantityLine};
 use serde::Serialize;
 
 /// A recorded run as one line of JSON, without a newline.
@@ -28,7 +27,7 @@ pub fn json(sheet: &Sheet<'_>) -> String {
         board: sheet.board,
         revision: sheet.revision,
         serial_number: sheet.serial_number,
-        quantities: sheet.quantities.iter().map(QuantityLine::of).collect(),
+        quantities: sheet.quantities.iter().map(QuantityLine::from).collect(),
         findings: sheet.findings,
         output: sheet.output,
         run: identity.map(|identity| &identity.run),
@@ -66,37 +65,4 @@ struct RunLine<'r> {
     ended: Option<&'r Moment>,
     #[serde(skip_serializing_if = "Option::is_none")]
     simulated: Option<&'r Simulated>,
-}
-
-#[derive(Serialize)]
-struct QuantityLine {
-    name: QuantityName,
-    value: f64,
-    unit: &'static str,
-    standard_uncertainty: f64,
-    coverage_factor: f64,
-    expanded_uncertainty: f64,
-    #[serde(skip_serializing_if = "Option::is_none")]
-    min: Option<f64>,
-    #[serde(skip_serializing_if = "Option::is_none")]
-    max: Option<f64>,
-    #[serde(skip_serializing_if = "Option::is_none")]
-    decision: Option<Decision>,
-}
-
-impl QuantityLine {
-    fn of(judged: &Judged) -> Self {
-        let quantity = &judged.quantity;
-        Self {
-            name: quantity.name,
-            value: quantity.value,
-            unit: quantity.name.unit().ascii(),
-            standard_uncertainty: quantity.standard_uncertainty,
-            coverage_factor: judged.coverage_factor,
-            expanded_uncertainty: judged.coverage_factor * quantity.standard_uncertainty,
-            min: judged.limit.and_then(|limit| limit.min),
-            max: judged.limit.and_then(|limit| limit.max),
-            decision: judged.decision,
-        }
-    }
 }

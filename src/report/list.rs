@@ -59,11 +59,8 @@ fn row(run: &Run) -> Vec<String> {
         remarks.push("(simulated)".to_owned());
     }
     let identity = &run.identity;
-    let mut cells = vec![
-        identity.started.on_the_wall(),
-        identity.board.serial_number.clone(),
-        words::outcome(run.outcome),
-    ];
+    let mut cells =
+        vec![identity.started.on_the_wall(), identity.board.serial_number.clone(), run.outcome.to_string()];
     cells.extend(SHOWN.map(value));
     cells.push(remarks.join(", "));
     cells

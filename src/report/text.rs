@@ -41,11 +41,11 @@ fn danger(paint: Paint) -> String {
 }
 
 fn heading(sheet: &Sheet<'_>, paint: Paint) -> String {
-    let word = words::outcome(sheet.outcome);
+    let word = sheet.outcome.word();
     let style = paint::of_outcome(sheet.outcome);
-    let mut lines: Vec<String> = banner(&word).iter().map(|row| paint.on(style, row)).collect();
+    let mut lines: Vec<String> = banner(word).iter().map(|row| paint.on(style, row)).collect();
     lines.push(String::new());
-    let mut facts = vec![paint.on(style, &word), format!("{} revision {}", sheet.board, sheet.revision)];
+    let mut facts = vec![paint.on(style, word), format!("{} revision {}", sheet.board, sheet.revision)];
     facts.extend(sheet.serial_number.map(|number| format!("serial number {number}")));
     facts.extend(
         sheet

@@ -1,13 +1,8 @@
-//! The words of the other rooms as text: an outcome, a decision, the code of a finding.
+//! The words of the other rooms as text: a decision, the code of a finding.
 
 use crate::analysis::FindingCode;
-use crate::verdict::{Decision, Outcome};
+use crate::verdict::Decision;
 use serde::Serialize;
-
-/// `CONDITIONAL PASS`
-pub(super) fn outcome(outcome: Outcome) -> String {
-    in_files(&outcome)
-}
 
 /// `conditional_pass`
 pub(super) fn decision(decision: Decision) -> String {
@@ -38,7 +33,6 @@ mod tests {
 
     #[test]
     fn words_are_those_of_the_files() {
-        assert_eq!(outcome(Outcome::ConditionalPass), "CONDITIONAL PASS");
         assert_eq!(decision(Decision::ConditionalFail), "conditional_fail");
         assert_eq!(spoken(&code(FindingCode::NeverReEnables)), "never re-enables");
     }

@@ -1,7 +1,6 @@
 //! The outcome of a run: one word, whether it counts in a yield, and the exit code it stands for.
 
 use super::Decision;
-use crate::trace::OutputState;
 use serde::{Deserialize, Serialize};
 use std::fmt;
 
@@ -60,18 +59,6 @@ impl Outcome {
     pub fn counts_in_yield(self) -> bool {
         matches!(self, Self::Pass | Self::ConditionalPass | Self::ConditionalFail | Self::Fail)
     }
-
-    /// The exit code of a command that ended with this outcome: 0 pass, 1 fail, 3 invalid, 4 aborted or incomplete; 5
-    /// whenever the output may still be on. (2 is for errors before any run.)
-    pub fn exit_code(self, output: OutputState) -> u8 {
-        match (output, self) {
-            (OutputState::MayBeOn, _) => 5,
-            (OutputState::Off, Self::Pass | Self::ConditionalPass) => 0,
-            (OutputState::Off, Self::ConditionalFail | Self::Fail) => 1,
-            (OutputState::Off, Self::Invalid) => 3,
-            (OutputState::Off, Self::Aborted | Self::Incomplete) => 4,
-        }
-    }
 }
 
 impl From<Decision> for Outcome {
@@ -101,12 +88,6 @@ mod tests {
             assert_eq!(serde_json::to_string(&outcome).expect("a word"), format!("\"{outcome}\""));
         }
         assert_eq!(Outcome::ConditionalPass.to_string(), "CONDITIONAL PASS");
-    }
-
-    #[test]
-    fn an_output_that_may_be_on_outranks_every_exit_code() {
-        assert_eq!(Outcome::ALL.map(|outcome| outcome.exit_code(OutputState::Off)), [0, 0, 1, 1, 3, 4, 4]);
-        assert!(Outcome::ALL.iter().all(|outcome| outcome.exit_code(OutputState::MayBeOn) == 5));
     }
 
     #[test]
