@@ -17,8 +17,11 @@ use std::time::Duration;
 pub(super) enum Confirmed {
     /// Nothing moved.
     Stands,
-    /// The board changed its state where it had not before.
-    Moved,
+    /// The board changed its state where it had not before, within this time of being brought there.
+    Moved {
+        /// From the set-point's settling to the reading that showed the change.
+        after: Duration,
+    },
 }
 
 /// Holds the last voltage at which the board stayed on.
@@ -53,15 +56,15 @@ async fn hold(
     expected: SwitchState,
     pace: Pace,
 ) -> Result<Confirmed, Stop> {
-    let end = desk.now() + pace.hold;
+    let begun = desk.now();
     let mut sample = first;
     loop {
         if state(plan, &sample) != expected {
             // Once more, so that the trace shows where it came to rest and not only that it moved.
             desk.read().await?;
-            return Ok(Confirmed::Moved);
+            return Ok(Confirmed::Moved { after: pace.dwell + (desk.now() - begun) });
         }
-        if desk.now() >= end {
+        if desk.now() >= begun + pace.hold {
             return Ok(Confirmed::Stands);
         }
         desk.wait(HOLD_POLL).await?;

@@ -105,9 +105,9 @@ impl Pace {
         Self { dwell: delay.mul_f64(1.25) + Duration::from_millis(1), hold: (delay * 10).max(SHORTEST_HOLD) }
     }
 
-    /// The pace for a board that proved slower than its design allows.
-    pub(super) fn slower(self) -> Self {
-        Self { dwell: (self.dwell * 8).max(SHORTEST_HOLD / 2), hold: self.hold * 4 }
+    /// The pace for a board that proved slower than its design allows: it took up to `seen` to change.
+    pub(super) fn slower(self, seen: Duration) -> Self {
+        Self { dwell: seen.mul_f64(1.25).max(self.dwell * 2), hold: (seen * 2).max(self.hold) }
     }
 }
 

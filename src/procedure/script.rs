@@ -3,7 +3,6 @@
 use super::confirm::{Confirmed, confirm_re_enable, confirm_trip};
 use super::desk::Desk;
 use super::off_current::measure_off_current;
-use super::plan::Pace;
 use super::pre_check::pre_check;
 use super::probe::{arm_off, arm_on};
 use super::progress::{Stage, left};
@@ -84,7 +83,9 @@ async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Sto
         desk.enter(Stage::Confirm, left(plan, Stage::Confirm));
         match confirm_trip(desk, plan, edge, pace).await? {
             Confirmed::Stands => break,
-            Confirmed::Moved => (known, pace, margin) = (false, slower(pace), wider(plan, step, margin)),
+            Confirmed::Moved { after } => {
+                (known, pace, margin) = (false, pace.slower(after), wider(plan, step, margin));
+            }
         }
     }
     Ok(edge)
@@ -111,7 +112,9 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
         desk.enter(Stage::Confirm, left(plan, Stage::Confirm));
         match confirm_re_enable(desk, plan, edge, below_trip, pace).await? {
             Confirmed::Stands => break,
-            Confirmed::Moved => (known, pace, margin) = (false, slower(pace), wider(plan, step, margin)),
+            Confirmed::Moved { after } => {
+                (known, pace, margin) = (false, pace.slower(after), wider(plan, step, margin));
+            }
         }
     }
     Ok(())
@@ -119,10 +122,6 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
 
 /// How often a bracket is looked for before the last one has to do.
 const ATTEMPTS: usize = 3;
-
-fn slower(pace: Pace) -> Pace {
-    pace.slower()
-}
 
 /// Begins two survey steps further away: the survey was too fast as well.
 fn wider(plan: &Plan, step: Volts, margin: f64) -> f64 {

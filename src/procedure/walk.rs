@@ -70,35 +70,49 @@ async fn walk(
     until: SwitchState,
 ) -> Result<Option<Edge>, Stop> {
     let mut unchanged = staircase.from - staircase.step;
+    let mut undecided = 0;
     for index in 0.. {
         let Some(volts) = staircase.set_point(index) else { break };
-        let sample = probe(desk, plan, volts, pace).await?;
-        if changed(desk, plan, sample, until).await? {
+        let first = probe(desk, plan, volts, pace).await?;
+        let (state, sample) = rest(desk, plan, first, until).await?;
+        if state == until {
             return Ok(Some(Edge { unchanged, changed: volts }));
+        }
+        undecided = if state == SwitchState::Neither { undecided + 1 } else { 0 };
+        if undecided >= MOST_UNDECIDED {
+            let current = sample.current.amps().unwrap_or(plan.on_range);
+            return Err(Stop::Undecided { at: sample.terminals(), current });
         }
         unchanged = volts;
     }
     Ok(None)
 }
 
-/// A change counts when the next reading at the same set-point says so too.
-async fn changed(desk: &Desk, plan: &Plan, first: Sample, until: SwitchState) -> Result<bool, Stop> {
-    let mut current = state(plan, &first);
+/// Set-points in a row at which a board may be neither on nor off before it is given up: it will not rest.
+const MOST_UNDECIDED: u32 = 10;
+
+/// The state in which the board rests at a set-point. A change counts when the next reading says so too; a board that
+/// says something else each time is in neither state.
+async fn rest(
+    desk: &Desk,
+    plan: &Plan,
+    first: Sample,
+    until: SwitchState,
+) -> Result<(SwitchState, Sample), Stop> {
+    let mut sample = first;
+    let mut before = state(plan, &sample);
     for _ in 0..2 {
-        let other = matches!(
-            (current, until),
-            (SwitchState::On, SwitchState::Off) | (SwitchState::Off, SwitchState::On)
-        );
-        if other {
-            return Ok(false);
+        if before != until && before != SwitchState::Neither {
+            return Ok((before, sample));
         }
-        let next = state(plan, &desk.read().await?);
-        if next == until && current == until {
-            return Ok(true);
+        sample = desk.read().await?;
+        let after = state(plan, &sample);
+        if after == until && before == until {
+            return Ok((until, sample));
         }
-        current = next;
+        before = after;
     }
-    Ok(false)
+    Ok((SwitchState::Neither, sample))
 }
 
 #[cfg(test)]

@@ -28,11 +28,14 @@ fn title(judged: &Judged) -> String {
     }
 }
 
-/// `6.0004 ± 0.0016 V`
+/// `6.0004 ± 0.0016 V`; no uncertainty where none is known.
 pub(super) fn measured(judged: &Judged) -> String {
-    let expanded = judged.coverage_factor * judged.quantity.standard_uncertainty;
-    let (value, expanded, unit) =
-        with_decimals_of(judged.quantity.value, expanded, judged.quantity.name.unit());
+    let expanded = judged.expanded_uncertainty();
+    let (quantity, unit) = (judged.quantity.value, judged.quantity.name.unit());
+    if expanded <= 0.0 {
+        return prefixed(quantity, unit);
+    }
+    let (value, expanded, unit) = with_decimals_of(quantity, expanded, unit);
     format!("{value} ± {expanded} {unit}")
 }
 
