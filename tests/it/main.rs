@@ -5,6 +5,7 @@ mod conditions;
 #[cfg(unix)]
 mod definitions_on_simulation;
 mod log;
+mod nine_volt;
 #[cfg(unix)]
 mod outside_parser;
 mod report;
