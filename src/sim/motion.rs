@@ -13,8 +13,13 @@ use super::output::{Output, STILL};
 /// How far beyond an edge the output is put when it passes one, V: clear of rounding, far below any reading.
 const STEP_OVER: f64 = STILL / 2.0;
 
-/// Parts into which one charge of the load's capacitor is cut.
-const CHARGE_STEPS: f64 = 64.0;
+/// How far the supply's voltage may move, V, while the load's capacitor is charged as if it stood still: a thousandth of
+/// a charge.
+const CHARGE_MOVE: f64 = 1e-3;
+
+/// Where the limited current could lift the load to this multiple of the supply's voltage, all of it goes into the
+/// capacitor.
+const NO_LOAD: f64 = 1e6;
 
 /// Parts of the detector's noise the voltage may move in one step while noise matters.
 const NOISE_STEP: f64 = 0.5;
@@ -258,27 +263,39 @@ impl Motion {
         }
     }
 
-    /// A step of charging the load's capacitor with the limited current.
-    fn charge(&mut self, setup: &Setup, course: Course, most: f64) {
+    /// A stretch of charging the load's capacitor with the limited current: until it is charged as far as the supply's
+    /// voltage allows, the terminals pass an edge of the detector, or the supply's voltage has moved on.
+    fn charge(&mut self, setup: &Setup, supply: Course, most: f64) {
         let capacitance = setup.board.load_capacitance.0.max(1e-15);
-        let time_constant = self.load_resistance * capacitance;
-        let whole = capacitance * self.output.volts / self.limit;
-        let time = most.min((whole / CHARGE_STEPS).max(1e-9));
-        let full = self.limit * self.load_resistance;
-        let before = self.load_volts;
-        self.load_volts = before - (full - before) * (-time / time_constant).exp_m1();
-        let mean = (before + self.load_volts) / 2.0;
-        self.sums.load += mean * time;
-        self.sums.terminals += (mean + self.limit * setup.board.on_resistance.0) * time;
+        let level = self.limit * self.load_resistance;
+        let course = if level > NO_LOAD * self.output.volts {
+            Course::Line { rate: self.limit / capacitance }
+        } else {
+            Course::Towards { level, time_constant: self.load_resistance * capacitance }
+        };
+        let switch_drop = self.limit * setup.board.on_resistance.0;
+        let mut time = most.min(CHARGE_MOVE / supply.rate(self.output.volts).abs());
+        let from = self.load_volts;
+        let mut to = course.after(from, time);
+        let charged = self.output.volts - self.limit * self.surroundings.series - switch_drop;
+        let [near, far] = self.detector.edges().map(|volts| Some(volts - switch_drop));
+        if let Some(beyond) = nearest_passed(from, to, [Some(charged), near, far]) {
+            time = time.min(course.time_between(from, beyond).max(0.0));
+            to = beyond;
+        }
+        let area = course.area(from, to, time);
+        self.sums.load += area;
+        self.sums.terminals += area + switch_drop * time;
         self.sums.current += self.limit * time;
-        self.output.volts = course.after(self.output.volts, time);
+        self.load_volts = to;
+        self.output.volts = supply.after(self.output.volts, time);
         self.now += time;
         self.charging = self.charge_is_limited(setup);
     }
 }
 
 /// The nearest edge that lies between `from` and `to`, with a little beyond it.
-fn nearest_passed(from: f64, to: f64, edges: [Option<f64>; 6]) -> Option<f64> {
+fn nearest_passed<const N: usize>(from: f64, to: f64, edges: [Option<f64>; N]) -> Option<f64> {
     let direction = (to - from).signum();
     let way = (to - from).abs();
     edges
