@@ -6,6 +6,7 @@
 
 mod ability;
 mod action;
+mod approach;
 mod confirm;
 mod desk;
 mod fit;

@@ -1,5 +1,6 @@
 //! A run from beginning to end, as a technician would tell it.
 
+use super::approach::Approach;
 use super::confirm::{Confirmed, confirm_re_enable, confirm_trip};
 use super::desk::Desk;
 use super::off_current::measure_off_current;
@@ -49,7 +50,6 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     };
 
     let trip = narrow_trip(desk, plan, trip).await?;
-    enter(Stage::NarrowUp);
     narrow_re_enable(desk, plan, trip, re_enable).await
 }
 
@@ -67,13 +67,13 @@ async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Sto
     let step = plan.fine_step.unwrap_or(plan.survey_step);
     let mut pace = plan.down;
     let mut edge = survey;
-    let mut margin = 2.0;
     let mut known = plan.fine_step.is_none();
+    let mut approach = Approach::new(plan, survey, plan.start);
+    let mut from = approach.first();
     for _ in 0..ATTEMPTS {
         if !known {
             desk.enter(Stage::NarrowDown, left(plan, Stage::NarrowDown));
             arm_on(desk, plan).await?;
-            let from = (survey.unchanged + step * margin).min(plan.start);
             let to = (survey.changed - plan.survey_step).max(plan.floor);
             match walk_down(desk, plan, from, to, step, pace).await? {
                 Some(found) => edge = found,
@@ -84,7 +84,8 @@ async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Sto
         match confirm_trip(desk, plan, edge, pace).await? {
             Confirmed::Stands => break,
             Confirmed::Moved { after } => {
-                (known, pace, margin) = (false, pace.slower(after), wider(plan, step, margin));
+                from = approach.after_move(plan, edge, pace, after);
+                (known, pace) = (false, pace.slower(after));
             }
         }
     }
@@ -97,12 +98,13 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
     let below_trip = (trip.changed - plan.survey_step).max(plan.floor);
     let mut pace = plan.up;
     let mut edge = survey;
-    let mut margin = 2.0;
     let mut known = plan.fine_step.is_none();
+    let mut approach = Approach::new(plan, survey, below_trip);
+    let mut from = approach.first();
     for _ in 0..ATTEMPTS {
         if !known {
+            desk.enter(Stage::NarrowUp, left(plan, Stage::NarrowUp));
             arm_off(desk, plan, below_trip).await?;
-            let from = (survey.unchanged - step * margin).max(below_trip);
             let to = (survey.changed + plan.survey_step).min(plan.start);
             match walk_up(desk, plan, from, to, step, pace).await? {
                 Some(found) => edge = found,
@@ -113,7 +115,8 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
         match confirm_re_enable(desk, plan, edge, below_trip, pace).await? {
             Confirmed::Stands => break,
             Confirmed::Moved { after } => {
-                (known, pace, margin) = (false, pace.slower(after), wider(plan, step, margin));
+                from = approach.after_move(plan, edge, pace, after);
+                (known, pace) = (false, pace.slower(after));
             }
         }
     }
@@ -122,8 +125,3 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
 
 /// How often a bracket is looked for before the last one has to do.
 const ATTEMPTS: usize = 3;
-
-/// Begins two survey steps further away: the survey was too fast as well.
-fn wider(plan: &Plan, step: Volts, margin: f64) -> f64 {
-    margin + 2.0 * (plan.survey_step / step)
-}

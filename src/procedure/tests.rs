@@ -7,7 +7,7 @@ use crate::units::{Amps, Ohms, Volts, Watts};
 use proptest::prelude::*;
 use std::collections::BTreeMap;
 
-fn plan(ramp: Ramp) -> Plan {
+pub(super) fn plan(ramp: Ramp) -> Plan {
     let off = Limit { at: Some(Volts(5.8)), min: Some(1e-6), max: Some(4e-6) };
     let profile = Profile {
         board: "RN-204".into(),
