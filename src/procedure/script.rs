@@ -5,10 +5,10 @@ use super::confirm::{Confirmed, confirm_re_enable, confirm_trip};
 use super::desk::Desk;
 use super::off_current::measure_off_current;
 use super::pre_check::pre_check;
-use super::probe::{arm_off, arm_on};
+use super::probe::{arm_off, arm_on, probe};
 use super::progress::{Stage, left};
 use super::switch_off::switch_off;
-use super::walk::{Edge, walk_down, walk_up};
+use super::walk::{self, Edge, walk_down, walk_up};
 use super::{Action, Plan};
 use crate::trace::{Ending, Stop};
 use crate::units::Volts;
@@ -53,11 +53,10 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     narrow_re_enable(desk, plan, trip, re_enable).await
 }
 
-/// Goes on below the trip, so that a board that conducts again further down is seen.
+/// Goes on below the trip to the floor, whatever the board does there: one that conducts again must be seen.
 async fn descend_to_floor(desk: &Desk, plan: &Plan, from: Volts) -> Result<(), Stop> {
-    let next = from - plan.survey_step;
-    if next > plan.floor {
-        walk_down(desk, plan, next, plan.floor, plan.survey_step, plan.down).await?;
+    for volts in walk::set_points(from - plan.survey_step, plan.floor, -plan.survey_step) {
+        probe(desk, plan, volts, plan.down).await?;
     }
     Ok(())
 }

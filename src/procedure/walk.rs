@@ -46,21 +46,16 @@ struct Staircase {
     step: Volts,
 }
 
-impl Staircase {
-    /// Set-point `index`; the last one is exactly `to`. Multiples of the step, so that no error adds up.
-    fn set_point(&self, index: u32) -> Option<Volts> {
-        let volts = self.from + self.step * f64::from(index);
-        let beyond = (volts - self.to).0 * self.step.0 > 0.0;
-        let previous_short = ((volts - self.step) - self.to).0 * self.step.0 < -1e-9;
-        if !beyond {
-            Some(volts)
-        } else if previous_short || index == 0 {
-            Some(self.to)
-        } else {
-            None
-        }
-    }
+/// The set-points from `from` to `to`, the last one exactly `to`; none when `from` lies beyond `to`. Multiples of the
+/// step, so that no error adds up.
+pub(super) fn set_points(from: Volts, to: Volts, step: Volts) -> impl Iterator<Item = Volts> {
+    let steps = (to - from) / step;
+    let before = (steps - ROUNDING).ceil().max(0.0) as u32;
+    (0..before).map(move |index| from + step * f64::from(index)).chain((steps > -ROUNDING).then_some(to))
 }
+
+/// Shares of a step that are rounding, not voltage.
+const ROUNDING: f64 = 1e-6;
 
 async fn walk(
     desk: &Desk,
@@ -71,8 +66,7 @@ async fn walk(
 ) -> Result<Option<Edge>, Stop> {
     let mut unchanged = staircase.from - staircase.step;
     let mut undecided = 0;
-    for index in 0.. {
-        let Some(volts) = staircase.set_point(index) else { break };
+    for volts in set_points(staircase.from, staircase.to, staircase.step) {
         let first = probe(desk, plan, volts, pace).await?;
         let (state, sample) = rest(desk, plan, first, until).await?;
         if state == until {
@@ -122,9 +116,7 @@ mod tests {
     #[test]
     fn a_staircase_ends_exactly_at_its_end() {
         let points = |from, to, step| {
-            let staircase = Staircase { from: Volts(from), to: Volts(to), step: Volts(step) };
-            (0..)
-                .map_while(|index| staircase.set_point(index))
+            set_points(Volts(from), Volts(to), Volts(step))
                 .map(|volts| (volts.0 * 1e6).round() / 1e6)
                 .collect::<Vec<_>>()
         };
@@ -132,5 +124,6 @@ mod tests {
         assert_eq!(points(6.0, 5.2, -0.4), [6.0, 5.6, 5.2]);
         assert_eq!(points(5.0, 5.3, 0.1), [5.0, 5.1, 5.2, 5.3]);
         assert_eq!(points(5.0, 5.0, 0.1), [5.0]);
+        assert_eq!(points(5.1, 5.2, -0.1), [0.0; 0]);
     }
 }

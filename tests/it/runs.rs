@@ -6,6 +6,7 @@ use ebbmark::analysis::FindingCode;
 use ebbmark::profile::{Profile, QuantityName};
 use ebbmark::sim::Condition;
 use ebbmark::trace::OutputState;
+use ebbmark::units::Volts;
 use ebbmark::verdict::Outcome;
 use std::collections::BTreeMap;
 
@@ -122,4 +123,20 @@ fn a_slow_board_is_measured_right_and_called_slow() {
     }
     let share = covered as f64 / SEEDS as f64;
     assert!(share >= LEAST_COVERAGE, "U covers the trip in {share} of {SEEDS} seeds");
+}
+
+#[test]
+fn the_ramp_goes_on_below_the_trip_to_the_floor() {
+    let profile = river::profile();
+    let run = run(&profile, Condition::Good, 5);
+    let below =
+        run.trace.samples.iter().filter(|sample| sample.sense.is_some_and(|sense| sense < run.truth.trip));
+    let mut heights: Vec<i64> = below
+        .filter(|sample| sample.set > profile.supply.floor - Volts(0.01))
+        .map(|sample| (sample.set.0 * 1000.0).round() as i64)
+        .collect();
+    heights.sort_unstable();
+    heights.dedup();
+    let survey = heights.windows(2).filter(|pair| pair[1] - pair[0] > 10);
+    assert!(survey.count() >= 8, "set-points below the trip: {heights:?} mV");
 }

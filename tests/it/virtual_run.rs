@@ -11,6 +11,7 @@ use std::time::Duration;
 
 /// What came of a run, and what the board really was.
 pub(crate) struct Run {
+    pub(crate) trace: Trace,
     pub(crate) verdict: Verdict,
     pub(crate) truth: Truth,
 }
@@ -42,7 +43,7 @@ pub(crate) fn run(profile: &Profile, condition: Condition, seed: u64) -> Run {
     let mut bench = VirtualBench::new(&setup, setup.ability());
     let trace = run_on(profile, &setup, &mut bench);
     let verdict = judge(&analyse(&trace, profile), profile, &trace.ending);
-    Run { verdict, truth: bench.world().truth() }
+    Run { trace, verdict, truth: bench.world().truth() }
 }
 
 /// Tests a board while faults strike the bench; also tells whether the output was on at the end.
