@@ -5,25 +5,29 @@ mod bench;
 mod demo;
 mod exit;
 mod files;
+mod guard;
 mod live;
 mod log;
 mod one_run;
 mod show;
 mod sim;
 mod simulated;
+mod station;
 mod stop;
 mod test;
 mod who;
 
 pub use exit::{Exit, Failure};
 
+use crate::report::OUTPUT_MAY_BE_ON;
 use clap::{Parser, Subcommand, ValueEnum};
+use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::process::ExitCode;
 
 /// Tests boards with an undervoltage cut-off: drives a programmable supply down and back up over serial SCPI, finds
 /// trip, re-enable, hysteresis and off current with their uncertainty, judges them, and keeps the record.
 #[derive(Debug, Parser)]
-#[command(version, max_term_width = 100, after_help = EXIT_CODES)]
+#[command(version, max_term_width = 100, after_help = AFTER_HELP)]
 pub struct Cli {
     /// Write what passes over the wire to standard error; twice for every byte.
     #[arg(short, long, global = true, action = clap::ArgAction::Count)]
@@ -58,7 +62,10 @@ enum Format {
     Json,
 }
 
-const EXIT_CODES: &str = "\
+const AFTER_HELP: &str = "\
+Example:
+  ebbmark demo
+
 Exit codes:
   0  pass, or conditional pass
   1  fail, or conditional fail
@@ -78,21 +85,39 @@ pub fn run<T: Into<std::ffi::OsString> + Clone>(arguments: impl IntoIterator<Ite
         }
     };
     start_diagnostics(cli.verbose);
-    let result = match cli.command {
-        Command::Demo(arguments) => arguments.run(),
-        Command::Test(arguments) => arguments.run(),
-        Command::Analyse(arguments) => arguments.run(),
-        Command::Bench(arguments) => arguments.run(),
-        Command::Sim(arguments) => arguments.run(),
-        Command::Log(arguments) => arguments.run(),
-    };
-    match result {
-        Ok(exit) => exit.into(),
-        Err(failure) => {
+    let drives_a_supply = matches!(cli.command, Command::Demo(_) | Command::Test(_) | Command::Bench(_));
+    match catch_unwind(AssertUnwindSafe(|| cli.command.run())) {
+        Ok(Ok(exit)) => exit.into(),
+        Ok(Err(failure)) => {
             anstream::eprintln!("error: {:#}", failure.error);
             failure.exit.into()
         }
+        Err(_) => after_panic(drives_a_supply).into(),
     }
+}
+
+impl Command {
+    fn run(self) -> Result<Exit, Failure> {
+        match self {
+            Command::Demo(arguments) => arguments.run(),
+            Command::Test(arguments) => arguments.run(),
+            Command::Analyse(arguments) => arguments.run(),
+            Command::Bench(arguments) => arguments.run(),
+            Command::Sim(arguments) => arguments.run(),
+            Command::Log(arguments) => arguments.run(),
+        }
+    }
+}
+
+/// The last resort, for a panic outside the run itself, which has a guard of its own. Unwinding has ended every
+/// session, and with it switched off what was on; but nobody is left who could say whether that was confirmed.
+fn after_panic(drives_a_supply: bool) -> Exit {
+    anstream::eprintln!("error: the program itself failed; please report what stands above");
+    if drives_a_supply {
+        anstream::eprintln!("{OUTPUT_MAY_BE_ON}");
+        return Exit::OutputMayBeOn;
+    }
+    Exit::Invalid
 }
 
 fn start_diagnostics(verbose: u8) {

@@ -5,11 +5,13 @@
 
 mod check;
 mod connect;
+mod make_safe;
 mod reading;
 mod settings;
 
 pub use check::{Report, check};
 pub use connect::{ConnectError, connect};
+pub use make_safe::make_safe;
 
 use crate::bench::Bench;
 use crate::bench::clock::Clock;

@@ -11,9 +11,9 @@ use std::path::PathBuf;
 
 #[derive(Debug, Args)]
 #[command(after_help = "\
-A trace is CSV with the header time_s,set_v,sense_v,current_a and, where known, load_v,range_a,limit.
-Several traces are continuous ramps of one board at different rates: together they give its thresholds at
-zero rate and its delays.
+A trace is CSV with the header time_s,set_v,sense_v,current_a and, where known, load_v, range_a
+and limit. Several traces are continuous ramps of one board at different rates: together they
+give its thresholds at zero rate and its delays.
 
 Example:
   ebbmark analyse trace.csv --profile profiles/river-node.toml")]

@@ -13,6 +13,9 @@ use std::fmt::Write;
 use std::path::{Path, PathBuf};
 
 #[derive(Debug, Args)]
+#[command(after_help = "\
+Example:
+  ebbmark bench check instruments/benches/first-bench.toml")]
 pub(super) struct Arguments {
     #[command(subcommand)]
     command: Command,
@@ -70,7 +73,7 @@ impl Check {
                 }
             }
             if let Some(due) = seat.calibration_due {
-                let overdue = if today.date() > due { "  OVERDUE" } else { "" };
+                let overdue = if seat.overdue(today.date()).is_some() { "  OVERDUE" } else { "" };
                 let _ = writeln!(page, "  calibration   due {due}{overdue}");
             }
         }

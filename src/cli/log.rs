@@ -9,6 +9,9 @@ use clap::{Args, Subcommand, ValueEnum};
 use std::path::PathBuf;
 
 #[derive(Debug, Args)]
+#[command(after_help = "\
+Example:
+  ebbmark log show --last 5")]
 pub(super) struct Arguments {
     #[command(subcommand)]
     command: Command,

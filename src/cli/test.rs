@@ -3,6 +3,7 @@
 use super::one_run::{Kept, Order};
 use super::show::print_result;
 use super::simulated::{Simulation, bench_file};
+use super::station::Station;
 use super::{Exit, Failure, Format, files};
 use crate::bench::clock::Clock;
 use crate::profile::Profile;
@@ -59,42 +60,38 @@ pub(super) struct Keeping {
 
 impl Arguments {
     pub(super) fn run(self) -> Result<Exit, Failure> {
-        let profile = files::profile(&self.profile)?;
-        let path = self.profile.display().to_string();
         let kept = match arrangement(&self.bench) {
-            Some(arrangement) => self.on_simulation(&profile, path, arrangement)?,
-            None => self.on_bench(&profile, path)?,
+            Some(arrangement) => self.on_simulation(arrangement)?,
+            None => self.on_bench()?,
         };
         print_result(&kept, self.format)
     }
 
-    fn on_bench(&self, profile: &Profile, profile_path: String) -> Result<Kept, Failure> {
+    /// The station comes before profile and board: what an earlier run left on goes off even when this one is refused.
+    fn on_bench(&self) -> Result<Kept, Failure> {
         let bench = files::bench(&self.bench)?;
+        let name = self.keeping.station.as_deref().unwrap_or(&bench.name);
+        let station = Station::open(&bench, Clock::real(), &self.keeping.logs, name)?;
+        let profile = files::profile(&self.profile)?;
+        let board = self.keeping.board(&profile, &self.serial_number)?;
         if self.format == Format::Text && std::io::stderr().is_terminal() {
             anstream::eprintln!("{CAUTIONS}");
         }
         Order {
-            profile,
-            profile_path,
-            bench: &bench,
-            clock: Clock::real(),
+            profile: &profile,
+            profile_path: self.profile.display().to_string(),
             simulated: None,
-            board: self.keeping.board(profile, &self.serial_number)?,
+            board,
             operator: self.keeping.operator.clone(),
-            logs: self.keeping.logs.clone(),
-            station: self.keeping.station.clone().unwrap_or_else(|| bench.name.clone()),
         }
-        .carry_out()
+        .carry_out(station)
     }
 
-    fn on_simulation(
-        &self,
-        profile: &Profile,
-        profile_path: String,
-        arrangement: Arrangement,
-    ) -> Result<Kept, Failure> {
-        let board = self.keeping.board(profile, &self.serial_number)?;
-        on_simulation(&self.simulation, profile, profile_path, arrangement, board, &self.keeping)
+    fn on_simulation(&self, arrangement: Arrangement) -> Result<Kept, Failure> {
+        let profile = files::profile(&self.profile)?;
+        let path = self.profile.display().to_string();
+        let board = self.keeping.board(&profile, &self.serial_number)?;
+        on_simulation(&self.simulation, &profile, path, arrangement, board, &self.keeping)
     }
 }
 
@@ -110,18 +107,10 @@ pub(super) fn on_simulation(
     let simulated = simulation.of_board(&board.serial_number);
     let instruments = simulation.start(profile, &simulated, arrangement)?;
     let bench = bench_file(&instruments)?;
-    Order {
-        profile,
-        profile_path,
-        bench: &bench,
-        clock: simulation.clock(),
-        simulated: Some(simulated),
-        board,
-        operator: keeping.operator.clone(),
-        logs: keeping.logs.clone(),
-        station: keeping.station.clone().unwrap_or_else(|| "simulated".to_owned()),
-    }
-    .carry_out()
+    let name = keeping.station.as_deref().unwrap_or("simulated");
+    let station = Station::open(&bench, simulation.clock(), &keeping.logs, name)?;
+    let operator = keeping.operator.clone();
+    Order { profile, profile_path, simulated: Some(simulated), board, operator }.carry_out(station)
 }
 
 impl Keeping {

@@ -88,3 +88,10 @@ impl BenchFile {
         self.instruments.iter().find(|instrument| instrument.roles.contains(&role))
     }
 }
+
+impl BenchInstrument {
+    /// The day its calibration ended, when that is before `today`. A calibration holds through its last day.
+    pub fn overdue(&self, today: Date) -> Option<Date> {
+        self.calibration_due.filter(|due| today > *due)
+    }
+}
