@@ -7,6 +7,7 @@ use crate::bench::serial::{Report, check};
 use crate::instrument::definition::{Definition, Role, builtin_names};
 use crate::instrument::library;
 use crate::instrument::serial_port::ports_present;
+use crate::report::OUTPUT_MAY_BE_ON;
 use crate::units::Volts;
 use clap::{Args, Subcommand};
 use std::fmt::Write;
@@ -68,7 +69,9 @@ impl Check {
             match report {
                 Ok(report) => page.push_str(&found(report)),
                 Err(error) => {
-                    exit = Exit::Invalid;
+                    if exit != Exit::OutputMayBeOn {
+                        exit = if bench.stays_on(error) { Exit::OutputMayBeOn } else { Exit::Invalid };
+                    }
                     let _ = writeln!(page, "  NOT READY     {error}");
                 }
             }
@@ -83,6 +86,9 @@ impl Check {
             if exit == Exit::Pass { "The bench is ready." } else { "The bench is not ready." }
         );
         print(&page)?;
+        if exit == Exit::OutputMayBeOn {
+            anstream::eprintln!("{OUTPUT_MAY_BE_ON}");
+        }
         Ok(exit)
     }
 }

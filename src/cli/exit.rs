@@ -1,5 +1,6 @@
 //! What the process tells its caller.
 
+use crate::report::OUTPUT_MAY_BE_ON;
 use crate::trace::{Ending, OutputState};
 use crate::verdict::Outcome;
 use std::process::ExitCode;
@@ -62,6 +63,11 @@ impl Failure {
     /// A failure of the bench.
     pub fn bench(error: impl Into<anyhow::Error>) -> Self {
         Self { exit: Exit::Invalid, error: error.into() }
+    }
+
+    /// A failure that leaves the output perhaps on; the message begins with what to do about that.
+    pub fn output_may_be_on(error: impl std::fmt::Display) -> Self {
+        Self { exit: Exit::OutputMayBeOn, error: anyhow::anyhow!("{OUTPUT_MAY_BE_ON}\n{error}") }
     }
 }
 

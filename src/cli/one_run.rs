@@ -3,9 +3,9 @@
 use super::live::Live;
 use super::station::Station;
 use super::stop::asked_to_stop;
-use super::{Exit, Failure, files, guard, who};
+use super::{Failure, files, guard, who};
 use crate::bench::Bench;
-use crate::bench::serial::{SerialBench, connect};
+use crate::bench::serial::SerialBench;
 use crate::procedure::{Plan, Procedure};
 use crate::profile::Profile;
 use crate::record::{BenchUsed, BoardUnderTest, Finished, ProfileUsed, Run, Simulated, Subject, now};
@@ -35,9 +35,7 @@ impl Order<'_> {
         files::fit(self.profile, station.bench)?;
         station.note_calibration();
         let maximum = self.profile.supply.maximum;
-        let connecting = connect(station.bench, maximum, station.clock);
-        let mut bench = station.runtime.block_on(connecting).map_err(Failure::bench)?;
-        station.runtime.block_on(bench.begin_run()).map_err(Failure::bench)?;
+        let mut bench = station.connect(maximum)?;
 
         station.log.start(self.subject(&station, &bench), now())?;
         let plan = Plan::new(self.profile, &station.bench.ability(maximum));
@@ -50,14 +48,15 @@ impl Order<'_> {
 
         let verdict = guard::judged(&trace, self.profile);
         let finished = Finished { verdict, ended: now(), duration: bench.now() };
-        // Said before anything can go wrong with keeping the run.
-        if trace.ending.output == OutputState::MayBeOn {
+        let may_be_on = trace.ending.output == OutputState::MayBeOn;
+        let run = station
+            .log
+            .finish(&finished, &trace)
+            .map_err(|error| if may_be_on { Failure::output_may_be_on(error) } else { error.into() })?;
+        if may_be_on {
+            // Standard output may go to a program; whoever stands at the bench reads this.
             anstream::eprintln!("{OUTPUT_MAY_BE_ON}");
         }
-        let run = station.log.finish(&finished, &trace).map_err(|error| Failure {
-            exit: if trace.ending.output == OutputState::MayBeOn { Exit::OutputMayBeOn } else { Exit::Usage },
-            error: error.into(),
-        })?;
         Ok(Kept { run, folder: station.log.folder().path().to_owned() })
     }
 

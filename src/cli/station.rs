@@ -1,11 +1,11 @@
 //! A station about to work: its log open, and whatever an earlier run left on switched off.
 
-use super::{Exit, Failure};
+use super::Failure;
 use crate::bench::clock::Clock;
-use crate::bench::serial::make_safe;
+use crate::bench::serial::{ConnectError, SerialBench, connect, make_safe};
 use crate::instrument::bench_file::BenchFile;
 use crate::record::{Log, now};
-use crate::report::OUTPUT_MAY_BE_ON;
+use crate::units::Volts;
 use std::path::Path;
 
 /// A bench, the clock it keeps, and the log of where it stands.
@@ -36,13 +36,23 @@ impl<'b> Station<'b> {
     }
 
     fn switch_off(&mut self) -> Result<(), Failure> {
-        self.runtime.block_on(make_safe(self.bench, self.clock)).map_err(|error| Failure {
-            exit: Exit::OutputMayBeOn,
-            error: anyhow::anyhow!("{OUTPUT_MAY_BE_ON}\n{error}"),
-        })?;
+        self.runtime.block_on(make_safe(self.bench, self.clock)).map_err(Failure::output_may_be_on)?;
         self.log.confirm_output_off()?;
         anstream::eprintln!("note: the output was commanded off and reads back as off");
         Ok(())
+    }
+
+    /// Connects the bench, made fit for a run in which no voltage exceeds `maximum`.
+    pub(super) fn connect(&self, maximum: Volts) -> Result<SerialBench, Failure> {
+        let connecting = connect(self.bench, maximum, self.clock);
+        let mut bench = self.runtime.block_on(connecting).map_err(|error| match &error {
+            ConnectError::Instruments { errors } if errors.iter().any(|error| self.bench.stays_on(error)) => {
+                Failure::output_may_be_on(error)
+            }
+            _ => Failure::bench(error),
+        })?;
+        self.runtime.block_on(bench.begin_run()).map_err(Failure::bench)?;
+        Ok(bench)
     }
 
     /// Says which instruments are past their calibration. They measure all the same.

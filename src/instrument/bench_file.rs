@@ -28,6 +28,7 @@ pub use identity::{Identity, WrongIdentity};
 pub use parts::RoleMissing;
 
 use super::definition::{Definition, Role};
+use super::error::InstrumentError;
 use crate::units::Ohms;
 use jiff::civil::Date;
 use parts::Parts;
@@ -81,6 +82,13 @@ impl BenchFile {
     /// All instruments, in the order of the file.
     pub fn instruments(&self) -> &[BenchInstrument] {
         &self.instruments
+    }
+
+    /// Whether this error is the supply's answer that its output stays on although it was commanded off.
+    pub fn stays_on(&self, error: &InstrumentError) -> bool {
+        let source = self.player(Role::Source).and_then(|supply| supply.definition.source.as_ref());
+        let off = source.map(|part| part.commands.output_off.as_str());
+        matches!(error, InstrumentError::NotTaken { command, .. } if Some(command.as_str()) == off)
     }
 
     /// The instrument that plays `role`.
