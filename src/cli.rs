@@ -89,7 +89,7 @@ pub fn run<T: Into<std::ffi::OsString> + Clone>(arguments: impl IntoIterator<Ite
     match catch_unwind(AssertUnwindSafe(|| cli.command.run())) {
         Ok(Ok(exit)) => exit.into(),
         Ok(Err(failure)) => {
-            anstream::eprintln!("error: {:#}", failure.error);
+            anstream::eprintln!("{}", headed(&format!("{:#}", failure.error)));
             failure.exit.into()
         }
         Err(_) => after_panic(drives_a_supply).into(),
@@ -107,6 +107,12 @@ impl Command {
             Command::Log(arguments) => arguments.run(),
         }
     }
+}
+
+/// A message as an error. Those about places in a file have their heading already.
+fn headed(message: &str) -> String {
+    const HEADING: &str = "error: ";
+    if message.starts_with(HEADING) { message.to_owned() } else { format!("{HEADING}{message}") }
 }
 
 /// The last resort, for a panic outside the run itself, which has a guard of its own. Unwinding has ended every
