@@ -3,6 +3,8 @@
 mod circuit;
 mod conditions;
 #[cfg(unix)]
+mod cli;
+#[cfg(unix)]
 mod definitions_on_simulation;
 mod log;
 mod nine_volt;

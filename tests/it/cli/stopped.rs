@@ -1,0 +1,51 @@
+//! A run that the operator or the system stops: the output goes off, and what was measured is kept as ABORTED.
+
+use super::workplace::Workplace;
+use ebbmark::trace::{OutputState, Stop};
+use ebbmark::verdict::Outcome;
+
+#[track_caller]
+fn aborted_by(signal: &str) {
+    let place = Workplace::new();
+    let running = place.begin_test(&["--format", "json"]);
+    place.await_readings();
+    running.signal(signal);
+    let said = running.end();
+    said.ended(4);
+    assert!(!place.bench.output(), "the output is on\n{said}");
+    let (run, trace) = place.kept();
+    assert_eq!((run.outcome, &trace.ending.stop), (Outcome::Aborted, &Stop::Aborted));
+    assert_eq!(trace.ending.output, OutputState::Off);
+    assert!(trace.samples.len() > 3, "{trace:?}");
+    assert_eq!(said.json()["outcome"], "ABORTED", "{said}");
+    assert!(!place.log().path().join("started.json").exists(), "the mark is still there");
+}
+
+#[test]
+fn ctrl_c_switches_off_and_keeps_the_record() {
+    aborted_by("INT");
+}
+
+#[test]
+fn a_request_to_end_switches_off_and_keeps_the_record() {
+    aborted_by("TERM");
+}
+
+#[test]
+fn a_terminal_that_is_closed_switches_off_and_keeps_the_record() {
+    aborted_by("HUP");
+}
+
+/// Whoever presses Ctrl-C twice gets no further with it, but no less: the output is off and the record kept.
+#[test]
+fn a_second_ctrl_c_does_not_keep_the_output_from_going_off() {
+    let place = Workplace::new();
+    let running = place.begin_test(&[]);
+    place.await_readings();
+    running.signal("INT");
+    running.signal("INT");
+    let said = running.end();
+    said.ended(4);
+    assert!(!place.bench.output() && said.out.contains("ABORTED"), "{said}");
+    assert_eq!(place.kept().0.outcome, Outcome::Aborted);
+}
