@@ -49,6 +49,9 @@ impl Arguments {
             let path = files::RIVER_NODE.0.to_owned();
             let kept = on_simulation(&simulation, &profile, path, Arrangement::Separate, board, &keeping)?;
             let outcome = print_result(&kept, Format::Text)?;
+            if matches!(outcome, Exit::Aborted | Exit::OutputMayBeOn) {
+                return Ok(outcome);
+            }
             if kept.run.outcome != expected {
                 exit = outcome;
             }

@@ -2,7 +2,7 @@
 
 use super::live::Live;
 use super::station::Station;
-use super::stop::asked_to_stop;
+use super::stop::listen;
 use super::{Failure, files, guard, who};
 use crate::bench::Bench;
 use crate::bench::serial::SerialBench;
@@ -37,13 +37,14 @@ impl Order<'_> {
         let maximum = self.profile.supply.maximum;
         let mut bench = station.connect(maximum)?;
 
+        let asked_to_stop = listen(&station.runtime)?;
         station.log.start(self.subject(&station, &bench), now())?;
         let plan = Plan::new(self.profile, &station.bench.ability(maximum));
         let claims = station.bench.claims(&self.profile.supply);
         let mut live = Live::new(self.profile.load.resistance);
         let procedure = Procedure::new(plan);
         let runtime = &station.runtime;
-        let trace = guard::driven(procedure, &mut bench, claims, &mut live, asked_to_stop(), runtime);
+        let trace = guard::driven(procedure, &mut bench, claims, &mut live, asked_to_stop, runtime);
         live.finish();
 
         let verdict = guard::judged(&trace, self.profile);

@@ -2,7 +2,7 @@
 
 use super::show::print;
 use super::simulated::Simulation;
-use super::stop::asked_to_stop;
+use super::stop::listen;
 use super::{Exit, Failure, files};
 use crate::sim::Condition;
 use crate::sim::bench::Arrangement;
@@ -40,6 +40,8 @@ impl Arguments {
             Some(path) => files::profile(path)?,
             None => files::river_node()?,
         };
+        let runtime = tokio::runtime::Builder::new_current_thread().enable_all().build()?;
+        let asked_to_stop = listen(&runtime)?;
         let simulated = self.simulation.of_board("");
         let arrangement =
             if self.source_measure_unit { Arrangement::SourceMeasureUnit } else { Arrangement::Separate };
@@ -49,8 +51,7 @@ impl Arguments {
                 .with_context(|| format!("cannot write {}", path.display()))?;
         }
         print(&format!("{}\nStop with Ctrl-C.\n", bench.describe()))?;
-        let runtime = tokio::runtime::Builder::new_current_thread().enable_all().build()?;
-        runtime.block_on(asked_to_stop());
+        runtime.block_on(asked_to_stop);
         Ok(Exit::Pass)
     }
 }

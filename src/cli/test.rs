@@ -19,7 +19,8 @@ use std::path::{Path, PathBuf};
 Example:
   ebbmark test profiles/river-node.toml --bench sim --serial-number RN000123
 
-The exit code is the outcome: 0 pass, 1 fail, 3 invalid, 4 aborted, 5 the output may still be on.")]
+The exit code is the outcome: 0 pass, 1 fail, 3 invalid, 4 aborted, 5 the output may still be on.
+Standard output stays empty when no run began; standard error says why.")]
 pub(super) struct Arguments {
     /// Profile of the board.
     profile: PathBuf,

@@ -4,6 +4,7 @@ use super::workplace::{Workplace, always, at, once};
 use super::{Said, ebbmark};
 use ebbmark::sim::device::{Kind, ScpiError};
 use ebbmark::sim::link_faults::{Effect, LinkFault, When};
+use std::time::Duration;
 
 /// Refused as a failure of the bench, before a run began.
 #[track_caller]
@@ -88,6 +89,15 @@ fn a_set_up_that_the_instrument_reports_as_an_error_is_quoted() {
     not_ready_with(
         once(Kind::Ammeter, at("NPLC"), Effect::Refuse(ScpiError::UNDEFINED_HEADER)),
         &["ammeter on ", "-113", "Undefined header", "NPLC"],
+    );
+}
+
+/// The second token of the round trip that proves the link is the one with which a run begins.
+#[test]
+fn an_instrument_that_restarts_just_before_the_run_is_found_out() {
+    not_ready_with(
+        once(Kind::Ammeter, at("*ESE 2"), Effect::Restart(Duration::ZERO)),
+        &["ammeter on ", "has restarted", "test the board again"],
     );
 }
 

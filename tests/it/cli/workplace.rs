@@ -92,15 +92,7 @@ impl Workplace {
 
     /// Begins to test the board and leaves the program running.
     pub(super) fn begin_test(&self, more: &[&str]) -> Running {
-        let child = Command::new(env!("CARGO_BIN_EXE_ebbmark"))
-            .current_dir(self.folder())
-            .args(arguments(BOARD))
-            .args(more)
-            .stdin(Stdio::null())
-            .stdout(Stdio::piped())
-            .stderr(Stdio::piped())
-            .spawn();
-        Running(Some(child.expect("the program starts")))
+        Running::start(self.folder(), &[&arguments(BOARD)[..], more].concat())
     }
 
     /// Waits until the output is on and the board has been read a few times with it on.
@@ -187,6 +179,18 @@ pub(super) fn at(text: &str) -> When {
 pub(super) struct Running(Option<Child>);
 
 impl Running {
+    /// Starts the program in `folder` and lets it run.
+    pub(super) fn start(folder: &Path, arguments: &[&str]) -> Self {
+        let child = Command::new(env!("CARGO_BIN_EXE_ebbmark"))
+            .current_dir(folder)
+            .args(arguments)
+            .stdin(Stdio::null())
+            .stdout(Stdio::piped())
+            .stderr(Stdio::piped())
+            .spawn();
+        Self(Some(child.expect("the program starts")))
+    }
+
     /// Sends a signal by the name `kill` (POSIX) knows it by.
     pub(super) fn signal(&self, name: &str) {
         let id = self.0.as_ref().map(Child::id).expect("not waited for yet").to_string();
