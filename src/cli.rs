@@ -134,3 +134,14 @@ fn start_diagnostics(verbose: u8) {
     };
     tracing_subscriber::fmt().with_max_level(level).with_writer(std::io::stderr).without_time().init();
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_program_that_failed_never_looks_like_one_that_did_its_work() {
+        assert_eq!(after_panic(true), Exit::OutputMayBeOn);
+        assert_eq!(after_panic(false), Exit::Invalid);
+    }
+}

@@ -1,4 +1,4 @@
-//! The outcome of a run: one word, whether it counts in a yield, and the exit code it stands for.
+//! The outcome of a run: one word, and whether it counts in a yield.
 
 use super::Decision;
 use serde::{Deserialize, Serialize};
