@@ -2,7 +2,7 @@
 //!
 //! The program gets a file size limit from its shell (`ulimit -f`, POSIX), so that the system itself refuses.
 
-use super::workplace::{BOARD, Workplace};
+use super::workplace::{BOARD, SPEED, Workplace};
 use super::{Said, ebbmark};
 use ebbmark::record::Run;
 use ebbmark::sim::device::Kind;
@@ -27,7 +27,7 @@ fn test_within(place: &Workplace, blocks: usize) -> Said {
 #[test]
 fn a_run_that_cannot_be_kept_is_written_elsewhere_and_said_to_be() {
     let place = Workplace::new();
-    let earlier = ["test", "profile.toml", "--bench", "sim", "--station", "sim", "--speed", "50"];
+    let earlier = ["test", "profile.toml", "--bench", "sim", "--station", "sim", "--speed", SPEED];
     ebbmark(place.folder(), &[&earlier[..], &["--serial-number", BOARD]].concat()).ended(0);
     let traces = place.log_files().into_iter().find(|path| path.to_string_lossy().contains("traces"));
     let traces = traces.expect("a file of traces");

@@ -42,6 +42,19 @@ fn invalid(place: &Workplace, said: &Said, kind: FaultKind, phrases: &[&str]) {
     assert_eq!(told.filter(|finding| finding["text"] == found.text.as_str()).count(), 1, "{said}");
 }
 
+/// The same with a fault that has the program wait for an instrument in vain.
+#[track_caller]
+fn invalid_after_waiting(fault: LinkFault, kind: FaultKind, phrases: &[&str]) {
+    let mut place = Workplace::new();
+    place.give_up_soon_on(match fault.instrument {
+        Kind::Ammeter => "bench-meter-current",
+        Kind::Voltmeter | Kind::LoadVoltmeter => "bench-meter-voltage",
+        Kind::Supply | Kind::SourceMeasureUnit => "programmable-supply",
+    });
+    let said = struck(&mut place, |place| place.bench.inject(fault));
+    invalid(&place, &said, kind, phrases);
+}
+
 #[track_caller]
 fn invalid_after(fault: LinkFault, kind: FaultKind, phrases: &[&str]) {
     let mut place = Workplace::new();
@@ -52,7 +65,11 @@ fn invalid_after(fault: LinkFault, kind: FaultKind, phrases: &[&str]) {
 #[test]
 fn a_reply_that_is_lost() {
     let fault = once(Kind::Voltmeter, at("READ?"), Effect::NoReply);
-    invalid_after(fault, FaultKind::NoReply, &["voltmeter on ", "did not answer \"READ?\" within 500 ms"]);
+    invalid_after_waiting(
+        fault,
+        FaultKind::NoReply,
+        &["voltmeter on ", "did not answer \"READ?\" within 500 ms"],
+    );
 }
 
 #[test]
@@ -63,32 +80,52 @@ fn an_instrument_that_falls_silent() {
         lasting: Lasting::Always,
         effect: Effect::Swallow,
     };
-    invalid_after(fault, FaultKind::NoReply, &["ammeter on ", "did not answer", "check that it is on"]);
+    invalid_after_waiting(
+        fault,
+        FaultKind::NoReply,
+        &["ammeter on ", "did not answer", "check that it is on"],
+    );
 }
 
 #[test]
 fn a_reply_that_comes_late() {
     let fault = once(Kind::Ammeter, at("READ?"), Effect::LateReply(TOO_LATE));
-    invalid_after(fault, FaultKind::NoReply, &["ammeter on ", "did not answer \"READ?\" within 500 ms"]);
+    invalid_after_waiting(
+        fault,
+        FaultKind::NoReply,
+        &["ammeter on ", "did not answer \"READ?\" within 500 ms"],
+    );
 }
 
 /// The answer comes while the output is being switched off over the same port, and is not taken for its read-back.
 #[test]
 fn a_late_reply_of_the_supply_does_not_stand_for_output_off() {
     let fault = once(Kind::Supply, at("VOLT?"), Effect::LateReply(TOO_LATE));
-    invalid_after(fault, FaultKind::NoReply, &["supply on ", "did not answer \"VOLT?\" within 500 ms"]);
+    invalid_after_waiting(
+        fault,
+        FaultKind::NoReply,
+        &["supply on ", "did not answer \"VOLT?\" within 500 ms"],
+    );
 }
 
 #[test]
 fn a_reply_that_is_cut_is_no_number() {
     let fault = once(Kind::Voltmeter, at("READ?"), Effect::CutReply(TOO_LATE));
-    invalid_after(fault, FaultKind::BadReply, &["voltmeter on ", "no line end", "the reply is not used"]);
+    invalid_after_waiting(
+        fault,
+        FaultKind::BadReply,
+        &["voltmeter on ", "no line end", "the reply is not used"],
+    );
 }
 
 #[test]
 fn garbage_is_quoted() {
     let fault = once(Kind::Voltmeter, at("READ?"), Effect::Garbage(b"7.\x00~4x\n".to_vec()));
-    invalid_after(fault, FaultKind::BadReply, &["voltmeter on ", "\"READ?\" with ", "wanted a number"]);
+    invalid_after_waiting(
+        fault,
+        FaultKind::BadReply,
+        &["voltmeter on ", "\"READ?\" with ", "wanted a number"],
+    );
 }
 
 /// SCPI-1999 vol. 1, 7.2.1.4: 9.9E37 stands for infinity, which is how a meter says that its range is exceeded.

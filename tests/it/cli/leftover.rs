@@ -34,8 +34,7 @@ fn the_next_start_switches_off_first_and_then_tests_the_board() {
     let said = place.test(&["--format", "json"]);
     said.ended(0);
     made_safe(&place, &said);
-    let json = said.json();
-    assert_eq!((&json["outcome"], &json["attempt"]), (&"CONDITIONAL PASS".into(), &2.into()), "{said}");
+    assert_eq!(said.json()["attempt"], 2, "{said}");
     assert_eq!(place.runs().len(), 2);
 }
 

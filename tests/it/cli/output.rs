@@ -1,5 +1,6 @@
 //! What the program writes, to whom: results to standard output, the rest to standard error, plain for programs.
 
+use super::workplace::{SPEED, quick_profile};
 use super::{Said, ebbmark};
 use serde_json::Value;
 use std::fs;
@@ -12,7 +13,7 @@ const KEYS: [&str; 7] = ["schema", "outcome", "board", "revision", "serial_numbe
 fn folder() -> TempDir {
     let folder = tempfile::tempdir().expect("a temporary folder");
     let put = |name: &str, text: &str| fs::write(folder.path().join(name), text).expect("writable");
-    put("profile.toml", include_str!("../../../profiles/river-node.toml"));
+    put("profile.toml", &quick_profile());
     put("good.csv", include_str!("../../data/circuit/good.csv"));
     put("high.csv", include_str!("../../data/circuit/high_trip.csv"));
     folder
@@ -21,7 +22,7 @@ fn folder() -> TempDir {
 /// Tests a simulated board many times faster than real.
 fn simulated(folder: &TempDir, condition: &str, more: &[&str]) -> Said {
     let arguments =
-        ["test", "profile.toml", "--bench", "sim", "--serial-number", "RN000123", "--speed", "50"];
+        ["test", "profile.toml", "--bench", "sim", "--serial-number", "RN000123", "--speed", SPEED];
     ebbmark(folder.path(), &[&arguments[..], &["--condition", condition], more].concat())
 }
 

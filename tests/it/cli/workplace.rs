@@ -1,7 +1,7 @@
 //! A bench of simulated instruments that outlives the program under test, with its files and logs.
 //!
 //! The bench runs in this process and the program in its own, as a real bench would: whether the output is truly on is
-//! asked of the simulation, never of the program. Time is real, and deadlines are half of a real bench's.
+//! asked of the simulation, never of the program. Time is real, and nothing is late unless a test makes it so.
 
 use super::{HANGS, Said, ebbmark};
 use crate::simulated_bench::setup;
@@ -22,6 +22,13 @@ use tempfile::TempDir;
 
 /// A board of the profile.
 pub(super) const BOARD: &str = "RN000123";
+
+/// Where a run need not be seen from outside, the program's own simulation runs so many times faster than the wall.
+/// Deadlines shrink with it, so no more than a busy computer can keep.
+pub(super) const SPEED: &str = "5";
+
+/// How long an instrument may keep the program waiting, unless a test says otherwise.
+const PATIENCE: &str = "8 s";
 
 pub(super) struct Workplace {
     pub(super) bench: SimulatedBench,
@@ -59,7 +66,7 @@ impl Workplace {
         place.put("bench.toml", &place.bench.bench_file());
         place.put("profile.toml", &quick_profile());
         for name in ["programmable-supply", "bench-meter-current", "bench-meter-voltage"] {
-            place.put(&format!("{name}.toml"), &quick_definition(name));
+            place.put(&format!("{name}.toml"), &patient_definition(name));
             place.edit("bench.toml", &format!("\"{name}\""), &format!("\"{name}.toml\""));
         }
         place
@@ -72,6 +79,12 @@ impl Workplace {
     /// Writes a file of this place.
     pub(super) fn put(&self, name: &str, text: &str) {
         fs::write(self.folder().join(name), text).expect("writable");
+    }
+
+    /// Has instruments of this definition given up on after 500 ms, where a fault makes the program wait in vain.
+    pub(super) fn give_up_soon_on(&self, definition: &str) {
+        let name = format!("{definition}.toml");
+        self.edit(&name, &format!("reply = \"{PATIENCE}\""), "reply = \"500 ms\"");
     }
 
     /// Changes a file of this place.
@@ -144,7 +157,7 @@ fn arguments(serial_number: &str) -> [&str; 6] {
 }
 
 /// The river-level logger in large steps, so that a run takes little real time.
-fn quick_profile() -> String {
+pub(super) fn quick_profile() -> String {
     let text = include_str!("../../../profiles/river-node.toml");
     let quick = text.replace("mode = \"search\"", "mode = \"staircase\"");
     let quick = quick.replace("step = \"10 mV\"", "step = \"60 mV\"");
@@ -152,12 +165,12 @@ fn quick_profile() -> String {
     quick
 }
 
-/// A definition that comes with the program, of an instrument that is given up on sooner.
-fn quick_definition(name: &str) -> String {
+/// A definition that comes with the program, of an instrument that is waited for longer: a busy computer is no fault.
+fn patient_definition(name: &str) -> String {
     let text = builtin(name).expect("it comes with the program");
-    let quick = text.replace("reply = \"1 s\"", "reply = \"500 ms\"");
-    assert_ne!(quick, text);
-    quick
+    let patient = text.replace("reply = \"1 s\"", &format!("reply = \"{PATIENCE}\""));
+    assert_ne!(patient, text);
+    patient
 }
 
 /// Something that goes wrong once.
