@@ -1,9 +1,9 @@
 //! Integration tests, a module per theme.
 
 mod circuit;
-mod conditions;
 #[cfg(unix)]
 mod cli;
+mod conditions;
 #[cfg(unix)]
 mod definitions_on_simulation;
 mod log;

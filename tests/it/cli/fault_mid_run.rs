@@ -15,8 +15,7 @@ const TOO_LATE: Duration = Duration::from_millis(800);
 
 /// A test of the board during which something happens while it is on and being read.
 fn struck(place: &mut Workplace, strike: impl FnOnce(&mut Workplace)) -> Said {
-    let running = place.begin_test(&["--format", "json"]);
-    place.await_readings();
+    let running = place.test_under_way(&["--format", "json"]);
     strike(place);
     running.end()
 }
@@ -209,8 +208,7 @@ fn a_supply_that_is_unplugged_may_still_be_on() {
 #[test]
 fn a_supply_that_refuses_to_switch_off_may_still_be_on() {
     let mut place = Workplace::new();
-    let running = place.begin_test(&[]);
-    place.await_readings();
+    let running = place.test_under_way(&[]);
     place.bench.inject(always(Kind::Supply, at("OUTP OFF"), Effect::Refuse(ScpiError::SETTINGS_CONFLICT)));
     running.signal("TERM");
     let said = running.end();

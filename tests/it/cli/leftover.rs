@@ -11,8 +11,7 @@ const OFF: &str = "note: the output was commanded off and reads back as off";
 /// A place where a run was killed while the board was on.
 fn killed() -> Workplace {
     let place = Workplace::new();
-    let running = place.begin_test(&[]);
-    place.await_readings();
+    let running = place.test_under_way(&[]);
     running.kill();
     assert!(place.bench.output(), "killed, it cannot have switched off");
     place

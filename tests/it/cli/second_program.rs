@@ -8,8 +8,7 @@ fn a_second_program_is_refused_by_the_log_and_by_the_port() {
     let place = Workplace::new();
     // Longer than both others together take.
     place.edit("profile.toml", "step = \"60 mV\"", "step = \"5 mV\"");
-    let first = place.begin_test(&[]);
-    place.await_readings();
+    let first = place.test_under_way(&[]);
 
     let same_log = place.test(&[]);
     same_log.refuses(2, &["logs/sim/.lock is in use by process ", "a second program on the same bench"]);

@@ -1,14 +1,13 @@
 //! A run that the operator or the system stops: the output goes off, and what was measured is kept as ABORTED.
 
-use super::workplace::{Running, Workplace, await_until};
+use super::workplace::{Running, Workplace};
 use ebbmark::trace::{OutputState, Stop};
 use ebbmark::verdict::Outcome;
 
 #[track_caller]
 fn aborted_by(signal: &str) {
     let place = Workplace::new();
-    let running = place.begin_test(&["--format", "json"]);
-    place.await_readings();
+    let running = place.test_under_way(&["--format", "json"]);
     running.signal(signal);
     let said = running.end();
     said.ended(4);
@@ -45,8 +44,7 @@ fn a_request_to_quit_switches_off_and_keeps_the_record() {
 #[test]
 fn a_second_ctrl_c_does_not_keep_the_output_from_going_off() {
     let place = Workplace::new();
-    let running = place.begin_test(&[]);
-    place.await_readings();
+    let running = place.test_under_way(&[]);
     running.signal("INT");
     running.signal("INT");
     let said = running.end();
@@ -59,9 +57,9 @@ fn a_second_ctrl_c_does_not_keep_the_output_from_going_off() {
 #[test]
 fn a_demonstration_that_is_stopped_ends_there() {
     let folder = tempfile::tempdir().expect("a temporary folder");
-    let running = Running::start(folder.path(), &["demo"]);
+    let mut running = Running::start(folder.path(), &["demo"]);
     let mark = folder.path().join("logs/demo/started.json");
-    await_until("a run has begun", || mark.exists());
+    running.until("a run has begun", || mark.exists());
     running.signal("INT");
     let said = running.end();
     said.ended(4);
@@ -71,10 +69,10 @@ fn a_demonstration_that_is_stopped_ends_there() {
 #[test]
 fn a_simulated_bench_that_is_stopped_takes_its_ports_along() {
     let folder = tempfile::tempdir().expect("a temporary folder");
-    let running = Running::start(folder.path(), &["sim", "--bench-file", "bench.toml"]);
+    let mut running = Running::start(folder.path(), &["sim", "--bench-file", "bench.toml"]);
     let file = folder.path().join("bench.toml");
     let text = || std::fs::read_to_string(&file).unwrap_or_default();
-    await_until("the bench file is there", || text().contains("load_voltmeter"));
+    running.until("the bench file is there", || text().contains("load_voltmeter"));
     let ports: Vec<String> =
         text().lines().filter_map(|line| line.strip_prefix("port = ")).map(str::to_owned).collect();
     let is_there = |port: &String| std::path::Path::new(port.trim_matches('"')).exists();

@@ -103,20 +103,17 @@ impl Workplace {
         ebbmark(self.folder(), &[&arguments(serial_number)[..], more].concat())
     }
 
-    /// Begins to test the board and leaves the program running.
-    pub(super) fn begin_test(&self, more: &[&str]) -> Running {
-        Running::start(self.folder(), &[&arguments(BOARD)[..], more].concat())
-    }
-
-    /// Waits until the output is on and the board has been read a few times with it on.
-    pub(super) fn await_readings(&self) {
-        await_until("the output is on", || self.bench.output());
+    /// Begins to test the board, and waits until the output is on and the board has been read a few times.
+    pub(super) fn test_under_way(&self, more: &[&str]) -> Running {
+        let mut running = Running::start(self.folder(), &[&arguments(BOARD)[..], more].concat());
+        running.until("the output is on", || self.bench.output());
         self.bench.take_exchanges(Kind::Voltmeter);
         let mut readings = 0;
-        await_until("the board is read", || {
+        running.until("the board is read", || {
             readings += self.bench.take_exchanges(Kind::Voltmeter).len();
             readings > 10
         });
+        running
     }
 
     /// The log of the bench.
@@ -211,6 +208,19 @@ impl Running {
         assert!(sent.success(), "{name} to {id}");
     }
 
+    /// Looks again and again until something is so. A program that ends before fails the test.
+    #[track_caller]
+    pub(super) fn until(&mut self, what: &str, mut is_so: impl FnMut() -> bool) {
+        let clock = Clock::real();
+        while !is_so() {
+            let child = self.0.as_mut().expect("not waited for yet");
+            let ended = child.try_wait().expect("a child");
+            assert!(ended.is_none(), "ended before {what}: {}", Said::of(&self.output()));
+            assert!(clock.now() < HANGS, "waited in vain until {what}");
+            std::thread::sleep(Duration::from_millis(2));
+        }
+    }
+
     /// Waits for its end and returns what it said.
     pub(super) fn end(mut self) -> Said {
         Said::of(&self.output())
@@ -234,15 +244,5 @@ impl Drop for Running {
             let _ = child.kill();
             let _ = child.wait();
         }
-    }
-}
-
-/// Looks again and again until something is so.
-#[track_caller]
-pub(super) fn await_until(what: &str, mut is_so: impl FnMut() -> bool) {
-    let clock = Clock::real();
-    while !is_so() {
-        assert!(clock.now() < HANGS, "waited in vain until {what}");
-        std::thread::sleep(Duration::from_millis(2));
     }
 }
