@@ -42,7 +42,7 @@ pub struct Procedure {
 impl Procedure {
     /// A run that follows `plan`.
     pub fn new(plan: Plan) -> Self {
-        let desk = Rc::new(Desk::new(plan.maximum));
+        let desk = Rc::new(Desk::new(&plan));
         let script = Box::pin(script::run(Rc::clone(&desk), plan));
         Self { desk, script, over: None }
     }

@@ -64,9 +64,10 @@ fn described(action: &Action) -> Option<String> {
             Some(format!("over-voltage protection {over_voltage}, current limit {current_limit}"))
         }
         Action::LimitCurrent(current) => Some(format!("current limit {current}")),
+        Action::SetVolts(volts) => Some(format!("voltage {volts}")),
         Action::OutputOn => Some("output on".to_owned()),
         Action::OutputOff => Some("output off".to_owned()),
         Action::Range(range) => Some(format!("ammeter range for {range}")),
-        Action::SetVolts(_) | Action::Read | Action::WaitUntil(_) | Action::Finish(_) => None,
+        Action::Read | Action::WaitUntil(_) | Action::Finish(_) => None,
     }
 }

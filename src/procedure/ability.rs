@@ -28,6 +28,13 @@ pub struct Ability {
     pub read_time: Duration,
     /// How far a settled voltage at the terminals may lie from the set-point, lead drop aside.
     pub arrival_tolerance: Volts,
-    /// Standard uncertainty of a current reading on the smallest range.
-    pub off_current_uncertainty: Amps,
+    /// Standard uncertainty of a reading near zero, a value for each of the ranges.
+    pub zero_uncertainties: Vec<Amps>,
+}
+
+impl Ability {
+    /// Standard uncertainty of an off current: near zero, on the smallest range.
+    pub fn off_current_uncertainty(&self) -> Amps {
+        self.zero_uncertainties.first().copied().unwrap_or(Amps(f64::INFINITY))
+    }
 }

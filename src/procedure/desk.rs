@@ -1,7 +1,7 @@
 //! Where the script of a run and its bench meet: the script lays down an action, the bench lays down what came of it.
 
 use super::progress::{Progress, Stage};
-use super::{Action, Event};
+use super::{Action, Event, Plan};
 use crate::trace::{BenchFault, FaultKind, Sample, Stop};
 use crate::units::{Amps, Volts};
 use std::cell::{Cell, RefCell};
@@ -11,6 +11,7 @@ use std::time::Duration;
 
 pub(super) struct Desk {
     maximum: Volts,
+    back_feed: Amps,
     now: Cell<Duration>,
     event: RefCell<Option<Event>>,
     action: RefCell<Option<Action>>,
@@ -18,9 +19,10 @@ pub(super) struct Desk {
 }
 
 impl Desk {
-    pub(super) fn new(maximum: Volts) -> Self {
+    pub(super) fn new(plan: &Plan) -> Self {
         Self {
-            maximum,
+            maximum: plan.maximum,
+            back_feed: -plan.on_zero().max(LEAST_BACK_FEED),
             now: Cell::new(Duration::ZERO),
             event: RefCell::new(None),
             action: RefCell::new(None),
@@ -91,7 +93,7 @@ impl Desk {
     pub(super) async fn read(&self) -> Result<Sample, Stop> {
         match self.perform(Action::Read).await {
             Event::Reading(sample) => match sample.current.amps() {
-                Some(current) if current < BACK_FEED => {
+                Some(current) if current < self.back_feed => {
                     Err(Stop::BackFeed { at: sample.terminals(), current })
                 }
                 _ => Ok(sample),
@@ -109,8 +111,8 @@ impl Desk {
     }
 }
 
-/// Current out of the board that no meter's offset explains: ten times the offset of a typical 1 A range.
-const BACK_FEED: Amps = Amps(-1e-3);
+/// Less current out of the board than this is left to the analysis: it harms nothing.
+const LEAST_BACK_FEED: Amps = Amps(1e-3);
 
 fn refusal(event: Event) -> Stop {
     match event {

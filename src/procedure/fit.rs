@@ -114,7 +114,7 @@ fn off_current(profile: &Profile, ability: &Ability) -> Option<Misfit> {
     let limit = profile.limits.get(&QuantityName::OffCurrent)?;
     let limit = Amps(limit.max.or(limit.min)?).abs();
     let wanted = limit * OFF_UNCERTAINTY_SHARE;
-    let uncertainty = ability.off_current_uncertainty;
+    let uncertainty = ability.off_current_uncertainty();
     (uncertainty > wanted).then_some(Misfit::OffCurrent { limit, wanted, uncertainty })
 }
 
@@ -151,7 +151,7 @@ mod tests {
             settle: Duration::from_millis(15),
             read_time: Duration::from_millis(25),
             arrival_tolerance: Volts(0.01),
-            off_current_uncertainty: Amps(15e-9),
+            zero_uncertainties: vec![Amps(15e-9), Amps(6e-5)],
         }
     }
 
@@ -174,7 +174,7 @@ mod tests {
             @"the profile's current limit is 350.0 mA, the supply's is 500.0 mA to 3.000 A; take another supply");
         says!(told(&Ability { ranges: vec![Amps(1e-4), Amps(0.2)], ..ability() }),
             @"the current limit is 350.0 mA, the ammeter's largest range 200.0 mA; lower the limit or take another meter");
-        says!(told(&Ability { off_current_uncertainty: Amps(4.6e-5), ..ability() }),
+        says!(told(&Ability { zero_uncertainties: vec![Amps(4.6e-5)], ..ability() }),
             @"an off current limited to 4.000 µA needs a standard uncertainty of 1.000 µA or less, the ammeter's is 46.00 µA on its smallest range; take a meter with a smaller range or remove limits.off_current");
         says!(told(&Ability { set_step: Volts(0.02), ..ability() }), @"ramp.resolution is 2.000 mV, the supply sets steps of 20.00 mV; wanted at least that");
     }

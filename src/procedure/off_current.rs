@@ -1,6 +1,7 @@
 //! The current with the switch open: on a sensitive range, but only while the switch is proven open.
 
 use super::desk::Desk;
+use super::plan::Pace;
 use super::probe::{probe, state};
 use super::{Action, Plan};
 use crate::trace::{Sample, Stop, SwitchState};
@@ -10,30 +11,36 @@ use crate::units::Amps;
 ///
 /// A board that cannot be shown to be off keeps the large range: its off current is not measured.
 pub(super) async fn measure_off_current(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
+    // The way to the higher points is up, and a board that would come back there gets the time to do so.
+    let pace = Pace { dwell: plan.down.dwell.max(plan.up.dwell), hold: plan.up.hold };
     for volts in &plan.off_points {
-        let sample = probe(desk, plan, *volts, plan.down).await?;
+        let sample = probe(desk, plan, *volts, pace).await?;
         let again = desk.read().await?;
         if state(plan, &sample) == SwitchState::Off && state(plan, &again) == SwitchState::Off {
             read_settled(desk, plan, again).await?;
-            desk.order(Action::Range(plan.on_range)).await?;
-            desk.wait(plan.range_settle).await?;
         }
     }
     Ok(())
 }
 
-/// Changes to the most sensitive range that holds what flows and reads until readings agree.
+/// Changes to the most sensitive range that holds what flows, reads until readings agree, and returns to the large range.
+/// After an overload the next range is tried only once the switch is proven open again.
 async fn read_settled(desk: &Desk, plan: &Plan, proven: Sample) -> Result<(), Stop> {
     let flows = proven.current.amps().unwrap_or(plan.on_range);
-    let zero = plan.on_range * ON_RANGE_ZERO;
-    for range in plan.off_ranges.iter().filter(|range| **range + zero >= flows) {
-        desk.order(Action::Range(*range)).await?;
-        desk.wait(plan.range_settle).await?;
-        if settle_on_range(desk).await? {
-            return Ok(());
+    for range in plan.off_ranges.iter().filter(|range| **range + plan.on_zero() >= flows) {
+        change_range(desk, plan, *range).await?;
+        let settled = settle_on_range(desk).await?;
+        change_range(desk, plan, plan.on_range).await?;
+        if settled || state(plan, &desk.read().await?) != SwitchState::Off {
+            break;
         }
     }
     Ok(())
+}
+
+async fn change_range(desk: &Desk, plan: &Plan, range: Amps) -> Result<(), Stop> {
+    desk.order(Action::Range(range)).await?;
+    desk.wait(plan.range_settle).await
 }
 
 /// Reads until two successive pairs agree to one per cent; false when the range overflows.
@@ -54,8 +61,6 @@ async fn settle_on_range(desk: &Desk) -> Result<bool, Stop> {
     Ok(true)
 }
 
-/// Zero error of the large range that must not keep a sensitive one from being tried, as a share of full scale.
-const ON_RANGE_ZERO: f64 = 5e-4;
 /// Successive readings agree within this share.
 const AGREE: f64 = 0.01;
 /// Below this the share is taken of this.

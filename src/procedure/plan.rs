@@ -14,8 +14,8 @@ pub struct Plan {
     pub over_voltage: Volts,
     /// Current limit set in the supply once the pre-check is passed.
     pub current_limit: Amps,
-    /// Current limit during the pre-check.
-    pub pre_check_limit: Amps,
+    /// Lowest current the supply can be limited to.
+    pub min_current: Amps,
     /// Board certainly on.
     pub start: Volts,
     /// End of the downward ramp.
@@ -44,6 +44,8 @@ pub struct Plan {
     pub off_points: Vec<Volts>,
     /// Ammeter range while the board may conduct.
     pub on_range: Amps,
+    /// Standard uncertainty of a reading near zero on that range.
+    pub on_uncertainty: Amps,
     /// Ammeter ranges for the off current, most sensitive first.
     pub off_ranges: Vec<Amps>,
 }
@@ -61,7 +63,6 @@ impl Plan {
     /// Works out a run. Profile and bench have been checked against each other before.
     pub fn new(profile: &Profile, ability: &Ability) -> Self {
         let supply = profile.supply;
-        let load_current = |volts: Volts| volts / profile.load.resistance;
         let (survey_step, fine_step) = steps(profile, ability.set_step);
         let on_range = smallest_holding(&ability.ranges, supply.current_limit);
         let off_limit = profile.limits.get(&QuantityName::OffCurrent);
@@ -78,9 +79,7 @@ impl Plan {
             maximum: supply.maximum,
             over_voltage: (supply.maximum * OVER_VOLTAGE).min(ability.max_voltage),
             current_limit: supply.current_limit,
-            pre_check_limit: load_current(PRE_CHECK_LOW * 2.0)
-                .max(PRE_CHECK_CURRENT)
-                .max(ability.min_current),
+            min_current: ability.min_current,
             start: supply.start,
             floor: supply.floor,
             load: profile.load,
@@ -95,8 +94,19 @@ impl Plan {
             voltmeter: ability.voltmeter,
             off_points,
             on_range,
+            on_uncertainty: zero_uncertainty(ability, on_range),
             off_ranges,
         }
+    }
+
+    /// Current limit during the pre-check at `volts`: twice what the load draws there.
+    pub(super) fn pre_check_limit(&self, volts: Volts) -> Amps {
+        (volts / self.load.resistance * 2.0).max(PRE_CHECK_CURRENT).max(self.min_current)
+    }
+
+    /// Current that a reading of zero on the large range may show: five standard uncertainties.
+    pub(super) fn on_zero(&self) -> Amps {
+        self.on_uncertainty * ZERO_UNCERTAINTIES
     }
 }
 
@@ -136,6 +146,15 @@ fn steps(profile: &Profile, set_step: Volts) -> (Volts, Option<Volts>) {
             (fine * cells, (cells > 1.0).then_some(fine))
         }
     }
+}
+
+/// Standard uncertainties within which nearly every reading of zero lies, whatever its distribution: for a rectangular
+/// one all beyond the square root of three.
+const ZERO_UNCERTAINTIES: f64 = 5.0;
+
+fn zero_uncertainty(ability: &Ability, range: Amps) -> Amps {
+    let ranges = ability.ranges.iter().zip(&ability.zero_uncertainties);
+    ranges.filter(|(full_scale, _)| **full_scale == range).map(|(_, zero)| *zero).next().unwrap_or(Amps::ZERO)
 }
 
 /// The smallest of `ranges` (smallest first) that holds `current`, or the largest there is.

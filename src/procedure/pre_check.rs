@@ -10,12 +10,13 @@ use std::time::Duration;
 /// Output verified off, protections set in the supply, then 0.3 V and 1 V with little current.
 ///
 /// At 0.3 V no semiconductor conducts: more current than the load draws is a short. At 1 V a detector does not work
-/// yet and the switch is open: a current well below the load's is a diode in forward direction, so the board is
-/// probably reversed. A current like the load's is a closed switch, which the ramp will judge.
+/// yet and the switch is open: a current well below the load's, or well above it where there was no short, is a diode
+/// in forward direction, so the board is probably reversed. A current like the load's is a closed switch, which the
+/// ramp will judge.
 pub(super) async fn pre_check(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     desk.order(Action::OutputOff).await?;
-    let protect = Action::Protect { over_voltage: plan.over_voltage, current_limit: plan.pre_check_limit };
-    desk.order(protect).await?;
+    let current_limit = plan.pre_check_limit(PRE_CHECK_LOW);
+    desk.order(Action::Protect { over_voltage: plan.over_voltage, current_limit }).await?;
     desk.order(Action::Range(plan.on_range)).await?;
     desk.wait(plan.range_settle).await?;
     wait_until_dead(desk, plan).await?;
@@ -23,14 +24,17 @@ pub(super) async fn pre_check(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     desk.set(PRE_CHECK_LOW).await?;
     desk.order(Action::OutputOn).await?;
     let low = settled(desk, plan).await?;
-    if current(&low) > load_current(plan, low.set) * SHORT {
+    if more_than_load(plan, &low) {
         return Err(Stop::ShortCircuit { at: low.terminals(), current: current(&low) });
     }
 
-    desk.set(PRE_CHECK_HIGH.min(plan.floor)).await?;
+    let volts = PRE_CHECK_HIGH.min(plan.floor);
+    desk.order(Action::LimitCurrent(plan.pre_check_limit(volts))).await?;
+    desk.set(volts).await?;
     let high = settled(desk, plan).await?;
-    let share = current(&high) / load_current(plan, high.terminals().max(PRE_CHECK_LOW));
-    if share > DIODE.0 && share < DIODE.1 {
+    let load = load_current(plan, volts);
+    let flows = current(&high) > (load * DIODE.0).max(plan.on_zero());
+    if more_than_load(plan, &high) || (flows && current(&high) < load * DIODE.1) {
         return Err(Stop::ConductsBackwards { at: high.terminals(), current: current(&high) });
     }
     Ok(())
@@ -40,6 +44,12 @@ pub(super) async fn pre_check(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
 const SHORT: f64 = 1.5;
 /// Shares of the load's current between which something other than the load conducts.
 const DIODE: (f64, f64) = (0.02, 0.7);
+
+/// A closed switch draws the load's current and no more; the limit stands at twice that.
+fn more_than_load(plan: &Plan, sample: &Sample) -> bool {
+    let most = load_current(plan, sample.set) * SHORT + plan.on_zero();
+    sample.limited == Some(true) || current(sample) > most
+}
 
 /// An overloaded meter on a range that holds the current limit means at least that.
 fn current(sample: &Sample) -> Amps {

@@ -4,7 +4,7 @@ use super::Plan;
 use super::desk::Desk;
 use super::plan::Pace;
 use crate::trace::{Sample, Stop, SwitchState};
-use crate::units::{Amps, Volts};
+use crate::units::Volts;
 use std::time::Duration;
 
 /// Sets `volts` and returns the first reading that counts: arrived, and a dwell after arrival.
@@ -52,22 +52,25 @@ const SLOWEST_FALL: f64 = 2e-3;
 
 /// The state of the switch at this reading.
 pub(super) fn state(plan: &Plan, sample: &Sample) -> SwitchState {
-    SwitchState::of(sample.current, sample.terminals(), plan.load.resistance, Amps::ZERO)
+    SwitchState::of(sample.current, sample.terminals(), plan.load.resistance, plan.on_uncertainty)
 }
 
 /// Brings the board into its on state by the start voltage, whatever it did before.
 pub(super) async fn arm_on(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     let mut sample = probe(desk, plan, plan.start, plan.up).await?;
     let patience = desk.now() + PATIENCE + plan.up.hold;
-    while state(plan, &sample) != SwitchState::On && desk.now() < patience {
+    let armed = |sample: &Sample| state(plan, sample) == SwitchState::On && sample.limited != Some(true);
+    while !armed(&sample) && desk.now() < patience {
         desk.wait(ARM_POLL).await?;
         sample = desk.read().await?;
     }
     let at = sample.terminals();
     let current = sample.current.amps().unwrap_or(plan.on_range);
     match state(plan, &sample) {
-        SwitchState::On => Ok(()),
         _ if sample.limited == Some(true) => Err(Stop::CurrentLimited { at, current }),
+        SwitchState::On => Ok(()),
+        // The supply has cut its own output, as by its over-voltage protection: no board does that.
+        _ if at < plan.start * COLLAPSED => Err(Stop::NotArrived { set: sample.set, sense: at }),
         SwitchState::Off => Err(Stop::NotOn { at, current }),
         SwitchState::Neither => Err(Stop::Undecided { at, current }),
     }
@@ -87,6 +90,9 @@ pub(super) async fn arm_off(desk: &Desk, plan: &Plan, below_trip: Volts) -> Resu
     }
     Ok(())
 }
+
+/// Share of the start voltage below which the supply is not supplying.
+const COLLAPSED: f64 = 0.5;
 
 const ARM_POLL: Duration = Duration::from_millis(20);
 /// How long a board may take to reach a state it must reach.

@@ -45,8 +45,10 @@ pub enum Stage {
     NarrowDown,
     /// Small steps through the re-enable voltage.
     NarrowUp,
-    /// Waiting beside a threshold to see that nothing moves.
-    Confirm,
+    /// Waiting just above the trip to see that nothing moves.
+    ConfirmTrip,
+    /// Waiting just below the re-enable voltage to see that nothing moves.
+    ConfirmReEnable,
     /// Output off, board discharging.
     SwitchOff,
 }
@@ -62,7 +64,7 @@ impl Stage {
             Stage::SurveyUp => "ramp up",
             Stage::NarrowDown => "fine ramp down",
             Stage::NarrowUp => "fine ramp up",
-            Stage::Confirm => "confirming",
+            Stage::ConfirmTrip | Stage::ConfirmReEnable => "confirming",
             Stage::SwitchOff => "switching off",
         }
     }
@@ -88,8 +90,9 @@ pub(super) fn left(plan: &Plan, stage: Stage) -> Duration {
         ),
         (Stage::SurveyUp, step_up * steps(span * 0.5, plan.survey_step.0)),
         (Stage::NarrowDown, narrow(step_down)),
-        (Stage::Confirm, plan.down.hold + plan.up.hold),
+        (Stage::ConfirmTrip, step_up + step_down + plan.down.hold),
         (Stage::NarrowUp, narrow(step_up)),
+        (Stage::ConfirmReEnable, step_down + step_up + plan.up.hold),
         (Stage::SwitchOff, plan.settle + plan.read_time),
     ];
     let from = parts.iter().position(|(known, _)| *known == stage).unwrap_or(0);

@@ -79,7 +79,7 @@ async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Sto
                 None => return Ok(edge),
             }
         }
-        desk.enter(Stage::Confirm, left(plan, Stage::Confirm));
+        desk.enter(Stage::ConfirmTrip, left(plan, Stage::ConfirmTrip));
         match confirm_trip(desk, plan, edge, pace).await? {
             Confirmed::Stands => break,
             Confirmed::Moved { after } => {
@@ -110,7 +110,7 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
                 None => return Ok(()),
             }
         }
-        desk.enter(Stage::Confirm, left(plan, Stage::Confirm));
+        desk.enter(Stage::ConfirmReEnable, left(plan, Stage::ConfirmReEnable));
         match confirm_re_enable(desk, plan, edge, below_trip, pace).await? {
             Confirmed::Stands => break,
             Confirmed::Moved { after } => {

@@ -38,7 +38,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         settle: Duration::from_millis(15),
         read_time: Duration::from_millis(22),
         arrival_tolerance: Volts(0.02),
-        off_current_uncertainty: Amps(2e-8),
+        zero_uncertainties: vec![Amps(2e-8), Amps(1e-7), Amps(6e-5)],
     };
     Plan::new(&profile, &ability)
 }

@@ -99,7 +99,6 @@ impl Setup {
 
     /// What this bench can do.
     pub fn ability(&self) -> Ability {
-        let smallest = self.ammeter.ranges.first();
         let supply = &self.supply;
         let highest = self.highest_voltage().0;
         let sense = self.voltmeter.range_for(Volts(highest));
@@ -116,9 +115,12 @@ impl Setup {
             settle: supply.time_constant * SETTLE_CONSTANTS,
             read_time: self.ammeter.integration.max(self.voltmeter.integration),
             arrival_tolerance: SETTLED_WITHIN + Volts(supply.claim.limit(highest) + sense_limit),
-            off_current_uncertainty: Amps(
-                smallest.map_or(f64::INFINITY, |range| range.meter.claim.standard_uncertainty(0.0)),
-            ),
+            zero_uncertainties: self
+                .ammeter
+                .ranges
+                .iter()
+                .map(|range| Amps(range.meter.claim.standard_uncertainty(0.0)))
+                .collect(),
         }
     }
 

@@ -205,7 +205,7 @@ fn ability() -> Ability {
         settle: SETTLE,
         read_time: READ,
         arrival_tolerance: Volts(0.02),
-        off_current_uncertainty: Amps(2e-8),
+        zero_uncertainties: vec![Amps(2e-8), Amps(1e-7), Amps(6e-5)],
     }
 }
 

@@ -39,13 +39,13 @@ impl BenchFile {
             arrival_tolerance: source.settled_within
                 + Volts(source.programming.limit(profile_maximum.0))
                 + sense_limit,
-            // Near zero: an off current is small against any full scale.
-            off_current_uncertainty: self
+            zero_uncertainties: self
                 .parts
                 .ammeter
                 .ranges
-                .first()
-                .map_or(Amps(f64::INFINITY), |range| Amps(range.accuracy.standard_uncertainty(0.0))),
+                .iter()
+                .map(|range| Amps(range.accuracy.standard_uncertainty(0.0)))
+                .collect(),
         }
     }
 
@@ -169,9 +169,9 @@ mod tests {
         assert!((ability.read_time.as_secs_f64() - 0.023997).abs() < 1e-6, "{:?}", ability.read_time);
         assert!((ability.arrival_tolerance.0 - 0.011544).abs() < 1e-9, "{}", ability.arrival_tolerance);
         assert!(
-            (ability.off_current_uncertainty.0 - 14.43e-9).abs() < 1e-11,
+            (ability.off_current_uncertainty().0 - 14.43e-9).abs() < 1e-11,
             "{}",
-            ability.off_current_uncertainty
+            ability.off_current_uncertainty()
         );
     }
 
