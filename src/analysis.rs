@@ -1,9 +1,10 @@
 //! From a trace to quantities with uncertainty, and findings about the board or the bench. Pure.
 //!
-//! A trace is cut into plateaus ([`crate::trace::SwitchState`] by the load's current), the changes and stays of the board are collected,
+//! A trace is cut into plateaus (on or off by the load's current, [`crate::trace::SwitchState`]), the changes and stays of the board are collected,
 //! and each threshold is read from them at the terminal voltage that stood before the change.
 
 mod diagnosis;
+mod discharge;
 mod edges;
 mod finding;
 #[cfg(test)]
@@ -70,6 +71,7 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(diagnosis::current_limit(&course));
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));
     findings.extend(trust::accuracy(&course));
+    findings.extend(discharge::still_charged(trace));
     Analysis { quantities, findings }
 }
 

@@ -178,7 +178,7 @@ mod tests {
     use super::*;
 
     #[test]
-    fn a_sample_is_written_with_the_names_of_the_design_and_read_back() {
+    fn a_sample_is_written_under_its_file_names_and_read_back() {
         let sample = Sample {
             at: Duration::from_millis(250),
             set: Volts(6.0),

@@ -73,6 +73,8 @@ pub enum FindingCode {
     Aborted,
     /// The run never ended: found at the next start.
     Incomplete,
+    /// The board was not seen to discharge after the output went off.
+    StillCharged,
     /// The output was not confirmed off.
     OutputMayBeOn,
     /// The trace holds too little to find any threshold.

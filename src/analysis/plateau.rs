@@ -26,7 +26,7 @@ pub(super) struct Plateau {
     pub(super) began: Duration,
     /// Time of its last sample.
     pub(super) ended: Duration,
-    /// SwitchState at the last sample.
+    /// State of the switch at the last sample.
     pub(super) settled: SwitchState,
     /// High enough for a board to work; thresholds are looked for only there.
     pub(super) in_scope: bool,

@@ -1,7 +1,7 @@
 //! The one thing to do next, in plain language.
 
 use super::{Sheet, quantities, words};
-use crate::analysis::{About, Finding};
+use crate::analysis::{About, Finding, FindingCode};
 use crate::trace::OutputState;
 use crate::verdict::{Decision, Outcome};
 
@@ -14,6 +14,16 @@ pub fn next_action(sheet: &Sheet<'_>) -> String {
     if sheet.output == Some(OutputState::MayBeOn) {
         return OUTPUT_MAY_BE_ON.to_owned();
     }
+    let charged = sheet.findings.iter().any(|finding| finding.code == FindingCode::StillCharged);
+    let caution = if charged { STILL_CHARGED } else { "" };
+    format!("{caution}{}", usual(sheet))
+}
+
+/// What comes first when the board was not seen to discharge.
+const STILL_CHARGED: &str = "WAIT: the board still held a charge when the run ended. Measure less than 0.1 V across \
+     its terminals before you touch it. Then: ";
+
+fn usual(sheet: &Sheet<'_>) -> String {
     match sheet.outcome {
         Outcome::Pass => "Take the board off and scan the next one.".to_owned(),
         Outcome::ConditionalPass => format!(

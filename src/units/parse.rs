@@ -201,7 +201,7 @@ mod tests {
     use proptest::prelude::*;
 
     #[test]
-    fn every_spelling_of_the_design_is_read() {
+    fn every_common_spelling_is_read() {
         for (text, unit, value) in [
             ("6.00 V", Unit::Volt, 6.0),
             ("250 mV", Unit::Volt, 0.25),

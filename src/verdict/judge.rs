@@ -31,7 +31,7 @@ pub fn judge(analysis: &Analysis, profile: &Profile, ending: &Ending) -> Verdict
         Outcome::Fail
     } else if ending.stop == Stop::Aborted {
         stopped(worst)
-    } else if let Some(worst) = worst.filter(|_| missing.is_empty()) {
+    } else if let Some(worst) = worst.filter(|_| missing.is_empty() && !half_on(&findings)) {
         Outcome::from(worst)
     } else {
         Outcome::Invalid
@@ -58,6 +58,11 @@ fn readings_in_doubt(findings: &[Finding]) -> bool {
                 | FindingCode::SourceResistance
         )
     })
+}
+
+/// True when the board rested in neither state somewhere: it may not pass on what it did elsewhere.
+fn half_on(findings: &[Finding]) -> bool {
+    findings.iter().any(|finding| finding.code == FindingCode::NeitherOnNorOff)
 }
 
 /// True for what no board may do, limits or not.

@@ -1,4 +1,4 @@
-//! A judged quantity as one flat line, as it stands in records and in the results of the commands.
+//! A judged quantity as one flat line, as it stands in the results of the commands.
 
 use super::{Decision, Judged};
 use crate::profile::QuantityName;

@@ -1,12 +1,12 @@
 //! Whole runs in virtual time over many seeds: what is measured is true, and the output never stays on.
 
 use crate::river;
-use crate::virtual_run::{Run, faulty_run, run};
+use crate::virtual_run::{Run, faulty_run, run, run_setup};
 use ebbmark::analysis::FindingCode;
 use ebbmark::profile::{Profile, QuantityName};
-use ebbmark::sim::Condition;
+use ebbmark::sim::{Condition, Setup};
 use ebbmark::trace::OutputState;
-use ebbmark::units::Volts;
+use ebbmark::units::{Ohms, Volts};
 use ebbmark::verdict::Outcome;
 use std::collections::BTreeMap;
 
@@ -52,13 +52,19 @@ fn no_board_outside_the_guard_zone_is_judged_wrongly() {
         (Condition::LowPullUp, 300),
     ];
     for (condition, seeds) in conditions {
+        let mut judged = 0;
         for seed in 0..seeds {
             let run = run(&profile, condition, seed);
             if let Some(wanted) = true_outcome(&profile, &run) {
+                judged += 1;
                 let outcome = run.verdict.outcome;
                 assert_eq!(outcome, wanted, "{condition} seed {seed}: {:#?}", run.verdict.findings);
             }
         }
+        assert!(
+            judged * 10 >= seeds * 9,
+            "{condition}: only {judged} of {seeds} boards lie clear of their limits"
+        );
     }
 }
 
@@ -139,4 +145,29 @@ fn the_ramp_goes_on_below_the_trip_to_the_floor() {
     heights.dedup();
     let survey = heights.windows(2).filter(|pair| pair[1] - pair[0] > 10);
     assert!(survey.count() >= 8, "set-points below the trip: {heights:?} mV");
+}
+
+/// A reversed board's way in is a diode and whatever lies behind it, not only the load.
+#[test]
+fn a_reversed_board_of_any_resistance_never_sees_the_start_voltage() {
+    let profile = river::profile();
+    for behind in [0.2, 1.0, 3.0, 10.0, 11.0, 14.0, 20.0, 55.0] {
+        let mut setup = Setup::new(&profile, Condition::Reversed, 3);
+        setup.board.load = Ohms(behind);
+        let run = run_setup(&profile, &setup);
+        assert_eq!(run.verdict.outcome, Outcome::Invalid, "{behind} ohm: {:?}", run.verdict.findings);
+        let first = run.verdict.findings.first().map(|finding| finding.code);
+        assert_eq!(first, Some(FindingCode::Reversed), "{behind} ohm");
+        assert!(run.trace.samples.iter().all(|sample| sample.set <= Volts(1.5)), "{behind} ohm");
+    }
+}
+
+#[test]
+fn a_board_that_stays_charged_is_not_handed_out_without_a_word() {
+    let profile = river::profile();
+    let mut setup = Setup::new(&profile, Condition::NoSink, 3);
+    setup.supply.off_resistance = Ohms(1e9);
+    let run = run_setup(&profile, &setup);
+    let codes: Vec<FindingCode> = run.verdict.findings.iter().map(|finding| finding.code).collect();
+    assert!(codes.contains(&FindingCode::StillCharged), "{codes:?} {:?}", run.trace.samples.last());
 }

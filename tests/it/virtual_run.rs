@@ -39,9 +39,13 @@ impl Run {
 
 /// Tests the board of `condition` and `seed`.
 pub(crate) fn run(profile: &Profile, condition: Condition, seed: u64) -> Run {
-    let setup = Setup::new(profile, condition, seed);
-    let mut bench = VirtualBench::new(&setup, setup.ability());
-    let trace = run_on(profile, &setup, &mut bench);
+    run_setup(profile, &Setup::new(profile, condition, seed))
+}
+
+/// Tests the board of `setup`.
+pub(crate) fn run_setup(profile: &Profile, setup: &Setup) -> Run {
+    let mut bench = VirtualBench::new(setup, setup.ability());
+    let trace = run_on(profile, setup, &mut bench);
     let verdict = judge(&analyse(&trace, profile), profile, &trace.ending);
     Run { trace, verdict, truth: bench.world().truth() }
 }
