@@ -29,7 +29,7 @@ pub use quantity::{Contribution, Quantity};
 pub use rates::from_rates;
 
 use crate::profile::{Profile, QuantityName};
-use crate::trace::Trace;
+use crate::trace::{Stop, Trace};
 use crate::units::Volts;
 use edges::{Direction, Edges};
 use plateau::Course;
@@ -72,6 +72,10 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));
     findings.extend(trust::accuracy(&course));
     findings.extend(discharge::still_charged(trace));
+    if trace.ending.stop == Stop::Aborted {
+        // A run that was stopped before it came to the small ranges says nothing about them.
+        findings.retain(|finding| finding.code != FindingCode::RangeNotAdequate);
+    }
     Analysis { quantities, findings }
 }
 

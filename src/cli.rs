@@ -29,9 +29,9 @@ use std::process::ExitCode;
 #[derive(Debug, Parser)]
 #[command(version, max_term_width = 100, after_help = AFTER_HELP)]
 pub struct Cli {
-    /// Write what passes over the wire to standard error; twice for every byte.
-    #[arg(short, long, global = true, action = clap::ArgAction::Count)]
-    verbose: u8,
+    /// Write what passes over the wire to standard error.
+    #[arg(short, long, global = true)]
+    verbose: bool,
     #[command(subcommand)]
     command: Command,
 }
@@ -126,13 +126,14 @@ fn after_panic(drives_a_supply: bool) -> Exit {
     Exit::Invalid
 }
 
-fn start_diagnostics(verbose: u8) {
-    let level = match verbose {
-        0 => tracing::Level::WARN,
-        1 => tracing::Level::DEBUG,
-        _ => tracing::Level::TRACE,
-    };
-    tracing_subscriber::fmt().with_max_level(level).with_writer(std::io::stderr).without_time().init();
+fn start_diagnostics(verbose: bool) {
+    let level = if verbose { tracing::Level::TRACE } else { tracing::Level::WARN };
+    tracing_subscriber::fmt()
+        .with_max_level(level)
+        .with_writer(std::io::stderr)
+        .without_time()
+        .with_target(false)
+        .init();
 }
 
 #[cfg(test)]

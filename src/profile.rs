@@ -143,6 +143,11 @@ impl Profile {
         })
     }
 
+    /// The pattern of the serial numbers, as the profile has it.
+    pub fn serial_numbers(&self) -> &str {
+        serial_number::as_written(&self.serial_number)
+    }
+
     /// True when the whole of `serial` is a serial number of this board.
     pub fn matches(&self, serial: &str) -> bool {
         self.serial_number.is_match(serial)

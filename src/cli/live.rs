@@ -22,7 +22,7 @@ impl Live {
     /// A bar for a board that drives `load`.
     pub(super) fn new(load: Ohms) -> Self {
         let bar = ProgressBar::with_draw_target(Some(POSITIONS), ProgressDrawTarget::stderr_with_hz(REDRAWS));
-        let style = ProgressStyle::with_template("{prefix:15} [{bar:30}] {msg}");
+        let style = ProgressStyle::with_template("{prefix:14} [{bar:16}] {wide_msg}");
         bar.set_style(style.unwrap_or_else(|_| ProgressStyle::default_bar()).progress_chars("=> "));
         Self { bar, load }
     }
@@ -39,7 +39,9 @@ impl Watch for Live {
             return;
         }
         self.bar.set_prefix(progress.stage.title());
-        self.bar.set_position((progress.share(at) * POSITIONS as f64) as u64);
+        // A pass that must be repeated holds the bar; it never goes back.
+        let position = (progress.share(at) * POSITIONS as f64) as u64;
+        self.bar.set_position(position.max(self.bar.position()));
         if let Event::Reading(sample) = event {
             let state = match SwitchState::of(sample.current, sample.terminals(), self.load, Amps::ZERO) {
                 SwitchState::On => "on",
@@ -50,11 +52,12 @@ impl Watch for Live {
                 Current::Value(amps) => amps.to_string(),
                 Current::Overload(_) => "overload".to_owned(),
             };
-            let left = (progress.since + progress.left).saturating_sub(at).as_secs();
-            self.bar.set_message(format!(
-                "{:>9}  {current:>10}  board {state:3}  about {left} s left",
-                sample.terminals().to_string()
-            ));
+            let left = match (progress.since + progress.left).saturating_sub(at).as_secs() {
+                0 => String::new(),
+                seconds => format!("  about {seconds} s left"),
+            };
+            let volts = sample.terminals().to_string();
+            self.bar.set_message(format!("{volts:>9} {current:>10} {state:3}{left}"));
         }
     }
 }

@@ -28,12 +28,12 @@ enum Command {
 Example:
   ebbmark log show --serial-number RN000123 --last 5")]
 struct Show {
-    /// Name of one run, to show it in full.
+    /// Name of one run, or an ending of it that no other has, such as 0008: shows that run in full.
     run: Option<String>,
     /// Folder of the logs.
     #[arg(long, value_name = "FOLDER", default_value = "logs")]
     logs: PathBuf,
-    /// Station; may be left out when there is only one.
+    /// Only this station.
     #[arg(long, value_name = "NAME")]
     station: Option<String>,
     /// Only runs of this board.
@@ -68,28 +68,51 @@ impl Arguments {
 
 impl Show {
     fn run(self) -> Result<Exit, Failure> {
-        let folder = LogFolder::new(&self.logs, &self.station()?)?;
         if let Some(name) = &self.run {
-            return write(&[folder.run(name)?], self.format, |run| report::full(run, folder.path(), paint()));
+            return self.one(name);
         }
-        let runs = folder.runs()?;
-        let filter = Filter { serial_number: self.serial_number, last: self.last };
-        let mut unreadable = Vec::new();
-        let found = filter.apply(runs.filter_map(|run| run.map_err(|error| unreadable.push(error)).ok()));
-        for error in unreadable {
-            anstream::eprintln!("note: {error}");
+        let filter = Filter { serial_number: self.serial_number.clone(), last: self.last };
+        let mut all = Vec::new();
+        for station in self.stations()? {
+            let found = filter.apply(readable(&LogFolder::new(&self.logs, &station)?)?);
+            if self.format == Layout::Text {
+                print(&format!("station {station}\n{}", report::list(&found)))?;
+            } else {
+                all.extend(found);
+            }
         }
-        match self.format {
-            Layout::Text => print(&report::list(&found))?,
-            other => return write(&found, other, report::run_json),
-        }
-        Ok(Exit::Pass)
+        if self.format == Layout::Text { Ok(Exit::Pass) } else { write(&all, self.format, report::run_json) }
     }
 
-    /// The station named, or the only one there is.
-    fn station(&self) -> Result<String, Failure> {
+    /// One run in full, by its name or an ending of it that no other run has.
+    fn one(&self, name: &str) -> Result<Exit, Failure> {
+        let mut found = Vec::new();
+        for station in self.stations()? {
+            let folder = LogFolder::new(&self.logs, &station)?;
+            let matching = readable(&folder)?.filter(|run| run.identity.run.as_str().ends_with(name));
+            found.extend(matching.map(|run| (run, folder.path().to_owned())));
+        }
+        match found.as_slice() {
+            [(run, folder)] => {
+                write(std::slice::from_ref(run), self.format, |run| report::full(run, folder, paint()))
+            }
+            [] => Err(anyhow::anyhow!(
+                "no run in {} has a name that ends in \"{name}\"; `ebbmark log show` lists them, \
+                 `--serial-number` finds the runs of a board",
+                self.logs.display()
+            )
+            .into()),
+            several => {
+                let names: Vec<&str> = several.iter().map(|(run, _)| run.identity.run.as_str()).collect();
+                Err(anyhow::anyhow!("several runs end in \"{name}\": {}", names.join(", ")).into())
+            }
+        }
+    }
+
+    /// The station named, or all there are.
+    fn stations(&self) -> Result<Vec<String>, Failure> {
         if let Some(station) = &self.station {
-            return Ok(station.clone());
+            return Ok(vec![station.clone()]);
         }
         let entries = std::fs::read_dir(&self.logs)
             .with_context(|| format!("cannot read the folder of logs {}", self.logs.display()))?;
@@ -98,17 +121,17 @@ impl Show {
             .map(|entry| entry.file_name().to_string_lossy().into_owned())
             .collect();
         stations.sort();
-        match stations.as_slice() {
-            [only] => Ok(only.clone()),
-            [] => Err(anyhow::anyhow!("{} holds no logs; test a board first", self.logs.display()).into()),
-            several => Err(anyhow::anyhow!(
-                "{} holds several stations; choose one with --station: {}",
-                self.logs.display(),
-                several.join(", ")
-            )
-            .into()),
+        if stations.is_empty() {
+            return Err(anyhow::anyhow!("{} holds no logs; test a board first", self.logs.display()).into());
         }
+        Ok(stations)
     }
+}
+
+/// The runs of a log; what cannot be read is said and left out.
+fn readable(folder: &LogFolder) -> Result<impl Iterator<Item = Run>, Failure> {
+    let told = |error| anstream::eprintln!("note: {error}");
+    Ok(folder.runs()?.filter_map(move |run| run.map_err(told).ok()))
 }
 
 fn write(runs: &[Run], layout: Layout, text: impl Fn(&Run) -> String) -> Result<Exit, Failure> {

@@ -27,6 +27,13 @@ pub(super) struct Simulation {
 }
 
 impl Simulation {
+    /// True when anything but a good board in real time was asked for.
+    pub(super) fn is_asked_for(&self) -> bool {
+        #[expect(clippy::float_cmp, reason = "the default, as clap put it there")]
+        let hurried = self.speed != 1.0;
+        hurried || self.seed.is_some() || self.condition != Condition::Good
+    }
+
     /// The condition and the seed for the board called `serial_number`: the same board each time it is tested.
     pub(super) fn of_board(&self, serial_number: &str) -> Simulated {
         let seed = self.seed.unwrap_or_else(|| {

@@ -70,6 +70,10 @@ impl Arguments {
 
     /// The station comes before profile and board: what an earlier run left on goes off even when this one is refused.
     fn on_bench(&self) -> Result<Kept, Failure> {
+        if self.simulation.is_asked_for() {
+            let error = "--condition, --seed and --speed go with --bench sim or sim-smu; real instruments are as they are";
+            return Err(anyhow::anyhow!(error).into());
+        }
         let bench = files::bench(&self.bench)?;
         let name = self.keeping.station.as_deref().unwrap_or(&bench.name);
         let station = Station::open(&bench, Clock::real(), &self.keeping.logs, name)?;
@@ -122,7 +126,7 @@ impl Keeping {
                 "serial number \"{serial_number}\" is none of board {}: wanted one like {}; \
                  scan again, or choose the profile of this board",
                 profile.board,
-                profile.serial_number
+                profile.serial_numbers()
             );
             return Err(error.into());
         }

@@ -41,8 +41,17 @@ pub fn list(runs: &[Run]) -> String {
     if runs.is_empty() {
         return "no runs\n".to_owned();
     }
-    let heading =
-        ["time", "serial number", "outcome", "trip", "re-enable", "hysteresis", "off current", "findings"];
+    let heading = [
+        "run",
+        "time",
+        "serial number",
+        "outcome",
+        "trip",
+        "re-enable",
+        "hysteresis",
+        "off current",
+        "findings",
+    ];
     let mut rows = vec![heading.map(str::to_owned).to_vec()];
     rows.extend(runs.iter().map(row));
     aligned(&rows).join("\n") + "\n"
@@ -59,8 +68,14 @@ fn row(run: &Run) -> Vec<String> {
         remarks.push("(simulated)".to_owned());
     }
     let identity = &run.identity;
-    let mut cells =
-        vec![identity.started.on_the_wall(), identity.board.serial_number.clone(), run.outcome.to_string()];
+    let name = identity.run.as_str();
+    let mut cells = vec![
+        // The ending of its name, by which `log show` finds it.
+        name.rsplit('-').next().unwrap_or(name).to_owned(),
+        identity.started.on_the_wall(),
+        identity.board.serial_number.clone(),
+        run.outcome.to_string(),
+    ];
     cells.extend(SHOWN.map(value));
     cells.push(remarks.join(", "));
     cells

@@ -31,7 +31,11 @@ pub fn text(sheet: &Sheet<'_>, paint: Paint) -> String {
     if let Some(place) = place(sheet) {
         part(&place);
     }
-    part(&if is_dangerous { danger(paint) } else { wrapped(&next_action(sheet), "") });
+    if is_dangerous {
+        part(&danger(paint));
+    } else if sheet.run.is_some() {
+        part(&wrapped(&next_action(sheet), ""));
+    }
     page
 }
 
