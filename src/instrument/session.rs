@@ -35,7 +35,7 @@ pub struct Session {
     /// What gives the front panel back; sent at the end, once the instrument is known to be the right one.
     local: Vec<String>,
     greeted: bool,
-    /// The number of the last token sent, 1 to 127.
+    /// The last token sent; 0 before the first.
     token: u8,
     /// Settings as last read back, by question.
     confirmed: BTreeMap<String, f64>,

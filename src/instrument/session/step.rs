@@ -7,10 +7,12 @@
 use super::Session;
 use crate::instrument::error::InstrumentError;
 use crate::instrument::scpi::Number;
+use std::ops::RangeInclusive;
 use std::time::Duration;
 
-/// Largest token: bit 7 is left alone.
-const LARGEST_TOKEN: u8 = 127;
+/// The tokens: none is what a register with a single bit set replies, so that no late reply of that kind passes for a
+/// token. Bit 7 is left alone.
+const TOKENS: RangeInclusive<u8> = 65..=127;
 
 /// Round trips tried before the link counts as lost.
 const TRIES: u32 = 6;
@@ -68,7 +70,7 @@ impl Session {
     fn token_returns(&mut self) -> Result<bool, InstrumentError> {
         const QUESTION: &str = "*ESE?";
         let wait = self.timing.reply_deadline;
-        self.token = self.token % LARGEST_TOKEN + 1;
+        self.token = following(self.token);
         let order = format!("*ESE {}", self.token);
         self.link.write(&order, wait)?;
         self.link.pause(self.gap);
@@ -86,5 +88,26 @@ impl Session {
     /// Silence for this long means that no answer is under way.
     fn longest_pending(&self) -> Duration {
         self.timing.reply_deadline.max(self.timing.response)
+    }
+}
+
+/// The token after `token`; the first one after the last, and at the beginning.
+fn following(token: u8) -> u8 {
+    token.checked_add(1).filter(|next| TOKENS.contains(next)).unwrap_or(*TOKENS.start())
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn tokens_change_each_time_and_none_is_the_reply_of_a_register_with_a_single_bit() {
+        let mut token = following(0);
+        for _ in 0..1000 {
+            assert!(!token.is_power_of_two() && token < 128, "{token}");
+            let next = following(token);
+            assert_ne!(next, token);
+            token = next;
+        }
     }
 }

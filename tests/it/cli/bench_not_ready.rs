@@ -98,7 +98,7 @@ fn a_set_up_that_the_instrument_reports_as_an_error_is_quoted() {
 #[test]
 fn an_instrument_that_restarts_just_before_the_run_is_found_out() {
     not_ready_with(
-        once(Kind::Ammeter, at("*ESE 2"), Effect::Restart(Duration::ZERO)),
+        once(Kind::Ammeter, at("*ESE 66"), Effect::Restart(Duration::ZERO)),
         &["ammeter on ", "has restarted", "test the board again"],
     );
 }
