@@ -1,7 +1,7 @@
 //! `demo`: two simulated boards, one good and one not, tested over real serial ports.
 
 use super::show::{print, print_result};
-use super::simulated::Simulation;
+use super::simulated::{Simulation, speed};
 use super::test::{Keeping, on_simulation};
 use super::{Exit, Failure, Format, files};
 use crate::report::CAUTIONS;
@@ -22,7 +22,13 @@ pub(super) struct Arguments {
     #[arg(long, value_name = "FOLDER", default_value = "logs")]
     logs: PathBuf,
     /// Let simulated time run so many times faster than the clock on the wall.
-    #[arg(long, default_value_t = 1.0, value_name = "FACTOR")]
+    #[arg(
+        long,
+        default_value_t = 1.0,
+        value_name = "FACTOR",
+        value_parser = speed,
+        allow_negative_numbers = true
+    )]
     speed: f64,
 }
 

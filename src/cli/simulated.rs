@@ -22,8 +22,23 @@ pub(super) struct Simulation {
     #[arg(long, help_heading = "Simulated bench")]
     pub(super) seed: Option<u64>,
     /// Let simulated time run so many times faster than the clock on the wall.
-    #[arg(long, default_value_t = 1.0, value_name = "FACTOR", help_heading = "Simulated bench")]
+    #[arg(
+        long,
+        default_value_t = 1.0,
+        value_name = "FACTOR",
+        value_parser = speed,
+        allow_negative_numbers = true,
+        help_heading = "Simulated bench"
+    )]
     pub(super) speed: f64,
+}
+
+/// Reads how many times faster than the wall simulated time runs.
+pub(super) fn speed(text: &str) -> Result<f64, String> {
+    let speed = text.parse().ok().filter(|speed: &f64| speed.is_finite() && *speed > 0.0);
+    speed.ok_or_else(|| {
+        "wanted a number above 0, such as 1 for real time or 5 for five times as fast".to_owned()
+    })
 }
 
 impl Simulation {

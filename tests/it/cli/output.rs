@@ -185,3 +185,21 @@ fn a_reader_that_went_away_is_no_mistake() {
         assert_eq!(said.err, "", "{command:?}");
     }
 }
+
+#[test]
+fn a_speed_without_meaning_is_refused() {
+    let folder = folder();
+    let commands: [&[&str]; 3] = [
+        &["demo"],
+        &["test", "profile.toml", "--bench", "sim", "--serial-number", "RN000123"],
+        &["sim", "--profile", "profile.toml"],
+    ];
+    for command in commands {
+        for speed in ["0", "-1", "-0.5", "NaN", "inf", "fast"] {
+            let said = ebbmark(folder.path(), &[command, &["--speed", speed]].concat());
+            said.refuses(2, &[&format!("'{speed}'"), "--speed", "wanted a number above 0"]);
+            assert_eq!(said.out, "", "{command:?}");
+        }
+    }
+    assert!(!folder.path().join("logs").exists(), "nothing was begun");
+}
