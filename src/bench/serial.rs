@@ -106,18 +106,37 @@ impl SerialBench {
     pub async fn begin_run(&mut self) -> Result<(), BenchFault> {
         self.clock = self.clock.restarted();
         self.watched = Duration::ZERO;
-        let fit = |session: &mut Session| {
+        self.every_instrument(|session| {
             session.check_step()?;
             session.refuse_errors("the last run")
-        };
-        let answers: Vec<Answer<()>> =
-            self.instruments.iter().map(|asked| asked.instrument.ask(fit)).collect();
-        for answer in answers {
-            answer.wait().await?;
-        }
+        })
+        .await?;
         self.range = None;
         if let Some(largest) = self.ammeter.part.ranges.last() {
             self.put_on_range_for(largest.full_scale).await?;
+        }
+        Ok(())
+    }
+
+    /// Ends the run of one board: no instrument may have restarted or have anything to report, or what was measured
+    /// cannot be relied on.
+    ///
+    /// # Errors
+    /// The first instrument that restarted, reports an error, or does not answer.
+    pub async fn end_run(&mut self) -> Result<(), BenchFault> {
+        self.every_instrument(|session| session.refuse_errors("this run")).await?;
+        Ok(())
+    }
+
+    /// Has every instrument do the same at once, and waits until the first fails or all are done.
+    async fn every_instrument(
+        &self,
+        job: impl Fn(&mut Session) -> Result<(), InstrumentError> + Copy + Send + 'static,
+    ) -> Result<(), InstrumentError> {
+        let answers: Vec<Answer<()>> =
+            self.instruments.iter().map(|asked| asked.instrument.ask(job)).collect();
+        for answer in answers {
+            answer.wait().await?;
         }
         Ok(())
     }

@@ -10,7 +10,7 @@ use crate::procedure::{Plan, Procedure};
 use crate::profile::Profile;
 use crate::record::{BenchUsed, BoardUnderTest, Finished, ProfileUsed, Run, Simulated, Subject, now};
 use crate::report::OUTPUT_MAY_BE_ON;
-use crate::trace::OutputState;
+use crate::trace::{OutputState, Stop};
 use std::path::PathBuf;
 
 /// What is to be tested.
@@ -44,8 +44,14 @@ impl Order<'_> {
         let mut live = Live::new(self.profile.load.resistance);
         let procedure = Procedure::new(plan);
         let runtime = &station.runtime;
-        let trace = guard::driven(procedure, &mut bench, claims, &mut live, asked_to_stop, runtime);
+        let mut trace = guard::driven(procedure, &mut bench, claims, &mut live, asked_to_stop, runtime);
         live.finish();
+        // A run that stopped early keeps its first reason. Whatever comes of this, what is known of the output stays.
+        if trace.ending.stop == Stop::Completed
+            && let Err(fault) = runtime.block_on(bench.end_run())
+        {
+            trace.ending.stop = Stop::Fault(fault);
+        }
 
         let verdict = guard::judged(&trace, self.profile);
         let finished = Finished { verdict, ended: now(), duration: bench.now() };

@@ -10,7 +10,7 @@ use ebbmark::instrument::bench_file::{BenchFile, BenchInstrument, Identity};
 use ebbmark::instrument::definition::{Definition, Role, builtin};
 use ebbmark::instrument::error::InstrumentError;
 use ebbmark::procedure::{Action, Event};
-use ebbmark::trace::{Current, FaultKind, Sample};
+use ebbmark::trace::{BenchFault, Current, FaultKind, Sample};
 use ebbmark::units::{Amps, Volts};
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -202,6 +202,37 @@ fn a_meter_that_restarts_is_noticed_within_a_second_of_bench_time() {
     assert!(matches!(&kinds[1], Event::Failed(fault) if fault.kind == FaultKind::Restarted), "{kinds:?}");
 }
 
+/// What the end of a run finds after `strike` befell the unit at a reading in its middle.
+fn end_of_run(strike: impl Fn(&mut Device) + Send + 'static) -> Result<(), BenchFault> {
+    let unit = Scripted::start(Device::default(), move |device, line| {
+        if line == "MEAS:CURR?" {
+            strike(device);
+        }
+        device.obey(line)
+    });
+    block_on(async {
+        let mut bench = connected(&unit).await;
+        bench.begin_run().await.expect("a good start");
+        assert!(matches!(bench.perform(&Action::Read).await, Event::Reading(_)), "nothing is noticed yet");
+        assert_eq!(bench.perform(&Action::OutputOff).await, Event::Done);
+        bench.end_run().await
+    })
+}
+
+#[test]
+fn an_error_or_a_restart_in_the_middle_of_a_run_is_found_at_its_end() {
+    assert_eq!(end_of_run(|_| ()), Ok(()));
+    let fault =
+        end_of_run(|device| device.errors.push("-310,\"System error\"".to_owned())).expect_err("an error");
+    assert_eq!(fault.kind, FaultKind::InstrumentError);
+    assert!(
+        fault.text.contains("reported -310 \"System error\" (device error) after \"this run\""),
+        "{fault}"
+    );
+    let fault = end_of_run(|device| device.event_status |= 128).expect_err("a restart");
+    assert_eq!(fault.kind, FaultKind::Restarted, "{fault}");
+}
+
 #[test]
 fn a_wait_ends_when_its_time_has_come() {
     let unit = Scripted::well_behaved();
@@ -250,7 +281,7 @@ fn instruments_on_different_ports_are_asked_together() {
 #[test]
 fn an_action_dropped_half_way_leaves_the_bench_usable() {
     let unit = Scripted::start(Device::default(), |device, line| match line {
-        "MEAS:CURR?" => vec![Act::Wait(DEADLINE / 2), Act::Say("0.125\n".to_owned())],
+        "MEAS:CURR?" => vec![Act::Wait(DEADLINE / 4), Act::Say("0.125\n".to_owned())],
         line => device.obey(line),
     });
     block_on(async {

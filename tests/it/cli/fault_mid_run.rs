@@ -8,6 +8,9 @@ use ebbmark::sim::link_faults::{Effect, Lasting, LinkFault, When};
 use ebbmark::trace::{FaultKind, OutputState, Stop};
 use ebbmark::units::Amps;
 use ebbmark::verdict::Outcome;
+use rustix::fs::{Mode, OFlags};
+use std::fs::File;
+use std::io::Write;
 use std::time::Duration;
 
 /// Longer than any instrument of the bench is waited for.
@@ -153,6 +156,39 @@ fn a_protection_that_is_refused_with_an_error_in_the_queue() {
     {
         assert!(said.out.contains(phrase), "no {phrase:?} in\n{said}");
     }
+}
+
+/// A second hand on the line of the ammeter, there before the program takes the port for itself. What it sends the
+/// meter does not know, so that an error waits in its queue; the readings are answered all the same.
+fn second_hand(place: &Workplace) -> File {
+    let port = place.bench.port(Kind::Ammeter).expect("a port");
+    rustix::fs::open(port, OFlags::WRONLY | OFlags::NOCTTY, Mode::empty()).expect("a free port").into()
+}
+
+#[test]
+fn an_error_that_waits_in_a_queue_and_changes_no_reply() {
+    let mut place = Workplace::new();
+    let mut hand = second_hand(&place);
+    let said = struck(&mut place, |_| hand.write_all(b"NO:SUCH:HEADER\n").expect("room"));
+    let phrases = ["ammeter on ", "-113 \"Undefined header\"", "after \"this run\""];
+    invalid(&place, &said, FaultKind::InstrumentError, &phrases);
+}
+
+/// What is found at the end of a run does not hide that the output may be on.
+#[test]
+fn an_error_in_a_queue_and_an_output_that_does_not_go_off() {
+    let mut place = Workplace::new();
+    let mut hand = second_hand(&place);
+    let running = place.test_under_way(&[]);
+    hand.write_all(b"NO:SUCH:HEADER\n").expect("room");
+    place.bench.inject(always(Kind::Supply, at("OUTP OFF"), Effect::Refuse(ScpiError::SETTINGS_CONFLICT)));
+    let said = running.end();
+    said.refuses(5, &["THE OUTPUT MAY STILL BE ON"]);
+    assert!(place.bench.output(), "or this test shows nothing");
+    let (run, trace) = place.kept();
+    assert_eq!((run.outcome, trace.ending.output), (Outcome::Invalid, OutputState::MayBeOn));
+    assert!(matches!(trace.ending.stop, Stop::Fault(_)), "{:?}", trace.ending);
+    place.bench.hang_up(Kind::Supply);
 }
 
 /// The old value is kept, and an error is queued.
