@@ -6,6 +6,7 @@ mod demo;
 mod exit;
 mod files;
 mod guard;
+mod left_on;
 mod live;
 mod log;
 mod one_run;

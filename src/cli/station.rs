@@ -1,10 +1,11 @@
 //! A station about to work: its log open, and whatever an earlier run left on switched off.
 
 use super::Failure;
+use super::left_on::LeftOn;
 use crate::bench::clock::Clock;
 use crate::bench::serial::{ConnectError, SerialBench, connect, make_safe};
 use crate::instrument::bench_file::BenchFile;
-use crate::record::{Log, now};
+use crate::record::{Leftover, Log, now};
 use crate::units::Volts;
 use std::path::Path;
 
@@ -18,7 +19,7 @@ pub(super) struct Station<'b> {
 
 impl<'b> Station<'b> {
     /// Opens the log called `name`. When an earlier run never ended, its supply is commanded off and read back before
-    /// anything else, whatever becomes of the next run.
+    /// anything else, whatever becomes of the next run. Another supply than that one cannot stand for it.
     pub(super) fn open(bench: &'b BenchFile, clock: Clock, logs: &Path, name: &str) -> Result<Self, Failure> {
         let opened = Log::open(logs, name, &now())?;
         let runtime = tokio::runtime::Builder::new_current_thread().enable_all().build()?;
@@ -30,13 +31,18 @@ impl<'b> Station<'b> {
             anstream::eprintln!("note: {leftover}");
         }
         if !opened.leftovers.is_empty() {
-            station.switch_off()?;
+            station.switch_off(&opened.leftovers)?;
         }
         Ok(station)
     }
 
-    fn switch_off(&mut self) -> Result<(), Failure> {
-        self.runtime.block_on(make_safe(self.bench, self.clock)).map_err(Failure::output_may_be_on)?;
+    fn switch_off(&mut self, leftovers: &[Leftover]) -> Result<(), Failure> {
+        let mark = self.log.mark();
+        let left_on = || LeftOn::by(leftovers, &mark);
+        left_on().try_for_each(|left_on| left_on.refuse_other_bench(self.bench))?;
+        let switching_off = make_safe(self.bench, self.clock);
+        let supply = self.runtime.block_on(switching_off).map_err(Failure::output_may_be_on)?;
+        left_on().try_for_each(|left_on| left_on.refuse_other_supply(&supply))?;
         self.log.confirm_output_off()?;
         anstream::eprintln!("note: the output was commanded off and reads back as off");
         Ok(())

@@ -100,6 +100,11 @@ impl Log {
         &self.folder
     }
 
+    /// The mark of a run that has begun: taking it away says that the output is off.
+    pub fn mark(&self) -> PathBuf {
+        mark::path(&self.folder)
+    }
+
     /// Says that the output was commanded off and read back as off after an earlier run left it unknown.
     ///
     /// # Errors

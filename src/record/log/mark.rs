@@ -60,6 +60,7 @@ pub(super) fn find(folder: &LogFolder) -> Result<Option<Mark>, LogError> {
     Ok(Some(Mark::Unreadable { kept }))
 }
 
-fn path(folder: &LogFolder) -> PathBuf {
+/// Where the mark is, when there is one.
+pub(super) fn path(folder: &LogFolder) -> PathBuf {
     folder.path().join("started.json")
 }

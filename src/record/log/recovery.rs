@@ -29,9 +29,14 @@ pub enum Leftover {
 impl Leftover {
     /// The run, where it is known.
     pub fn run(&self) -> Option<&RunId> {
+        self.identity().map(|identity| &identity.run)
+    }
+
+    /// What was known of the run when it began, where the run is known.
+    pub fn identity(&self) -> Option<&Identity> {
         match self {
-            Leftover::Incomplete(run) => Some(&run.identity.run),
-            Leftover::OutputUnknown(identity) => Some(&identity.run),
+            Leftover::Incomplete(run) => Some(&run.identity),
+            Leftover::OutputUnknown(identity) => Some(identity),
             Leftover::UnreadableMark { .. } => None,
         }
     }
