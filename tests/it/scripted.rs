@@ -20,8 +20,11 @@ use std::sync::{Arc, Mutex};
 use std::thread::JoinHandle;
 use std::time::Duration;
 
-/// Deadline of every reply. Long against the scheduling of a busy machine, short for a test.
-pub(crate) const DEADLINE: Duration = Duration::from_millis(100);
+/// How long a reply is waited for; even a busy machine is sooner.
+pub(crate) const DEADLINE: Duration = Duration::from_secs(1);
+
+/// The same where a test is about a reply that does not come, or comes late.
+pub(crate) const SILENCE: Duration = Duration::from_millis(300);
 
 /// What the instrument does next on its side of the line.
 #[derive(Clone, Debug)]
@@ -125,6 +128,8 @@ impl Device {
 /// An instrument at work on a pseudo-terminal of its own.
 pub(crate) struct Scripted {
     pub(crate) place: Arc<Place>,
+    /// How long its sessions wait for a reply.
+    patience: Duration,
     log: Arc<Mutex<Vec<String>>>,
     stop: Arc<AtomicBool>,
     /// Keeps the line open between clients, and wakes the thread at the end.
@@ -181,7 +186,13 @@ impl Scripted {
             }
         });
         let place = Arc::new(Place { instrument: "supply".to_owned(), port: path });
-        Self { place, log, stop, slave: File::from(slave), thread: Some(thread) }
+        Self { place, patience: DEADLINE, log, stop, slave: File::from(slave), thread: Some(thread) }
+    }
+
+    /// The same, waited for no longer than [`SILENCE`].
+    pub(crate) fn impatiently(mut self) -> Self {
+        self.patience = SILENCE;
+        self
     }
 
     /// The lines received so far.
@@ -212,7 +223,8 @@ impl Scripted {
 
     /// As [`Scripted::session`], where the port may not open.
     pub(crate) fn try_session(&self) -> Result<Session, InstrumentError> {
-        let definition = definition();
+        let mut definition = definition();
+        definition.timing.reply_deadline = self.patience;
         let stream = serial_port::open(&self.place, &definition.serial)?;
         Ok(Session::new(stream, Arc::clone(&self.place), &definition, Clock::real()))
     }
@@ -237,13 +249,14 @@ impl Drop for Scripted {
     }
 }
 
-/// An instrument whose `n`-th answer to `question` is replaced by `acts`.
+/// An instrument whose `n`-th answer to `question` is replaced by `acts`, and which is not waited for long.
 pub(crate) fn spoiling(question: &'static str, n: usize, acts: Vec<Act>) -> Scripted {
     let mut asked = 0;
     Scripted::start(Device::default(), move |device, line| {
         asked += usize::from(line == question);
         if line == question && asked == n { acts.clone() } else { device.obey(line) }
     })
+    .impatiently()
 }
 
 /// What switches the output of a [`Device`] off.

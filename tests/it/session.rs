@@ -2,7 +2,7 @@
 
 #![expect(clippy::expect_used, reason = "helpers of tests fail as tests do")]
 
-use crate::scripted::{Act, DEADLINE, Device, Scripted, definition, off, say, spoiling};
+use crate::scripted::{Act, DEADLINE, Device, SILENCE, Scripted, definition, off, say, spoiling};
 use ebbmark::instrument::bench_file::Identity;
 use ebbmark::instrument::error::{InstrumentError, Place};
 use ebbmark::instrument::scpi::Number;
@@ -44,8 +44,9 @@ fn no_reply_names_the_question_and_the_next_one_is_answered_rightly() {
     assert_eq!(
         error.to_string(),
         format!(
-            "{} did not answer \"CURR?\" within 100 ms; check that it is on, its cable and its baud rate",
-            supply.place
+            "{} did not answer \"CURR?\" within {} ms; check that it is on, its cable and its baud rate",
+            supply.place,
+            SILENCE.as_millis()
         )
     );
     assert_eq!(number(&mut session, "VOLT?"), Some(0.0));
@@ -53,7 +54,7 @@ fn no_reply_names_the_question_and_the_next_one_is_answered_rightly() {
 
 #[test]
 fn a_late_reply_never_answers_the_next_question() {
-    let late = vec![Act::Wait(DEADLINE + DEADLINE / 2), Act::Say("7.77\n".to_owned())];
+    let late = vec![Act::Wait(SILENCE + SILENCE / 2), Act::Say("7.77\n".to_owned())];
     let supply = spoiling("CURR?", 1, late);
     let mut session = supply.greeted();
     assert!(matches!(session.query_number("CURR?"), Err(InstrumentError::NoReply { .. })));
@@ -63,7 +64,7 @@ fn a_late_reply_never_answers_the_next_question() {
 
 #[test]
 fn a_reply_later_than_the_quiet_span_is_caught_by_the_token() {
-    let late = vec![Act::Wait(DEADLINE * 7 / 2), Act::Say("7.77\n".to_owned())];
+    let late = vec![Act::Wait(SILENCE * 7 / 2), Act::Say("7.77\n".to_owned())];
     let supply = spoiling("CURR?", 1, late);
     let mut session = supply.greeted();
     assert!(matches!(session.query_number("CURR?"), Err(InstrumentError::NoReply { .. })));
@@ -90,7 +91,7 @@ fn a_cut_reply_is_never_a_number() {
 #[test]
 fn the_tail_of_a_cut_reply_is_not_a_reply() {
     let halves =
-        vec![Act::Say("+3.8500".to_owned()), Act::Wait(DEADLINE * 3 / 2), Act::Say("0E-06\n".to_owned())];
+        vec![Act::Say("+3.8500".to_owned()), Act::Wait(SILENCE * 3 / 2), Act::Say("0E-06\n".to_owned())];
     let supply = spoiling("CURR?", 1, halves);
     let mut session = supply.greeted();
     assert!(matches!(session.query_number("CURR?"), Err(InstrumentError::CutReply { .. })));
@@ -200,7 +201,8 @@ fn a_restart_while_out_of_step_is_not_hidden_by_bringing_it_in_step() {
             Vec::new()
         }
         line => device.obey(line),
-    });
+    })
+    .impatiently();
     let mut session = supply.greeted();
     assert!(matches!(session.query("CURR?"), Err(InstrumentError::NoReply { .. })));
     assert!(matches!(session.query("VOLT?"), Err(InstrumentError::Restarted { .. })));
@@ -224,7 +226,8 @@ fn a_link_that_cannot_be_brought_in_step_is_lost() {
     let supply = Scripted::start(Device::default(), move |device, line| {
         deaf |= line == "CURR?";
         if deaf { Vec::new() } else { device.obey(line) }
-    });
+    })
+    .impatiently();
     let mut session = supply.greeted();
     assert!(matches!(session.query("CURR?"), Err(InstrumentError::NoReply { .. })));
     let error = session.query("VOLT?").expect_err("no token returns");
