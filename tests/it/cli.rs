@@ -11,6 +11,7 @@ mod output;
 mod panics;
 mod second_program;
 mod stopped;
+mod truth;
 mod workplace;
 
 use std::process::Output;

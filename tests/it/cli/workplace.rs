@@ -38,7 +38,12 @@ pub(super) struct Workplace {
 impl Workplace {
     /// A bench in order, a good board on it, and no log yet.
     pub(super) fn new() -> Self {
-        Self::start(&setup(), Vec::new())
+        Self::of(&setup())
+    }
+
+    /// A bench in order with this board and these instruments.
+    pub(super) fn of(setup: &Setup) -> Self {
+        Self::start(setup, Vec::new())
     }
 
     /// The same, with something that will go wrong.
