@@ -39,7 +39,7 @@ pub struct Sample {
     /// Voltage at the board's terminals; `None` on a bench without a voltmeter there.
     #[serde(rename = "sense_v", default, skip_serializing_if = "Option::is_none")]
     pub sense: Option<Volts>,
-    /// Current into the board.
+    /// Current through the ammeter: into the board, and into a voltmeter behind the ammeter.
     #[serde(rename = "current_a")]
     pub current: Current,
     /// Voltage at the load, behind the switch; `None` on a bench without a voltmeter there.
@@ -110,8 +110,11 @@ pub struct Claims {
     pub sense: Option<Accuracy>,
     /// Of the ammeter, a line per range, smallest range first.
     pub current: Vec<RangeAccuracy>,
-    /// Resistance of both leads between supply and board, where no voltmeter sits at the board.
+    /// Resistance between where the voltage is known and the board, where no voltmeter sits at the board.
     pub lead_resistance: Option<Ohms>,
+    /// Input resistance of the voltmeter at the terminals, where its current passes the ammeter.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub sense_resistance: Option<Ohms>,
 }
 
 impl Claims {

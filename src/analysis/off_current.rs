@@ -1,7 +1,7 @@
 //! The off current at the voltage its limit names, on the smallest range that could show it.
 //!
 //! It counts only where the board is certainly off (below every set-point at which it was ever on), the terminals have
-//! arrived and the reading has settled.
+//! arrived and the reading has settled. What a voltmeter behind the ammeter draws is not the board's and is taken off.
 
 use super::finding::{About, Finding, FindingCode};
 use super::line::{Line, Point};
@@ -18,6 +18,9 @@ use std::ops::Range;
 const NEAR: f64 = 0.02;
 /// Spread of voltage over which a line is worth drawing, as a share.
 const SPAN: f64 = 0.002;
+/// Standard uncertainty of a voltmeter's input resistance, as a share. Makers state 10 Mohm to within 1 % (common practice);
+/// taken whole and not as a rectangle, for the definitions do not state it.
+const INPUT_RESISTANCE: f64 = 0.01;
 /// Terminals this near to the set-point, in volts and as a share of it, have arrived.
 const ARRIVED: (f64, f64) = (0.02, 0.01);
 
@@ -141,8 +144,13 @@ fn estimate(course: &Course<'_>, readings: &[Settled], at: Volts) -> Option<Quan
         return None;
     };
     let range = readings.first()?.range;
-    if let Some(accuracy) = course.trace.claims.current_accuracy(range, Amps(value)) {
-        parts.push(Contribution::new("ammeter", accuracy.standard_uncertainty(value)));
+    let passing = course.voltmeter_current(at);
+    let reading = Amps(value) + passing;
+    if let Some(accuracy) = course.trace.claims.current_accuracy(range, reading) {
+        parts.push(Contribution::new("ammeter", accuracy.standard_uncertainty(reading.0)));
+    }
+    if passing > Amps::ZERO {
+        parts.push(Contribution::new("voltmeter's input current", INPUT_RESISTANCE * passing.0));
     }
     Some(Quantity::new(QuantityName::OffCurrent, value, parts))
 }
@@ -202,6 +210,7 @@ mod tests {
     use super::super::fixture::{off, on, profile, staircase};
     use super::*;
     use crate::trace::{Accuracy, Current, RangeAccuracy, Trace};
+    use crate::units::Ohms;
 
     /// Off at the voltages and currents given, each read three times on `range`, between a trip and a re-enable.
     fn run(readings: &[(f64, f64)], range: f64) -> Trace {
@@ -235,6 +244,43 @@ mod tests {
         // 0.1 % of 2.5 uA and 10 nA as a rectangle: 12.5 nA / sqrt(3).
         assert!((quantity.standard_uncertainty - 12.5e-9 / 3.0_f64.sqrt()).abs() < 1e-11, "{quantity:?}");
         assert!(findings.is_empty(), "{findings:?}");
+    }
+
+    /// A voltmeter of 10 Mohm at 5.8 V draws 580 nA.
+    #[test]
+    fn what_a_voltmeter_behind_the_ammeter_draws_is_taken_off() {
+        let mut trace = run(&[(5.5, 2.95e-6), (5.8, 3.08e-6)], 1e-4);
+        let reading = found(&trace).0.expect("an off current");
+        assert!((reading.value - 3.08e-6).abs() < 1e-12);
+        trace.claims.sense_resistance = Some(Ohms(10e6));
+        let board = found(&trace).0.expect("an off current");
+        assert!((board.value - 2.5e-6).abs() < 1e-12, "{board:?}");
+        let share = |quantity: &Quantity, source| {
+            quantity
+                .contributions
+                .iter()
+                .find(|part| part.source == source)
+                .map(|part| part.standard_uncertainty)
+        };
+        let input = share(&board, "voltmeter's input current").expect("in the budget");
+        assert!((input - 5.8e-9).abs() < 1e-15, "1 % of 580 nA, found {input}");
+        assert_eq!(share(&board, "ammeter"), share(&reading, "ammeter"), "the meter read the sum");
+        assert!(reading.value - board.value > 2.0 * reading.standard_uncertainty, "{reading:?}");
+    }
+
+    #[test]
+    fn limits_and_hints_are_held_against_the_boards_own_current() {
+        let mut trace = run(&[(5.2, 4.0e-6), (5.8, 4.3e-6)], 1e-4);
+        assert_eq!(found(&trace).1, [FindingCode::OffCurrentHigh]);
+        trace.claims.sense_resistance = Some(Ohms(10e6));
+        assert_eq!(found(&trace).1, []);
+        // 29 uA through 200 kohm at the board, 29.58 uA in the meter.
+        let mut trace = run(&[(5.2, 26.52e-6), (5.8, 29.58e-6)], 1e-4);
+        trace.claims.sense_resistance = Some(Ohms(10e6));
+        let profile = profile();
+        let (_, findings) = off_current(&Course::new(&trace, &profile));
+        let text = &findings.first().expect("too high").text;
+        assert!(text.contains("29.00 µA") && text.contains("about 200.0 kΩ"), "{text}");
     }
 
     #[test]

@@ -2,7 +2,7 @@
 
 use crate::profile::Profile;
 use crate::trace::{Claims, Current, Sample, SwitchState, Trace};
-use crate::units::{Amps, Volts};
+use crate::units::{Amps, Ohms, Volts};
 use std::ops::Range;
 use std::time::Duration;
 
@@ -92,9 +92,15 @@ impl<'t> Course<'t> {
         })
     }
 
-    /// Voltage at the board's terminals: sensed, or the set-point less the drop in the leads as far as it is claimed.
+    /// Voltage at the board's terminals: sensed, or else the set-point, less the drop on the way as far as it is claimed.
     pub(super) fn terminals(&self, sample: &Sample) -> Volts {
         terminals(sample, &self.trace.claims)
+    }
+
+    /// What the voltmeter draws through the ammeter with `volts` at the terminals; zero where none does.
+    pub(super) fn voltmeter_current(&self, volts: Volts) -> Amps {
+        let resistance = self.trace.claims.sense_resistance.filter(|resistance| *resistance > Ohms::ZERO);
+        resistance.map_or(Amps::ZERO, |resistance| volts / resistance)
     }
 
     /// Standard uncertainty of a current reading, as claimed; zero without a claim.
@@ -149,10 +155,8 @@ fn state_of(sample: &Sample, claims: &Claims, profile: &Profile) -> SwitchState 
 }
 
 fn terminals(sample: &Sample, claims: &Claims) -> Volts {
-    sample.sense.unwrap_or_else(|| {
-        let drop = claims.lead_resistance.zip(sample.current.amps()).map(|(leads, amps)| amps * leads);
-        sample.set - drop.unwrap_or(Volts::ZERO)
-    })
+    let drop = claims.lead_resistance.zip(sample.current.amps()).map(|(leads, amps)| amps * leads);
+    sample.terminals() - drop.unwrap_or(Volts::ZERO)
 }
 
 fn current_uncertainty(claims: &Claims, range: Option<Amps>, reading: Amps) -> Amps {
@@ -164,6 +168,15 @@ fn current_uncertainty(claims: &Claims, range: Option<Amps>, reading: Amps) -> A
 mod tests {
     use super::super::fixture::{profile, staircase};
     use super::*;
+
+    #[test]
+    fn a_voltmeter_before_the_ammeter_is_a_drop_away_from_the_board() {
+        let (mut trace, profile) = (staircase(&[(6.0, 0.11)]), profile());
+        trace.samples[0].set = Volts(6.1);
+        trace.claims.lead_resistance = Some(Ohms(0.18));
+        let terminals = Course::new(&trace, &profile).terminals(&trace.samples[0]);
+        assert!((terminals.0 - 5.9802).abs() < 1e-12, "{terminals}");
+    }
 
     #[test]
     fn samples_at_one_set_point_are_one_plateau_and_the_last_one_counts() {

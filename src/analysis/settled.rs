@@ -13,7 +13,7 @@ const AGREES: f64 = 0.02;
 pub(super) struct Settled {
     /// Voltage at the terminals.
     pub(super) volts: Volts,
-    /// Current into the board.
+    /// Current into the board: the reading less what the voltmeter draws.
     pub(super) amps: Amps,
     /// Full scale of the ammeter's range.
     pub(super) range: Option<Amps>,
@@ -40,7 +40,10 @@ impl Settled {
         }
         let settled = &samples[samples.len() - count..];
         let mean = |value: &dyn Fn(&Sample) -> f64| settled.iter().map(value).sum::<f64>() / count as f64;
-        let amps = |sample: &Sample| sample.current.amps().map_or(f64::NAN, |amps| amps.0);
+        let amps = |sample: &Sample| {
+            let passing = course.voltmeter_current(course.terminals(sample));
+            sample.current.amps().map_or(f64::NAN, |amps| (amps - passing).0)
+        };
         let mean_amps = mean(&amps);
         Some(Self {
             volts: Volts(mean(&|sample| course.terminals(sample).0)),

@@ -141,8 +141,8 @@ pub(super) fn source_resistance(course: &Course<'_>) -> Option<Ohms> {
     }
     let samples = course.in_scope().flat_map(|plateau| &course.trace.samples[plateau.samples.clone()]);
     let drops = samples.filter_map(|sample| {
-        let (amps, sense) = (sample.current.amps()?, sample.sense?);
-        let drop = (sample.set - sense).0;
+        let (amps, terminals) = (sample.current.amps()?, sample.sense.map(|_| course.terminals(sample))?);
+        let drop = (sample.set - terminals).0;
         // Terminals far above the set-point are a supply that has not come down.
         let came_down = drop > -(LAGS.0 + LAGS.1 * sample.set.0) && drop.is_finite() && amps.is_finite();
         came_down.then_some(Point::plain(amps.0, drop))

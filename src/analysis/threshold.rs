@@ -207,9 +207,9 @@ impl Stays {
     }
 }
 
-/// Without a voltmeter the drop rests on the claimed lead resistance, as a rectangle (JCGM 100:2008, 4.3.7).
+/// Without a voltmeter at the board the drop rests on the claimed lead resistance, as a rectangle (JCGM 100:2008, 4.3.7).
 fn lead_drop_uncertainty(course: &Course<'_>, direction: Direction, set: Volts) -> Option<f64> {
-    if course.has_voltmeter() || direction == Direction::Up {
+    if direction == Direction::Up {
         return None;
     }
     let leads: Ohms = course.trace.claims.lead_resistance?;

@@ -7,6 +7,7 @@
 //!
 //! [fixture]                               # may be left out
 //! lead_resistance = "80 mohm"             # both leads together; used when no voltmeter sits at the board
+//! voltmeter = "behind_ammeter"            # or "before_ammeter": on the supply's side
 //!
 //! [[instrument]]                          # one block each
 //! name = "supply"                         # how messages call it
@@ -18,18 +19,19 @@
 //! ```
 
 mod ability;
+mod fixture;
 mod identity;
 mod parts;
 mod read;
 #[cfg(test)]
 mod sample;
 
+pub use fixture::{Fixture, VoltmeterPlace};
 pub use identity::{Identity, WrongIdentity};
 pub use parts::RoleMissing;
 
 use super::definition::{Definition, Role};
 use super::error::InstrumentError;
-use crate::units::Ohms;
 use jiff::civil::Date;
 use parts::Parts;
 use std::collections::BTreeSet;
@@ -41,8 +43,8 @@ pub struct BenchFile {
     pub name: String,
     /// What it is, for people.
     pub title: String,
-    /// Resistance of both leads between supply and board together, where it is known.
-    pub lead_resistance: Option<Ohms>,
+    /// How board and meters are connected.
+    pub fixture: Fixture,
     instruments: Vec<BenchInstrument>,
     parts: Parts,
 }
@@ -72,11 +74,11 @@ impl BenchFile {
     pub fn new(
         name: &str,
         title: &str,
-        lead_resistance: Option<Ohms>,
+        fixture: Fixture,
         instruments: Vec<BenchInstrument>,
     ) -> Result<Self, RoleMissing> {
         let parts = Parts::of(&instruments)?;
-        Ok(Self { name: name.to_owned(), title: title.to_owned(), lead_resistance, instruments, parts })
+        Ok(Self { name: name.to_owned(), title: title.to_owned(), fixture, instruments, parts })
     }
 
     /// All instruments, in the order of the file.

@@ -13,7 +13,7 @@ use device::{Supply, TREE, served};
 use ebbmark::bench::Bench;
 use ebbmark::bench::clock::Clock;
 use ebbmark::bench::serial::connect;
-use ebbmark::instrument::bench_file::{BenchFile, BenchInstrument, Identity};
+use ebbmark::instrument::bench_file::{BenchFile, BenchInstrument, Fixture, Identity};
 use ebbmark::instrument::definition::{Definition, Meter, Role, Source, builtin, builtin_names};
 use ebbmark::instrument::scpi::{DeviceError, ErrorClass, Number};
 use ebbmark::procedure::{Action, Event};
@@ -173,7 +173,7 @@ fn a_run_is_carried_out_on_it() {
         identity: Identity { maker: Some("Example".to_owned()), ..Identity::default() },
         calibration_due: None,
     };
-    let bench = BenchFile::new("test", "Bench of a test", None, vec![unit]).expect("all roles");
+    let bench = BenchFile::new("test", "Bench of a test", Fixture::default(), vec![unit]).expect("all roles");
     let work = async {
         let mut bench =
             connect(&bench, Volts(8.4), Clock::real()).await.unwrap_or_else(|error| panic!("{error}"));

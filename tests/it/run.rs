@@ -183,8 +183,7 @@ impl Bench {
             full_scale: Amps(range),
             accuracy: Accuracy { relative: 1e-3, absolute: range * 1e-4, resolution: range * 1e-6 },
         });
-        let claims =
-            Claims { set: None, sense: Some(VOLTMETER), current: current.to_vec(), lead_resistance: None };
+        let claims = Claims { sense: Some(VOLTMETER), current: current.to_vec(), ..Claims::default() };
         let trace = Trace { samples: self.samples, settings: Vec::new(), claims, ending };
         let analysis = analyse(&trace, &profile);
         let verdict = judge(&analysis, &profile, &trace.ending);

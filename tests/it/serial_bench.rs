@@ -6,7 +6,7 @@ use crate::scripted::{Act, DEADLINE, Device, Scripted, say};
 use ebbmark::bench::Bench;
 use ebbmark::bench::clock::Clock;
 use ebbmark::bench::serial::{ConnectError, SerialBench, check, connect};
-use ebbmark::instrument::bench_file::{BenchFile, BenchInstrument, Identity};
+use ebbmark::instrument::bench_file::{BenchFile, BenchInstrument, Fixture, Identity};
 use ebbmark::instrument::definition::{Definition, Role, builtin};
 use ebbmark::instrument::error::InstrumentError;
 use ebbmark::procedure::{Action, Event};
@@ -46,7 +46,8 @@ fn unit(scripted: &Scripted) -> BenchInstrument {
 }
 
 fn bench_of(instruments: Vec<BenchInstrument>) -> BenchFile {
-    BenchFile::new("test", "Bench of a test", None, instruments).expect("a source and an ammeter")
+    BenchFile::new("test", "Bench of a test", Fixture::default(), instruments)
+        .expect("a source and an ammeter")
 }
 
 fn block_on<T>(work: impl Future<Output = T>) -> T {

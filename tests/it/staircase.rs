@@ -133,6 +133,7 @@ impl Model {
                     line(HIGH, Accuracy { relative: 0.002, absolute: 1e-4, resolution: 1e-6 }),
                 ],
                 lead_resistance: None,
+                sense_resistance: None,
             },
             ending: Ending { stop: Stop::Completed, output: OutputState::Off },
         }

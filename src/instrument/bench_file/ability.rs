@@ -1,11 +1,12 @@
 //! What a bench can do and what its makers claim, put together from the definitions of its instruments.
 
-use super::{BenchFile, BenchInstrument};
+use super::{BenchFile, BenchInstrument, VoltmeterPlace};
 use crate::instrument::definition::{Range, Role, Voltmeter};
 use crate::procedure::{Ability, Misfit, fits};
 use crate::profile::{Profile, Supply};
 use crate::trace::Claims;
 use crate::units::{Amps, Ohms, Volts};
+use std::collections::BTreeSet;
 use std::time::Duration;
 
 /// Characters of a reply, line end included: sign, nine digits, point and exponent such as `+1.23456789E-06`.
@@ -57,16 +58,29 @@ impl BenchFile {
             sense: self.sense_range(supply.maximum).map(|range| range.accuracy),
             current: self.parts.ammeter.claims(),
             lead_resistance: self.series_resistance(supply.current_limit),
+            sense_resistance: self.sense_resistance(supply.maximum),
         }
+    }
+
+    /// Input resistance of a voltmeter behind the ammeter, on the range that holds `maximum`. `None` where the source
+    /// or the ammeter reads the voltage itself: what that takes does not pass the ammeter.
+    fn sense_resistance(&self, maximum: Volts) -> Option<Ohms> {
+        let voltmeter = self.player(Role::Voltmeter)?;
+        let apart = voltmeter.roles.is_disjoint(&BTreeSet::from([Role::Source, Role::Ammeter]));
+        (apart && self.voltmeter_at_board()).then(|| self.sense_range(maximum))?.map(|range| range.resistance)
+    }
+
+    fn voltmeter_at_board(&self) -> bool {
+        self.parts.voltmeter.is_some() && self.fixture.voltmeter == VoltmeterPlace::BehindAmmeter
     }
 
     /// Leads and burden of the ammeter on the range that holds `current`: what drops the voltage between supply and
     /// board. `None` where it is not known, or where a voltmeter at the board makes it needless.
     fn series_resistance(&self, current: Amps) -> Option<Ohms> {
-        if self.parts.voltmeter.is_some() {
+        if self.voltmeter_at_board() {
             return None;
         }
-        Some(self.lead_resistance? + self.parts.ammeter.range_for(current)?.resistance)
+        Some(self.fixture.lead_resistance? + self.parts.ammeter.range_for(current)?.resistance)
     }
 
     /// All that `profile` asks for and this bench cannot do; empty when they fit.
@@ -191,6 +205,28 @@ mod tests {
         assert!((leads / Ohms(0.18) - 1.0).abs() < 1e-12, "{leads}");
         assert_eq!(claims.sense, None);
         assert!(bare.ability(Volts(8.4)).load_voltmeter);
+    }
+
+    #[test]
+    fn a_voltmeter_of_its_own_behind_the_ammeter_draws_through_it() {
+        let input = |changes: &[(&str, &str)]| bench(changes).claims(&supply()).sense_resistance;
+        assert_eq!(input(&[]), Some(Ohms(10e6)), "of its 10 V range");
+        assert_eq!(input(&[(VOLTMETER, "roles = [\"load_voltmeter\"]")]), None);
+        let source_measure_unit = [
+            ("definition = \"programmable-supply\"", "definition = \"source-measure-unit\""),
+            ("roles = [\"source\"]", "roles = [\"source\", \"voltmeter\"]"),
+            (VOLTMETER, "roles = [\"load_voltmeter\"]"),
+        ];
+        assert_eq!(input(&source_measure_unit), None);
+    }
+
+    #[test]
+    fn before_the_ammeter_nothing_passes_it_and_leads_and_burden_drop_voltage() {
+        let claims = bench(&[("\"behind_ammeter\"", "\"before_ammeter\"")]).claims(&supply());
+        assert_eq!(claims.sense_resistance, None);
+        let series = claims.lead_resistance.expect("80 mohm of leads, 100 mohm of burden on 1 A");
+        assert!((series / Ohms(0.18) - 1.0).abs() < 1e-12, "{series}");
+        assert!(claims.sense.is_some());
     }
 
     #[test]

@@ -1,10 +1,9 @@
 //! Reads a bench file and the definitions it names.
 
-use super::{BenchFile, BenchInstrument, Identity};
+use super::{BenchFile, BenchInstrument, Fixture, Identity};
 use crate::document::{At, Document, Problems, Table};
 use crate::instrument::definition::{Definition, Role, read_roles};
 use crate::instrument::library::FindError;
-use crate::units::Ohms;
 use std::collections::BTreeSet;
 
 /// Finds the definition of a name in a bench file.
@@ -25,7 +24,7 @@ fn read(root: &mut Table<'_, '_>, find: &Find<'_>) -> Option<BenchFile> {
     root.integer_choice("schema", &[(1, ())]);
     let name = root.text("name");
     let title = root.text("title");
-    let lead_resistance = root.optional_table("fixture").and_then(read_lead_resistance);
+    let fixture = root.optional_table("fixture").map(Fixture::read).unwrap_or_default();
     // All are read before any is missed, so that every problem is noted.
     let blocks: Vec<_> =
         root.tables("instrument").into_iter().map(|table| read_instrument(table, find)).collect();
@@ -35,7 +34,7 @@ fn read(root: &mut Table<'_, '_>, find: &Find<'_>) -> Option<BenchFile> {
     }
     nothing_is_shared(&blocks, root);
     let instruments = blocks.into_iter().map(|block| block.instrument).collect();
-    match BenchFile::new(&name?.value, &title?.value, lead_resistance, instruments) {
+    match BenchFile::new(&name?.value, &title?.value, fixture, instruments) {
         Ok(bench) => Some(bench),
         Err(missing) => {
             root.problem_here(missing.to_string());
@@ -50,14 +49,6 @@ struct Block {
     name: At<String>,
     port: At<String>,
     roles: At<BTreeSet<Role>>,
-}
-
-fn read_lead_resistance(mut fixture: Table<'_, '_>) -> Option<Ohms> {
-    let resistance = fixture.optional_quantity::<Ohms>("lead_resistance")?;
-    if resistance.value < Ohms::ZERO {
-        fixture.problem(&resistance, "below zero");
-    }
-    Some(resistance.value)
 }
 
 fn read_instrument(mut table: Table<'_, '_>, find: &Find<'_>) -> Option<Block> {
@@ -131,6 +122,8 @@ fn nothing_is_shared(blocks: &[Block], root: &Table<'_, '_>) {
 mod tests {
     use super::super::sample::{FIRST_BENCH, bench, problems, read};
     use super::*;
+    use crate::instrument::bench_file::VoltmeterPlace;
+    use crate::units::Ohms;
     use insta::assert_snapshot as says;
     use jiff::civil::date;
     use proptest::prelude::*;
@@ -142,7 +135,8 @@ mod tests {
     fn the_shipped_bench_file_is_read_as_written() {
         let bench = bench(&[]);
         assert_eq!(bench.name, "first-bench");
-        assert_eq!(bench.lead_resistance, Some(Ohms(0.08)));
+        let fixture = Fixture { lead_resistance: Some(Ohms(0.08)), voltmeter: VoltmeterPlace::BehindAmmeter };
+        assert_eq!(bench.fixture, fixture);
         let supply = bench.player(Role::Source).expect("it has one");
         assert_eq!(supply.name, "supply");
         assert_eq!(supply.definition.name, "programmable-supply");
@@ -155,10 +149,10 @@ mod tests {
     #[test]
     fn a_definition_that_cannot_be_had_is_named() {
         says!(problems(&[(SUPPLY, "definition = \"programable-supply\"")]),
-            @r#"b.toml:19:14: instrument[1].definition = "programable-supply": no definition "programable-supply" comes with the program; wanted "programmable-supply", "supply-with-low-current-range", "bench-meter-current", "bench-meter-voltage", "source-measure-unit" or the path of a file ending in .toml"#);
+            @r#"b.toml:20:14: instrument[1].definition = "programable-supply": no definition "programable-supply" comes with the program; wanted "programmable-supply", "supply-with-low-current-range", "bench-meter-current", "bench-meter-voltage", "source-measure-unit" or the path of a file ending in .toml"#);
         let unreadable = problems(&[(SUPPLY, "definition = \"mine.toml\"")]);
         assert!(
-            unreadable.starts_with("b.toml:19:14: instrument[1].definition = \"mine.toml\": cannot read "),
+            unreadable.starts_with("b.toml:20:14: instrument[1].definition = \"mine.toml\": cannot read "),
             "{unreadable}"
         );
     }
@@ -167,11 +161,11 @@ mod tests {
     fn every_role_is_offered_played_once_and_source_and_ammeter_are_there() {
         says!(problems(&[("roles = [\"source\"]", "roles = [\"ammeter\"]")]), @r#"
         b.toml:1:1: no instrument plays the role source; every bench needs a source and an ammeter
-        b.toml:21:9: instrument[1].roles = ["ammeter"]: programmable-supply cannot play ammeter, only source
-        b.toml:30:9: instrument[2].roles = ["ammeter"]: ammeter is played by supply already
+        b.toml:22:9: instrument[1].roles = ["ammeter"]: programmable-supply cannot play ammeter, only source
+        b.toml:31:9: instrument[2].roles = ["ammeter"]: ammeter is played by supply already
         "#);
         says!(problems(&[(VOLTMETER, "roles = [\"voltmeter\", \"load_voltmeter\"]")]),
-            @r#"b.toml:38:9: instrument[3].roles = ["voltmeter", "load_voltmeter"]: one meter cannot read at the terminals and at the load; wanted one of the two"#);
+            @r#"b.toml:39:9: instrument[3].roles = ["voltmeter", "load_voltmeter"]: one meter cannot read at the terminals and at the load; wanted one of the two"#);
         says!(problems(&[("definition = \"bench-meter-current\"", "definition = \"bench-meter-voltage\""), ("roles = [\"ammeter\"]", "roles = [\"load_voltmeter\"]")]),
             @"b.toml:1:1: no instrument plays the role ammeter; every bench needs a source and an ammeter");
     }
@@ -179,9 +173,19 @@ mod tests {
     #[test]
     fn a_port_or_a_name_used_twice_is_refused() {
         says!(problems(&[("FM6_20431", "FM6_20418"), ("name = \"voltage meter\"", "name = \"current meter\"")]), @r#"
-        b.toml:35:8: instrument[3].name = "current meter": the same name as instrument[2].name = "current meter"
-        b.toml:37:8: instrument[3].port = "/dev/serial/by-id/usb-Fernhill_Meters_FM6_20418-if00-port0": the same port as instrument[2].port = "/dev/serial/by-id/usb-Fernhill_Meters_FM6_20418-if00-port0"; one port, one instrument
+        b.toml:36:8: instrument[3].name = "current meter": the same name as instrument[2].name = "current meter"
+        b.toml:38:8: instrument[3].port = "/dev/serial/by-id/usb-Fernhill_Meters_FM6_20418-if00-port0": the same port as instrument[2].port = "/dev/serial/by-id/usb-Fernhill_Meters_FM6_20418-if00-port0"; one port, one instrument
         "#);
+    }
+
+    #[test]
+    fn the_voltmeter_is_on_one_side_of_the_ammeter_and_its_distance_known() {
+        says!(problems(&[("\"behind_ammeter\"", "\"behind\"")]),
+            @r#"b.toml:14:13: fixture.voltmeter = "behind": wanted "behind_ammeter" or "before_ammeter""#);
+        let unknown =
+            [("\"behind_ammeter\"", "\"before_ammeter\""), ("lead_resistance", "# lead_resistance")];
+        says!(problems(&unknown),
+            @r#"b.toml:14:13: fixture.voltmeter = "before_ammeter": the drop between it and the board must be known; wanted lead_resistance too"#);
     }
 
     #[test]
@@ -190,10 +194,10 @@ mod tests {
             [("\"80 mohm\"", "\"-80 mohm\""), ("2027-03-31", "\"31.3.2027\""), ("maker = ", "make = ")];
         says!(problems(&changes), @r#"
         b.toml:13:19: fixture.lead_resistance = "-80 mohm": below zero
-        b.toml:22:19: instrument[1].calibration_due = "31.3.2027": wanted a date such as 2027-03-31
-        b.toml:24:14: unknown key "make" in [instrument[1].identity]; did you mean "maker"?
+        b.toml:23:19: instrument[1].calibration_due = "31.3.2027": wanted a date such as 2027-03-31
+        b.toml:25:14: unknown key "make" in [instrument[1].identity]; did you mean "maker"?
         "#);
-        says!(problems(&[("2027-03-31", "2027-02-30")]), @"b.toml:22:19: invalid date, expected day between 01 and 28");
+        says!(problems(&[("2027-03-31", "2027-02-30")]), @"b.toml:23:19: invalid date, expected day between 01 and 28");
         let empty =
             read("schema = 1\nname = \"b\"\ntitle = \"t\"\ninstrument = []\n").expect_err("no instruments");
         says!(empty.lines().collect::<Vec<_>>().join("\n"), @"b.toml:4:14: instrument = []: wanted at least one [[instrument]]");
