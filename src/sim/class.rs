@@ -26,6 +26,9 @@ const AMMETER_RANGES: [(f64, f64, f64, f64, f64); 6] = [
 const VOLTMETER_RANGES: [(f64, f64, f64, f64); 2] =
     [(10.0, 0.0035e-2, 0.0005e-2, 10e-6), (100.0, 0.0045e-2, 0.0006e-2, 100e-6)];
 
+/// Input resistance of a voltmeter, and the share its maker allows it to be off.
+const INPUT_RESISTANCE: (Ohms, f64) = (Ohms(10e6), 1e-2);
+
 /// Noise of an ammeter's reading, as a share of its range.
 const AMMETER_NOISE: f64 = 5e-6;
 
@@ -74,6 +77,7 @@ pub(super) fn meters(seed: u64) -> (AmmeterModel, VoltmeterModel, VoltmeterModel
         meter: range(scale, relative, of_range, digit, AMMETER_NOISE),
         burden: Ohms(burden),
     });
+    let mut inputs = Draw::new(seed, Concern::MeterInputs);
     let mut voltmeter = || VoltmeterModel {
         ranges: VOLTMETER_RANGES
             .map(|(scale, relative, of_range, digit)| {
@@ -81,7 +85,8 @@ pub(super) fn meters(seed: u64) -> (AmmeterModel, VoltmeterModel, VoltmeterModel
             })
             .to_vec(),
         integration: INTEGRATION,
-        input_resistance: Ohms(10e9),
+        input_resistance: Some(INPUT_RESISTANCE.0),
+        input_error: inputs.within(INPUT_RESISTANCE.1),
     };
     let ammeter = AmmeterModel {
         ranges: ranges.to_vec(),

@@ -12,6 +12,7 @@ pub(super) enum Concern {
     MeterNoise = 3,
     DetectorNoise = 4,
     Faults = 5,
+    MeterInputs = 6,
 }
 
 /// The stream of one concern.

@@ -2,7 +2,7 @@
 
 use super::draw::Draw;
 use crate::trace::{Accuracy, Current};
-use crate::units::{Amps, Ohms, Volts};
+use crate::units::{Amps, Ohms, Siemens, Volts};
 use std::time::Duration;
 
 /// One range of a meter, its errors already drawn.
@@ -47,8 +47,11 @@ pub struct VoltmeterModel {
     pub ranges: Vec<MeterRange>,
     /// Time over which a reading is averaged.
     pub integration: Duration,
-    /// Resistance between its terminals.
-    pub input_resistance: Ohms,
+    /// What its maker states of the resistance between its terminals; `None` for the sense of a source-measure unit, whose
+    /// current does not pass the ammeter.
+    pub input_resistance: Option<Ohms>,
+    /// How far the true resistance is off what is stated, as a share.
+    pub input_error: f64,
 }
 
 /// A meter reads up to this multiple of a range's full scale; a fifth more is common practice for bench meters.
@@ -124,6 +127,12 @@ impl AmmeterModel {
 }
 
 impl VoltmeterModel {
+    /// What it draws through the ammeter for a volt.
+    pub fn input_conductance(&self) -> Siemens {
+        let stated = self.input_resistance.filter(|stated| *stated > Ohms::ZERO);
+        Siemens(stated.map_or(0.0, |stated| 1.0 / (stated.0 * (1.0 + self.input_error))))
+    }
+
     /// The range on which it reads `volts`, by its own choice.
     pub fn range_for(&self, volts: Volts) -> Option<&MeterRange> {
         self.ranges.iter().find(|range| range.holds(volts.0)).or(self.ranges.last())

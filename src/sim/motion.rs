@@ -66,12 +66,11 @@ pub(super) struct Motion {
 impl Motion {
     /// A bench at rest with its output off.
     pub(super) fn new(setup: &Setup, burden: f64) -> Self {
-        let conductance = |resistance: f64| if resistance > 0.0 { 1.0 / resistance } else { 0.0 };
         let surroundings = Surroundings {
             on: false,
             series: setup.wiring.lead_resistance.0 + burden,
-            voltmeter: conductance(setup.voltmeter.input_resistance.0),
-            load_voltmeter: conductance(setup.load_voltmeter.input_resistance.0),
+            voltmeter: setup.voltmeter.input_conductance().0,
+            load_voltmeter: setup.load_voltmeter.input_conductance().0,
             limit: f64::INFINITY,
         };
         Self {

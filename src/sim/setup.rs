@@ -135,7 +135,7 @@ impl Setup {
             sense: self.voltmeter.range_for(self.highest_voltage()).map(|range| range.claim),
             current: self.ammeter.ranges.iter().map(line).collect(),
             lead_resistance: None,
-            sense_resistance: Some(self.voltmeter.input_resistance),
+            sense_resistance: self.voltmeter.input_resistance,
         }
     }
 

@@ -40,7 +40,8 @@ impl Setup {
         let voltmeter = VoltmeterModel {
             ranges: vec![range(VOLTAGE_RANGE)],
             integration: INTEGRATION,
-            input_resistance: Ohms(10e9),
+            input_resistance: None,
+            input_error: 0.0,
         };
         Self {
             supply: supply(self.seed),

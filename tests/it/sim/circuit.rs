@@ -90,7 +90,7 @@ fn setup(case: &Case) -> Setup {
         range.gain_error = 0.0;
         range.offset_error = 0.0;
     }
-    setup.voltmeter.input_resistance = Ohms(1e15);
+    setup.voltmeter.input_resistance = None;
     setup
 }
 

@@ -91,11 +91,11 @@ fn an_open_switch_never_turns_on_and_the_pull_up_still_follows_the_detector() {
     for (seed, setup) in setups(Condition::NeverOn) {
         let mut world = armed(&setup);
         let (_, _, load) = read(&mut world);
-        let idle = off_current(&mut world);
+        let idle = off_current(&mut world, &setup);
         assert!(load.abs() < 0.01 && idle < 2e-6, "seed {seed}: {load} V, {idle} A");
         world.set_volts(Volts(5.8));
         wait(&mut world, 200);
-        let pulled = off_current(&mut world);
+        let pulled = off_current(&mut world, &setup);
         assert!(
             inside(QuantityName::OffCurrent, pulled) && pulled > idle + 0.5e-6,
             "seed {seed}: {pulled} A"

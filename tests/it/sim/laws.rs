@@ -41,8 +41,10 @@ fn current_times_resistance_is_voltage_all_around_the_loop() {
                 (sense - load - through * setup.board.on_resistance.0).abs() < 1e-6,
                 "seed {seed}: switch"
             );
+            let voltmeters = sense * setup.voltmeter.input_conductance().0
+                + load * setup.load_voltmeter.input_conductance().0;
             assert!(
-                (current - through).abs() < 2e-6,
+                (current - through - voltmeters).abs() < 2e-6,
                 "seed {seed}: {current} A in, {through} A through the load"
             );
         }
@@ -56,7 +58,7 @@ fn current_times_resistance_is_voltage_all_around_the_loop() {
             + board.detector_current.0
             + board.leakage.0
             + sense * board.leakage_conductance.0
-            + sense / setup.voltmeter.input_resistance.0;
+            + sense * setup.voltmeter.input_conductance().0;
         assert!((current - sum).abs() < 2e-9, "seed {seed}: {current} A read, {sum} A by parts");
     }
 }

@@ -43,17 +43,18 @@ pub(crate) fn walk(setup: &Setup) -> Seen {
         }
         before = Some((sense, on));
         if step == 580 && !on {
-            seen.off_current = off_current(&mut world);
+            seen.off_current = off_current(&mut world, setup);
         }
     }
     seen
 }
 
-/// The current on the smallest range that can show it, back on the large range afterwards.
-pub(crate) fn off_current(world: &mut World) -> f64 {
+/// The board's current on the smallest range that can show it, without the voltmeter's; back on the large range
+/// afterwards.
+pub(crate) fn off_current(world: &mut World, setup: &Setup) -> f64 {
     world.set_range(Amps(100e-6));
     wait(world, 100);
-    let (_, current, _) = read(world);
+    let (sense, current, _) = read(world);
     world.reset_meter_range();
-    current
+    current - sense * setup.voltmeter.input_conductance().0
 }

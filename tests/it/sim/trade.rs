@@ -33,7 +33,8 @@ fn the_pull_up_alone_draws_a_microamp_and_a_half_at_the_trip() {
 
 #[test]
 fn the_two_states_of_a_nine_volt_board_are_five_decades_apart() {
-    let mut world = World::new(&nine_volt_board());
+    let setup = nine_volt_board();
+    let mut world = World::new(&setup);
     world.set_volts(Volts(9.7));
     world.set_output(true);
     wait(&mut world, 500);
@@ -44,7 +45,7 @@ fn the_two_states_of_a_nine_volt_board_are_five_decades_apart() {
     assert!((on - 0.27).abs() < 0.005, "about 0.27 A at 7.3 V, read {on} A");
     world.set_volts(Volts(6.95));
     wait(&mut world, 500);
-    let off = off_current(&mut world);
+    let off = off_current(&mut world, &setup);
     assert!((off - 2.4e-6).abs() < 0.1e-6, "about 2.4 µA off, read {off} A");
     assert!((on / off).log10() > 5.0 && (on / off).log10() < 5.1, "{}", (on / off).log10());
     world.set_volts(Volts(7.8));
