@@ -37,10 +37,10 @@ fn runs() -> Vec<Run> {
 #[test]
 fn the_table() {
     insta::assert_snapshot!(list(&runs()), @r#"
-    time                 serial number  outcome     trip     re-enable  hysteresis  off current  findings
-    2026-10-19 16:22:33  RN000123       PASS        6.000 V  6.401 V    400.8 mV    2.400 µA     (simulated)
-    2026-10-19 16:23:00  RN000124       FAIL        -        -          -           -            never trips
-    2026-10-19 16:23:20  RN000123       INCOMPLETE  -        -          -           -            incomplete, (simulated)
+    run   time                 serial number  outcome     trip     re-enable  hysteresis  off current  findings
+    0001  2026-10-19 16:22:33  RN000123       PASS        6.000 V  6.401 V    400.8 mV    2.400 µA     (simulated)
+    0002  2026-10-19 16:23:00  RN000124       FAIL        -        -          -           -            never trips
+    0003  2026-10-19 16:23:20  RN000123       INCOMPLETE  -        -          -           -            incomplete, (simulated)
     "#);
     assert_eq!(list(&[]), "no runs\n");
 }
