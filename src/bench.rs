@@ -1,6 +1,5 @@
 //! Carries out a procedure: in real time over serial ports, or in virtual time on the simulation.
 
-pub mod clock;
 mod drive;
 pub mod serial;
 mod virtual_time;

@@ -14,11 +14,13 @@
 //! - [`report`]: what a run says, for people and for programs
 //! - [`cli`]: the commands
 //!
-//! [`units`] and [`document`] serve them all: quantities with units, and files read with every problem at its place.
+//! [`units`], [`document`] and [`clock`] serve them all: quantities with units, files read with every problem at its
+//! place, and the one place where the time of a run is asked for.
 
 pub mod analysis;
 pub mod bench;
 pub mod cli;
+pub mod clock;
 pub mod document;
 pub mod instrument;
 pub mod procedure;

@@ -14,7 +14,7 @@ pub use connect::{ConnectError, connect};
 pub use make_safe::make_safe;
 
 use crate::bench::Bench;
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use crate::instrument::definition::{Ammeter, Source, Timing};
 use crate::instrument::error::InstrumentError;
 use crate::instrument::port::{Answer, Instrument};

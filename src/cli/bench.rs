@@ -2,8 +2,8 @@
 
 use super::show::print;
 use super::{Exit, Failure, files};
-use crate::bench::clock::Clock;
 use crate::bench::serial::{Report, check};
+use crate::clock::Clock;
 use crate::instrument::definition::{Definition, Role, builtin_names};
 use crate::instrument::library;
 use crate::instrument::serial_port::ports_present;

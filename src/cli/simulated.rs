@@ -1,7 +1,7 @@
 //! What is simulated, as the command line says it.
 
 use super::Failure;
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use crate::instrument::bench_file::BenchFile;
 use crate::instrument::library;
 use crate::profile::Profile;

@@ -2,8 +2,8 @@
 
 use super::Failure;
 use super::left_on::LeftOn;
-use crate::bench::clock::Clock;
 use crate::bench::serial::{ConnectError, SerialBench, connect, make_safe};
+use crate::clock::Clock;
 use crate::instrument::bench_file::BenchFile;
 use crate::record::{Leftover, Log, now};
 use crate::units::Volts;

@@ -5,7 +5,7 @@ use super::show::print_result;
 use super::simulated::{Simulation, bench_file};
 use super::station::Station;
 use super::{Exit, Failure, Format, files};
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use crate::profile::Profile;
 use crate::record::BoardUnderTest;
 use crate::report::CAUTIONS;

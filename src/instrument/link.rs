@@ -7,7 +7,7 @@ use super::definition::SerialSettings;
 use super::error::{InstrumentError, Place};
 use super::scpi::{Framer, LineTooLong};
 use super::stream::ByteStream;
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use std::collections::VecDeque;
 use std::io;
 use std::sync::Arc;

@@ -18,7 +18,7 @@ use super::error::{InstrumentError, Place};
 use super::link::Link;
 use super::scpi::{DeviceError, ErrorClass, EventStatus, Number};
 use super::stream::ByteStream;
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use std::collections::BTreeMap;
 use std::sync::Arc;
 use std::time::Duration;

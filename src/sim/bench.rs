@@ -7,7 +7,7 @@ use super::device::{Device, Kind};
 use super::link_faults::{LinkFault, LinkFaults};
 use super::terminal::{Exchange, Pace, Terminal};
 use super::{Setup, SharedWorld, SimulationClock, World, lock};
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use std::fmt::Write;
 use std::io;
 use std::path::{Path, PathBuf};

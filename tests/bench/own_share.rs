@@ -11,9 +11,9 @@ mod figures;
 mod spans;
 
 use ebbmark::analysis::analyse;
-use ebbmark::bench::clock::Clock;
 use ebbmark::bench::serial::{SerialBench, connect};
 use ebbmark::bench::{Bench, Watch, drive};
+use ebbmark::clock::Clock;
 use ebbmark::instrument::bench_file::BenchFile;
 use ebbmark::instrument::library;
 use ebbmark::procedure::{Action, Event, Plan, Procedure, Progress};

@@ -7,7 +7,7 @@
 
 mod figures;
 
-use ebbmark::bench::clock::Clock;
+use ebbmark::clock::Clock;
 use ebbmark::instrument::definition::{Definition, builtin};
 use ebbmark::instrument::error::Place;
 use ebbmark::instrument::port::Instrument;

@@ -8,8 +8,8 @@
 mod figures;
 
 use ebbmark::analysis::analyse;
-use ebbmark::bench::clock::Clock;
 use ebbmark::bench::{Bench, VirtualBench, drive, run_ready};
+use ebbmark::clock::Clock;
 use ebbmark::procedure::{Action, Event, Plan, Procedure};
 use ebbmark::profile::Profile;
 use ebbmark::sim::{Condition, Setup};

@@ -3,9 +3,9 @@
 #![expect(clippy::expect_used, reason = "a test fails by panicking")]
 
 use crate::simulated_bench::setup;
-use ebbmark::bench::clock::Clock;
 use ebbmark::bench::drive;
 use ebbmark::bench::serial::{SerialBench, check, connect};
+use ebbmark::clock::Clock;
 use ebbmark::instrument::bench_file::BenchFile;
 use ebbmark::procedure::{Plan, Procedure};
 use ebbmark::profile::Profile;

@@ -2,7 +2,7 @@
 
 #![expect(clippy::expect_used, reason = "helpers of tests fail as tests do")]
 
-use ebbmark::bench::clock::Clock;
+use ebbmark::clock::Clock;
 use ebbmark::instrument::definition::{
     DataBits, Definition, FlowControl, Parity, Role, SerialSettings, StopBits, Terminator, Timing,
 };

@@ -4,8 +4,8 @@
 
 use crate::scripted::{Act, DEADLINE, Device, Scripted, say};
 use ebbmark::bench::Bench;
-use ebbmark::bench::clock::Clock;
 use ebbmark::bench::serial::{ConnectError, SerialBench, check, connect};
+use ebbmark::clock::Clock;
 use ebbmark::instrument::bench_file::{BenchFile, BenchInstrument, Fixture, Identity};
 use ebbmark::instrument::definition::{Definition, Role, builtin};
 use ebbmark::instrument::error::InstrumentError;

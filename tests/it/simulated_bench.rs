@@ -2,7 +2,7 @@
 
 #![expect(clippy::expect_used, reason = "a test fails by panicking")]
 
-use ebbmark::bench::clock::Clock;
+use ebbmark::clock::Clock;
 use ebbmark::profile::Profile;
 use ebbmark::sim::bench::{Arrangement, Options, SimulatedBench};
 use ebbmark::sim::device::{Kind, ScpiError};

@@ -1,7 +1,7 @@
 //! Looks at every instrument of a bench without running a board.
 
 use super::connect::{greeted, open};
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use crate::instrument::bench_file::BenchFile;
 use crate::instrument::error::{InstrumentError, Place};
 use crate::instrument::session::{Greeting, Session};

@@ -2,7 +2,7 @@
 
 use super::reading::readings;
 use super::{Asked, Playing, SerialBench, settings};
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use crate::instrument::bench_file::{BenchFile, BenchInstrument, Identity, RoleMissing};
 use crate::instrument::definition::{Definition, Role};
 use crate::instrument::error::{InstrumentError, Place};

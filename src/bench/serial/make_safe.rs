@@ -1,7 +1,7 @@
 //! Switches a bench's output off when nothing else about the bench is known to work.
 
 use super::connect::{ConnectError, greeted, open};
-use crate::bench::clock::Clock;
+use crate::clock::Clock;
 use crate::instrument::bench_file::{BenchFile, RoleMissing};
 use crate::instrument::definition::Role;
 use crate::instrument::scpi::Identity;

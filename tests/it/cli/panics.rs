@@ -2,9 +2,9 @@
 
 use super::workplace::Workplace;
 use crate::river;
-use ebbmark::bench::clock::Clock;
 use ebbmark::bench::serial::connect;
 use ebbmark::bench::{Watch, drive};
+use ebbmark::clock::Clock;
 use ebbmark::instrument::library;
 use ebbmark::procedure::{Action, Event, Plan, Procedure, Progress};
 use std::panic::{AssertUnwindSafe, catch_unwind};

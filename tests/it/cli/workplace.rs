@@ -5,7 +5,7 @@
 
 use super::{HANGS, Said, ebbmark};
 use crate::simulated_bench::setup;
-use ebbmark::bench::clock::Clock;
+use ebbmark::clock::Clock;
 use ebbmark::instrument::definition::builtin;
 use ebbmark::record::{LogFolder, Run};
 use ebbmark::sim::bench::{Options, SimulatedBench};
