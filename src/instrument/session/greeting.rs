@@ -35,8 +35,11 @@ impl Session {
         let identity = self.first_identity()?;
         self.expect(&identity, expected)?;
         self.greeted = true;
-        self.check_step()?;
-        // Being switched on before the program started is no restart: this reads the bit and clears it.
+        // Being switched on before the program started is no restart: the bit is read, and so cleared, here or there.
+        match self.check_step() {
+            Ok(()) | Err(InstrumentError::Restarted { .. }) => {}
+            Err(error) => return Err(error),
+        }
         self.event_status()?;
         let old_errors = self.errors()?;
         Ok(Greeting { identity, echoes: self.link.echoes(), old_errors })
