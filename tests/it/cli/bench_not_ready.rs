@@ -18,8 +18,9 @@ fn not_ready(place: &Workplace, said: &Said, phrases: &[&str]) {
 #[track_caller]
 fn not_ready_with(fault: LinkFault, phrases: &[&str]) {
     let place = Workplace::with(vec![fault]);
-    place.give_up_soon_on("bench-meter-current");
-    place.give_up_soon_on("bench-meter-voltage");
+    for meter in ["bench-meter-current", "bench-meter-voltage"] {
+        place.give_up(meter, Duration::from_millis(500));
+    }
     not_ready(&place, &place.test(&["--format", "json"]), phrases);
 }
 
@@ -84,6 +85,16 @@ fn garbage_in_place_of_an_identity_is_quoted() {
         always(Kind::Voltmeter, at("*IDN?"), Effect::Garbage(b"\x00\xff~~\n".to_vec())),
         &["voltmeter on ", "\"*IDN?\" with ", "check the baud rate"],
     );
+}
+
+/// Fresh from the mains, an instrument has its power-on bit set; to come in step late is no restart.
+#[test]
+fn a_reply_lost_among_the_first_words_is_made_up_for() {
+    let place = Workplace::with(vec![once(Kind::Ammeter, at("*ESE?"), Effect::NoReply)]);
+    place.give_up("bench-meter-current", Duration::from_millis(500));
+    let said = ebbmark(place.folder(), &["bench", "check", "bench.toml"]);
+    said.refuses(0, &["ammeter on ", "is in step again"]);
+    assert!(said.out.contains("The bench is ready."), "{said}");
 }
 
 #[test]

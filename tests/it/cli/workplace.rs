@@ -86,10 +86,10 @@ impl Workplace {
         fs::write(self.folder().join(name), text).expect("writable");
     }
 
-    /// Has instruments of this definition given up on after 500 ms, where a fault makes the program wait in vain.
-    pub(super) fn give_up_soon_on(&self, definition: &str) {
-        let name = format!("{definition}.toml");
-        self.edit(&name, &format!("reply = \"{PATIENCE}\""), "reply = \"500 ms\"");
+    /// Has instruments of this definition given up on sooner, where a fault makes the program wait in vain.
+    pub(super) fn give_up(&self, definition: &str, after: Duration) {
+        let after = format!("reply = \"{} ms\"", after.as_millis());
+        self.edit(&format!("{definition}.toml"), &format!("reply = \"{PATIENCE}\""), &after);
     }
 
     /// Changes a file of this place.
