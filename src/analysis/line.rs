@@ -91,7 +91,7 @@ mod tests {
     /// NIST Statistical Reference Datasets, linear regression, Norris: certified values.
     #[test]
     fn the_norris_line_of_nist_comes_out_as_certified() {
-        let text = include_str!("../../tests/data/strd_linreg_norris.json");
+        let text = include_str!("../../tests/data/nist/strd_linreg_norris.json");
         let file: serde_json::Value = serde_json::from_str(text).expect("reference data");
         let list = |key: &str| -> Vec<f64> {
             serde_json::from_value(file["data"][key].clone()).expect("a list of numbers")
