@@ -38,8 +38,8 @@ hysteresis = { min = "700 mV", max = "1.10 V" }
 off_current = { at = "6.80 V", min = "1.5 uA", max = "3.0 uA" }
 "#;
 
-/// Common practice: a 4.7 Mohm pull-up, a detector of 0.6 µA, less than 0.5 µA of switch leakage.
-fn board(setup: &Setup) -> BoardModel {
+/// Common practice: a 4.7 Mohm pull-up, a detector of 0.6 µA, less than 0.5 µA of switch leakage; `other` for the rest.
+pub(crate) fn board(other: BoardModel) -> BoardModel {
     BoardModel {
         trip: Volts(7.0),
         hysteresis: Volts(0.9),
@@ -50,7 +50,7 @@ fn board(setup: &Setup) -> BoardModel {
         leakage_conductance: Siemens(0.0),
         load: Ohms(27.0),
         on_resistance: Ohms(0.05),
-        ..setup.board
+        ..other
     }
 }
 
@@ -58,7 +58,7 @@ fn board(setup: &Setup) -> BoardModel {
 fn the_program_reports_the_figures_of_the_trade() {
     let profile = Profile::read("nine-volt.toml", PROFILE).expect("a good profile");
     let mut setup = Setup::new(&profile, Condition::Good, 9);
-    setup.board = board(&setup);
+    setup.board = board(setup.board);
     let mut bench = VirtualBench::new(&setup, setup.ability());
     let procedure = Procedure::new(Plan::new(&profile, &setup.ability()));
     let trace = run_ready(drive(procedure, &mut bench, setup.claims(), &mut (), std::future::pending()));

@@ -2,25 +2,15 @@
 
 use super::staircase::off_current;
 use super::{quiet, read, wait};
-use ebbmark::sim::{BoardModel, PullUp, Setup, World};
-use ebbmark::units::{Amps, Ohms, Siemens, Volts};
+use crate::nine_volt;
+use ebbmark::sim::{Setup, World};
+use ebbmark::units::{Amps, Ohms, Volts};
 
 /// A cut-off near 7.0 V for a nine-volt block with a load of 27 ohm, a 4.7 Mohm pull-up, a 0.6 µA detector and less than
 /// 0.5 µA of leakage.
 fn nine_volt_board() -> Setup {
     let mut setup = quiet(9);
-    setup.board = BoardModel {
-        trip: Volts(7.0),
-        hysteresis: Volts(0.9),
-        pull_up: Ohms(4.7e6),
-        pull_up_conducts: PullUp::WhenOff,
-        detector_current: Amps(0.6e-6),
-        leakage: Amps(0.3e-6),
-        leakage_conductance: Siemens(0.0),
-        load: Ohms(27.0),
-        on_resistance: Ohms(0.05),
-        ..setup.board
-    };
+    setup.board = nine_volt::board(setup.board);
     setup.wiring.lead_resistance = Ohms(0.05);
     setup
 }
