@@ -10,7 +10,6 @@ mod finding;
 #[cfg(test)]
 pub(crate) mod fixture;
 mod hysteresis;
-mod line;
 mod off_current;
 mod off_limits;
 mod on_current;

@@ -10,6 +10,7 @@
 //! - [`analysis`]: from a trace to quantities with uncertainty, and findings (pure)
 //! - [`verdict`]: quantities and limits to decisions and one outcome (pure)
 //! - [`sim`]: a board's physics on a bench, in simulated time
+//! - [`statistics`]: published methods on plain numbers (pure)
 //! - [`record`]: what is kept of a run, and the append-only log that keeps it
 //! - [`report`]: what a run says, for people and for programs
 //! - [`cli`]: the commands
@@ -28,6 +29,7 @@ pub mod profile;
 pub mod record;
 pub mod report;
 pub mod sim;
+pub mod statistics;
 pub mod trace;
 pub mod units;
 pub mod verdict;

@@ -13,7 +13,7 @@ use crate::trace::Accuracy;
 pub(super) fn threshold_quantity(course: &Course<'_>, name: QuantityName, threshold: &Threshold) -> Quantity {
     let mut parts = threshold.contributions.clone();
     if let Some((source, accuracy)) = voltage_claim(course) {
-        parts.push(Contribution::new(source, accuracy.standard_uncertainty(threshold.value.0)));
+        parts.push(Contribution::normal(source, accuracy.standard_uncertainty(threshold.value.0)));
     }
     Quantity::new(name, threshold.value.0, parts)
 }
@@ -23,20 +23,18 @@ pub(super) fn hysteresis(course: &Course<'_>, trip: &Threshold, re_enable: &Thre
     let value = (re_enable.value - trip.value).0;
     let mut parts = Vec::new();
     for (name, threshold) in [("trip", trip), ("re-enable", re_enable)] {
-        parts.extend(
-            threshold.contributions.iter().map(|part| {
-                Contribution::new(&format!("{name}: {}", part.source), part.standard_uncertainty)
-            }),
-        );
+        parts.extend(threshold.contributions.iter().map(|part| {
+            Contribution::normal(&format!("{name}: {}", part.source), part.standard_uncertainty)
+        }));
     }
     if trip.smear.is_some() && re_enable.smear.is_some() {
         // A delay longer than the steps moves both edges outwards together, so their brackets add up in full:
         // (a + b)^2 = a^2 + b^2 + 2ab.
         let shared = (2.0 * trip.bracket_uncertainty() * re_enable.bracket_uncertainty()).sqrt();
-        parts.push(Contribution::new("delay common to both edges", shared));
+        parts.push(Contribution::normal("delay common to both edges", shared));
     }
     if let Some((source, accuracy)) = voltage_claim(course) {
-        parts.push(Contribution::new(source, accuracy.standard_uncertainty(value)));
+        parts.push(Contribution::normal(source, accuracy.standard_uncertainty(value)));
     }
     Quantity::new(QuantityName::Hysteresis, value, parts)
 }

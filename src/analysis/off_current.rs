@@ -4,12 +4,12 @@
 //! arrived and the reading has settled. What a voltmeter behind the ammeter draws is not the board's and is taken off.
 
 use super::finding::{About, Finding, FindingCode};
-use super::line::{Line, Point};
 use super::off_limits::{adequate, coarse_finding, outside_finding};
 use super::plateau::{Course, SAME_SET};
 use super::quantity::{Contribution, Quantity};
 use super::settled::Settled;
 use crate::profile::QuantityName;
+use crate::statistics::line::{Line, Point};
 use crate::trace::SwitchState;
 use crate::units::{Amps, Volts};
 use std::ops::Range;
@@ -133,7 +133,7 @@ fn estimate(course: &Course<'_>, readings: &[Settled], at: Volts) -> Option<Quan
     let (here, near) = (within(SPAN), within(NEAR));
     let (value, mut parts) = if let Some(line) = line_through(&near, at) {
         let scatter = line.uncertainty_at(at.0, line.scatter.unwrap_or(0.0));
-        (line.at(at.0), vec![Contribution::new(SCATTER, scatter)])
+        (line.at(at.0), vec![Contribution::normal(SCATTER, scatter)])
     } else if !here.is_empty() {
         mean(&here, at)
     } else if let Some(between) = between(readings, at) {
@@ -147,10 +147,10 @@ fn estimate(course: &Course<'_>, readings: &[Settled], at: Volts) -> Option<Quan
     let passing = course.voltmeter_current(at);
     let reading = Amps(value) + passing;
     if let Some(accuracy) = course.trace.claims.current_accuracy(range, reading) {
-        parts.push(Contribution::new("ammeter", accuracy.standard_uncertainty(reading.0)));
+        parts.push(Contribution::normal("ammeter", accuracy.standard_uncertainty(reading.0)));
     }
     if passing > Amps::ZERO {
-        parts.push(Contribution::new("voltmeter's input current", INPUT_RESISTANCE * passing.0));
+        parts.push(Contribution::normal("voltmeter's input current", INPUT_RESISTANCE * passing.0));
     }
     Some(Quantity::new(QuantityName::OffCurrent, value, parts))
 }
@@ -183,12 +183,11 @@ fn mean(plateaus: &[Settled], at: Volts) -> (f64, Vec<Contribution>) {
     let mean = weighted(&|settled| settled.amps.0);
     let volts = Volts(weighted(&|settled| settled.volts.0));
     let half_way = mean * ((at - volts) / volts) / 2.0;
-    let mut parts =
-        vec![Contribution::new("distance to the wanted voltage", half_way.abs() / 3.0_f64.sqrt())];
+    let mut parts = vec![Contribution::rectangular("distance to the wanted voltage", half_way)];
     if count > 1.0 {
         let own: f64 = plateaus.iter().map(|settled| settled.squares).sum();
         let among = count * weighted(&|settled| (settled.amps.0 - mean).powi(2));
-        parts.push(Contribution::new(SCATTER, ((own + among) / (count - 1.0) / count).sqrt()));
+        parts.push(Contribution::normal(SCATTER, ((own + among) / (count - 1.0) / count).sqrt()));
     }
     (mean + half_way, parts)
 }
@@ -202,7 +201,7 @@ fn between(readings: &[Settled], at: Volts) -> Option<(f64, Vec<Contribution>)> 
     let scatter = |settled: &Settled| settled.scatter().unwrap_or(0.0);
     let combined = ((1.0 - share) * scatter(below)).hypot(share * scatter(above));
     let value = below.amps.0 + share * (above.amps.0 - below.amps.0);
-    Some((value, vec![Contribution::new(SCATTER, combined)]))
+    Some((value, vec![Contribution::normal(SCATTER, combined)]))
 }
 
 #[cfg(test)]

@@ -1,11 +1,11 @@
 //! The off current against its limits: whether the range could tell, and which path a wrong current takes.
 
 use super::finding::{About, Finding, FindingCode};
-use super::line::Line;
 use super::off_current::point;
 use super::quantity::Quantity;
 use super::settled::Settled;
 use crate::profile::Limit;
+use crate::statistics::line::Line;
 use crate::units::{Amps, Ohms, Volts};
 
 /// The expanded uncertainty may fill this share of the limits' width.

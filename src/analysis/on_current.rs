@@ -11,10 +11,10 @@ pub(super) fn on_current(course: &Course<'_>, trip: &Threshold) -> Option<Quanti
     let settled = Settled::of(course, course.ranges(trip.stayed).last()?)?;
     let mut parts = Vec::new();
     if let Some(scatter) = settled.scatter() {
-        parts.push(Contribution::new("scatter of the readings", scatter));
+        parts.push(Contribution::normal("scatter of the readings", scatter));
     }
     if let Some(accuracy) = course.trace.claims.current_accuracy(settled.range, settled.amps) {
-        parts.push(Contribution::new("ammeter", accuracy.standard_uncertainty(settled.amps.0)));
+        parts.push(Contribution::normal("ammeter", accuracy.standard_uncertainty(settled.amps.0)));
     }
     Some(Quantity::new(QuantityName::OnCurrent, settled.amps.0, parts))
 }

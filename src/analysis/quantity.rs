@@ -31,11 +31,44 @@ pub struct Contribution {
     pub source: String,
     /// Its standard uncertainty in the unit of the quantity, sensitivity included.
     pub standard_uncertainty: f64,
+    /// How its values are spread.
+    #[serde(default)]
+    pub shape: Shape,
+    /// Degrees of freedom of its standard uncertainty; `None` where it is known exactly (JCGM 100:2008, G.4.3).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub degrees_of_freedom: Option<f64>,
+}
+
+/// How the values of an influence are spread about its estimate.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "snake_case")]
+pub enum Shape {
+    /// Bell-shaped: scatter of readings, or many small influences together.
+    #[default]
+    Normal,
+    /// Anywhere between two limits, and nothing else known (JCGM 100:2008, 4.3.7).
+    Rectangular,
 }
 
 impl Contribution {
-    /// A line of the budget.
-    pub fn new(source: &str, standard_uncertainty: f64) -> Self {
-        Self { source: source.to_owned(), standard_uncertainty }
+    /// A bell-shaped influence of known standard uncertainty.
+    pub fn normal(source: &str, standard_uncertainty: f64) -> Self {
+        Self {
+            source: source.to_owned(),
+            standard_uncertainty,
+            shape: Shape::Normal,
+            degrees_of_freedom: None,
+        }
+    }
+
+    /// An influence anywhere within `half_width` of its estimate (JCGM 100:2008, 4.3.7).
+    pub fn rectangular(source: &str, half_width: f64) -> Self {
+        let standard_uncertainty = half_width.abs() / 3.0_f64.sqrt();
+        Self { shape: Shape::Rectangular, ..Self::normal(source, standard_uncertainty) }
+    }
+
+    /// A standard uncertainty worked out from readings that scatter (type A, JCGM 100:2008, 4.2).
+    pub fn scatter(source: &str, standard_uncertainty: f64, degrees_of_freedom: f64) -> Self {
+        Self { degrees_of_freedom: Some(degrees_of_freedom), ..Self::normal(source, standard_uncertainty) }
     }
 }

@@ -8,12 +8,12 @@ use super::diagnosis;
 use super::edges::{Direction, Edge, Edges};
 use super::finding::Finding;
 use super::hysteresis::voltage_claim;
-use super::line::{Line, Point};
 use super::plateau::Course;
 use super::quantity::{Contribution, Quantity};
 use super::terminals::Rail;
 use super::{Analysis, trust};
 use crate::profile::{Profile, QuantityName};
+use crate::statistics::line::{Line, Point};
 use crate::trace::Trace;
 
 /// Steps before a change over which the rate is taken.
@@ -33,14 +33,14 @@ pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
     });
     let claim = courses.first().and_then(voltage_claim);
     let claimed = |value: f64| {
-        claim.map(|(source, accuracy)| Contribution::new(source, accuracy.standard_uncertainty(value)))
+        claim.map(|(source, accuracy)| Contribution::normal(source, accuracy.standard_uncertainty(value)))
     };
     let threshold = |name, at_rest: &AtRest| {
         let parts = at_rest.contribution().into_iter().chain(claimed(at_rest.value));
         Quantity::new(name, at_rest.value, parts.collect())
     };
     let delay = |name, at_rest: &AtRest| {
-        let part = Contribution::new("line through the rates", at_rest.delay_uncertainty);
+        let part = Contribution::normal("line through the rates", at_rest.delay_uncertainty);
         Quantity::new(name, at_rest.delay, vec![part])
     };
     analysis.quantities.extend(down.as_ref().map(|down| threshold(QuantityName::Trip, down)));
@@ -130,7 +130,7 @@ impl AtRest {
     }
 
     fn contribution(&self) -> Option<Contribution> {
-        Some(Contribution::new("line through the rates", self.uncertainty))
+        Some(Contribution::normal("line through the rates", self.uncertainty))
     }
 }
 

@@ -5,8 +5,8 @@
 //! plateaus on which the board stayed in one state: drop and offset of the supply included, noise averaged.
 
 use super::edges::{Direction, Stay};
-use super::line::{Line, Point};
 use super::plateau::Course;
+use crate::statistics::line::{Line, Point};
 use crate::units::{Ohms, Volts};
 
 /// Plateaus within this share of the voltage count as near; farther ones only where there are too few.

@@ -156,20 +156,20 @@ impl Stays {
         let middle = kept.iter().map(|bracket| (bracket.before + bracket.beyond) / 2.0).sum::<f64>() / count;
         let width = kept.iter().map(Bracket::width).sum::<f64>() / count;
         let slope = rail.slope().abs();
-        let mut contributions = vec![Contribution::new(BRACKET, slope * width / 12.0_f64.sqrt())];
+        let mut contributions = vec![Contribution::rectangular(BRACKET, slope * width / 2.0)];
         if kept.len() > 1 {
             let squares: f64 =
                 kept.iter().map(|bracket| ((bracket.before + bracket.beyond) / 2.0 - middle).powi(2)).sum();
             let scatter = slope * (squares / (count - 1.0) / count).sqrt();
-            contributions.push(Contribution::new("scatter between passes", scatter));
+            contributions.push(Contribution::scatter("scatter between passes", scatter, count - 1.0));
         }
         if let Some(overlap) = self.contradiction(course, edges) {
-            contributions.push(Contribution::new("passes that disagree", slope * overlap / 12.0_f64.sqrt()));
+            contributions.push(Contribution::rectangular("passes that disagree", slope * overlap / 2.0));
         }
         let set = self.direction.volts(middle);
-        contributions.push(Contribution::new("scatter of the terminal voltage", rail.uncertainty(set)));
+        contributions.push(Contribution::normal("scatter of the terminal voltage", rail.uncertainty(set)));
         if let Some(leads) = lead_drop_uncertainty(course, self.direction, set) {
-            contributions.push(Contribution::new("resistance of the leads", leads));
+            contributions.push(Contribution::normal("resistance of the leads", leads));
         }
         Some(Threshold {
             value: rail.at(set),

@@ -111,7 +111,7 @@ mod tests {
 
     fn judged(value: f64, min: Option<f64>, max: Option<f64>, decision: Decision) -> Judged {
         let quantity =
-            Quantity::new(QuantityName::Hysteresis, value, vec![Contribution::new("digit", 0.0013)]);
+            Quantity::new(QuantityName::Hysteresis, value, vec![Contribution::normal("digit", 0.0013)]);
         let limit = Some(Limit { at: None, min, max });
         Judged { quantity, coverage_factor: 2.0, limit, decision: Some(decision) }
     }

@@ -59,7 +59,7 @@ pub(crate) fn limits() -> [(QuantityName, Limit); 4] {
 /// A quantity with the decision somebody made about it.
 pub(crate) fn judged(name: QuantityName, value: f64, uncertainty: f64, decision: Option<Decision>) -> Judged {
     let limit = limits().into_iter().find(|(limited, _)| *limited == name).map(|(_, limit)| limit);
-    let quantity = Quantity::new(name, value, vec![Contribution::new("last digit", uncertainty / 2.0)]);
+    let quantity = Quantity::new(name, value, vec![Contribution::normal("last digit", uncertainty / 2.0)]);
     Judged { quantity, coverage_factor: 2.0, limit, decision }
 }
 

@@ -4,36 +4,39 @@
 
 /// A point with its weight: the inverse of its variance, or 1 for all where the variances are not known.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub(super) struct Point {
-    pub(super) x: f64,
-    pub(super) y: f64,
-    pub(super) weight: f64,
+pub struct Point {
+    /// Where.
+    pub x: f64,
+    /// What was found there.
+    pub y: f64,
+    /// How much it counts.
+    pub weight: f64,
 }
 
 impl Point {
     /// A point as good as any other.
-    pub(super) fn plain(x: f64, y: f64) -> Self {
+    pub fn plain(x: f64, y: f64) -> Self {
         Self { x, y, weight: 1.0 }
     }
 }
 
 /// The line `y = mean_y + slope * (x - mean_x)`.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub(super) struct Line {
+pub struct Line {
     mean_x: f64,
     mean_y: f64,
     /// Change of y per unit of x.
-    pub(super) slope: f64,
+    pub slope: f64,
     /// Standard deviation of the points about the line in units of weight 1, from `count - 2` degrees of freedom;
     /// `None` for two points.
-    pub(super) scatter: Option<f64>,
+    pub scatter: Option<f64>,
     weights: f64,
     spread: f64,
 }
 
 impl Line {
     /// Fits a line; `None` with fewer than two different x.
-    pub(super) fn fit(points: impl Iterator<Item = Point> + Clone) -> Option<Self> {
+    pub fn fit(points: impl Iterator<Item = Point> + Clone) -> Option<Self> {
         let mut count = 0_usize;
         let (mut weights, mut sum_x, mut sum_y) = (0.0, 0.0, 0.0);
         for point in points.clone() {
@@ -61,22 +64,22 @@ impl Line {
     }
 
     /// The line of slope `slope` through one point.
-    pub(super) fn through(x: f64, y: f64, slope: f64) -> Self {
+    pub fn through(x: f64, y: f64, slope: f64) -> Self {
         Self { mean_x: x, mean_y: y, slope, scatter: None, weights: 1.0, spread: f64::INFINITY }
     }
 
     /// Value at `x`.
-    pub(super) fn at(&self, x: f64) -> f64 {
+    pub fn at(&self, x: f64) -> f64 {
         self.mean_y + self.slope * (x - self.mean_x)
     }
 
     /// Standard uncertainty of the value at `x`, for a standard deviation `sigma` of a point of weight 1.
-    pub(super) fn uncertainty_at(&self, x: f64, sigma: f64) -> f64 {
+    pub fn uncertainty_at(&self, x: f64, sigma: f64) -> f64 {
         sigma * (1.0 / self.weights + (x - self.mean_x).powi(2) / self.spread).sqrt()
     }
 
     /// Standard uncertainty of the slope, likewise.
-    pub(super) fn slope_uncertainty(&self, sigma: f64) -> f64 {
+    pub fn slope_uncertainty(&self, sigma: f64) -> f64 {
         sigma / self.spread.sqrt()
     }
 }

@@ -1,0 +1,3 @@
+//! Published methods on plain numbers: distributions, intervals, fits, risks. Pure; knows no boards and no benches.
+
+pub mod line;
