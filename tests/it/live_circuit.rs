@@ -1,0 +1,105 @@
+//! The procedure on a circuit that runs inside ngspice, an analogue circuit simulator that shares no code with this project:
+//! it chooses its set-points by what the circuit does, and what it finds must be true within its own uncertainty.
+
+mod bench;
+
+use crate::river;
+use bench::{Board, CircuitBench};
+use ebbmark::analysis::analyse;
+use ebbmark::bench::{drive, run_ready};
+use ebbmark::procedure::{Plan, Procedure};
+use ebbmark::profile::QuantityName;
+use ebbmark::trace::{Claims, Trace};
+use ebbmark::units::Volts;
+use ebbmark::verdict::{Outcome, Verdict, judge};
+use std::collections::BTreeMap;
+
+/// The simulator's own error of a settled current: its least current, and a share it solves to.
+const SOLVED: (f64, f64) = (2e-10, 1e-5);
+
+fn run(board: &Board) -> (Trace, Verdict) {
+    let profile = river::profile();
+    let plan = Plan::new(&profile, &CircuitBench::ability());
+    let mut bench = CircuitBench::start(board);
+    let trace = run_ready(drive(
+        Procedure::new(plan),
+        &mut bench,
+        Claims::default(),
+        &mut (),
+        std::future::pending(),
+    ));
+    let verdict = judge(&analyse(&trace, &profile), &profile, &trace.ending);
+    (trace, verdict)
+}
+
+/// What was found and what is true, and by how much they may differ.
+fn held_against_truth(board: &Board, verdict: &Verdict) -> Vec<(QuantityName, bool)> {
+    [
+        (QuantityName::Trip, board.trip),
+        (QuantityName::ReEnable, board.re_enable),
+        (QuantityName::Hysteresis, board.re_enable - board.trip),
+        (QuantityName::OffCurrent, board.off_current(5.8)),
+    ]
+    .into_iter()
+    .map(|(name, truth)| {
+        let judged = verdict.judged.iter().find(|judged| judged.quantity.name == name);
+        let judged = judged.unwrap_or_else(|| panic!("{board:?}: no {name:?}: {verdict:#?}"));
+        let solved = if name == QuantityName::OffCurrent { SOLVED.0 + SOLVED.1 * truth } else { 0.0 };
+        (name, (judged.quantity.value - truth).abs() <= judged.expanded_uncertainty() + solved)
+    })
+    .collect()
+}
+
+fn assert_true_within_uncertainty(board: &Board, verdict: &Verdict) {
+    let missed: Vec<_> =
+        held_against_truth(board, verdict).into_iter().filter(|(_, inside)| !inside).collect();
+    assert!(missed.is_empty(), "{board:?}: {missed:?}: {:#?}", verdict.judged);
+}
+
+#[test]
+fn a_good_circuit_passes_with_the_truth_inside_the_uncertainty() {
+    let board = Board::good();
+    let (_, verdict) = run(&board);
+    assert_eq!(verdict.outcome, Outcome::Pass, "{verdict:#?}");
+    assert_true_within_uncertainty(&board, &verdict);
+}
+
+/// A statement of 95 % may miss one board in twenty, and by chance two; not three.
+#[test]
+fn thresholds_anywhere_behind_any_leads_are_found() {
+    let mut missed: BTreeMap<QuantityName, Vec<Board>> = BTreeMap::new();
+    for index in 0..20 {
+        let spread = |share: f64| (f64::from(index) * share).fract();
+        let board = Board {
+            trip: 5.9 + 0.2 * spread(GOLDEN),
+            re_enable: 6.3 + 0.2 * spread(GOLDEN * GOLDEN),
+            leads: 0.02 + spread(0.31),
+            ..Board::good()
+        };
+        let (_, verdict) = run(&board);
+        for (name, inside) in held_against_truth(&board, &verdict) {
+            if !inside {
+                missed.entry(name).or_default().push(board);
+            }
+        }
+    }
+    assert!(missed.values().all(|boards| boards.len() <= 2), "{missed:#?}");
+}
+
+/// Multiples of the golden section spread evenly, whatever their number.
+const GOLDEN: f64 = 0.618_033_988_75;
+
+#[test]
+fn a_circuit_that_trips_too_high_fails() {
+    let board = Board { trip: 6.21, re_enable: 6.55, ..Board::good() };
+    let (_, verdict) = run(&board);
+    assert_eq!(verdict.outcome, Outcome::Fail, "{verdict:#?}");
+    assert_true_within_uncertainty(&board, &verdict);
+}
+
+#[test]
+fn the_circuit_is_left_without_voltage() {
+    let (trace, _) = run(&Board::good());
+    let last = trace.samples.last().map(|sample| sample.terminals());
+    assert!(last.is_some_and(|volts| volts.abs() < Volts(0.1)), "{last:?}");
+}
