@@ -24,7 +24,7 @@ mod threshold;
 mod trust;
 
 pub use finding::{About, Finding, FindingCode};
-pub use quantity::{Contribution, Quantity};
+pub use quantity::{Contribution, Quantity, Shape};
 pub use rates::from_rates;
 
 use crate::profile::{Profile, QuantityName};

@@ -1,6 +1,7 @@
 //! One measured quantity: value, uncertainty and where the uncertainty comes from.
 
 use crate::profile::QuantityName;
+pub use crate::statistics::influence::Shape;
 use serde::{Deserialize, Serialize};
 
 /// A quantity read from a trace, in the SI unit of its name.
@@ -37,17 +38,6 @@ pub struct Contribution {
     /// Degrees of freedom of its standard uncertainty; `None` where it is known exactly (JCGM 100:2008, G.4.3).
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub degrees_of_freedom: Option<f64>,
-}
-
-/// How the values of an influence are spread about its estimate.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
-#[serde(rename_all = "snake_case")]
-pub enum Shape {
-    /// Bell-shaped: scatter of readings, or many small influences together.
-    #[default]
-    Normal,
-    /// Anywhere between two limits, and nothing else known (JCGM 100:2008, 4.3.7).
-    Rectangular,
 }
 
 impl Contribution {
