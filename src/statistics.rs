@@ -5,3 +5,4 @@ pub mod distribution;
 pub mod influence;
 pub mod line;
 mod root;
+pub mod tolerance;
