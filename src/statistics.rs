@@ -4,5 +4,7 @@ pub mod coverage;
 pub mod distribution;
 pub mod influence;
 pub mod line;
+mod quadrature;
+pub mod risk;
 mod root;
 pub mod tolerance;

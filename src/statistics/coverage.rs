@@ -122,19 +122,30 @@ impl Spread {
         if c <= 0.0 {
             return 0.0;
         }
-        match &self.parts {
+        if c.is_infinite() {
+            return 1.0;
+        }
+        let within = match &self.parts {
             Parts::Bell(bell) => bell.within(c),
             Parts::Rectangles(rectangles) => rectangles.within(c),
             Parts::Blurred(bell, blur) => blur.within(bell, c),
             Parts::Both(bell, rectangles) => {
                 bell.pile(rectangles.reach(), c).map_or(f64::NAN, |pile| pile.within(rectangles, c))
             }
-        }
+        };
+        // Sums of many terms may end a little beyond one; a clamp leaves NaN what it is.
+        within.clamp(0.0, 1.0)
     }
 
-    /// Probability that the sum is at most `deviation` above its estimate; to 1e-5.
-    pub fn lower(&self, deviation: f64) -> f64 {
-        0.5 + 0.5 * self.within(deviation.abs()).copysign(deviation)
+    /// Probability that the sum lies more than `deviation` above its estimate; to 1e-5, and to rounding where there are
+    /// no rectangles. By symmetry also that it lies more than `deviation` below.
+    pub fn beyond(&self, deviation: f64) -> f64 {
+        let outside = match &self.parts {
+            Parts::Bell(bell) => bell.outside(deviation.abs() / self.standard_uncertainty),
+            _ => 1.0 - self.within(deviation.abs()),
+        };
+        let one_side = 0.5 * outside;
+        if deviation < 0.0 { 1.0 - one_side } else { one_side }
     }
 }
 

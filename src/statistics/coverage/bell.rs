@@ -66,7 +66,12 @@ impl Bell {
 
     /// Probability of lying within `c`.
     pub(super) fn within(&self, c: f64) -> f64 {
-        1.0 - 2.0 * self.law().upper(c / self.scale)
+        1.0 - self.outside(c)
+    }
+
+    /// Probability of lying outside of `c`.
+    pub(super) fn outside(&self, c: f64) -> f64 {
+        2.0 * self.law().upper(c / self.scale)
     }
 
     /// The rectangles it is made of, so many that it can be asked for distances up to `most` of a sum with rectangles

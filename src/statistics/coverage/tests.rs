@@ -213,10 +213,16 @@ fn nonsense_has_no_factor() {
 
 #[test]
 fn the_sides_of_a_spread_add_up() {
-    let spread = Spread::new(&[Influence::rectangular(1.0), Influence::normal(0.2)]).expect("a spread");
-    assert!((spread.lower(0.0) - 0.5).abs() < 1e-12);
-    for deviation in [0.3, 1.0, 2.0, 50.0] {
-        assert!((spread.lower(deviation) + spread.lower(-deviation) - 1.0).abs() < 1e-12);
+    let sharp = Spread::new(&[Influence::rectangular(1.0), Influence::normal(0.2)]).expect("a spread");
+    let bell = Spread::new(&[Influence::normal(2.0)]).expect("a spread");
+    assert!((bell.beyond(20.0) / Normal.upper(10.0) - 1.0).abs() < 1e-12);
+    for spread in [sharp, bell] {
+        assert!((spread.beyond(0.0) - 0.5).abs() < 1e-12);
+        for deviation in [0.3, 1.0, 2.0, 50.0] {
+            assert!((spread.beyond(deviation) + spread.beyond(-deviation) - 1.0).abs() < 1e-12);
+            assert!((1.0 - 2.0 * spread.beyond(deviation) - spread.within(deviation)).abs() < 1e-12);
+        }
+        assert!(spread.beyond(f64::NAN).is_nan());
+        assert!(spread.beyond(f64::INFINITY) < 1e-9);
     }
-    assert!(spread.lower(50.0) > 1.0 - 1e-9);
 }
