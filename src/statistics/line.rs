@@ -2,6 +2,8 @@
 //!
 //! The sums are taken about the weighted mean, so that points far from zero lose no digits.
 
+use super::distribution::{ChiSquared, Distribution};
+
 /// A point with its weight: the inverse of its variance, or 1 for all where the variances are not known.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Point {
@@ -30,6 +32,8 @@ pub struct Line {
     /// Standard deviation of the points about the line in units of weight 1, from `count - 2` degrees of freedom;
     /// `None` for two points.
     pub scatter: Option<f64>,
+    /// How many points there are more than two.
+    spare: usize,
     weights: f64,
     spread: f64,
 }
@@ -55,17 +59,18 @@ impl Line {
         if !slope.is_finite() {
             return None;
         }
-        let mut line = Self { mean_x, mean_y, slope, scatter: None, weights, spread };
-        if count > 2 {
+        let spare = count.saturating_sub(2);
+        let mut line = Self { mean_x, mean_y, slope, scatter: None, spare, weights, spread };
+        if spare > 0 {
             let squares: f64 = points.map(|point| point.weight * (point.y - line.at(point.x)).powi(2)).sum();
-            line.scatter = Some((squares / (count - 2) as f64).sqrt());
+            line.scatter = Some((squares / spare as f64).sqrt());
         }
         Some(line)
     }
 
     /// The line of slope `slope` through one point.
     pub fn through(x: f64, y: f64, slope: f64) -> Self {
-        Self { mean_x: x, mean_y: y, slope, scatter: None, weights: 1.0, spread: f64::INFINITY }
+        Self { mean_x: x, mean_y: y, slope, scatter: None, spare: 0, weights: 1.0, spread: f64::INFINITY }
     }
 
     /// Value at `x`.
@@ -81,6 +86,19 @@ impl Line {
     /// Standard uncertainty of the slope, likewise.
     pub fn slope_uncertainty(&self, sigma: f64) -> f64 {
         sigma / self.spread.sqrt()
+    }
+
+    /// Covariance of the value at `x` and the slope, likewise; none at the weighted mean (JCGM 100:2008, H.3.5).
+    pub fn covariance_at(&self, x: f64, sigma: f64) -> f64 {
+        sigma * sigma * (x - self.mean_x) / self.spread
+    }
+
+    /// Probability that points whose weights are the inverses of their true variances scatter about a straight line as
+    /// much as these do, or more (chi-squared test of the residuals). A small one says that the course is no line, or
+    /// that the points scatter more than they claim. `None` where no point is left to tell.
+    pub fn residual_test(&self) -> Option<f64> {
+        let degrees = self.spare as f64;
+        Some(ChiSquared::new(degrees)?.upper(degrees * self.scatter?.powi(2)))
     }
 }
 
@@ -117,6 +135,63 @@ mod tests {
             let wanted = certified(label);
             assert!(((value - wanted) / wanted).abs() < TOLERANCE, "{label}: {value} against {wanted}");
         }
+        let correlation = line.covariance_at(0.0, scatter)
+            / line.uncertainty_at(0.0, scatter)
+            / line.slope_uncertainty(scatter);
+        assert!((correlation + 0.773_828_082_088).abs() < 1e-10, "{correlation}");
+        // The certified sum of squares, 26.6174, as chi-squared of 34 degrees: upper tail by mpmath, 30 digits.
+        assert!((line.residual_test().expect("36 points") - 0.812_527_119_105_3).abs() < 1e-9);
+    }
+
+    /// GUM (JCGM 100:2008) H.3: correction of a thermometer against its reading, as a line about 20 degrees. Inputs from
+    /// two public copies of Table H.6, printed results from memory.
+    #[test]
+    fn the_thermometer_of_the_gum_comes_out_as_printed() {
+        let text = include_str!("../../tests/data/statistics/gum_h3_thermometer.json");
+        let file: serde_json::Value = serde_json::from_str(text).expect("reference data");
+        let list =
+            |key: &str| -> Vec<f64> { serde_json::from_value(file["data"][key].clone()).expect("a list") };
+        let (readings, corrections) = (list("t_degC"), list("b_degC"));
+        let line =
+            Line::fit(readings.iter().zip(&corrections).map(|(t, b)| Point::plain(*t, *b))).expect("a line");
+        let scatter = line.scatter.expect("11 points");
+        let (at_20, slope) = (line.uncertainty_at(20.0, scatter), line.slope_uncertainty(scatter));
+        let correlation = line.covariance_at(20.0, scatter) / (at_20 * slope);
+        // At 30 degrees from the two at 20 and their correlation (H.14), and directly.
+        let combined =
+            (at_20.powi(2) + (10.0 * slope).powi(2) + 20.0 * line.covariance_at(20.0, scatter)).sqrt();
+        for (what, found, printed, digit) in [
+            ("intercept at 20", line.at(20.0), -0.1712, 1e-4),
+            ("its uncertainty", at_20, 0.0029, 1e-4),
+            ("slope", line.slope, 0.00218, 1e-5),
+            ("its uncertainty", slope, 0.00067, 1e-5),
+            ("correlation", correlation, -0.930, 1e-3),
+            ("scatter", scatter, 0.0035, 1e-4),
+            ("correction at 30", line.at(30.0), -0.1494, 1e-4),
+            ("its uncertainty", line.uncertainty_at(30.0, scatter), 0.0041, 1e-4),
+            ("the same by propagation", combined, 0.0041, 1e-4),
+        ] {
+            assert!((found - printed).abs() <= 0.5 * digit, "{what}: {found} against {printed}");
+        }
+        assert!((combined / line.uncertainty_at(30.0, scatter) - 1.0).abs() < 1e-12);
+        let mean = readings.iter().sum::<f64>() / 11.0;
+        assert!(line.covariance_at(mean, scatter).abs() < 1e-15);
+    }
+
+    #[test]
+    fn a_bent_course_does_not_fit() {
+        let course = |bend: f64| {
+            let y = move |x: f64| 3.0 - 2.0 * x + bend * x * x;
+            let points = (0..8).map(f64::from).zip([0.1, -0.05, -0.1, 0.05, 0.02, -0.08, 0.1, -0.04]);
+            Line::fit(points.map(|(x, error)| Point { x, y: y(x) + error, weight: 100.0 })).expect("a line")
+        };
+        assert!(course(0.0).residual_test().is_some_and(|p| p > 0.1), "{:?}", course(0.0).residual_test());
+        assert!(course(0.1).residual_test().is_some_and(|p| p < 1e-6), "{:?}", course(0.1).residual_test());
+        assert_eq!(
+            Line::fit([Point::plain(0.0, 0.0), Point::plain(1.0, 1.0)].into_iter())
+                .and_then(|l| l.residual_test()),
+            None
+        );
     }
 
     #[test]
