@@ -1,5 +1,6 @@
 //! Published methods on plain numbers: distributions, intervals, fits, risks. Pure; knows no boards and no benches.
 
+pub mod censored;
 pub mod coverage;
 pub mod distribution;
 pub mod influence;
