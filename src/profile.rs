@@ -31,16 +31,20 @@
 //! trip = { min = "5.88 V", max = "6.12 V" }
 //! off_current = { at = "5.80 V", max = "4.0 uA" }   # only this one has "at"
 //! ```
+//!
+//! The tables `[detector]`, `[divider]` and `[environment]` may say what the thresholds are made of; see [`Parts`].
 
 mod check;
 mod check_limits;
 mod draft;
 mod limit;
+mod parts;
 #[cfg(test)]
 mod sample;
 mod serial_number;
 
 pub use limit::{Limit, QuantityName};
+pub use parts::{Detector, Divider, Environment, Parts, Spread, Temperatures};
 
 use crate::document::{Document, Problems};
 use crate::units::{Amps, Ohms, Volts, Watts};
@@ -70,6 +74,8 @@ pub struct Profile {
     pub ramp: Ramp,
     /// Limits by quantity.
     pub limits: BTreeMap<QuantityName, Limit>,
+    /// What its thresholds are made of, where the profile says so.
+    pub parts: Option<Parts>,
     /// SHA-256 (FIPS 180-4) of the file's text, 64 hexadecimal digits.
     pub hash: String,
 }
@@ -139,6 +145,7 @@ impl Profile {
             let draft = Draft::read(root);
             check::check(&draft, root);
             check_limits::check(&draft, root);
+            parts::fits_the_ramp(&draft, root);
             draft.finish(hash(text))
         })
     }

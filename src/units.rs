@@ -32,8 +32,10 @@ pub enum Unit {
     Second,
     /// Celsius temperature, degree Celsius.
     Celsius,
-    /// A ratio, written in per cent.
+    /// A ratio, written in per cent or in parts per million.
     Percent,
+    /// A relative change per kelvin, written in parts per million per kelvin.
+    PerKelvin,
 }
 
 impl Unit {
@@ -49,6 +51,7 @@ impl Unit {
             Unit::Second => "s",
             Unit::Celsius => "°C",
             Unit::Percent => "%",
+            Unit::PerKelvin => "ppm/K",
         }
     }
 
@@ -73,6 +76,7 @@ impl Unit {
             Unit::Second => "a time",
             Unit::Celsius => "a temperature",
             Unit::Percent => "a share in per cent",
+            Unit::PerKelvin => "a temperature coefficient",
         }
     }
 
@@ -88,6 +92,7 @@ impl Unit {
             Unit::Second => "20 ms",
             Unit::Celsius => "23 °C",
             Unit::Percent => "1 %",
+            Unit::PerKelvin => "100 ppm/K",
         }
     }
 }
@@ -216,6 +221,11 @@ quantity!(
     /// Celsius temperature in degrees.
     Celsius,
     Unit::Celsius
+);
+quantity!(
+    /// Temperature coefficient: relative change per kelvin, as a fraction of one.
+    PerKelvin,
+    Unit::PerKelvin
 );
 
 impl Div<Ohms> for Volts {

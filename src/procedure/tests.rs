@@ -24,6 +24,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         timing: Timing { detect_delay: Duration::from_millis(5), release_delay: Duration::from_millis(20) },
         ramp,
         limits: BTreeMap::from([(QuantityName::OffCurrent, off)]),
+        parts: None,
         hash: String::new(),
     };
     let ability = Ability {

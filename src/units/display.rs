@@ -43,6 +43,9 @@ fn prefix_for(value: f64, unit: Unit) -> (f64, &'static str) {
     if unit == Unit::Percent {
         return (0.01, "");
     }
+    if unit == Unit::PerKelvin {
+        return (1e-6, "");
+    }
     if unit == Unit::Celsius || value == 0.0 || !value.is_finite() {
         return (1.0, "");
     }
@@ -63,6 +66,7 @@ mod tests {
         assert_eq!(prefixed(2.4e-6, Unit::Ampere), "2.400 µA");
         assert_eq!(prefixed(-0.107, Unit::Ampere), "-107.0 mA");
         assert_eq!(prefixed(0.01, Unit::Percent), "1.000 %");
+        assert_eq!(prefixed(1e-4, Unit::PerKelvin), "100.0 ppm/K");
         assert_eq!(prefixed(0.0, Unit::Volt), "0.000 V");
         assert_eq!(prefixed(4.7e6, Unit::Ohm), "4.700 MΩ");
     }

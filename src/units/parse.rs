@@ -146,7 +146,7 @@ fn scaled(number: &str, value: f64, power: i32) -> f64 {
     }
 }
 
-const UNITS: [(&str, Unit); 12] = [
+const UNITS: [(&str, Unit); 16] = [
     ("V", Unit::Volt),
     ("A", Unit::Ampere),
     ("ohm", Unit::Ohm),
@@ -159,6 +159,10 @@ const UNITS: [(&str, Unit); 12] = [
     ("degC", Unit::Celsius),
     ("°C", Unit::Celsius),
     ("%", Unit::Percent),
+    ("ppm", Unit::Percent),
+    ("ppm/K", Unit::PerKelvin),
+    ("ppm/°C", Unit::PerKelvin),
+    ("ppm/degC", Unit::PerKelvin),
 ];
 
 /// Prefixes of the SI Brochure in the range a bench meets, as powers of ten.
@@ -168,11 +172,16 @@ const PREFIXES: [(&str, i32); 9] =
 fn symbol_scale(symbol: &str) -> Option<(i32, Unit)> {
     let plain = |symbol: &str| UNITS.iter().find(|(text, _)| *text == symbol).map(|(_, unit)| *unit);
     if let Some(unit) = plain(symbol) {
-        return Some((if unit == Unit::Percent { -2 } else { 0 }, unit));
+        let power = match symbol {
+            "%" => -2,
+            ratio if ratio.starts_with("ppm") => -6,
+            _ => 0,
+        };
+        return Some((power, unit));
     }
     PREFIXES.iter().find_map(|(prefix, power)| {
         let unit = plain(symbol.strip_prefix(prefix)?)?;
-        (!matches!(unit, Unit::Percent | Unit::Celsius)).then_some((*power, unit))
+        (!matches!(unit, Unit::Percent | Unit::PerKelvin | Unit::Celsius)).then_some((*power, unit))
     })
 }
 
@@ -212,6 +221,9 @@ mod tests {
             ("4.7 MΩ", Unit::Ohm, 4.7e6),
             ("20 ms", Unit::Second, 0.02),
             ("1 %", Unit::Percent, 0.01),
+            ("250 ppm", Unit::Percent, 250e-6),
+            ("100 ppm/K", Unit::PerKelvin, 100e-6),
+            ("100 ppm/°C", Unit::PerKelvin, 100e-6),
             ("-20 °C", Unit::Celsius, -20.0),
             ("1e-3 V", Unit::Volt, 1e-3),
         ] {
