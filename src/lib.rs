@@ -3,6 +3,7 @@
 //! The rooms, in the order of a run:
 //!
 //! - [`profile`]: what a board must do, read from a file and checked
+//! - [`limits`]: what limits follow from what a board is made of (pure)
 //! - [`procedure`]: what to do next; one answer in, one action out (pure)
 //! - [`instrument`]: roles, definitions and bench files; what the instruments can do and what to send them
 //! - [`mod@bench`]: carries the actions out, over serial ports or in virtual time
@@ -24,6 +25,7 @@ pub mod cli;
 pub mod clock;
 pub mod document;
 pub mod instrument;
+pub mod limits;
 pub mod procedure;
 pub mod profile;
 pub mod record;

@@ -107,6 +107,13 @@ pub struct Spread<T> {
     pub max: T,
 }
 
+impl<T> Spread<T> {
+    /// The same ends in another form.
+    pub fn map<U>(self, form: impl Fn(T) -> U) -> Spread<U> {
+        Spread { min: form(self.min), typical: self.typical.map(&form), max: form(self.max) }
+    }
+}
+
 impl<T> Spread<T>
 where
     T: Copy + std::ops::Add<Output = T> + std::ops::Div<f64, Output = T>,

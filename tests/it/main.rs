@@ -6,6 +6,7 @@ mod cli;
 mod conditions;
 #[cfg(unix)]
 mod definitions_on_simulation;
+mod limits;
 mod live_circuit;
 mod log;
 mod nine_volt;
