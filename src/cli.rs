@@ -7,6 +7,7 @@ mod exit;
 mod files;
 mod guard;
 mod left_on;
+mod limits;
 mod live;
 mod log;
 mod one_run;
@@ -51,6 +52,8 @@ enum Command {
     Sim(sim::Arguments),
     /// Read the log of tested boards.
     Log(log::Arguments),
+    /// Work out limits from the tolerances of a board's parts.
+    Limits(limits::Arguments),
 }
 
 /// How a result is written to standard output.
@@ -106,6 +109,7 @@ impl Command {
             Command::Bench(arguments) => arguments.run(),
             Command::Sim(arguments) => arguments.run(),
             Command::Log(arguments) => arguments.run(),
+            Command::Limits(arguments) => arguments.run(),
         }
     }
 }

@@ -39,12 +39,14 @@ mod check_limits;
 mod draft;
 mod limit;
 mod parts;
+mod rewrite;
 #[cfg(test)]
 mod sample;
 mod serial_number;
 
 pub use limit::{Limit, QuantityName};
 pub use parts::{Detector, Divider, Environment, Parts, Spread, Temperatures};
+pub use rewrite::{NewLimit, RewriteError, with_limits};
 
 use crate::document::{Document, Problems};
 use crate::units::{Amps, Ohms, Volts, Watts};

@@ -70,7 +70,7 @@ mod tests {
 
     #[test]
     fn figures_no_part_can_have_are_refused() {
-        says!(problems(&[("accuracy = \"1 %\"", "accuracy = \"100 %\"")]),
+        says!(problems(&[("accuracy = \"1.2 %\"", "accuracy = \"100 %\"")]),
             @r#"p.toml:47:12: detector.accuracy = "100 %": wanted 0 % to 20 %, to either side"#);
         says!(problems(&[("min = \"5.0 %\", typical = \"6.7 %\"", "min = \"7 %\", typical = \"6 %\"")]),
             @r#"p.toml:48:22: detector.hysteresis.min = "7 %": above detector.hysteresis.typical = "6 %""#);
@@ -88,7 +88,7 @@ mod tests {
         "#);
         says!(problems(&[("bottom = \"2.2 Mohm\"", "bottom = \"0 ohm\"")]),
             @r#"p.toml:55:10: divider.bottom = "0 ohm": not above zero"#);
-        says!(problems(&[("{ min = \"-25 degC\"", "{ min = \"-300 degC\"")]),
+        says!(problems(&[("{ min = \"-20 degC\"", "{ min = \"-300 degC\"")]),
             @r#"p.toml:62:23: environment.temperature.min = "-300 degC": lower than can be"#);
         says!(problems(&[("{ min = \"18 degC\"", "{ min = \"38 degC\"")]),
             @r#"p.toml:63:16: environment.test.min = "38 degC": above environment.test.max = "28 degC""#);
