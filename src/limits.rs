@@ -19,13 +19,15 @@ pub mod worst_case;
 
 mod pairs;
 mod proposal;
+mod risks;
 mod sets;
 mod stack;
 mod study;
 mod window;
 
 pub use pairs::{Warning, WarningCode};
-pub use proposal::{Basis, Process, Proposal, Quantity, Question};
+pub use proposal::{Basis, Production, Proposal, Quantity, Question};
+pub use risks::Risks;
 pub use sets::LimitSets;
 pub use stack::{Condition, ThresholdStack};
 pub use study::{Contribution, Study};

@@ -5,7 +5,7 @@ mod write;
 
 use super::show::print;
 use super::{Exit, Failure, files};
-use crate::limits::{self, Process, Proposal, Question};
+use crate::limits::{self, Production, Proposal, Question};
 use crate::profile::{Profile, QuantityName};
 use crate::report::{self, LimitsSheet};
 use crate::units::{Quantity as _, Volts};
@@ -107,12 +107,12 @@ impl Arguments {
     }
 
     fn question(&self, uncertainty: Volts) -> Question {
-        let mut process: BTreeMap<QuantityName, Process> = BTreeMap::new();
+        let mut production: BTreeMap<QuantityName, Production> = BTreeMap::new();
         for (name, mean) in &self.process_mean {
-            process.entry(*name).or_default().mean = Some(mean.si());
+            production.entry(*name).or_default().mean = Some(mean.si());
         }
         for (name, deviation) in &self.process_sd {
-            process.entry(*name).or_default().standard_deviation = Some(deviation.si());
+            production.entry(*name).or_default().standard_deviation = Some(deviation.si());
         }
         Question {
             basis: match self.basis {
@@ -124,7 +124,7 @@ impl Arguments {
             seed: self.seed,
             uncertainty,
             guard_band: self.guard_band,
-            process,
+            production,
         }
     }
 

@@ -2,12 +2,14 @@
 
 use super::monte_carlo::{self, Population};
 use super::pairs::{self, Warning};
+use super::risks::{Risks, risks};
 use super::sets::LimitSets;
 use super::stack::{CAUSES, Condition, QUANTITIES, ThresholdStack};
 use super::study::Study;
 use super::window::Window;
 use super::worst_case;
 use crate::profile::{Limit, Parts, Profile, QuantityName};
+use crate::statistics::risk::Process;
 use crate::units::Volts;
 use serde::Serialize;
 use std::collections::BTreeMap;
@@ -39,12 +41,12 @@ pub struct Question {
     /// Guard band as a multiple of the expanded uncertainty.
     pub guard_band: f64,
     /// Spread of real production, where it is known; what is missing is drawn from the parts.
-    pub process: BTreeMap<QuantityName, Process>,
+    pub production: BTreeMap<QuantityName, Production>,
 }
 
 /// How a quantity spreads over the boards of a production at the test; each as far as known.
 #[derive(Clone, Copy, Debug, Default, PartialEq)]
-pub struct Process {
+pub struct Production {
     /// Mean.
     pub mean: Option<f64>,
     /// Standard deviation.
@@ -75,10 +77,10 @@ pub struct Quantity {
     pub present: Option<Limit>,
     /// Share of the boards drawn that lie outside the profile's present limits at the test.
     pub outside_present: Option<f64>,
-    /// Mean over the production at the test.
-    pub process_mean: f64,
-    /// Standard deviation over the production at the test.
-    pub process_standard_deviation: f64,
+    /// Spread of the true values over the production at the test, as given or as drawn from the parts.
+    pub process: Process,
+    /// How often the test will be wrong; `None` where no test limits are left.
+    pub risks: Option<Risks>,
 }
 
 impl Proposal {
@@ -121,18 +123,25 @@ fn of_quantity(
     let design = design(&study, question.basis);
     let sets = LimitSets::new(data_sheet, design, shift, question.guard_band * expanded_uncertainty);
     let present = profile.limits.get(&name).copied();
-    let process = question.process.get(&name).copied().unwrap_or_default();
+    let known = question.production.get(&name).copied().unwrap_or_default();
+    let process = Process {
+        mean: known.mean.unwrap_or(at_test.mean),
+        standard_deviation: known.standard_deviation.unwrap_or(at_test.standard_deviation),
+    };
     Quantity {
         name,
         sets,
         expanded_uncertainty,
         present,
         outside_present: present.map(|limit| at_test.share_outside(window_of(limit))),
-        process_mean: process.mean.unwrap_or(at_test.mean),
-        process_standard_deviation: process.standard_deviation.unwrap_or(at_test.standard_deviation),
+        process,
+        risks: risks(&sets, process, expanded_uncertainty / COVERAGE_FACTOR),
         study,
     }
 }
+
+/// Of the expanded uncertainty in the question.
+const COVERAGE_FACTOR: f64 = 2.0;
 
 /// Both thresholds are measured in one way; their difference holds both errors, taken as independent. One voltmeter
 /// serves both, so this is on the safe side.

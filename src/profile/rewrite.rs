@@ -56,7 +56,9 @@ pub fn with_limits(name: &str, text: &str, limits: &[NewLimit]) -> Result<String
     for limit in limits {
         set(table, limit);
     }
-    let text = document.to_string();
+    // toml_edit writes bare line feeds whatever it read.
+    let line_end = if text.contains("\r\n") { "\r\n" } else { "\n" };
+    let text = document.to_string().replace('\n', line_end);
     match Profile::read(name, &text) {
         Ok(_) => Ok(text),
         Err(problems) => Err(RewriteError::Contradiction { name: file(), problems }),
@@ -159,6 +161,14 @@ mod tests {
             text.contains("[limits.trip]  # here\nmin = \"5.900 V\" # low\nmax = \"6.100 V\"\n"),
             "{text}"
         );
+    }
+
+    #[test]
+    fn line_ends_of_another_system_stay() {
+        let dos = RIVER_NODE.replace('\n', "\r\n");
+        let text = rewritten(&dos, &[limit(QuantityName::Trip, 5.89, 6.11)]);
+        assert_eq!(text.matches("\r\n").count(), dos.matches("\r\n").count());
+        assert_eq!(text.matches('\n').count(), dos.matches('\n').count());
     }
 
     #[test]

@@ -7,6 +7,7 @@ mod bench_not_ready;
 mod disk_full;
 mod fault_mid_run;
 mod leftover;
+mod limits;
 mod output;
 mod panics;
 mod second_program;

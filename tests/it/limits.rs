@@ -1,6 +1,7 @@
 //! Tolerance stacks against circuits published by others, and limits against an independent calculation.
 #![expect(clippy::expect_used, reason = "a test that cannot be set up has failed")]
 
+mod promise;
 mod published;
 mod stack;
 

@@ -30,7 +30,7 @@ pub(super) fn above_zero<Q: Quantity>(at: &Option<At<Q>>, table: &Table<'_, '_>)
     }
 }
 
-pub(super) fn not_below<T: PartialOrd>(least: T, at: &Option<At<T>>, table: &Table<'_, '_>) {
+pub(super) fn not_below<T: PartialOrd + Copy>(least: T, at: &Option<At<T>>, table: &Table<'_, '_>) {
     if let Some(at) = at
         && at.value < least
     {

@@ -1,7 +1,7 @@
 //! Limits as JSON: one object, keys fixed, a value that is not known absent.
 
 use super::LimitsSheet;
-use crate::limits::{Basis, Contribution, Quantity, Warning, Window};
+use crate::limits::{Basis, Contribution, Quantity, Risks, Warning, Window};
 use crate::profile::{Limit, QuantityName};
 use crate::record::SCHEMA;
 use serde::Serialize;
@@ -58,6 +58,8 @@ struct QuantityLine {
     #[serde(skip_serializing_if = "Option::is_none")]
     good_boards_outside_profile: Option<f64>,
     process: ProcessLine,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    risks: Option<RisksLine>,
 }
 
 #[derive(Serialize)]
@@ -91,6 +93,15 @@ struct ProcessLine {
     standard_deviation: f64,
 }
 
+#[derive(Serialize)]
+struct RisksLine {
+    nonconforming: f64,
+    consumer: f64,
+    producer: f64,
+    consumer_without_guard_band: f64,
+    producer_without_guard_band: f64,
+}
+
 impl From<&Quantity> for QuantityLine {
     fn from(quantity: &Quantity) -> Self {
         let (study, sets) = (&quantity.study, &quantity.sets);
@@ -117,9 +128,22 @@ impl From<&Quantity> for QuantityLine {
             profile: quantity.present,
             good_boards_outside_profile: quantity.outside_present,
             process: ProcessLine {
-                mean: quantity.process_mean,
-                standard_deviation: quantity.process_standard_deviation,
+                mean: quantity.process.mean,
+                standard_deviation: quantity.process.standard_deviation,
             },
+            risks: quantity.risks.as_ref().map(RisksLine::from),
+        }
+    }
+}
+
+impl From<&Risks> for RisksLine {
+    fn from(risks: &Risks) -> Self {
+        Self {
+            nonconforming: risks.guarded.nonconforming,
+            consumer: risks.guarded.consumer,
+            producer: risks.guarded.producer,
+            consumer_without_guard_band: risks.simple.consumer,
+            producer_without_guard_band: risks.simple.producer,
         }
     }
 }

@@ -17,6 +17,8 @@ pub fn limits_text(sheet: &LimitsSheet<'_>) -> String {
     }
     text.push('\n');
     text += &sets(sheet);
+    text.push('\n');
+    text += &risks(sheet);
     for warning in &sheet.proposal.warnings {
         text.push('\n');
         text += &wrapped(&format!("warning: {}", warning.text), "");
@@ -161,6 +163,49 @@ fn sets(sheet: &LimitsSheet<'_>) -> String {
         question.seed,
     );
     lines(&aligned(&rows), "") + "\n" + &wrapped(&notes, "")
+}
+
+/// How often the test is wrong over a production.
+fn risks(sheet: &LimitsSheet<'_>) -> String {
+    let heading = [
+        "risks over a production",
+        "mean",
+        "standard deviation",
+        "does not conform",
+        "consumer's",
+        "producer's",
+        "both without guard band",
+    ];
+    let mut rows = vec![heading.map(str::to_owned).to_vec()];
+    rows.extend(sheet.proposal.quantities.iter().filter_map(|quantity| {
+        let risks = quantity.risks?;
+        Some(vec![
+            quantity.name.title().to_owned(),
+            volts(quantity.process.mean),
+            volts(quantity.process.standard_deviation),
+            probability(risks.guarded.nonconforming),
+            probability(risks.guarded.consumer),
+            probability(risks.guarded.producer),
+            format!("{}, {}", probability(risks.simple.consumer), probability(risks.simple.producer)),
+        ])
+    }));
+    let notes = "A board conforms when its true value at the test lies inside the design limits less what it may move \
+                 afterwards. Consumer's risk: it does not, and passes. Producer's risk: it does, and fails. Production \
+                 and measurement are taken as normal (JCGM 106:2012, 9.5); mean and standard deviation come from the \
+                 parts at the test unless given. Parts have ends and a normal distribution has none, so risks \
+                 worked out from parts are on the large side.";
+    lines(&aligned(&rows), "") + "\n" + &wrapped(notes, "")
+}
+
+/// `7.90 %`, `12.3 ppm`; what is smaller is not worth digits.
+fn probability(value: f64) -> String {
+    if value >= 1e-3 {
+        format!("{:.2} %", value * 1e2)
+    } else if value >= 1e-7 {
+        format!("{:.1} ppm", value * 1e6)
+    } else {
+        "< 0.1 ppm".to_owned()
+    }
 }
 
 /// `-180.1 +181.9 mV`

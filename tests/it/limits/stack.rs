@@ -53,7 +53,7 @@ fn question(basis: Basis) -> Question {
         seed: SEED,
         uncertainty: Volts(0.002),
         guard_band: 1.0,
-        process: BTreeMap::new(),
+        production: BTreeMap::new(),
     }
 }
 
