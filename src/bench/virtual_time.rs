@@ -2,6 +2,7 @@
 
 use super::Bench;
 use crate::procedure::{Ability, Action, Event};
+use crate::sim::link_faults::LinkFault;
 use crate::sim::{Faults, Mishap, Setup, World};
 use crate::trace::{BenchFault, FaultKind, Sample};
 use crate::units::{Quantity, Volts};
@@ -22,6 +23,8 @@ pub struct VirtualBench {
     ability: Ability,
     integration: Duration,
     faults: Faults,
+    /// What befalls the first action after a time, once each.
+    scripted: Vec<(Duration, Mishap)>,
 }
 
 impl VirtualBench {
@@ -32,6 +35,7 @@ impl VirtualBench {
             ability,
             integration: setup.ammeter.integration.max(setup.voltmeter.integration),
             faults: Faults::none(),
+            scripted: setup.link_faults.iter().filter_map(LinkFault::mishap).collect(),
         }
     }
 
@@ -59,7 +63,10 @@ impl VirtualBench {
             return Event::Abort;
         }
         // A pause asks nothing of any instrument.
-        let mishap = if matches!(action, Action::WaitUntil(_)) { None } else { self.faults.strike() };
+        let mishap = match action {
+            Action::WaitUntil(_) => None,
+            _ => self.due().or_else(|| self.faults.strike()),
+        };
         match mishap {
             None => self.obey(action, end),
             Some(Mishap::ReplyLost(kind)) => {
@@ -73,6 +80,13 @@ impl VirtualBench {
                 self.fail(kind)
             }
         }
+    }
+
+    /// Takes a scripted mishap whose time has come.
+    fn due(&mut self) -> Option<Mishap> {
+        let now = self.now();
+        let due = self.scripted.iter().position(|(at, _)| *at <= now)?;
+        Some(self.scripted.swap_remove(due).1)
     }
 
     /// When an action without faults is over.

@@ -50,7 +50,7 @@ impl Arguments {
         let mut exit = Exit::Pass;
         for (serial_number, condition, expected) in BOARDS {
             print(&format!("\n{}, {serial_number}: {}\n\n", profile.title, condition.description()))?;
-            let simulation = Simulation { condition, seed: None, speed: self.speed };
+            let simulation = Simulation { condition: vec![condition], seed: None, speed: self.speed };
             let board = keeping.board(&profile, serial_number)?;
             let path = files::RIVER_NODE.0.to_owned();
             let kept = on_simulation(&simulation, &profile, path, Arrangement::Separate, board, &keeping)?;

@@ -29,9 +29,9 @@ pub(super) struct Arguments {
 fn conditions() -> String {
     let lines: Vec<String> = Condition::ALL
         .iter()
-        .map(|condition| format!("  {:18} {}", condition.key(), condition.description()))
+        .map(|condition| format!("  {:22} {}", condition.key(), condition.description()))
         .collect();
-    format!("Conditions:\n{}\n\nExample:\n  ebbmark sim --condition never-trips", lines.join("\n"))
+    format!("Conditions:\n{}\n\nExample:\n  ebbmark sim --condition high-trip+no-sink", lines.join("\n"))
 }
 
 impl Arguments {

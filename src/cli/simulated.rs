@@ -15,9 +15,15 @@ use std::path::Path;
 
 #[derive(Clone, Debug, Args)]
 pub(super) struct Simulation {
-    /// Condition of the simulated board; `ebbmark sim --help` lists them.
-    #[arg(long, value_name = "NAME", default_value = "good", help_heading = "Simulated bench")]
-    pub(super) condition: Condition,
+    /// Condition of the simulated board or bench, several joined by + or given repeatedly; `ebbmark sim --help` lists them.
+    #[arg(
+        long,
+        value_name = "NAME",
+        default_value = "good",
+        value_delimiter = '+',
+        help_heading = "Simulated bench"
+    )]
+    pub(super) condition: Vec<Condition>,
     /// Seed of the simulated board and its instruments; taken from the serial number when left out.
     #[arg(long, help_heading = "Simulated bench")]
     pub(super) seed: Option<u64>,
@@ -46,7 +52,7 @@ impl Simulation {
     pub(super) fn is_asked_for(&self) -> bool {
         #[expect(clippy::float_cmp, reason = "the default, as clap put it there")]
         let hurried = self.speed != 1.0;
-        hurried || self.seed.is_some() || self.condition != Condition::Good
+        hurried || self.seed.is_some() || self.condition != [Condition::Good]
     }
 
     /// The condition and the seed for the board called `serial_number`: the same board each time it is tested.
@@ -55,7 +61,8 @@ impl Simulation {
             let digest = Sha256::digest(serial_number.as_bytes());
             digest.iter().take(4).fold(0, |seed, byte| seed << 8 | u64::from(*byte))
         });
-        Simulated { condition: self.condition.key().to_owned(), seed }
+        let conditions: Vec<&str> = self.condition.iter().map(|condition| condition.key()).collect();
+        Simulated { condition: conditions.join("+"), seed }
     }
 
     /// Starts instruments on pseudo-terminals, with a board drawn from the seed between them.
@@ -65,7 +72,7 @@ impl Simulation {
         simulated: &Simulated,
         arrangement: Arrangement,
     ) -> Result<SimulatedBench, Failure> {
-        let setup = Setup::new(profile, self.condition, simulated.seed);
+        let setup = Setup::with(profile, &self.condition, simulated.seed);
         let options = Options { arrangement, clock: Clock::faster(self.speed), ..Options::default() };
         Ok(SimulatedBench::start(&setup, options).context("the simulated bench cannot be started")?)
     }

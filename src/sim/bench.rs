@@ -89,7 +89,8 @@ impl SimulatedBench {
             Arrangement::SourceMeasureUnit => setup.with_source_measure_unit(),
         };
         let world = SharedWorld::new(World::new(&setup), Arc::new(options.clock));
-        let faults = Arc::new(Mutex::new(LinkFaults::new(options.faults)));
+        let own = setup.link_faults.iter().map(|fault| options.arrangement.befalls(fault));
+        let faults = Arc::new(Mutex::new(LinkFaults::new(own.chain(options.faults).collect())));
         let mut terminals = Vec::new();
         for kind in options.arrangement.kinds() {
             let device = Device::new(*kind, &setup);
@@ -190,6 +191,17 @@ impl SimulatedBench {
 }
 
 impl Arrangement {
+    /// The same fault of the instrument that plays the part here.
+    fn befalls(self, fault: &LinkFault) -> LinkFault {
+        let instrument = match (self, fault.instrument) {
+            (Self::SourceMeasureUnit, Kind::Supply | Kind::Ammeter | Kind::Voltmeter) => {
+                Kind::SourceMeasureUnit
+            }
+            (_, instrument) => instrument,
+        };
+        LinkFault { instrument, ..fault.clone() }
+    }
+
     fn kinds(self) -> &'static [Kind] {
         match self {
             Self::Separate => &[Kind::Supply, Kind::Ammeter, Kind::Voltmeter, Kind::LoadVoltmeter],

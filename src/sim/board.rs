@@ -1,7 +1,7 @@
 //! The parameters of one board: detector, switch, currents and capacitors.
 
 use super::circuit::BODY_DIODE;
-use super::{LoadWiring, Polarity, Wiring};
+use super::{LoadWiring, Polarity, Wiring, gate, wiring};
 use crate::units::{Amps, Farads, Ohms, Siemens, Volts};
 use std::time::Duration;
 
@@ -14,7 +14,7 @@ pub struct BoardModel {
     pub hysteresis: Volts,
     /// How long the voltage must stay below the trip until the switch opens.
     pub detect_delay: Duration,
-    /// How long the voltage must stay above the re-enable until the switch closes.
+    /// How long the voltage must stay above the re-enable until the detector lets go of the gate.
     pub release_delay: Duration,
     /// Standard deviation of the noise at the detector's input, as slow as the detector can follow.
     pub noise: Volts,
@@ -38,6 +38,10 @@ pub struct BoardModel {
     pub load: Ohms,
     /// Capacitor across the load, charged when the switch closes.
     pub load_capacitance: Farads,
+    /// Capacitance of the gate, charged through the pull-up before the switch closes.
+    pub gate_capacitance: Farads,
+    /// Whether a board that has tripped stays off until its supply has gone.
+    pub latches: bool,
     /// Whether the switch obeys the detector.
     pub switch: Switch,
     /// Resistance of the closed switch.
@@ -66,6 +70,8 @@ pub enum Switch {
     StuckClosed,
     /// A broken transistor or joint.
     StuckOpen,
+    /// The gate hangs on the supply instead of the detector: closed as long as the voltage suffices for it.
+    GateTied,
 }
 
 /// A window of voltages in which the undefined detector lets the switch conduct: a triangle of current.
@@ -85,6 +91,11 @@ impl BoardModel {
         self.trip + self.hysteresis
     }
 
+    /// Time above the re-enable until the switch closes: the release delay, and the gate's charge.
+    pub(super) fn release_time(&self) -> Duration {
+        self.release_delay + gate::charge_time(self.re_enable(), self.pull_up, self.gate_capacitance)
+    }
+
     /// The lowest voltage at which the detector works, kept clear of zero.
     pub(super) fn lowest_operating(&self) -> f64 {
         self.minimum_operating.0.max(1e-3)
@@ -94,7 +105,7 @@ impl BoardModel {
     pub(super) fn closed(&self, on: bool) -> bool {
         match self.switch {
             Switch::Working => on,
-            Switch::StuckClosed => true,
+            Switch::StuckClosed | Switch::GateTied => true,
             Switch::StuckOpen => false,
         }
     }
@@ -102,7 +113,7 @@ impl BoardModel {
     /// Resistance of what hangs behind the switch, a voltmeter of `voltmeter` siemens included.
     pub(super) fn load_resistance(&self, wiring: &Wiring, voltmeter: f64) -> f64 {
         match wiring.load {
-            LoadWiring::Connected => 1.0 / (1.0 / self.load.0 + voltmeter),
+            LoadWiring::Connected | LoadWiring::LocksOut { .. } => 1.0 / (1.0 / self.load.0 + voltmeter),
             LoadWiring::Lifted => 1.0 / voltmeter.max(1e-12),
         }
     }
@@ -112,7 +123,11 @@ impl BoardModel {
         let load = self.load_resistance(wiring, voltmeter);
         if wiring.polarity == Polarity::Reversed {
             let current = (volts - BODY_DIODE).max(0.0) / (load + self.on_resistance.0);
-            return Branches { beside: 0.0, load_current: current, load_volts: -current * load };
+            return Branches {
+                beside: -wiring.fed(volts),
+                load_current: current,
+                load_volts: -current * load,
+            };
         }
         // Towards zero volts a constant current fades away.
         let awake = (volts / self.lowest_operating()).clamp(0.0, 1.0);
@@ -122,17 +137,32 @@ impl BoardModel {
             PullUp::Always => true,
         };
         let pull_up = if pull_up_conducts { volts / self.pull_up.0 } else { 0.0 };
-        let load_current = if self.closed(on) {
-            volts / (load + self.on_resistance.0)
+        let (load_current, load_volts) = if self.closed(on) {
+            self.through_closed(wiring, load, volts)
         } else if wiring.load == LoadWiring::Lifted {
-            0.0
+            (0.0, 0.0)
         } else {
-            self.leakage.0 * awake + self.leakage_conductance.0 * volts + self.deep_current(volts)
+            let leak = self.leakage.0 * awake + self.leakage_conductance.0 * volts + self.deep_current(volts);
+            (leak, leak * load)
         };
         Branches {
-            beside: pull_up + self.detector_current.0 * awake,
+            beside: pull_up + self.detector_current.0 * awake + wiring.stray.0 * volts - wiring.fed(volts),
             load_current,
-            load_volts: load_current * load,
+            load_volts,
+        }
+    }
+
+    /// Current through a closed switch and the voltage behind it.
+    fn through_closed(&self, wiring: &Wiring, load: f64, volts: f64) -> (f64, f64) {
+        let tied = if self.switch == Switch::GateTied { gate::share(volts) } else { 1.0 };
+        let current = volts / (load + self.on_resistance.0) * tied;
+        match wiring.load {
+            // A load that has stopped leaves the whole voltage standing.
+            LoadWiring::LocksOut { below } => {
+                let current = current * wiring::running(below, volts);
+                (current, volts * tied - current * self.on_resistance.0)
+            }
+            _ => (current, current * load),
         }
     }
 

@@ -4,13 +4,16 @@
 //! voltage at the load are straight lines in the voltage the supply regulates to, piece by piece. That makes every
 //! instant exact without small steps.
 
-use super::{BoardModel, Polarity, Wiring};
+use super::{BoardModel, Polarity, Switch, Wiring, gate};
 
 /// Forward voltage of the body diode, V; 0.8 V to 0.9 V is common practice for a power transistor.
 pub(super) const BODY_DIODE: f64 = 0.8;
 
-/// The most pieces a circuit has: one up to each of four knots, the open end, and the current limit.
-const MOST_PIECES: usize = 6;
+/// The most knots a board and its wiring have.
+const MOST_KNOTS: usize = 9;
+
+/// The most pieces a circuit has: one up to each knot, the open end, and the current limit.
+const MOST_PIECES: usize = MOST_KNOTS + 2;
 
 /// All that a solution depends on besides the board and its wiring.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -74,7 +77,7 @@ pub(super) struct Circuit {
 impl Circuit {
     /// Solves the circuit.
     pub(super) fn solve(board: &BoardModel, wiring: &Wiring, around: &Surroundings) -> Self {
-        let knots = knots(board, wiring.polarity);
+        let knots = knots(board, wiring);
         let open_end = Piece {
             upto: f64::INFINITY,
             terminals: Line::default(),
@@ -89,11 +92,14 @@ impl Circuit {
             Point { volts, current, load: branches.load_volts, e: volts + current * around.series }
         };
         let mut from = point(0.0);
-        for knot in knots.into_iter().filter(|knot| knot.is_finite()).chain([f64::INFINITY]) {
+        let mut reached = from.e;
+        for knot in knots.into_iter().take_while(|knot| knot.is_finite()).chain([f64::INFINITY]) {
             // The open end is as straight as its first volt.
             let to = point(if knot.is_finite() { knot } else { from.volts + 1.0 });
-            if to.e <= from.e {
-                // A falling characteristic behind a large resistance: the state in between cannot last.
+            if knot.is_finite() && to.e <= reached {
+                // A falling characteristic behind a large resistance: the state in between cannot last, so that the
+                // terminals jump to where the characteristic has risen as far again.
+                from = to;
                 continue;
             }
             let mut piece = Piece {
@@ -104,12 +110,12 @@ impl Circuit {
                 limited: false,
             };
             let gives_way = (around.limit - piece.current.offset) / piece.current.slope;
-            let reached = piece.current.slope > 0.0 && gives_way < piece.upto;
-            if reached {
-                piece.upto = gives_way.max(from.e);
+            let limited = piece.current.slope > 0.0 && gives_way < piece.upto;
+            if limited {
+                piece.upto = gives_way.max(reached);
             }
             circuit.push(piece);
-            if reached {
+            if limited {
                 circuit.push(Piece {
                     upto: f64::INFINITY,
                     terminals: Line::level(piece.terminals.at(piece.upto)),
@@ -119,6 +125,7 @@ impl Circuit {
                 });
                 break;
             }
+            reached = to.e;
             from = to;
         }
         circuit
@@ -148,15 +155,22 @@ struct Point {
     e: f64,
 }
 
-/// Voltages at the terminals where a characteristic may bend, rising; infinite where there is none.
-fn knots(board: &BoardModel, polarity: Polarity) -> [f64; 4] {
+/// Voltages at the terminals where a characteristic may bend, rising; infinite behind the last.
+fn knots(board: &BoardModel, wiring: &Wiring) -> [f64; MOST_KNOTS] {
     let none = f64::INFINITY;
-    if polarity == Polarity::Reversed {
-        return [BODY_DIODE, none, none, none];
+    let mut knots = [none; MOST_KNOTS];
+    knots[0] = if wiring.polarity == Polarity::Reversed { BODY_DIODE } else { board.lowest_operating() };
+    knots[1..4].copy_from_slice(&wiring.knots());
+    if wiring.polarity == Polarity::Right {
+        if let Some(deep) = board.deep_conduction {
+            knots[4..7].copy_from_slice(&[deep.from.0, (deep.from.0 + deep.to.0) / 2.0, deep.to.0]);
+        }
+        if board.switch == Switch::GateTied {
+            knots[7..9].copy_from_slice(&gate::TIED);
+        }
     }
-    let mut knots = [board.lowest_operating(), none, none, none];
-    if let Some(deep) = board.deep_conduction {
-        knots = [knots[0], deep.from.0, (deep.from.0 + deep.to.0) / 2.0, deep.to.0];
+    // The usual board has one knot, and it stands first.
+    if knots[1..].iter().any(|knot| *knot < none) {
         knots.sort_by(f64::total_cmp);
     }
     knots

@@ -44,10 +44,13 @@ pub(super) fn supply(seed: u64) -> SupplyModel {
         max_over_voltage: Volts(35.0),
         max_current: Amps(3.0),
         min_current: Amps(1e-3),
+        gives_way: Amps(f64::INFINITY),
         set_step: Volts(1e-3),
         claim,
         gain_error: draw.within(claim.relative),
         offset_error: Volts(draw.within(claim.absolute)),
+        drift: 0.0,
+        drifted: Volts::ZERO,
         read_back_voltage_error: Volts(draw.within(5e-3)),
         read_back_current_error: Amps(draw.within(10e-3)),
         time_constant: Duration::from_millis(3),
@@ -92,6 +95,9 @@ pub(super) fn meters(seed: u64) -> (AmmeterModel, VoltmeterModel, VoltmeterModel
         ranges: ranges.to_vec(),
         integration: INTEGRATION,
         range_settle: Duration::from_millis(60),
+        reversed: false,
+        fuse_blown: false,
+        stuck_on: None,
     };
     (ammeter, voltmeter(), voltmeter())
 }

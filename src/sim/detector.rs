@@ -1,7 +1,7 @@
 //! The detector: a comparator with hysteresis, a delay for each direction, and noise.
 
-use super::BoardModel;
 use super::draw::{Concern, Draw};
+use super::{BoardModel, Ripple};
 
 /// Beyond this many standard deviations noise is not followed: once in a billion draws.
 const NOISE_REACH: f64 = 6.0;
@@ -24,6 +24,9 @@ pub(super) struct Detector {
     noise_rate: f64,
     draw: Draw,
     on: bool,
+    /// Voltage below which a latched board forgets that it has tripped; `None` for one that does not latch.
+    forgets_below: Option<f64>,
+    locked: bool,
     pending: Option<Pending>,
     patience: f64,
 }
@@ -37,19 +40,21 @@ struct Pending {
 }
 
 impl Detector {
-    /// A detector without supply: the board is off.
-    pub(super) fn new(board: &BoardModel, seed: u64) -> Self {
+    /// A detector without supply: the board is off. Hum on its supply moves its thresholds.
+    pub(super) fn new(board: &BoardModel, ripple: Option<Ripple>, seed: u64) -> Self {
         let mut draw = Draw::new(seed, Concern::DetectorNoise);
         Self {
-            trip: board.trip.0,
-            re_enable: board.re_enable().0,
+            trip: board.trip.0 + ripple.map_or(0.0, |ripple| ripple.trip_shift(board.detect_delay)),
+            re_enable: board.re_enable().0 - ripple.map_or(0.0, |ripple| ripple.re_enable_shift()),
             detect_delay: board.detect_delay.as_secs_f64().max(SHORTEST_DELAY),
-            release_delay: board.release_delay.as_secs_f64().max(SHORTEST_DELAY),
+            release_delay: board.release_time().as_secs_f64().max(SHORTEST_DELAY),
             noise: board.noise.0,
             noise_rate: board.noise_rate,
             patience: draw.exponential(),
             draw,
             on: false,
+            forgets_below: board.latches.then(|| board.lowest_operating()),
+            locked: false,
             pending: None,
         }
     }
@@ -59,19 +64,34 @@ impl Detector {
         self.on
     }
 
+    /// Puts it into a state, as one finds it.
+    pub(super) fn start_as(&mut self, on: bool) {
+        self.on = on;
+        self.pending = None;
+    }
+
     /// How far `volts` lies on the side where nothing happens; negative beyond the threshold.
     fn clearance(&self, volts: f64) -> f64 {
-        if self.on { volts - self.trip } else { self.re_enable - volts }
+        match (self.on, self.locked) {
+            (true, _) => volts - self.trip,
+            (false, false) => self.re_enable - volts,
+            (false, true) => f64::INFINITY,
+        }
     }
 
     /// Voltages at which what it does may change.
     pub(super) fn edges(&self) -> [f64; 2] {
         let reach = NOISE_REACH * self.noise;
-        if self.on { [self.trip, self.trip + reach] } else { [self.re_enable, self.re_enable - reach] }
+        match (self.on, self.forgets_below.filter(|_| self.locked)) {
+            (true, _) => [self.trip, self.trip + reach],
+            (false, None) => [self.re_enable, self.re_enable - reach],
+            (false, Some(volts)) => [volts, volts],
+        }
     }
 
     /// Looks at a settled or passing voltage at time `now`: starts or calls off a change.
     pub(super) fn look(&mut self, now: f64, volts: f64) {
+        self.locked &= self.forgets_below.is_some_and(|forgets_below| volts >= forgets_below);
         let clearance = self.clearance(volts);
         match self.pending {
             Some(pending) if clearance >= pending.margin => self.pending = None,
@@ -90,6 +110,7 @@ impl Detector {
         let due = self.pending.is_some_and(|pending| now >= pending.due);
         if due {
             self.on = !self.on;
+            self.locked = !self.on && self.forgets_below.is_some();
             self.pending = None;
         }
         due

@@ -13,6 +13,8 @@ pub(super) enum Concern {
     DetectorNoise = 4,
     Faults = 5,
     MeterInputs = 6,
+    Contact = 7,
+    Conditions = 8,
 }
 
 /// The stream of one concern.

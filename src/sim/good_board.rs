@@ -72,6 +72,8 @@ pub(super) fn good_board(profile: &Profile, draw: &mut Draw) -> BoardModel {
         input_capacitance: Farads(1e-6),
         load: profile.load.resistance * (1.0 + draw.within(profile.load.tolerance * CENTRAL)),
         load_capacitance: Farads(chargeable.min(10e-6)),
+        gate_capacitance: Farads(0.0),
+        latches: false,
         switch: Switch::Working,
         on_resistance: Ohms(draw.between(0.04, 0.08)),
         deep_conduction: None,

@@ -1,6 +1,8 @@
 //! A script of what goes wrong between the program and a simulated instrument: which message it befalls, and how.
 
+use super::Mishap;
 use super::device::{Kind, ScpiError};
+use crate::trace::FaultKind;
 use std::time::Duration;
 
 /// One thing that goes wrong.
@@ -59,6 +61,21 @@ pub enum Effect {
     HangUp,
     /// From this message on the instrument calls itself this.
     Identity(String),
+}
+
+impl LinkFault {
+    /// What a bench makes of it that carries actions out without text, and from when on; `None` for faults that need the
+    /// text.
+    pub fn mishap(&self) -> Option<(Duration, Mishap)> {
+        let When::After(at) = self.when else { return None };
+        let mishap = match self.effect {
+            Effect::NoReply | Effect::LateReply(_) => Mishap::ReplyLost(FaultKind::NoReply),
+            Effect::CutReply(_) | Effect::Garbage(_) => Mishap::ReplyLost(FaultKind::BadReply),
+            Effect::Restart(_) => Mishap::CommandLost(FaultKind::Restarted),
+            _ => return None,
+        };
+        Some((at, mishap))
+    }
 }
 
 /// The faults still to come.

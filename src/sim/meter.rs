@@ -38,6 +38,12 @@ pub struct AmmeterModel {
     pub integration: Duration,
     /// Time until readings are good after a change of range.
     pub range_settle: Duration,
+    /// Whether its leads are swapped.
+    pub reversed: bool,
+    /// Whether its fuse is blown: the path is open, and it reads exactly nothing.
+    pub fuse_blown: bool,
+    /// Index of the range it stays on whatever it is told, where it does.
+    pub stuck_on: Option<usize>,
 }
 
 /// A voltmeter that finds its range by itself.
@@ -53,6 +59,9 @@ pub struct VoltmeterModel {
     /// How far the true resistance is off what is stated, as a share.
     pub input_error: f64,
 }
+
+/// Resistance of a path whose fuse is blown, ohm.
+const OPEN: f64 = 100e9;
 
 /// A meter reads up to this multiple of a range's full scale; a fifth more is common practice for bench meters.
 const OVER_RANGE: f64 = 1.2;
@@ -106,6 +115,16 @@ impl AmmeterModel {
         self.ranges.len().saturating_sub(1)
     }
 
+    /// Resistance in the board's supply line on a range, ohm.
+    pub(super) fn burden(&self, range: usize) -> f64 {
+        if self.fuse_blown { OPEN } else { self.ranges[range].burden.0 }
+    }
+
+    /// The range it is on when told to take another.
+    pub(super) fn obeyed(&self, range: usize) -> usize {
+        self.stuck_on.unwrap_or(range)
+    }
+
     /// The reading of a true mean over `aperture`, `settled` after the range was last changed.
     pub(super) fn read(
         &self,
@@ -115,6 +134,10 @@ impl AmmeterModel {
         settled: Duration,
         noise: &mut Draw,
     ) -> Current {
+        if self.fuse_blown {
+            return Current::Value(Amps::ZERO);
+        }
+        let mean = if self.reversed { -mean } else { mean };
         let range = &self.ranges[range].meter;
         let constants = RANGE_SETTLE_CONSTANTS / self.range_settle.as_secs_f64().max(1e-9);
         let disturbance = RANGE_CHANGE_ERROR * range.full_scale * (-settled.as_secs_f64() * constants).exp();

@@ -6,6 +6,7 @@
 
 use super::Setup;
 use super::circuit::{Circuit, Piece, Surroundings};
+use super::contact::Contact;
 use super::course::Course;
 use super::detector::Detector;
 use super::output::{Output, STILL};
@@ -54,6 +55,8 @@ pub(super) struct Motion {
     detector: Detector,
     circuit: Circuit,
     surroundings: Surroundings,
+    burden: f64,
+    contact: Option<Contact>,
     limit: f64,
     over_voltage: f64,
     over_voltage_tripped: bool,
@@ -76,9 +79,11 @@ impl Motion {
         Self {
             now: 0.0,
             output: Output::new(&setup.supply, setup.board.input_capacitance.0),
-            detector: Detector::new(&setup.board, setup.seed),
+            detector: Detector::new(&setup.board, setup.ripple, setup.seed),
             circuit: Circuit::solve(&setup.board, &setup.wiring, &surroundings),
             surroundings,
+            burden,
+            contact: setup.wiring.bad_contact.map(|bad| Contact::new(bad, setup.seed)),
             limit: setup.supply.max_current.0,
             over_voltage: f64::INFINITY,
             over_voltage_tripped: false,
@@ -124,7 +129,21 @@ impl Motion {
 
     /// Puts another ammeter resistance into the line.
     pub(super) fn put_in_line(&mut self, setup: &Setup, burden: f64) {
-        self.surroundings.series = setup.wiring.lead_resistance.0 + burden;
+        self.burden = burden;
+        self.measure_line(setup);
+    }
+
+    /// Lets output and detector stand as somebody has left them.
+    pub(super) fn left_as(&mut self, setup: &Setup, board_on: bool) {
+        self.output.arrive();
+        self.detector.start_as(board_on);
+        self.solve(setup);
+    }
+
+    /// Adds up what lies between supply and board, and solves the circuit anew.
+    fn measure_line(&mut self, setup: &Setup) {
+        let contact = self.contact.as_ref().map_or(0.0, Contact::resistance);
+        self.surroundings.series = setup.wiring.lead_resistance.0 + self.burden + contact;
         self.solve(setup);
     }
 
@@ -200,6 +219,9 @@ impl Motion {
         if self.detector.change_if_due(self.now) {
             return self.solve(setup);
         }
+        if self.contact.as_mut().is_some_and(|contact| contact.change_if_due(self.now)) {
+            return self.measure_line(setup);
+        }
         if !self.charging && setup.board.closed(self.detector.on()) {
             self.load_volts = self.piece().load.at(self.output.volts);
         }
@@ -215,6 +237,9 @@ impl Motion {
         let mut time = until - self.now;
         if let Some(due) = self.detector.due() {
             time = time.min((due - self.now).max(0.0));
+        }
+        if let Some(contact) = &self.contact {
+            time = time.min((contact.due() - self.now).max(0.0));
         }
         if self.charging {
             return self.charge(setup, course, time);

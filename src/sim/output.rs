@@ -59,6 +59,12 @@ impl Output {
         self.head_for(self.goal);
     }
 
+    /// Puts it where it is going, at once.
+    pub(super) fn arrive(&mut self) {
+        self.volts = self.goal;
+        self.peak = None;
+    }
+
     /// Notes what has been reached.
     pub(super) fn look(&mut self) {
         if self.peak.is_some_and(|peak| self.volts >= peak) {
@@ -82,6 +88,10 @@ impl Output {
             None => (self.goal, None),
         };
         let way = aim - self.volts;
+        if !self.sinks && piece.current.at(self.volts) + self.bleed < 0.0 {
+            // Fed from elsewhere, such a supply is lifted.
+            return self.discharge(piece.current, 0.0, f64::NEG_INFINITY);
+        }
         if way.abs() <= STILL {
             return (Course::Still, None);
         }
@@ -108,14 +118,16 @@ impl Output {
     fn discharge(&self, current: Line, conductance: f64, end: f64) -> (Course, Option<f64>) {
         let slope = current.slope + conductance;
         let drain = current.at(self.volts) + conductance * self.volts + self.bleed;
-        if self.volts <= end || drain <= 0.0 {
+        if drain == 0.0 || drain > 0.0 && self.volts <= end {
             return (Course::Still, None);
         }
+        // Another source at the board may charge it instead.
+        let end = (drain > 0.0).then_some(end);
         if slope.abs() < 1e-10 {
-            return (Course::Line { rate: -drain / self.capacitance }, Some(end));
+            return (Course::Line { rate: -drain / self.capacitance }, end);
         }
         let level = self.volts - drain / slope;
-        (Course::Towards { level, time_constant: self.capacitance / slope }, Some(end))
+        (Course::Towards { level, time_constant: self.capacitance / slope }, end)
     }
 
     /// The voltage at which a falling output is slow enough for the capacitor to follow again.

@@ -1,16 +1,19 @@
-//! A board and a bench drawn from a seed, around what a profile describes and a named condition.
+//! A board and a bench: drawn from a seed around what a profile describes, or given, and under named conditions.
+
+mod bench_conditions;
+mod board_conditions;
 
 use super::draw::{Concern, Draw};
-use super::good_board::{good_board, window};
+use super::good_board::good_board;
+use super::link_faults::LinkFault;
+use super::temperature::ROOM;
 use super::{
-    AmmeterModel, AmmeterRange, BoardModel, Condition, LoadWiring, Polarity, SupplyModel, Switch,
-    VoltmeterModel, Wiring, class,
+    AmmeterModel, AmmeterRange, BoardModel, Condition, Ripple, SupplyModel, VoltmeterModel, Wiring, class,
 };
 use crate::procedure::Ability;
-use crate::profile::{Profile, QuantityName};
+use crate::profile::Profile;
 use crate::trace::{Claims, RangeAccuracy};
-use crate::units::{Amps, Ohms, Volts};
-use std::time::Duration;
+use crate::units::{Amps, Celsius, Ohms, Volts};
 
 /// Time constants until a small step has arrived.
 const SETTLE_CONSTANTS: u32 = 5;
@@ -36,64 +39,73 @@ pub struct Setup {
     pub load_voltmeter: VoltmeterModel,
     /// The leads and what is connected.
     pub wiring: Wiring,
+    /// Hum of the mains at the board, where there is any.
+    pub ripple: Option<Ripple>,
+    /// Temperature of the board; its parameters are those at this temperature.
+    pub temperature: Celsius,
+    /// How somebody left the bench, where it was not left off.
+    pub left_on: Option<LeftOn>,
+    /// What will go wrong between the program and the instruments.
+    pub link_faults: Vec<LinkFault>,
     /// Seed of all noise.
     pub seed: u64,
 }
 
+/// A bench that somebody left with its output on.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct LeftOn {
+    /// The voltage it was left at.
+    pub volts: Volts,
+    /// Whether the board was on; both may be so between its thresholds.
+    pub board_on: bool,
+}
+
 impl Setup {
-    /// Draws a board and a bench. The same seed gives the same board under every condition, but for what the
-    /// condition changes.
+    /// Draws a board and a bench under one condition, as [`Setup::with`] does.
     pub fn new(profile: &Profile, condition: Condition, seed: u64) -> Self {
+        Self::with(profile, &[condition], seed)
+    }
+
+    /// Draws a board and a bench. The same seed gives the same board under every condition, but for what the
+    /// conditions change, and each changes as much as it does alone.
+    pub fn with(profile: &Profile, conditions: &[Condition], seed: u64) -> Self {
         let mut draw = Draw::new(seed, Concern::Board);
         let board = good_board(profile, &mut draw);
-        let (ammeter, voltmeter, load_voltmeter) = class::meters(seed);
-        let wiring = Wiring {
-            lead_resistance: Ohms(draw.between(0.04, 0.12)),
-            load: LoadWiring::Connected,
-            polarity: Polarity::Right,
-        };
-        let supply = class::supply(seed);
-        let mut setup = Self { board, supply, ammeter, voltmeter, load_voltmeter, wiring, seed };
-        setup.apply(condition, profile, &mut draw);
+        let wiring = Wiring::plain(Ohms(draw.between(0.04, 0.12)));
+        let mut setup = Self::of(board, wiring, seed);
+        setup.put_under(conditions, profile, &draw);
         setup
     }
 
-    fn apply(&mut self, condition: Condition, profile: &Profile, draw: &mut Draw) {
-        let limits = |name| window(profile, name);
-        let board = &mut self.board;
-        match condition {
-            Condition::Good => {}
-            Condition::NeverTrips => board.switch = Switch::StuckClosed,
-            Condition::NeverOn => board.switch = Switch::StuckOpen,
-            Condition::HighTrip => {
-                let (min, max) = limits(QuantityName::Trip).unwrap_or((board.trip.0, board.trip.0 * 1.02));
-                let trip = max + (max - min) * draw.between(0.4, 0.9);
-                board.trip = Volts(trip).min(profile.supply.start - board.hysteresis * 1.1);
-            }
-            Condition::NarrowHysteresis => {
-                let least = limits(QuantityName::Hysteresis).map_or(board.hysteresis.0, |(min, _)| min);
-                board.hysteresis = Volts(least * draw.between(0.3, 0.7));
-            }
-            Condition::LeakingSwitch => {
-                let most = limits(QuantityName::OffCurrent).map_or(10e-6, |(_, max)| max);
-                board.leakage = Amps(most * draw.between(1.5, 5.0));
-            }
-            Condition::LowPullUp => board.pull_up = board.pull_up / 10.0,
-            Condition::SlowDetector => {
-                let slow = Duration::from_secs_f64(draw.between(0.06, 0.12));
-                board.detect_delay = (profile.timing.detect_delay * 4).max(slow);
-            }
-            Condition::NoLoad => self.wiring.load = LoadWiring::Lifted,
-            Condition::Reversed => self.wiring.polarity = Polarity::Reversed,
-            Condition::Chatter => {
-                let drop = board.hysteresis * draw.between(1.3, 1.6);
-                self.wiring.lead_resistance = drop / (board.trip / board.load);
-            }
-            Condition::NoSink => {
-                self.supply.sinks = false;
-                self.supply.bleed = Amps(0.1e-3);
-                self.supply.off_resistance = Ohms(10e3);
-            }
+    /// This very board, wired like this, on a bench drawn from a seed.
+    pub fn of(board: BoardModel, wiring: Wiring, seed: u64) -> Self {
+        let (ammeter, voltmeter, load_voltmeter) = class::meters(seed);
+        Self {
+            board,
+            supply: class::supply(seed),
+            ammeter,
+            voltmeter,
+            load_voltmeter,
+            wiring,
+            ripple: None,
+            temperature: ROOM,
+            left_on: None,
+            link_faults: Vec::new(),
+            seed,
+        }
+    }
+
+    /// The same under conditions; how much they change is measured by the profile's limits and drawn from the seed.
+    #[must_use]
+    pub fn under(mut self, conditions: &[Condition], profile: &Profile) -> Self {
+        self.put_under(conditions, profile, &Draw::new(self.seed, Concern::Conditions));
+        self
+    }
+
+    fn put_under(&mut self, conditions: &[Condition], profile: &Profile, draw: &Draw) {
+        for condition in conditions {
+            board_conditions::apply(*condition, self, profile, &mut draw.clone());
+            bench_conditions::apply(*condition, self, &mut draw.clone());
         }
     }
 

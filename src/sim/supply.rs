@@ -16,6 +16,8 @@ pub struct SupplyModel {
     pub max_current: Amps,
     /// Lowest current it can be limited to.
     pub min_current: Amps,
+    /// The current at which it gives way whatever limit is set; infinite for one in order.
+    pub gives_way: Amps,
     /// Smallest step of the set-point.
     pub set_step: Volts,
     /// What its maker claims of the set-point.
@@ -24,6 +26,10 @@ pub struct SupplyModel {
     pub gain_error: f64,
     /// Error of this one, fixed.
     pub offset_error: Volts,
+    /// How fast its output drifts, V/s; its own reading drifts along and does not show it.
+    pub drift: f64,
+    /// How far it has drifted by the time the bench is switched on.
+    pub drifted: Volts,
     /// Error of the voltage it reads back, fixed.
     pub read_back_voltage_error: Volts,
     /// Error of the current it reads back, fixed.
@@ -61,6 +67,16 @@ impl SupplyModel {
     /// A current limit as the supply keeps it.
     pub(super) fn kept_limit(&self, limit: Amps) -> Amps {
         limit.max(self.min_current).min(self.max_current)
+    }
+
+    /// The current at which it really gives way under a kept limit, A.
+    pub(super) fn true_limit(&self, kept: Amps) -> f64 {
+        kept.min(self.gives_way).0
+    }
+
+    /// How far its output and its own reading have drifted this long after the bench was switched on, V.
+    pub(super) fn drift_at(&self, now: Duration) -> f64 {
+        self.drifted.0 + self.drift * now.as_secs_f64()
     }
 
     /// An over-voltage level as the supply keeps it.

@@ -1,12 +1,13 @@
 //! What a simulated board really is, to hold measurements against.
 
-use super::{BoardModel, Wiring};
-use crate::units::{Amps, Volts};
+use super::{BoardModel, Setup, Wiring};
+use crate::units::{Amps, Celsius, Siemens, Volts};
 use std::time::Duration;
 
 /// What the board really is, noise and meters apart, at its terminals.
 ///
-/// Thresholds and delays are the detector's; a stuck switch does not obey it.
+/// Thresholds and delays are the detector's at the temperature it has, without hum or contacts that come and go; a stuck
+/// switch does not obey it. Currents are the board's own, without other sources and meters.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Truth {
     /// Voltage below which the switch opens.
@@ -19,20 +20,27 @@ pub struct Truth {
     pub detect_delay: Duration,
     /// Time above the re-enable until it closes.
     pub release_delay: Duration,
+    /// Whether it stays off once tripped, until its supply has gone; the re-enable is then that of a board just connected.
+    pub latches: bool,
+    /// Temperature of the board.
+    pub temperature: Celsius,
     board: BoardModel,
     wiring: Wiring,
 }
 
 impl Truth {
-    pub(super) fn of(board: &BoardModel, wiring: &Wiring) -> Self {
+    pub(super) fn of(setup: &Setup) -> Self {
+        let board = &setup.board;
         Self {
             trip: board.trip,
             re_enable: board.re_enable(),
             hysteresis: board.hysteresis,
             detect_delay: board.detect_delay,
-            release_delay: board.release_delay,
+            release_delay: board.release_time(),
+            latches: board.latches,
+            temperature: setup.temperature,
             board: *board,
-            wiring: *wiring,
+            wiring: Wiring { feed: None, stray: Siemens::ZERO, ..setup.wiring },
         }
     }
 

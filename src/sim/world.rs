@@ -4,7 +4,7 @@ use super::draw::{Concern, Draw};
 use super::motion::{Motion, Sums};
 use super::{Setup, Truth};
 use crate::trace::Current;
-use crate::units::{Amps, Volts};
+use crate::units::{Amps, Celsius, Volts};
 use std::time::Duration;
 
 /// A board on its bench.
@@ -39,9 +39,9 @@ struct Means {
 impl World {
     /// A bench just switched on: output off and at zero volts, ammeter on its largest range.
     pub fn new(setup: &Setup) -> Self {
-        let range = setup.ammeter.largest();
+        let range = setup.ammeter.obeyed(setup.ammeter.largest());
         let mut world = Self {
-            motion: Motion::new(setup, setup.ammeter.ranges[range].burden.0),
+            motion: Motion::new(setup, setup.ammeter.burden(range)),
             setup: setup.clone(),
             now: Duration::ZERO,
             noise: Draw::new(setup.seed, Concern::MeterNoise),
@@ -52,6 +52,11 @@ impl World {
             range_changed: Duration::ZERO,
         };
         world.restart_supply();
+        if let Some(found) = setup.left_on {
+            world.set_volts(found.volts);
+            world.set_output(true);
+            world.motion.left_as(setup, found.board_on);
+        }
         world
     }
 
@@ -63,6 +68,9 @@ impl World {
     /// Lets time pass until `until`; does nothing when that is in the past.
     pub fn advance_to(&mut self, until: Duration) {
         if until > self.now {
+            if self.setup.supply.drift != 0.0 {
+                self.head_for_set();
+            }
             self.motion.advance_to(&self.setup, until.as_secs_f64());
             self.now = until;
         }
@@ -71,7 +79,14 @@ impl World {
     /// Sets the voltage, clipped to the supply's range and rounded to its step.
     pub fn set_volts(&mut self, volts: Volts) {
         self.set = self.setup.supply.kept(volts);
-        self.motion.head_for(&self.setup, self.setup.supply.true_output(self.set));
+        self.head_for_set();
+    }
+
+    /// Sends the output to where the supply takes the set-point to be at this moment.
+    fn head_for_set(&mut self) {
+        let supply = &self.setup.supply;
+        let goal = (supply.true_output(self.set) + supply.drift_at(self.now)).max(0.0);
+        self.motion.head_for(&self.setup, goal);
     }
 
     /// The voltage as the supply keeps it.
@@ -82,7 +97,7 @@ impl World {
     /// Sets the current limit, clipped to the supply's range.
     pub fn set_current_limit(&mut self, limit: Amps) {
         self.current_limit = self.setup.supply.kept_limit(limit);
-        self.motion.limit_current(&self.setup, self.current_limit.0);
+        self.motion.limit_current(&self.setup, self.setup.supply.true_limit(self.current_limit));
     }
 
     /// The current limit as the supply keeps it.
@@ -146,10 +161,11 @@ impl World {
     }
 
     fn use_range(&mut self, range: usize) {
+        let range = self.setup.ammeter.obeyed(range);
         if range != self.range {
             self.range = range;
             self.range_changed = self.now;
-            self.motion.put_in_line(&self.setup, self.setup.ammeter.ranges[range].burden.0);
+            self.motion.put_in_line(&self.setup, self.setup.ammeter.burden(range));
         }
     }
 
@@ -181,12 +197,17 @@ impl World {
     pub fn read_supply(&mut self, since: &Mark) -> (Volts, Amps) {
         let means = self.means(since);
         let volts = means.terminals + means.current * self.motion.series_resistance();
-        self.setup.supply.read_back(volts, means.current)
+        self.setup.supply.read_back(volts - self.setup.supply.drift_at(self.now), means.current)
     }
 
     /// What the board really is.
     pub fn truth(&self) -> Truth {
-        Truth::of(&self.setup.board, &self.setup.wiring)
+        Truth::of(&self.setup)
+    }
+
+    /// Temperature of the board, as a thermometer in the fixture would show it.
+    pub fn temperature(&self) -> Celsius {
+        self.setup.temperature
     }
 
     /// Whether the board's detector says at this moment that the board is on.
@@ -199,14 +220,30 @@ impl World {
         let aperture = self.now.saturating_sub(since.at);
         if aperture.is_zero() {
             let now = self.motion.instant(&self.setup);
-            return Means { terminals: now.terminals, current: now.current, load: now.load, aperture };
+            return self.with_hum(
+                since,
+                Means { terminals: now.terminals, current: now.current, load: now.load, aperture },
+            );
         }
         let (from, to, time) = (since.sums, self.motion.sums(), aperture.as_secs_f64());
-        Means {
+        let means = Means {
             terminals: (to.terminals - from.terminals) / time,
             current: (to.current - from.current) / time,
             load: (to.load - from.load) / time,
             aperture,
+        };
+        self.with_hum(since, means)
+    }
+
+    /// Adds what the averaging leaves of the mains hum; everything at the board follows it in proportion.
+    fn with_hum(&self, since: &Mark, means: Means) -> Means {
+        let Some(ripple) = self.setup.ripple.filter(|_| means.terminals > 0.0) else { return means };
+        let share = 1.0 + ripple.mean(since.at, self.now) / means.terminals;
+        Means {
+            terminals: means.terminals * share,
+            current: means.current * share,
+            load: means.load * share,
+            ..means
         }
     }
 }

@@ -27,6 +27,9 @@ fn no_turn_of_any_knob_breaks_the_laws() {
         for condition in Condition::ALL {
             let mut setup = silenced(Setup::new(&river_node(), condition, seed));
             setup.supply.overshoot = if seed % 2 == 0 { 0.0 } else { 0.03 };
+            // What comes in from elsewhere may flow out through the supply, and a supply may drift upwards.
+            let fed = setup.wiring.feed.map_or(Amps::ZERO, |feed| feed.source / feed.resistance);
+            let highest = 14.5 + setup.supply.drifted.0;
             let mut world = World::new(&setup);
             let mut hand = rand_chacha::ChaCha8Rng::seed_from_u64(seed);
             for step in 0..40 {
@@ -35,12 +38,12 @@ fn no_turn_of_any_knob_breaks_the_laws() {
                 let mark = world.mark();
                 wait(&mut world, 20);
                 let sense = world.read_sense(&mark).0;
-                assert!((-1e-6..14.5).contains(&sense), "{at}: {sense} V at the terminals");
+                assert!((-1e-6..highest).contains(&sense), "{at}: {sense} V at the terminals");
                 let load = world.read_load(&mark).0;
-                assert!(load.abs() <= 14.5, "{at}: {load} V at the load");
+                assert!(load.abs() <= highest, "{at}: {load} V at the load");
                 let (_, supplied) = world.read_supply(&mark);
                 let supplied = supplied - setup.supply.read_back_current_error;
-                assert!(supplied.0 > -1e-3, "{at}: {supplied} flows back");
+                assert!(supplied > -fed - Amps(1e-3), "{at}: {supplied} flows back");
                 let most = if world.output() { world.current_limit() } else { Amps(14.5 / 50.0) };
                 assert!(supplied <= most + Amps(1e-3), "{at}: {supplied} of at most {most}");
             }
