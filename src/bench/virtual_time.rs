@@ -45,6 +45,11 @@ impl VirtualBench {
         Self { faults, ..self }
     }
 
+    /// What it can do.
+    pub fn ability(&self) -> &Ability {
+        &self.ability
+    }
+
     /// The world behind the bench.
     pub fn world(&self) -> &World {
         &self.world

@@ -1,7 +1,7 @@
 //! The parameters of one board: detector, switch, currents and capacitors.
 
 use super::circuit::BODY_DIODE;
-use super::{LoadWiring, Polarity, Wiring, gate, wiring};
+use super::{LoadWiring, Polarity, Wiring, gate};
 use crate::units::{Amps, Farads, Ohms, Siemens, Volts};
 use std::time::Duration;
 
@@ -113,13 +113,14 @@ impl BoardModel {
     /// Resistance of what hangs behind the switch, a voltmeter of `voltmeter` siemens included.
     pub(super) fn load_resistance(&self, wiring: &Wiring, voltmeter: f64) -> f64 {
         match wiring.load {
-            LoadWiring::Connected | LoadWiring::LocksOut { .. } => 1.0 / (1.0 / self.load.0 + voltmeter),
+            LoadWiring::Connected | LoadWiring::LocksOut(_) => 1.0 / (1.0 / self.load.0 + voltmeter),
             LoadWiring::Lifted => 1.0 / voltmeter.max(1e-12),
         }
     }
 
     /// The currents at `volts` across the terminals, the load's capacitor settled.
-    pub(super) fn branches(&self, wiring: &Wiring, on: bool, voltmeter: f64, volts: f64) -> Branches {
+    pub(super) fn branches(&self, wiring: &Wiring, state: State, voltmeter: f64, volts: f64) -> Branches {
+        let on = state.on;
         let load = self.load_resistance(wiring, voltmeter);
         if wiring.polarity == Polarity::Reversed {
             let current = (volts - BODY_DIODE).max(0.0) / (load + self.on_resistance.0);
@@ -138,7 +139,7 @@ impl BoardModel {
         };
         let pull_up = if pull_up_conducts { volts / self.pull_up.0 } else { 0.0 };
         let (load_current, load_volts) = if self.closed(on) {
-            self.through_closed(wiring, load, volts)
+            self.through_closed(load, state.load_runs, volts)
         } else if wiring.load == LoadWiring::Lifted {
             (0.0, 0.0)
         } else {
@@ -153,17 +154,11 @@ impl BoardModel {
     }
 
     /// Current through a closed switch and the voltage behind it.
-    fn through_closed(&self, wiring: &Wiring, load: f64, volts: f64) -> (f64, f64) {
+    fn through_closed(&self, load: f64, running: bool, volts: f64) -> (f64, f64) {
         let tied = if self.switch == Switch::GateTied { gate::share(volts) } else { 1.0 };
-        let current = volts / (load + self.on_resistance.0) * tied;
-        match wiring.load {
-            // A load that has stopped leaves the whole voltage standing.
-            LoadWiring::LocksOut { below } => {
-                let current = current * wiring::running(below, volts);
-                (current, volts * tied - current * self.on_resistance.0)
-            }
-            _ => (current, current * load),
-        }
+        // A load that has stopped leaves the whole voltage standing.
+        let current = if running { volts / (load + self.on_resistance.0) * tied } else { 0.0 };
+        (current, if running { current * load } else { volts * tied })
     }
 
     fn deep_current(&self, volts: f64) -> f64 {
@@ -172,6 +167,15 @@ impl BoardModel {
         let from_middle = (volts - (from + to).0 / 2.0).abs();
         peak.0 * (1.0 - from_middle / half_width).max(0.0)
     }
+}
+
+/// What the board and its load are doing.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct State {
+    /// Whether the detector says that the board is on.
+    pub(super) on: bool,
+    /// Whether the load would draw its current.
+    pub(super) load_runs: bool,
 }
 
 /// The currents of a board at one voltage.

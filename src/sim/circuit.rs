@@ -4,13 +4,14 @@
 //! voltage at the load are straight lines in the voltage the supply regulates to, piece by piece. That makes every
 //! instant exact without small steps.
 
-use super::{BoardModel, Polarity, Switch, Wiring, gate};
+use super::board::State;
+use super::{BoardModel, Feed, Polarity, Switch, Wiring, gate};
 
 /// Forward voltage of the body diode, V; 0.8 V to 0.9 V is common practice for a power transistor.
 pub(super) const BODY_DIODE: f64 = 0.8;
 
 /// The most knots a board and its wiring have.
-const MOST_KNOTS: usize = 9;
+const MOST_KNOTS: usize = 7;
 
 /// The most pieces a circuit has: one up to each knot, the open end, and the current limit.
 const MOST_PIECES: usize = MOST_KNOTS + 2;
@@ -18,8 +19,8 @@ const MOST_PIECES: usize = MOST_KNOTS + 2;
 /// All that a solution depends on besides the board and its wiring.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub(super) struct Surroundings {
-    /// Whether the detector says that the board is on.
-    pub(super) on: bool,
+    /// What the board and its load are doing.
+    pub(super) state: State,
     /// Resistance of leads and ammeter, ohm.
     pub(super) series: f64,
     /// Conductance of the voltmeter at the terminals, S.
@@ -87,7 +88,7 @@ impl Circuit {
         };
         let mut circuit = Self { pieces: [open_end; MOST_PIECES], count: 0 };
         let point = |volts: f64| {
-            let branches = board.branches(wiring, around.on, around.load_voltmeter, volts);
+            let branches = board.branches(wiring, around.state, around.load_voltmeter, volts);
             let current = branches.beside + branches.load_current + volts * around.voltmeter;
             Point { volts, current, load: branches.load_volts, e: volts + current * around.series }
         };
@@ -160,13 +161,13 @@ fn knots(board: &BoardModel, wiring: &Wiring) -> [f64; MOST_KNOTS] {
     let none = f64::INFINITY;
     let mut knots = [none; MOST_KNOTS];
     knots[0] = if wiring.polarity == Polarity::Reversed { BODY_DIODE } else { board.lowest_operating() };
-    knots[1..4].copy_from_slice(&wiring.knots());
+    knots[1] = wiring.feed.map_or(none, Feed::open_voltage);
     if wiring.polarity == Polarity::Right {
         if let Some(deep) = board.deep_conduction {
-            knots[4..7].copy_from_slice(&[deep.from.0, (deep.from.0 + deep.to.0) / 2.0, deep.to.0]);
+            knots[2..5].copy_from_slice(&[deep.from.0, (deep.from.0 + deep.to.0) / 2.0, deep.to.0]);
         }
         if board.switch == Switch::GateTied {
-            knots[7..9].copy_from_slice(&gate::TIED);
+            knots[5..7].copy_from_slice(&gate::TIED);
         }
     }
     // The usual board has one knot, and it stands first.

@@ -55,7 +55,7 @@ pub enum Condition {
     MeterReversed,
     /// The ammeter has no range for microamperes.
     CoarseAmmeter,
-    /// The ammeter stays on its smallest range.
+    /// The relay of the ammeter's ranges hangs on the smallest.
     StuckRange,
     /// The ammeter's fuse is blown.
     BlownFuse,
@@ -196,7 +196,7 @@ impl Condition {
             }
             Self::MeterReversed => ("meter-reversed", "ammeter connected the wrong way round"),
             Self::CoarseAmmeter => ("coarse-ammeter", "ammeter without a range for the off current"),
-            Self::StuckRange => ("stuck-range", "ammeter that stays on its smallest range"),
+            Self::StuckRange => ("stuck-range", "ammeter whose relay hangs on its smallest range"),
             Self::BlownFuse => {
                 ("blown-fuse", "blown fuse in the ammeter: no current, readings of exactly zero")
             }

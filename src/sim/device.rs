@@ -153,8 +153,12 @@ impl Device {
     /// limited, bit 9 after over-voltage protection has switched off.
     fn look_at(&mut self, world: &SharedWorld) {
         if self.kind.is_source() {
-            let (limited, tripped) = world.with(|world| (world.limited(), world.over_voltage_tripped()));
-            self.status.questionable.update(u16::from(limited) | u16::from(tripped) << 9);
+            let (limited, was_limited, tripped) =
+                world.with(|world| (world.limited(), world.take_was_limited(), world.over_voltage_tripped()));
+            let tripped = u16::from(tripped) << 9;
+            // The event register catches what comes and goes between two messages.
+            self.status.questionable.update(u16::from(was_limited) | tripped);
+            self.status.questionable.update(u16::from(limited) | tripped);
         }
     }
 }

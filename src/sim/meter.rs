@@ -42,7 +42,7 @@ pub struct AmmeterModel {
     pub reversed: bool,
     /// Whether its fuse is blown: the path is open, and it reads exactly nothing.
     pub fuse_blown: bool,
-    /// Index of the range it stays on whatever it is told, where it does.
+    /// Index of the range on which its relay hangs whatever it is told and says, where it does.
     pub stuck_on: Option<usize>,
 }
 
@@ -117,11 +117,11 @@ impl AmmeterModel {
 
     /// Resistance in the board's supply line on a range, ohm.
     pub(super) fn burden(&self, range: usize) -> f64 {
-        if self.fuse_blown { OPEN } else { self.ranges[range].burden.0 }
+        if self.fuse_blown { OPEN } else { self.ranges[self.true_range(range)].burden.0 }
     }
 
-    /// The range it is on when told to take another.
-    pub(super) fn obeyed(&self, range: usize) -> usize {
+    /// The range it is really on while it says that it is on this one.
+    pub(super) fn true_range(&self, range: usize) -> usize {
         self.stuck_on.unwrap_or(range)
     }
 
@@ -138,7 +138,7 @@ impl AmmeterModel {
             return Current::Value(Amps::ZERO);
         }
         let mean = if self.reversed { -mean } else { mean };
-        let range = &self.ranges[range].meter;
+        let range = &self.ranges[self.true_range(range)].meter;
         let constants = RANGE_SETTLE_CONSTANTS / self.range_settle.as_secs_f64().max(1e-9);
         let disturbance = RANGE_CHANGE_ERROR * range.full_scale * (-settled.as_secs_f64() * constants).exp();
         if !range.holds(mean) {

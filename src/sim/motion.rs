@@ -5,10 +5,12 @@
 //! while the load's capacitor charges against the current limit and while noise can cross a moving threshold.
 
 use super::Setup;
-use super::circuit::{Circuit, Piece, Surroundings};
+use super::board::State;
+use super::circuit::{Circuit, Line, Piece, Surroundings};
 use super::contact::Contact;
 use super::course::Course;
 use super::detector::Detector;
+use super::lockout::LoadState;
 use super::output::{Output, STILL};
 
 /// How far beyond an edge the output is put when it passes one, V: clear of rounding, far below any reading.
@@ -57,20 +59,23 @@ pub(super) struct Motion {
     surroundings: Surroundings,
     burden: f64,
     contact: Option<Contact>,
+    load: LoadState,
     limit: f64,
     over_voltage: f64,
     over_voltage_tripped: bool,
     load_volts: f64,
     load_resistance: f64,
     charging: bool,
+    was_limited: bool,
     sums: Sums,
 }
 
 impl Motion {
     /// A bench at rest with its output off.
     pub(super) fn new(setup: &Setup, burden: f64) -> Self {
+        let load = LoadState::new(setup.wiring.lockout());
         let surroundings = Surroundings {
-            on: false,
+            state: State { on: false, load_runs: load.running() },
             series: setup.wiring.lead_resistance.0 + burden,
             voltmeter: setup.voltmeter.input_conductance().0,
             load_voltmeter: setup.load_voltmeter.input_conductance().0,
@@ -83,6 +88,7 @@ impl Motion {
             circuit: Circuit::solve(&setup.board, &setup.wiring, &surroundings),
             surroundings,
             burden,
+            load,
             contact: setup.wiring.bad_contact.map(|bad| Contact::new(bad, setup.seed)),
             limit: setup.supply.max_current.0,
             over_voltage: f64::INFINITY,
@@ -90,6 +96,7 @@ impl Motion {
             load_volts: 0.0,
             load_resistance: setup.board.load_resistance(&setup.wiring, surroundings.load_voltmeter),
             charging: false,
+            was_limited: false,
             sums: Sums::default(),
         }
     }
@@ -160,6 +167,11 @@ impl Motion {
         self.charging || self.piece().limited
     }
 
+    /// Whether it has done so since this was last asked.
+    pub(super) fn take_was_limited(&mut self) -> bool {
+        std::mem::take(&mut self.was_limited) || self.limited()
+    }
+
     /// Whether the detector says that the board is on.
     pub(super) fn board_on(&self) -> bool {
         self.detector.on()
@@ -190,7 +202,7 @@ impl Motion {
 
     /// Solves the circuit for the present state.
     fn solve(&mut self, setup: &Setup) {
-        self.surroundings.on = self.detector.on();
+        self.surroundings.state = State { on: self.detector.on(), load_runs: self.load.running() };
         self.surroundings.limit = if self.output.on { self.limit } else { f64::INFINITY };
         self.circuit = Circuit::solve(&setup.board, &setup.wiring, &self.surroundings);
         self.charging = setup.board.closed(self.detector.on()) && self.charge_is_limited(setup);
@@ -225,6 +237,9 @@ impl Motion {
         if !self.charging && setup.board.closed(self.detector.on()) {
             self.load_volts = self.piece().load.at(self.output.volts);
         }
+        if self.load.change_at(self.now, self.load_volts) {
+            return self.solve(setup);
+        }
         self.detector.look(self.now, self.instant(setup).terminals);
     }
 
@@ -233,6 +248,7 @@ impl Motion {
         let from = self.output.volts;
         let (piece, lower) = self.circuit.piece_at(from);
         let piece = *piece;
+        self.was_limited |= self.charging || piece.limited;
         let (course, end) = self.output.course(&piece);
         let mut time = until - self.now;
         if let Some(due) = self.detector.due() {
@@ -240,6 +256,9 @@ impl Motion {
         }
         if let Some(contact) = &self.contact {
             time = time.min((contact.due() - self.now).max(0.0));
+        }
+        if let Some(rested) = self.load.rested(self.now) {
+            time = time.min(rested - self.now);
         }
         if self.charging {
             return self.charge(setup, course, time);
@@ -250,10 +269,13 @@ impl Motion {
             time = time.min(move_time).min(self.detector.time_to_crossing(crossings));
         }
         let mut to = course.after(from, time);
-        let [near, far] = self.detector.edges().map(|volts| {
-            (piece.terminals.slope > 0.0).then(|| (volts - piece.terminals.offset) / piece.terminals.slope)
-        });
-        let edges = [Some(piece.upto), Some(lower), end, near, far, Some(self.over_voltage)];
+        let [near, far] = self.detector.edges().map(|volts| crossing(&piece.terminals, volts));
+        let load = self
+            .load
+            .edge()
+            .filter(|_| setup.board.closed(self.detector.on()))
+            .and_then(|volts| crossing(&piece.load, volts));
+        let edges = [Some(piece.upto), Some(lower), end, near, far, load, Some(self.over_voltage)];
         if let Some(beyond) = nearest_passed(from, to, edges) {
             time = time.min(course.time_between(from, beyond).max(0.0));
             to = beyond;
@@ -316,6 +338,11 @@ impl Motion {
         self.now += time;
         self.charging = self.charge_is_limited(setup);
     }
+}
+
+/// Where a rising line comes to `volts`.
+fn crossing(line: &Line, volts: f64) -> Option<f64> {
+    (line.slope > 0.0).then(|| (volts - line.offset) / line.slope)
 }
 
 /// The nearest edge that lies between `from` and `to`, with a little beyond it.

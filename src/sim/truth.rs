@@ -1,5 +1,6 @@
 //! What a simulated board really is, to hold measurements against.
 
+use super::board::State;
 use super::{BoardModel, Setup, Wiring};
 use crate::units::{Amps, Celsius, Siemens, Volts};
 use std::time::Duration;
@@ -55,7 +56,7 @@ impl Truth {
     }
 
     fn current(&self, on: bool, at: Volts) -> Amps {
-        let branches = self.board.branches(&self.wiring, on, 0.0, at.0);
+        let branches = self.board.branches(&self.wiring, State { on, load_runs: true }, 0.0, at.0);
         Amps(branches.beside + branches.load_current)
     }
 }

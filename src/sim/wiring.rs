@@ -1,7 +1,7 @@
 //! How the board is connected to the bench.
 
-use super::Feed;
-use crate::units::{Ohms, Siemens, Volts};
+use super::{Feed, Lockout};
+use crate::units::{Ohms, Siemens};
 
 /// The leads between supply and board, and what hangs on the board.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -28,10 +28,7 @@ pub enum LoadWiring {
     /// Nothing: a loose or forgotten lead.
     Lifted,
     /// A load that stops by itself.
-    LocksOut {
-        /// The voltage below which it draws nothing.
-        below: Volts,
-    },
+    LocksOut(Lockout),
 }
 
 /// Which way round the board is connected.
@@ -42,9 +39,6 @@ pub enum Polarity {
     /// Plus to minus: the body diode of the switch conducts through the load.
     Reversed,
 }
-
-/// Within so much a load goes from its full current to none, V.
-const LOCKOUT_WIDTH: f64 = 2e-3;
 
 impl Wiring {
     /// Nothing but the load, the right way round, on leads of this resistance.
@@ -64,17 +58,11 @@ impl Wiring {
         self.feed.map_or(0.0, |feed| feed.current(volts))
     }
 
-    /// Voltages at the terminals where what is connected may bend the characteristic; infinite where nothing does.
-    pub(super) fn knots(&self) -> [f64; 3] {
-        let fed = self.feed.map_or(f64::INFINITY, |feed| feed.open_voltage());
+    /// The lockout of the load, where it has one.
+    pub(super) fn lockout(&self) -> Option<Lockout> {
         match self.load {
-            LoadWiring::LocksOut { below } => [fed, below.0 - LOCKOUT_WIDTH, below.0],
-            _ => [fed, f64::INFINITY, f64::INFINITY],
+            LoadWiring::LocksOut(lockout) => Some(lockout),
+            LoadWiring::Connected | LoadWiring::Lifted => None,
         }
     }
-}
-
-/// Share of its current that a load with a lockout draws at `volts`.
-pub(super) fn running(below: Volts, volts: f64) -> f64 {
-    ((volts - below.0) / LOCKOUT_WIDTH + 1.0).clamp(0.0, 1.0)
 }

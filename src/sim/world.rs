@@ -39,7 +39,7 @@ struct Means {
 impl World {
     /// A bench just switched on: output off and at zero volts, ammeter on its largest range.
     pub fn new(setup: &Setup) -> Self {
-        let range = setup.ammeter.obeyed(setup.ammeter.largest());
+        let range = setup.ammeter.largest();
         let mut world = Self {
             motion: Motion::new(setup, setup.ammeter.burden(range)),
             setup: setup.clone(),
@@ -136,6 +136,11 @@ impl World {
         self.motion.limited()
     }
 
+    /// Whether the supply has limited the current since this was last asked, however briefly.
+    pub fn take_was_limited(&mut self) -> bool {
+        self.motion.take_was_limited()
+    }
+
     /// What a power cut leaves: output off, everything set forgotten. The capacitors keep their charge.
     pub fn restart_supply(&mut self) {
         self.set_output(false);
@@ -150,7 +155,7 @@ impl World {
         self.range()
     }
 
-    /// Full scale of the ammeter's range.
+    /// Full scale of the range that the ammeter says it is on.
     pub fn range(&self) -> Amps {
         Amps(self.setup.ammeter.ranges[self.range].meter.full_scale)
     }
@@ -161,7 +166,6 @@ impl World {
     }
 
     fn use_range(&mut self, range: usize) {
-        let range = self.setup.ammeter.obeyed(range);
         if range != self.range {
             self.range = range;
             self.range_changed = self.now;

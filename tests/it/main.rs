@@ -1,5 +1,6 @@
 //! Integration tests, a module per theme.
 
+mod cases;
 mod circuit;
 #[cfg(unix)]
 mod cli;

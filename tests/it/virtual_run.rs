@@ -2,7 +2,7 @@
 
 use ebbmark::analysis::analyse;
 use ebbmark::bench::{VirtualBench, drive, run_ready};
-use ebbmark::procedure::{Plan, Procedure};
+use ebbmark::procedure::{Ability, Plan, Procedure};
 use ebbmark::profile::{Profile, QuantityName};
 use ebbmark::sim::{Condition, Faults, Setup, Truth};
 use ebbmark::trace::Trace;
@@ -44,7 +44,12 @@ pub(crate) fn run(profile: &Profile, condition: Condition, seed: u64) -> Run {
 
 /// Tests the board of `setup`.
 pub(crate) fn run_setup(profile: &Profile, setup: &Setup) -> Run {
-    let mut bench = VirtualBench::new(setup, setup.ability());
+    run_able(profile, setup, setup.ability())
+}
+
+/// Tests the board of `setup` on a bench that can do this.
+pub(crate) fn run_able(profile: &Profile, setup: &Setup, ability: Ability) -> Run {
+    let mut bench = VirtualBench::new(setup, ability);
     let trace = run_on(profile, setup, &mut bench);
     let verdict = judge(&analyse(&trace, profile), profile, &trace.ending);
     Run { trace, verdict, truth: bench.world().truth() }
@@ -61,6 +66,6 @@ pub(crate) fn faulty_run(profile: &Profile, condition: Condition, seed: u64) -> 
 }
 
 fn run_on(profile: &Profile, setup: &Setup, bench: &mut VirtualBench) -> Trace {
-    let procedure = Procedure::new(Plan::new(profile, &setup.ability()));
+    let procedure = Procedure::new(Plan::new(profile, bench.ability()));
     run_ready(drive(procedure, bench, setup.claims(), &mut (), std::future::pending()))
 }

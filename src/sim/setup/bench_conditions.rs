@@ -4,7 +4,7 @@ use super::{LeftOn, Setup};
 use crate::sim::device::Kind;
 use crate::sim::draw::Draw;
 use crate::sim::link_faults::{Effect, Lasting, LinkFault, When};
-use crate::sim::{Condition, Feed, LoadWiring, Polarity, Ripple};
+use crate::sim::{Condition, Feed, LoadWiring, Lockout, Polarity, Ripple};
 use crate::units::{Amps, Ohms, Siemens, Volts};
 use std::time::Duration;
 
@@ -25,6 +25,10 @@ const MAINS: f64 = 50.0;
 
 /// Drift of a supply in a minute, as a share of the trip voltage.
 const DRIFT: f64 = 5e-3 / 3.0;
+
+/// Where a load stops and starts by itself, as shares of the hysteresis above the trip; the gap is more than what the
+/// leads drop.
+const LOCKOUT: [f64; 2] = [2.0 / 3.0, 4.0 / 3.0];
 
 /// What an open sense lead adds to the output of one class of supplies.
 const SENSE_HIGH: f64 = 0.05;
@@ -62,7 +66,8 @@ pub(super) fn apply(condition: Condition, setup: &mut Setup, draw: &mut Draw) {
             setup.wiring.bad_contact = Some(board.hysteresis * CONTACT_DROP / load_current);
         }
         Condition::LoadLockout => {
-            setup.wiring.load = LoadWiring::LocksOut { below: board.trip + board.hysteresis * (2.0 / 3.0) };
+            let [stops, starts] = LOCKOUT.map(|share| board.trip + board.hysteresis * share);
+            setup.wiring.load = LoadWiring::LocksOut(Lockout { stops, starts });
         }
         Condition::BackFeed => setup.wiring.feed = Some(CHARGER),
         Condition::UnstatedVoltmeter => setup.wiring.stray = SECOND_VOLTMETER,

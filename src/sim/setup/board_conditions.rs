@@ -2,6 +2,7 @@
 
 use super::Setup;
 use crate::profile::{Profile, QuantityName};
+use crate::sim::board::State;
 use crate::sim::draw::Draw;
 use crate::sim::good_board::window;
 use crate::sim::{Condition, DeepConduction, Switch};
@@ -69,7 +70,7 @@ pub(super) fn apply(condition: Condition, setup: &mut Setup, profile: &Profile, 
         Condition::FluxFilm => {
             let at = profile.limits.get(&QuantityName::OffCurrent).and_then(|limit| limit.at);
             let at = at.map_or(board.trip.0, |volts| volts.0);
-            let flows = board.branches(&setup.wiring, false, 0.0, at);
+            let flows = board.branches(&setup.wiring, State { on: false, load_runs: true }, 0.0, at);
             let flows = flows.beside + flows.load_current;
             let most = limits(QuantityName::OffCurrent).map_or(2.0 * flows, |(_, max)| max);
             board.leakage_conductance =
