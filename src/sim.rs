@@ -23,6 +23,7 @@ mod lockout;
 mod meter;
 mod motion;
 mod output;
+mod passing;
 mod ripple;
 mod setup;
 mod shared_world;

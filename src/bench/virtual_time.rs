@@ -2,7 +2,8 @@
 
 use super::Bench;
 use crate::procedure::{Ability, Action, Event};
-use crate::sim::link_faults::LinkFault;
+use crate::sim::device::Kind;
+use crate::sim::link_faults::LinkFaults;
 use crate::sim::{Faults, Mishap, Setup, World};
 use crate::trace::{BenchFault, FaultKind, Sample};
 use crate::units::{Quantity, Volts};
@@ -23,8 +24,9 @@ pub struct VirtualBench {
     ability: Ability,
     integration: Duration,
     faults: Faults,
-    /// What befalls the first action after a time, once each.
-    scripted: Vec<(Duration, Mishap)>,
+    link: LinkFaults,
+    /// Messages that would have been sent.
+    messages: u64,
 }
 
 impl VirtualBench {
@@ -35,7 +37,8 @@ impl VirtualBench {
             ability,
             integration: setup.ammeter.integration.max(setup.voltmeter.integration),
             faults: Faults::none(),
-            scripted: setup.link_faults.iter().filter_map(LinkFault::mishap).collect(),
+            link: LinkFaults::new(setup.link_faults.clone()),
+            messages: 0,
         }
     }
 
@@ -70,7 +73,7 @@ impl VirtualBench {
         // A pause asks nothing of any instrument.
         let mishap = match action {
             Action::WaitUntil(_) => None,
-            _ => self.due().or_else(|| self.faults.strike()),
+            _ => self.befalls(action).or_else(|| self.faults.strike()),
         };
         match mishap {
             None => self.obey(action, end),
@@ -87,11 +90,18 @@ impl VirtualBench {
         }
     }
 
-    /// Takes a scripted mishap whose time has come.
-    fn due(&mut self) -> Option<Mishap> {
-        let now = self.now();
-        let due = self.scripted.iter().position(|(at, _)| *at <= now)?;
-        Some(self.scripted.swap_remove(due).1)
+    /// What would befall the message that carries an action out over a line.
+    fn befalls(&mut self, action: &Action) -> Option<Mishap> {
+        let (instrument, text) = match action {
+            Action::Read => (Kind::Ammeter, "READ?"),
+            Action::SetVolts(_) => (Kind::Supply, "VOLT "),
+            Action::OutputOn | Action::OutputOff => (Kind::Supply, "OUTP "),
+            Action::Range(_) => (Kind::Ammeter, "CURR:RANG "),
+            Action::Protect { .. } | Action::LimitCurrent(_) => (Kind::Supply, "CURR "),
+            Action::WaitUntil(_) | Action::Finish(_) => return None,
+        };
+        self.messages += 1;
+        self.link.next(instrument, self.messages, text, self.world.now())?.mishap()
     }
 
     /// When an action without faults is over.

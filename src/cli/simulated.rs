@@ -72,7 +72,8 @@ impl Simulation {
         simulated: &Simulated,
         arrangement: Arrangement,
     ) -> Result<SimulatedBench, Failure> {
-        let setup = Setup::with(profile, &self.condition, simulated.seed);
+        let mut setup = Setup::with(profile, &self.condition, simulated.seed);
+        setup.link_faults = setup.link_faults.into_iter().map(|fault| fault.at_speed(self.speed)).collect();
         let options = Options { arrangement, clock: Clock::faster(self.speed), ..Options::default() };
         Ok(SimulatedBench::start(&setup, options).context("the simulated bench cannot be started")?)
     }

@@ -4,7 +4,7 @@
 //! nothing but SCPI goes over them. The world behind stays readable, so that a test can see what is really the case.
 
 use super::device::{Device, Kind};
-use super::link_faults::{LinkFault, LinkFaults};
+use super::link_faults::{LinkFault, LinkFaults, When};
 use super::terminal::{Exchange, Pace, Terminal};
 use super::{Setup, SharedWorld, SimulationClock, World, lock};
 use crate::clock::Clock;
@@ -191,7 +191,7 @@ impl SimulatedBench {
 }
 
 impl Arrangement {
-    /// The same fault of the instrument that plays the part here.
+    /// The same fault of the instrument that plays the part here, and of the message that does.
     fn befalls(self, fault: &LinkFault) -> LinkFault {
         let instrument = match (self, fault.instrument) {
             (Self::SourceMeasureUnit, Kind::Supply | Kind::Ammeter | Kind::Voltmeter) => {
@@ -199,7 +199,13 @@ impl Arrangement {
             }
             (_, instrument) => instrument,
         };
-        LinkFault { instrument, ..fault.clone() }
+        let when = match (instrument, &fault.when) {
+            (Kind::SourceMeasureUnit, When::Nth(number, text)) if text == "READ?" => {
+                When::Nth(*number, "MEAS:CURR?".to_owned())
+            }
+            (_, when) => when.clone(),
+        };
+        LinkFault { instrument, when, ..fault.clone() }
     }
 
     fn kinds(self) -> &'static [Kind] {
@@ -222,6 +228,24 @@ impl Entry {
             }
         };
         Self { name, definition, roles }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::sim::link_faults::{Effect, Lasting};
+
+    #[test]
+    fn what_befalls_a_meter_befalls_the_unit_that_stands_in_its_place() {
+        let befallen = |arrangement: Arrangement, instrument| {
+            let when = When::Message(1);
+            let fault = LinkFault { instrument, when, lasting: Lasting::Once, effect: Effect::NoReply };
+            arrangement.befalls(&fault).instrument
+        };
+        assert_eq!(befallen(Arrangement::Separate, Kind::Ammeter), Kind::Ammeter);
+        assert_eq!(befallen(Arrangement::SourceMeasureUnit, Kind::Ammeter), Kind::SourceMeasureUnit);
+        assert_eq!(befallen(Arrangement::SourceMeasureUnit, Kind::LoadVoltmeter), Kind::LoadVoltmeter);
     }
 }
 

@@ -25,6 +25,8 @@ pub enum When {
     Message(u64),
     /// The first message that contains this text, in any case.
     Containing(String),
+    /// The message with this number, the first being 1, among those that contain this text, in any case.
+    Nth(u64, String),
     /// The first message after this simulated time since the bench was switched on.
     After(Duration),
 }
@@ -64,17 +66,30 @@ pub enum Effect {
 }
 
 impl LinkFault {
-    /// What a bench makes of it that carries actions out without text, and from when on; `None` for faults that need the
-    /// text.
-    pub fn mishap(&self) -> Option<(Duration, Mishap)> {
-        let When::After(at) = self.when else { return None };
-        let mishap = match self.effect {
-            Effect::NoReply | Effect::LateReply(_) => Mishap::ReplyLost(FaultKind::NoReply),
-            Effect::CutReply(_) | Effect::Garbage(_) => Mishap::ReplyLost(FaultKind::BadReply),
-            Effect::Restart(_) => Mishap::CommandLost(FaultKind::Restarted),
-            _ => return None,
-        };
-        Some((at, mishap))
+    /// The same fault for a bench whose time runs `speed` times faster than that of the program, which waits on the wall
+    /// clock for a reply.
+    #[must_use]
+    pub fn at_speed(mut self, speed: f64) -> Self {
+        match &mut self.effect {
+            Effect::LateReply(by) | Effect::CutReply(by) | Effect::Restart(by) => *by = by.mul_f64(speed),
+            _ => {}
+        }
+        self
+    }
+}
+
+impl Effect {
+    /// What a bench makes of it that carries actions out without text; `None` where only the text shows it.
+    pub fn mishap(&self) -> Option<Mishap> {
+        match self {
+            Self::NoReply | Self::LateReply(_) => Some(Mishap::ReplyLost(FaultKind::NoReply)),
+            Self::CutReply(_) | Self::Garbage(_) => Some(Mishap::ReplyLost(FaultKind::BadReply)),
+            Self::Swallow => Some(Mishap::CommandLost(FaultKind::NoReply)),
+            Self::Refuse(_) => Some(Mishap::CommandLost(FaultKind::InstrumentError)),
+            Self::Restart(_) => Some(Mishap::CommandLost(FaultKind::Restarted)),
+            Self::HangUp => Some(Mishap::CommandLost(FaultKind::LinkLost)),
+            Self::Echo | Self::Identity(_) => None,
+        }
     }
 }
 
@@ -95,7 +110,7 @@ impl LinkFaults {
 
     /// What befalls the message with this number and text, received at this simulated time.
     pub fn next(&mut self, instrument: Kind, number: u64, text: &str, at: Duration) -> Option<Effect> {
-        let index = self.0.iter().position(|fault| {
+        let index = self.0.iter_mut().position(|fault| {
             fault.instrument == instrument && fault.when.is_now(fault.lasting, number, text, at)
         })?;
         match self.0[index].lasting {
@@ -106,16 +121,24 @@ impl LinkFaults {
 }
 
 impl When {
-    fn is_now(&self, lasting: Lasting, number: u64, text: &str, at: Duration) -> bool {
+    fn is_now(&mut self, lasting: Lasting, number: u64, text: &str, at: Duration) -> bool {
         match self {
             Self::Message(wanted) => match lasting {
                 Lasting::Once => number == *wanted,
                 Lasting::Always => number >= *wanted,
             },
-            Self::Containing(part) => text.to_ascii_uppercase().contains(&part.to_ascii_uppercase()),
+            Self::Containing(part) => contains(text, part),
+            Self::Nth(left, part) => {
+                *left = left.saturating_sub(u64::from(contains(text, part)));
+                *left == 0
+            }
             Self::After(time) => at >= *time,
         }
     }
+}
+
+fn contains(text: &str, part: &str) -> bool {
+    text.to_ascii_uppercase().contains(&part.to_ascii_uppercase())
 }
 
 #[cfg(test)]
@@ -141,6 +164,14 @@ mod tests {
         assert_eq!(next(&mut faults, 1, "VOLT 5", 0), None);
         assert_eq!(next(&mut faults, 2, "VOLT?", 0), Some(Effect::NoReply));
         assert_eq!(next(&mut faults, 3, "VOLT?", 0), None);
+    }
+
+    #[test]
+    fn a_fault_may_wait_for_one_of_many_messages_of_a_kind() {
+        let when = When::Nth(2, "volt ".to_owned());
+        let mut faults = LinkFaults::new(vec![fault(when, Lasting::Once, Effect::NoReply)]);
+        let befallen = ["VOLT 5", "VOLT?", "VOLT 4", "VOLT 3"].map(|text| next(&mut faults, 1, text, 0));
+        assert_eq!(befallen, [None, None, Some(Effect::NoReply), None]);
     }
 
     #[test]

@@ -62,9 +62,9 @@ mod tests {
 
     #[test]
     fn between_its_voltages_a_load_does_what_it_did_before() {
-        let mut load = LoadState::new(Some(Lockout { stops: Volts(3.10), starts: Volts(3.14) }));
+        let mut load = LoadState::new(Some(Lockout { stops: Volts(3.10), starts: Volts(3.16) }));
         let mut now = 0.0;
-        let states = [3.12, 3.15, 3.12, 3.09, 3.12].map(|volts| {
+        let states = [3.12, 3.17, 3.12, 3.09, 3.12].map(|volts| {
             now += 0.01;
             load.change_at(now, volts);
             load.running()

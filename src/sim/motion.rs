@@ -6,15 +6,13 @@
 
 use super::Setup;
 use super::board::State;
-use super::circuit::{Circuit, Line, Piece, Surroundings};
+use super::circuit::{Circuit, Piece, Surroundings};
 use super::contact::Contact;
 use super::course::Course;
 use super::detector::Detector;
 use super::lockout::LoadState;
 use super::output::{Output, STILL};
-
-/// How far beyond an edge the output is put when it passes one, V: clear of rounding, far below any reading.
-const STEP_OVER: f64 = STILL / 2.0;
+use super::passing::{crossing, nearest_passed};
 
 /// How far the supply's voltage may move, V, while the load's capacitor is charged as if it stood still: a thousandth of
 /// a charge.
@@ -338,22 +336,4 @@ impl Motion {
         self.now += time;
         self.charging = self.charge_is_limited(setup);
     }
-}
-
-/// Where a rising line comes to `volts`.
-fn crossing(line: &Line, volts: f64) -> Option<f64> {
-    (line.slope > 0.0).then(|| (volts - line.offset) / line.slope)
-}
-
-/// The nearest edge that lies between `from` and `to`, with a little beyond it.
-fn nearest_passed<const N: usize>(from: f64, to: f64, edges: [Option<f64>; N]) -> Option<f64> {
-    let direction = (to - from).signum();
-    let way = (to - from).abs();
-    edges
-        .into_iter()
-        .flatten()
-        .map(|edge| (edge - from) * direction)
-        .filter(|distance| *distance >= 0.0 && distance + STEP_OVER < way)
-        .min_by(f64::total_cmp)
-        .map(|distance| from + direction * (distance + STEP_OVER))
 }

@@ -13,6 +13,7 @@ mod log;
 mod nine_volt;
 #[cfg(unix)]
 mod outside_parser;
+mod relay;
 mod report;
 mod river;
 mod run;

@@ -3,6 +3,8 @@
 #![expect(clippy::expect_used, reason = "a test that cannot be set up has failed")]
 
 mod bench;
+mod bench_trouble;
+mod board_trouble;
 mod circuit;
 mod class;
 mod conditions;

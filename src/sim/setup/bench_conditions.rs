@@ -42,8 +42,14 @@ const CHARGER: Feed = Feed { source: Volts(5.0), resistance: Ohms(100.0) };
 /// Input of a common voltmeter.
 const SECOND_VOLTMETER: Siemens = Siemens(1.0 / 10e6);
 
-/// When something happens to a run, s after the bench was switched on.
-const MID_RUN: (f64, f64) = (1.5, 4.0);
+/// Which of a run's messages of one kind something happens to.
+const MID_RUN: (f64, f64) = (8.0, 25.0);
+
+/// Begins a reading of the ammeter.
+const READ: &str = "READ?";
+
+/// Sets the supply's voltage.
+const SET_VOLTS: &str = "VOLT ";
 
 /// How late a reply comes that comes too late.
 const LATE: Duration = Duration::from_millis(1200);
@@ -97,14 +103,14 @@ pub(super) fn apply(condition: Condition, setup: &mut Setup, draw: &mut Draw) {
         }
         Condition::StuckRange => setup.ammeter.stuck_on = Some(0),
         Condition::BlownFuse => setup.ammeter.fuse_blown = true,
-        Condition::LateReply => fail_once(setup, Kind::Ammeter, Effect::LateReply(LATE), draw),
-        Condition::CutReply => fail_once(setup, Kind::Ammeter, Effect::CutReply(LATE), draw),
-        Condition::SupplyRestart => fail_once(setup, Kind::Supply, Effect::Restart(AWAY), draw),
+        Condition::LateReply => fail_once(setup, Kind::Ammeter, READ, Effect::LateReply(LATE), draw),
+        Condition::CutReply => fail_once(setup, Kind::Ammeter, READ, Effect::CutReply(LATE), draw),
+        Condition::SupplyRestart => fail_once(setup, Kind::Supply, SET_VOLTS, Effect::Restart(AWAY), draw),
         _ => {}
     }
 }
 
-fn fail_once(setup: &mut Setup, instrument: Kind, effect: Effect, draw: &mut Draw) {
-    let when = When::After(Duration::from_secs_f64(draw.in_window(MID_RUN)));
+fn fail_once(setup: &mut Setup, instrument: Kind, message: &str, effect: Effect, draw: &mut Draw) {
+    let when = When::Nth(draw.in_window(MID_RUN) as u64, message.to_owned());
     setup.link_faults.push(LinkFault { instrument, when, lasting: Lasting::Once, effect });
 }

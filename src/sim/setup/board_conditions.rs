@@ -73,8 +73,7 @@ pub(super) fn apply(condition: Condition, setup: &mut Setup, profile: &Profile, 
             let flows = board.branches(&setup.wiring, State { on: false, load_runs: true }, 0.0, at);
             let flows = flows.beside + flows.load_current;
             let most = limits(QuantityName::OffCurrent).map_or(2.0 * flows, |(_, max)| max);
-            board.leakage_conductance =
-                board.leakage_conductance + Siemens((most - flows).max(0.0) * FILM / at);
+            board.leakage_conductance += Siemens((most - flows).max(0.0) * FILM / at);
         }
         Condition::LowPullUp => board.pull_up = board.pull_up / 10.0,
         Condition::HighPullUp => {

@@ -1,6 +1,6 @@
 //! What a case is, and whether a run came out as it should.
 
-use super::relay_board;
+use crate::relay;
 use crate::virtual_run::{Run, run_able};
 use ebbmark::procedure::Ability;
 use ebbmark::sim::{Condition, Setup};
@@ -83,8 +83,8 @@ impl Case {
 
     /// Tests its board.
     pub(super) fn run(&self, seed: u64) -> Run {
-        let profile = relay_board::profile(self.limits);
-        let mut setup = relay_board::in_order(seed).under(self.conditions, &profile);
+        let profile = relay::profile(self.limits);
+        let mut setup = relay::in_order(seed).under(self.conditions, &profile);
         (self.figures)(&mut setup);
         let mut ability = setup.ability();
         (self.bench)(&mut ability);

@@ -186,6 +186,33 @@ fn a_reader_that_went_away_is_no_mistake() {
     }
 }
 
+/// Several conditions act together, joined or given one by one, and the result names them all.
+#[test]
+fn conditions_are_joined_by_a_plus_or_repeated() {
+    let folder = folder();
+    for conditions in [&["high-trip+low-pull-up"][..], &["high-trip", "--condition", "low-pull-up"]] {
+        let said = simulated(&folder, conditions[0], &[&conditions[1..], &["--format", "json"]].concat());
+        let json = said.json();
+        assert_eq!(json["outcome"], "FAIL", "{said}");
+        assert_eq!(json["simulated"]["condition"], "high-trip+low-pull-up", "{said}");
+        assert_eq!(json["findings"][0]["code"], "off_current_high", "{said}");
+        let trip = json["quantities"].as_array().expect("an array").iter().find(|q| q["name"] == "trip");
+        assert_eq!(trip.expect("a trip")["decision"], "fail", "{said}");
+    }
+    simulated(&folder, "high-trip+sleepy", &[]).refuses(2, &["sleepy", "wanted the name of a condition"]);
+}
+
+/// However fast simulated time runs, a reply that comes too late does so on the program's clock.
+#[test]
+fn conditions_of_a_line_are_met_on_a_bench_in_a_hurry() {
+    let folder = folder();
+    for condition in ["late-reply", "supply-restart"] {
+        let said = simulated(&folder, condition, &["--format", "json"]);
+        assert_eq!(said.json()["outcome"], "INVALID", "{condition}: {said}");
+        assert_eq!(said.json()["findings"][0]["code"], "bench_fault", "{condition}: {said}");
+    }
+}
+
 #[test]
 fn a_speed_without_meaning_is_refused() {
     let folder = folder();

@@ -1,14 +1,14 @@
-//! The relay node's board, part by part, on a bench drawn from a seed.
+//! The relay node's board, part by part, on a bench drawn from a seed: a profile and a board for tests only.
 
 use ebbmark::profile::Profile;
 use ebbmark::sim::{BoardModel, PullUp, Setup, Switch, Wiring};
 use ebbmark::units::{Amps, Farads, Ohms, Siemens, Volts};
 use std::time::Duration;
 
-const PROFILE: &str = include_str!("../../data/profiles/relay-node.toml");
+const PROFILE: &str = include_str!("../data/profiles/relay-node.toml");
 
 /// Trip at 3.00 V and re-enable at 3.15 V; 3.85 µA at 2.80 V while off.
-pub(super) const BOARD: BoardModel = BoardModel {
+pub(crate) const BOARD: BoardModel = BoardModel {
     trip: Volts(3.0),
     hysteresis: Volts(0.15),
     detect_delay: Duration::from_micros(300),
@@ -36,13 +36,13 @@ pub(super) const BOARD: BoardModel = BoardModel {
 const LEADS: Ohms = Ohms(0.02);
 
 /// The board in order.
-pub(super) fn in_order(seed: u64) -> Setup {
+pub(crate) fn in_order(seed: u64) -> Setup {
     Setup::of(BOARD, Wiring::plain(LEADS), seed)
 }
 
 /// The relay node's profile with `limits` instead of its own of the same name, or besides them; an empty text takes one
 /// away.
-pub(super) fn profile(limits: &[(&str, &str)]) -> Profile {
+pub(crate) fn profile(limits: &[(&str, &str)]) -> Profile {
     let (head, own) = PROFILE.split_once("[limits]\n").unwrap_or((PROFILE, ""));
     let replaced = |line: &&str| limits.iter().any(|(name, _)| line.starts_with(name));
     let mut lines: Vec<String> = own.lines().filter(|line| !replaced(line)).map(str::to_owned).collect();
