@@ -31,7 +31,10 @@ fn conditions() -> String {
         .iter()
         .map(|condition| format!("  {:22} {}", condition.key(), condition.description()))
         .collect();
-    format!("Conditions:\n{}\n\nExample:\n  ebbmark sim --condition high-trip+no-sink", lines.join("\n"))
+    format!(
+        "Conditions, several joined by + (a source-measure unit knows none of the supply's and the ammeter's own):\n{}\n\nExample:\n  ebbmark sim --condition high-trip+no-sink",
+        lines.join("\n")
+    )
 }
 
 impl Arguments {

@@ -231,6 +231,21 @@ impl Entry {
     }
 }
 
+fn about(path: &Path, error: &io::Error) -> io::Error {
+    io::Error::new(error.kind(), format!("simulated port {}: {error}", path.display()))
+}
+
+impl SimulationClock for Clock {
+    fn now(&self) -> Duration {
+        Self::now(self)
+    }
+
+    fn sleep_until(&self, time: Duration) {
+        let left = time.saturating_sub(Self::now(self));
+        std::thread::sleep(self.wall(left));
+    }
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -246,20 +261,5 @@ mod tests {
         assert_eq!(befallen(Arrangement::Separate, Kind::Ammeter), Kind::Ammeter);
         assert_eq!(befallen(Arrangement::SourceMeasureUnit, Kind::Ammeter), Kind::SourceMeasureUnit);
         assert_eq!(befallen(Arrangement::SourceMeasureUnit, Kind::LoadVoltmeter), Kind::LoadVoltmeter);
-    }
-}
-
-fn about(path: &Path, error: &io::Error) -> io::Error {
-    io::Error::new(error.kind(), format!("simulated port {}: {error}", path.display()))
-}
-
-impl SimulationClock for Clock {
-    fn now(&self) -> Duration {
-        Self::now(self)
-    }
-
-    fn sleep_until(&self, time: Duration) {
-        let left = time.saturating_sub(Self::now(self));
-        std::thread::sleep(self.wall(left));
     }
 }

@@ -7,11 +7,13 @@ use super::output::STILL;
 const STEP_OVER: f64 = STILL / 2.0;
 
 /// Where a rising line comes to `volts`.
+#[inline]
 pub(super) fn crossing(line: &Line, volts: f64) -> Option<f64> {
     (line.slope > 0.0).then(|| (volts - line.offset) / line.slope)
 }
 
 /// The nearest edge that lies between `from` and `to`, with a little beyond it.
+#[inline]
 pub(super) fn nearest_passed<const N: usize>(from: f64, to: f64, edges: [Option<f64>; N]) -> Option<f64> {
     let direction = (to - from).signum();
     let way = (to - from).abs();
