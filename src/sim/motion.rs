@@ -268,13 +268,13 @@ impl Motion {
         }
         let mut to = course.after(from, time);
         let [near, far] = self.detector.edges().map(|volts| crossing(&piece.terminals, volts));
-        let load = self
-            .load
-            .edge()
-            .filter(|_| setup.board.closed(self.detector.on()))
-            .and_then(|volts| crossing(&piece.load, volts));
-        let edges = [Some(piece.upto), Some(lower), end, near, far, load, Some(self.over_voltage)];
-        if let Some(beyond) = nearest_passed(from, to, edges) {
+        let edges = [Some(piece.upto), Some(lower), end, near, far, Some(self.over_voltage)];
+        let mut passed = nearest_passed(from, to, edges);
+        if let Some(volts) = self.load.edge().filter(|_| setup.board.closed(self.detector.on())) {
+            let load = crossing(&piece.load, volts);
+            passed = nearest_passed(from, passed.unwrap_or(to), [load]).or(passed);
+        }
+        if let Some(beyond) = passed {
             time = time.min(course.time_between(from, beyond).max(0.0));
             to = beyond;
         }
