@@ -3,6 +3,8 @@
 //! A trace is cut into plateaus (on or off by the load's current, [`crate::trace::SwitchState`]), the changes and stays of the board are collected,
 //! and each threshold is read from them at the terminal voltage that stood before the change.
 
+mod deep;
+mod delay;
 mod diagnosis;
 mod discharge;
 mod edges;
@@ -10,6 +12,7 @@ mod finding;
 #[cfg(test)]
 pub(crate) mod fixture;
 mod hysteresis;
+mod in_band;
 mod off_current;
 mod off_limits;
 mod on_current;
@@ -19,6 +22,7 @@ mod rates;
 mod settled;
 mod slow;
 mod stop;
+mod switching_time;
 mod terminals;
 mod threshold;
 mod trust;
@@ -60,13 +64,19 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
         quantities.extend(thresholds(&course, &down, &up));
     }
     quantities.extend(off_current);
+    quantities.extend(delays(&course, &found, &quantities));
+    let (deep_current, deep_findings) = deep::deep(&course);
+    quantities.extend(deep_current);
 
     // A source that lets no board rest explains what the board seems to do.
     let mut findings: Vec<Finding> = restless.into_iter().collect();
     findings.extend(stop::stop_findings(&trace.ending));
     let diagnosis = diagnosis::diagnose(&course, &found);
     findings.extend(diagnosis.filter(|new| findings.iter().all(|old| old.code != new.code)));
+    findings.extend(diagnosis::bounces(&course, &found));
     findings.extend(off_findings);
+    findings.extend(deep_findings);
+    findings.extend(in_band::in_band(&course));
     findings.extend(diagnosis::current_limit(&course));
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));
     findings.extend(trust::accuracy(&course));
@@ -89,6 +99,17 @@ fn thresholds(course: &Course<'_>, down: &Search, up: &Search) -> Vec<Quantity> 
         .extend(trip.zip(re_enable).map(|(trip, re_enable)| hysteresis::hysteresis(course, trip, re_enable)));
     quantities.extend(trip.and_then(|trip| on_current::on_current(course, trip)));
     quantities
+}
+
+/// The delays the profile asks for, of the thresholds that were found.
+fn delays(course: &Course<'_>, found: &Edges, thresholds: &[Quantity]) -> Vec<Quantity> {
+    let measure = &course.profile.measure;
+    [(measure.detect_delay, QuantityName::Trip), (measure.release_delay, QuantityName::ReEnable)]
+        .into_iter()
+        .filter(|(asked, _)| *asked)
+        .filter_map(|(_, name)| thresholds.iter().find(|quantity| quantity.name == name))
+        .filter_map(|threshold| delay::delay(course, found, threshold))
+        .collect()
 }
 
 /// Holds the swing of the terminals against the least hysteresis the profile allows, or that of the board.

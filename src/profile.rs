@@ -30,6 +30,13 @@
 //! [limits]                            # any quantity of QuantityName; min, max or both
 //! trip = { min = "5.88 V", max = "6.12 V" }
 //! off_current = { at = "5.80 V", max = "4.0 uA" }   # only this one has "at"
+//!
+//! [measure]                           # may be left out; a limit on a quantity measures it by itself
+//! delays = true                       # detect and release delay, by steps across the thresholds
+//! deep_floor = "0.3 V"                # sweep from the floor down to here: does the switch conduct again?
+//! in_band = "6.18 V"                  # switch on at this voltage between trip and re-enable, and note the state
+//! in_band_times = 3                   # how often; 3 if left out
+//! wanted_in_band = "off"              # the state the design wants; either is right if left out
 //! ```
 //!
 //! The tables `[detector]`, `[divider]` and `[environment]` may say what the thresholds are made of; see [`Parts`].
@@ -38,6 +45,7 @@ mod check;
 mod check_limits;
 mod draft;
 mod limit;
+mod measure;
 mod parts;
 mod rewrite;
 #[cfg(test)]
@@ -45,6 +53,7 @@ mod sample;
 mod serial_number;
 
 pub use limit::{Limit, QuantityName};
+pub use measure::{InBand, Measure, WantedInBand};
 pub use parts::{Detector, Divider, Environment, Parts, Spread, Temperatures};
 pub use rewrite::{NewLimit, RewriteError, with_limits};
 
@@ -76,6 +85,8 @@ pub struct Profile {
     pub ramp: Ramp,
     /// Limits by quantity.
     pub limits: BTreeMap<QuantityName, Limit>,
+    /// What is measured beyond thresholds and off current.
+    pub measure: Measure,
     /// What its thresholds are made of, where the profile says so.
     pub parts: Option<Parts>,
     /// SHA-256 (FIPS 180-4) of the file's text, 64 hexadecimal digits.
@@ -147,6 +158,7 @@ impl Profile {
             let draft = Draft::read(root);
             check::check(&draft, root);
             check_limits::check(&draft, root);
+            measure::check(&draft, root);
             parts::fits_the_ramp(&draft, root);
             draft.finish(hash(text))
         })

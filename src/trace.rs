@@ -115,6 +115,20 @@ pub struct Claims {
     /// Input resistance of the voltmeter at the terminals, where its current passes the ammeter.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub sense_resistance: Option<Ohms>,
+    /// How long readings and steps take; `None` when not known.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub times: Option<Times>,
+}
+
+/// How long the instruments' readings and steps take.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
+pub struct Times {
+    /// Time over which one current reading is averaged.
+    #[serde(rename = "integration_s", with = "seconds")]
+    pub integration: Duration,
+    /// Time after a step of the supply, board on, until its output has settled.
+    #[serde(rename = "settle_s", with = "seconds")]
+    pub settle: Duration,
 }
 
 impl Claims {

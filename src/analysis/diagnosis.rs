@@ -1,6 +1,6 @@
 //! What the course of the state says about the board: never on, never trips, never comes back, cannot rest.
 
-use super::edges::{Direction, Edges};
+use super::edges::{Bounce, Direction, Edges};
 use super::finding::{About, Finding, FindingCode};
 use super::plateau::{Course, Plateau, REACHED};
 use crate::trace::{Sample, Stop, SwitchState};
@@ -72,6 +72,29 @@ fn chatter(course: &Course<'_>, found: &Edges) -> Finding {
             found.reversals.len()
         ),
     )
+}
+
+/// A change of state took several goes and then held: one finding for each threshold.
+pub(super) fn bounces(course: &Course<'_>, found: &Edges) -> Vec<Finding> {
+    [(Direction::Down, "trip"), (Direction::Up, "re-enable")]
+        .into_iter()
+        .filter_map(|(direction, edge)| {
+            let of = || found.bounces.iter().filter(move |bounce| bounce.direction == direction);
+            let worst: &Bounce = of().max_by_key(|bounce| bounce.changes)?;
+            let passes = found.edges.iter().filter(|seen| seen.direction == direction).count();
+            let set = course.plateaus[worst.plateau].set;
+            Some(board(
+                FindingCode::Chatter,
+                format!(
+                    "at the {edge} the switch did not change once: up to {} changes of state were seen before it rested, at a \
+                     set-point of {set}, and more than one in {} of {passes} passes. Look first at the delay capacitor, then at \
+                     current limit against the capacitors behind the switch.",
+                    worst.changes,
+                    of().count()
+                ),
+            ))
+        })
+        .collect()
 }
 
 fn never_on(course: &Course<'_>) -> Option<Finding> {

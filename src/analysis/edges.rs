@@ -88,6 +88,19 @@ pub(super) struct Edges {
     pub(super) stays: Vec<Stay>,
     /// Plateaus on which the board switched although the set-point gave no cause.
     pub(super) reversals: Vec<usize>,
+    /// Changes that took more than one go, and then held.
+    pub(super) bounces: Vec<Bounce>,
+}
+
+/// A change of state in which the switch went back and forth before it rested in the state after.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct Bounce {
+    /// Which threshold was passed.
+    pub(super) direction: Direction,
+    /// The plateau on which it was seen.
+    pub(super) plateau: usize,
+    /// Changes of state seen; a reading half way and back counts two.
+    pub(super) changes: usize,
 }
 
 impl Edges {
@@ -124,7 +137,8 @@ impl Walk<'_, '_> {
             return;
         }
         let flips = self.flips(index);
-        if flips.restless() {
+        let bounced = self.state.is_some_and(|before| flips.bounced(before));
+        if flips.restless() && !bounced {
             self.found.reversals.push(index);
         }
         let Some(direction) = self.state else {
@@ -146,9 +160,13 @@ impl Walk<'_, '_> {
             return;
         };
         self.end_run(direction, index, last_before);
+        if bounced {
+            let changes = flips.count + 2 * flips.returns;
+            self.found.bounces.push(Bounce { direction, plateau: index, changes });
+        }
         if flips.count == 1 && self.moved_back(direction, index) {
             self.found.reversals.push(index);
-        } else if flips.count == 1 {
+        } else if flips.count == 1 || bounced {
             self.found.edges.push(Edge { direction, plateau: index, last_before: flips.last_before, seen });
         }
         self.state = Some(flips.direction);
@@ -169,14 +187,17 @@ impl Walk<'_, '_> {
         let samples = self.course.plateaus[index].samples.clone();
         let first = samples.clone().find_map(|sample| Direction::from(self.course.states[sample]));
         let now = self.state.or(first).unwrap_or(Direction::Down);
-        let mut flips = Flips { count: 0, returns: 0, last_before: None, seen: None, direction: now };
+        let mut flips =
+            Flips { count: 0, returns: 0, last_before: None, seen: None, direction: now, held: 0 };
         let mut left = false;
         let mut any = false;
         for sample in samples {
             let Some(direction) = Direction::from(self.course.states[sample]) else {
                 left |= any && self.course.is_between(sample);
+                flips.held = 0;
                 continue;
             };
+            flips.held = if direction == flips.direction { flips.held + 1 } else { 1 };
             if direction != flips.direction {
                 flips.direction = direction;
                 flips.count += 1;
@@ -222,6 +243,9 @@ impl Walk<'_, '_> {
     }
 }
 
+/// Readings in one state after which a board rests in it.
+const HELD: usize = 4;
+
 /// What the state did within one plateau.
 struct Flips {
     /// Changes between on and off.
@@ -234,12 +258,19 @@ struct Flips {
     seen: Option<usize>,
     /// The state at the end.
     direction: Direction,
+    /// Readings at the end that all show it.
+    held: usize,
 }
 
 impl Flips {
     /// Switching by itself: more than the one change a set-point can cause. A board just connected may turn on once.
     fn restless(&self) -> bool {
         self.count > 1 || self.returns > 0
+    }
+
+    /// Restless at first, then at rest in the state after the change: the set-point did cause it, in several goes.
+    fn bounced(&self, before: Direction) -> bool {
+        self.restless() && self.direction != before && self.held >= HELD
     }
 }
 
@@ -283,6 +314,16 @@ mod tests {
     #[test]
     fn switching_twice_at_one_set_point_is_a_reversal() {
         assert_eq!(edges(&[on(7.6), on(6.1), off(6.1), on(6.1)]).reversals, [1]);
+    }
+
+    #[test]
+    fn several_goes_that_end_at_rest_are_a_change_that_bounced() {
+        let steady = [on(6.5); 4];
+        let found = edges(&[&[off(5.9), off(6.5), on(6.5), off(6.5)][..], &steady].concat());
+        let wanted = Bounce { direction: Direction::Up, plateau: 1, changes: 3 };
+        assert_eq!((found.bounces, found.reversals.len(), found.edges.len()), (vec![wanted], 0, 1));
+        let cut = edges(&[&[off(5.9), off(6.5), on(6.5), off(6.5)][..], &steady[..3]].concat());
+        assert_eq!((cut.bounces.len(), cut.reversals), (0, vec![1]), "not at rest yet");
     }
 
     #[test]

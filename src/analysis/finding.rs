@@ -79,6 +79,16 @@ pub enum FindingCode {
     OutputMayBeOn,
     /// The trace holds too little to find any threshold.
     NothingToSee,
+    /// Far below the trip the switch conducts again.
+    ConductsWhenDeep,
+    /// The terminals did not come down to the deep floor.
+    DeepFloorNotReached,
+    /// The states a board took when switched on between trip and re-enable; a note.
+    InBand,
+    /// One of those states is not the one the profile wants.
+    UnwantedInBand,
+    /// The terminals did not drain, so the board could not be switched on anew.
+    InBandNotTried,
     /// A limit asks for a quantity that was not measured, or there is no limit at all.
     NotJudged,
 }

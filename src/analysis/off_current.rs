@@ -5,7 +5,7 @@
 
 use super::finding::{About, Finding, FindingCode};
 use super::off_limits::{adequate, coarse_finding, outside_finding};
-use super::plateau::{Course, SAME_SET};
+use super::plateau::{Course, Plateau, SAME_SET};
 use super::quantity::{Contribution, Quantity};
 use super::settled::Settled;
 use crate::profile::QuantityName;
@@ -54,17 +54,15 @@ struct Readings {
 impl Readings {
     fn find(course: &Course<'_>) -> Self {
         let mut found = Self { settled: Vec::new(), overloaded: None };
-        let was_on = |samples: &Range<usize>| course.states[samples.clone()].contains(&SwitchState::On);
-        let Some(armed) =
-            course.plateaus.iter().position(|plateau| plateau.in_scope && was_on(&plateau.samples))
-        else {
+        // A board on its way off was on for its delay at voltages at which it rests off.
+        let was_on = |plateau: &&Plateau| plateau.in_scope && plateau.settled == SwitchState::On;
+        let Some(armed) = course.plateaus.iter().position(|plateau| was_on(&plateau)) else {
             return found;
         };
-        let lowest_on =
-            course.in_scope().filter(|plateau| was_on(&plateau.samples)).map(|plateau| plateau.set.0);
+        let lowest_on = course.plateaus.iter().filter(was_on).map(|plateau| plateau.set.0);
         let below = lowest_on.fold(f64::INFINITY, f64::min) - SAME_SET;
         for (index, plateau) in course.plateaus.iter().enumerate().skip(armed) {
-            if plateau.set.0 <= SAME_SET || plateau.set.0 > below {
+            if !plateau.in_scope || plateau.set.0 <= SAME_SET || plateau.set.0 > below {
                 continue;
             }
             for samples in course.ranges(index) {

@@ -125,6 +125,15 @@ impl<'d, 't> Table<'d, 't> {
         Some(number.with(*value))
     }
 
+    /// True or false, may be left out.
+    pub fn optional_boolean(&mut self, key: &str) -> Option<At<bool>> {
+        let value = self.look(key)?;
+        match value.get_ref().as_bool() {
+            Some(read) => Some(self.at(key, value, read)),
+            None => self.wrong_type(key, value, "true or false, without quotes"),
+        }
+    }
+
     /// A date that may be left out: `2027-03-31`, with or without quotes.
     pub fn optional_date(&mut self, key: &str) -> Option<At<Date>> {
         let wanted = "a date such as 2027-03-31";

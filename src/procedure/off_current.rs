@@ -25,7 +25,7 @@ pub(super) async fn measure_off_current(desk: &Desk, plan: &Plan) -> Result<(), 
 
 /// Changes to the most sensitive range that holds what flows, reads until readings agree, and returns to the large range.
 /// After an overload the next range is tried only once the switch is proven open again.
-async fn read_settled(desk: &Desk, plan: &Plan, proven: Sample) -> Result<(), Stop> {
+pub(super) async fn read_settled(desk: &Desk, plan: &Plan, proven: Sample) -> Result<(), Stop> {
     let flows = proven.current.amps().unwrap_or(plan.on_range);
     for range in plan.off_ranges.iter().filter(|range| **range + plan.on_zero() >= flows) {
         change_range(desk, plan, *range).await?;

@@ -1,7 +1,7 @@
 //! The numbers of one run, worked out once from the profile and the bench's abilities.
 
 use super::Ability;
-use crate::profile::{Load, Profile, QuantityName, Ramp};
+use crate::profile::{Load, Measure, Profile, QuantityName, Ramp};
 use crate::units::{Amps, Volts};
 use std::time::Duration;
 
@@ -48,6 +48,10 @@ pub struct Plan {
     pub on_uncertainty: Amps,
     /// Ammeter ranges for the off current, most sensitive first.
     pub off_ranges: Vec<Amps>,
+    /// What is measured beyond thresholds and off current.
+    pub measure: Measure,
+    /// Limit of the deep current, if any.
+    pub deep_limit: Option<Amps>,
 }
 
 /// Waiting times in one direction.
@@ -96,6 +100,8 @@ impl Plan {
             on_range,
             on_uncertainty: zero_uncertainty(ability, on_range),
             off_ranges,
+            measure: profile.measure,
+            deep_limit: profile.limits.get(&QuantityName::DeepCurrent).and_then(|limit| limit.max).map(Amps),
         }
     }
 

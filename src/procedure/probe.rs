@@ -22,7 +22,7 @@ pub(super) async fn probe(desk: &Desk, plan: &Plan, volts: Volts, pace: Pace) ->
 
 /// A supply that cannot sink leaves the terminals above the set-point until the board has drained them. A voltage
 /// below the set-point is the drop in the leads, or a board that pulls the supply down: both belong in the trace.
-fn above_set_point(plan: &Plan, sample: &Sample) -> bool {
+pub(super) fn above_set_point(plan: &Plan, sample: &Sample) -> bool {
     plan.voltmeter && sample.terminals() > sample.set + plan.arrival_tolerance
 }
 

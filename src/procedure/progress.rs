@@ -1,6 +1,6 @@
 //! How far a run has come, for the operator.
 
-use super::Plan;
+use super::{Plan, deep, delay, in_band};
 use std::time::Duration;
 
 /// The part of a run that is under way and the time still to come.
@@ -49,6 +49,12 @@ pub enum Stage {
     ConfirmTrip,
     /// Waiting just below the re-enable voltage to see that nothing moves.
     ConfirmReEnable,
+    /// Steps across the thresholds, read as fast as the bench can.
+    Delays,
+    /// Off, and on again between trip and re-enable.
+    InBand,
+    /// Down from the floor to the deep floor.
+    DeepSweep,
     /// Output off, board discharging.
     SwitchOff,
 }
@@ -65,6 +71,9 @@ impl Stage {
             Stage::NarrowDown => "fine ramp down",
             Stage::NarrowUp => "fine ramp up",
             Stage::ConfirmTrip | Stage::ConfirmReEnable => "confirming",
+            Stage::Delays => "delays",
+            Stage::InBand => "switching on inside the band",
+            Stage::DeepSweep => "deep sweep",
             Stage::SwitchOff => "switching off",
         }
     }
@@ -93,6 +102,9 @@ pub(super) fn left(plan: &Plan, stage: Stage) -> Duration {
         (Stage::ConfirmTrip, step_up + step_down + plan.down.hold),
         (Stage::NarrowUp, narrow(step_up)),
         (Stage::ConfirmReEnable, step_down + step_up + plan.up.hold),
+        (Stage::Delays, delay::expected(plan)),
+        (Stage::InBand, in_band::expected(plan)),
+        (Stage::DeepSweep, deep::expected(plan)),
         (Stage::SwitchOff, plan.settle + plan.read_time),
     ];
     let from = parts.iter().position(|(known, _)| *known == stage).unwrap_or(0);

@@ -2,7 +2,10 @@
 
 use super::approach::Approach;
 use super::confirm::{Confirmed, confirm_re_enable, confirm_trip};
+use super::deep::sweep_deep;
+use super::delay::measure_delays;
 use super::desk::Desk;
+use super::in_band::switch_on_in_band;
 use super::off_current::measure_off_current;
 use super::pre_check::pre_check;
 use super::probe::{arm_off, arm_on, probe};
@@ -50,7 +53,11 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     };
 
     let trip = narrow_trip(desk, plan, trip).await?;
-    narrow_re_enable(desk, plan, trip, re_enable).await
+    let re_enable = narrow_re_enable(desk, plan, trip, re_enable).await?;
+
+    measure_delays(desk, plan, trip, re_enable).await?;
+    switch_on_in_band(desk, plan).await?;
+    sweep_deep(desk, plan, trip).await
 }
 
 /// Goes on below the trip to the floor, whatever the board does there: one that conducts again must be seen.
@@ -92,7 +99,7 @@ async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Sto
 }
 
 /// The mirror image of [`narrow_trip`]; the board is brought below its trip before each attempt.
-async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) -> Result<(), Stop> {
+async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) -> Result<Edge, Stop> {
     let step = plan.fine_step.unwrap_or(plan.survey_step);
     let below_trip = (trip.changed - plan.survey_step).max(plan.floor);
     let mut pace = plan.up;
@@ -107,7 +114,7 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
             let to = (survey.changed + plan.survey_step).min(plan.start);
             match walk_up(desk, plan, from, to, step, pace).await? {
                 Some(found) => edge = found,
-                None => return Ok(()),
+                None => return Ok(edge),
             }
         }
         desk.enter(Stage::ConfirmReEnable, left(plan, Stage::ConfirmReEnable));
@@ -119,7 +126,7 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
             }
         }
     }
-    Ok(())
+    Ok(edge)
 }
 
 /// How often a bracket is looked for before the last one has to do.

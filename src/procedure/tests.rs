@@ -1,7 +1,7 @@
 //! What must hold on any bench, whatever it answers.
 
 use super::*;
-use crate::profile::{Limit, Load, Profile, QuantityName, Ramp, Supply, Timing};
+use crate::profile::{Limit, Load, Measure, Profile, QuantityName, Ramp, Supply, Timing};
 use crate::trace::{BenchFault, Current, FaultKind, OutputState, Sample, Stop};
 use crate::units::{Amps, Ohms, Volts, Watts};
 use proptest::prelude::*;
@@ -24,6 +24,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         timing: Timing { detect_delay: Duration::from_millis(5), release_delay: Duration::from_millis(20) },
         ramp,
         limits: BTreeMap::from([(QuantityName::OffCurrent, off)]),
+        measure: Measure::default(),
         parts: None,
         hash: String::new(),
     };

@@ -1,5 +1,6 @@
 //! What was read of a profile so far: each value by itself good, with its place, none compared with another yet.
 
+use super::measure::MeasureDraft;
 use super::parts::{self, PartsDraft};
 use super::serial_number;
 use super::{Limit, Load, Profile, QuantityName, Ramp, Supply, Timing};
@@ -21,6 +22,7 @@ pub(super) struct Draft {
     pub(super) timing: TimingDraft,
     pub(super) ramp: RampDraft,
     pub(super) limits: BTreeMap<QuantityName, LimitDraft>,
+    pub(super) measure: MeasureDraft,
     pub(super) parts: Option<PartsDraft>,
 }
 
@@ -79,6 +81,7 @@ impl Draft {
             timing: root.table("timing").map(read_timing).unwrap_or_default(),
             ramp: root.table("ramp").map(read_ramp).unwrap_or_default(),
             limits: root.table("limits").map(read_limits).unwrap_or_default(),
+            measure: root.optional_table("measure").map(MeasureDraft::read).unwrap_or_default(),
             parts: parts::read(root),
         }
     }
@@ -111,6 +114,7 @@ impl Draft {
             },
             ramp,
             limits: self.limits.iter().map(|(name, limit)| (*name, limit.finish())).collect(),
+            measure: self.measure.finish(&self.limits),
             parts: self.parts.map(|read| read.parts),
             hash,
         })

@@ -12,7 +12,7 @@ use super::{
 };
 use crate::procedure::Ability;
 use crate::profile::Profile;
-use crate::trace::{Claims, RangeAccuracy};
+use crate::trace::{Claims, RangeAccuracy, Times};
 use crate::units::{Amps, Celsius, Ohms, Volts};
 
 /// Time constants until a small step has arrived.
@@ -148,6 +148,10 @@ impl Setup {
             current: self.ammeter.ranges.iter().map(line).collect(),
             lead_resistance: None,
             sense_resistance: self.voltmeter.input_resistance,
+            times: Some(Times {
+                integration: self.ammeter.integration,
+                settle: self.supply.time_constant * SETTLE_CONSTANTS,
+            }),
         }
     }
 

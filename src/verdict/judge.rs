@@ -75,6 +75,8 @@ fn fails_the_board(finding: &Finding) -> bool {
                 | FindingCode::NeverReEnables
                 | FindingCode::Chatter
                 | FindingCode::ShortCircuit
+                | FindingCode::ConductsWhenDeep
+                | FindingCode::UnwantedInBand
         )
 }
 

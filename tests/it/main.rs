@@ -5,8 +5,10 @@ mod circuit;
 #[cfg(unix)]
 mod cli;
 mod conditions;
+mod deep_and_band;
 #[cfg(unix)]
 mod definitions_on_simulation;
+mod delays;
 mod limits;
 mod live_circuit;
 mod log;

@@ -3,15 +3,16 @@
 #![expect(clippy::expect_used, reason = "a test fails by panicking")]
 
 use crate::simulated_bench::setup;
+use ebbmark::analysis::{FindingCode, analyse};
 use ebbmark::bench::drive;
 use ebbmark::bench::serial::{SerialBench, check, connect};
 use ebbmark::clock::Clock;
 use ebbmark::instrument::bench_file::BenchFile;
 use ebbmark::procedure::{Plan, Procedure};
-use ebbmark::profile::Profile;
+use ebbmark::profile::{InBand, Profile, QuantityName, WantedInBand};
 use ebbmark::sim::bench::{Arrangement, Options, SimulatedBench};
 use ebbmark::trace::{OutputState, Stop, Trace};
-use ebbmark::units::Amps;
+use ebbmark::units::{Amps, Volts};
 use std::path::Path;
 use std::time::Duration;
 
@@ -39,15 +40,19 @@ async fn connected(file: &BenchFile, clock: Clock) -> SerialBench {
 
 /// One run on simulated instruments, stopped by the operator when `abort` becomes ready.
 fn run(arrangement: Arrangement, abort: impl Future<Output = ()>) -> Trace {
+    run_profile(&profile(), arrangement, abort)
+}
+
+fn run_profile(profile: &Profile, arrangement: Arrangement, abort: impl Future<Output = ()>) -> Trace {
     let clock = Clock::faster(SPEED);
     let options = Options { clock, arrangement, ..Options::default() };
     let simulated = SimulatedBench::start(&setup(), options).expect("pseudo-terminals");
-    let (file, profile) = (bench_file(&simulated), profile());
-    assert_eq!(file.misfits(&profile), []);
+    let file = bench_file(&simulated);
+    assert_eq!(file.misfits(profile), []);
     let trace = block_on(async {
         let mut bench = connected(&file, clock).await;
         bench.begin_run().await.expect("fit for a run");
-        let procedure = Procedure::new(Plan::new(&profile, &file.ability(profile.supply.maximum)));
+        let procedure = Procedure::new(Plan::new(profile, &file.ability(profile.supply.maximum)));
         drive(procedure, &mut bench, file.claims(&profile.supply), &mut (), abort).await
     });
     assert!(!simulated.output(), "the simulated supply's output is on after {:?}", trace.ending);
@@ -65,6 +70,40 @@ fn a_good_board_is_measured_to_the_end() {
         assert!(trace.samples.is_sorted_by_key(|sample| sample.at));
         let smallest = trace.samples.iter().filter_map(|sample| sample.range).fold(Amps(1.0), Amps::min);
         assert!(smallest < Amps(1e-3), "the off current was read on a small range: {smallest}");
+    }
+}
+
+/// Everything a profile can ask for, on a board of 5.9 ms and 12 ms.
+#[test]
+fn everything_is_measured_over_the_ports() {
+    let mut profile = profile();
+    (profile.measure.detect_delay, profile.measure.release_delay) = (true, true);
+    profile.measure.deep_floor = Some(Volts(0.3));
+    profile.measure.in_band = Some(InBand { at: Volts(6.18), times: 2, wanted: Some(WantedInBand::Off) });
+    let truth = setup().board;
+    for arrangement in [Arrangement::Separate, Arrangement::SourceMeasureUnit] {
+        let trace = run_profile(&profile, arrangement, std::future::pending());
+        assert_eq!((&trace.ending.stop, trace.ending.output), (&Stop::Completed, OutputState::Off));
+        assert!(trace.samples.iter().all(|sample| sample.set <= profile.supply.maximum));
+        let analysis = analyse(&trace, &profile);
+        let quantity = |name| {
+            let found = analysis.quantities.iter().find(|quantity| quantity.name == name);
+            found.unwrap_or_else(|| panic!("no {name:?}: {analysis:#?}"))
+        };
+        for (name, truth) in [
+            (QuantityName::DetectDelay, truth.detect_delay),
+            (QuantityName::ReleaseDelay, truth.release_delay),
+        ] {
+            let delay = quantity(name);
+            let half_width = delay.standard_uncertainty * 3.0_f64.sqrt();
+            assert!(
+                (delay.value - truth.as_secs_f64()).abs() <= half_width,
+                "{arrangement:?}: {truth:?}, {delay:?}"
+            );
+        }
+        quantity(QuantityName::DeepCurrent);
+        let codes: Vec<_> = analysis.findings.iter().map(|finding| finding.code).collect();
+        assert_eq!(codes, [FindingCode::InBand], "{:?}", analysis.findings);
     }
 }
 

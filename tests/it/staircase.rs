@@ -134,6 +134,7 @@ impl Model {
                 ],
                 lead_resistance: None,
                 sense_resistance: None,
+                times: None,
             },
             ending: Ending { stop: Stop::Completed, output: OutputState::Off },
         }

@@ -4,7 +4,7 @@ use super::{BenchFile, BenchInstrument, VoltmeterPlace};
 use crate::instrument::definition::{Range, Role, Voltmeter};
 use crate::procedure::{Ability, Misfit, fits};
 use crate::profile::{Profile, Supply};
-use crate::trace::Claims;
+use crate::trace::{Claims, Times};
 use crate::units::{Amps, Ohms, Volts};
 use std::collections::BTreeSet;
 use std::time::Duration;
@@ -59,6 +59,10 @@ impl BenchFile {
             current: self.parts.ammeter.claims(),
             lead_resistance: self.series_resistance(supply.current_limit),
             sense_resistance: self.sense_resistance(supply.maximum),
+            times: Some(Times {
+                integration: self.parts.ammeter.integration,
+                settle: self.parts.source.settle,
+            }),
         }
     }
 

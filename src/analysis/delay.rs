@@ -1,0 +1,173 @@
+//! Detect and release delay from steps across a threshold.
+//!
+//! Between a set-point on one side of the threshold and one clearly beyond it the terminals cross it at some moment, and
+//! some time later the switch changes. Each step bounds that time from both sides; all steps bound the same delay, so
+//! what they have in common is where it lies, as a rectangle (JCGM 100:2008, 4.3.7). No mark in the trace is needed:
+//! any step that leads across a known threshold bounds the delay, be it loosely.
+//!
+//! A delay made by a capacitor depends on how far beyond the threshold the step goes. So only steps of like size are
+//! taken together, and the budget says how far they went.
+
+use super::edges::{Direction, Edge, Edges};
+use super::plateau::Course;
+use super::quantity::{Contribution, Quantity};
+use super::switching_time::{Burst, Span};
+use super::terminals::Rail;
+use crate::profile::QuantityName;
+use crate::units::Volts;
+
+/// The set-points must lie apart from the threshold by this many of its standard uncertainties: before it by the half-width
+/// of a rectangle, beyond it by more than any.
+const BEFORE: f64 = 1.732;
+const BEYOND: f64 = 3.0;
+/// Steps that go beyond the threshold by up to this much more or less count as alike.
+const ALIKE: f64 = 2.0;
+/// Terminals that have gone this share of a step have arrived as far as a mean over the settling can show.
+const ARRIVED: f64 = 0.5;
+
+/// What one step says.
+#[derive(Clone, Copy, Debug)]
+struct Step {
+    /// The delay lies between, s.
+    delay: Span,
+    /// How far beyond the threshold the step went.
+    beyond: Volts,
+}
+
+impl Step {
+    fn width(&self) -> f64 {
+        self.delay.to - self.delay.from
+    }
+}
+
+/// The delay of the change in `direction`, given its threshold; `None` where no step leads clearly across it.
+pub(super) fn delay(course: &Course<'_>, found: &Edges, threshold: &Quantity) -> Option<Quantity> {
+    let (name, direction) = match threshold.name {
+        QuantityName::Trip => (QuantityName::DetectDelay, Direction::Down),
+        QuantityName::ReEnable => (QuantityName::ReleaseDelay, Direction::Up),
+        _ => return None,
+    };
+    let edges = found.edges.iter().filter(|edge| edge.direction == direction);
+    let mut steps: Vec<Step> = edges.filter_map(|edge| step(course, found, edge, threshold)).collect();
+    steps.sort_by(|a, b| a.width().total_cmp(&b.width()));
+    let narrowest = *steps.first()?;
+    let alike =
+        |step: &&Step| step.beyond <= narrowest.beyond * ALIKE && narrowest.beyond <= step.beyond * ALIKE;
+    let steps: Vec<&Step> = steps.iter().filter(alike).collect();
+    let common = common(&steps);
+    let source =
+        format!("when it changed, from {} steps to {} beyond the threshold", steps.len(), narrowest.beyond);
+    let part = Contribution::rectangular(&source, (common.to - common.from) / 2.0);
+    Some(Quantity::new(name, (common.from + common.to) / 2.0, vec![part]))
+}
+
+/// What all steps have in common; where they contradict each other, all that any of them allows.
+fn common(steps: &[&Step]) -> Span {
+    let largest = |value: fn(&Step) -> f64| steps.iter().map(|step| value(step)).fold(0.0, f64::max);
+    let smallest =
+        |value: fn(&Step) -> f64| steps.iter().map(|step| value(step)).fold(f64::INFINITY, f64::min);
+    let (from, to) = (largest(|step| step.delay.from), smallest(|step| step.delay.to));
+    if from <= to {
+        Span { from, to }
+    } else {
+        Span { from: smallest(|step| step.delay.from), to: largest(|step| step.delay.to) }
+    }
+}
+
+/// The bounds from one change, if its set-point came from before the threshold and lies clearly beyond it.
+fn step(course: &Course<'_>, found: &Edges, edge: &Edge, threshold: &Quantity) -> Option<Step> {
+    let direction = edge.direction;
+    let old = edge.plateau.checked_sub(1)?;
+    let new = &course.plateaus[edge.plateau];
+    let still_before = Direction::from(course.plateaus[old].settled) == Some(direction);
+    let bounces = found.bounces.iter().any(|bounce| bounce.plateau == edge.plateau);
+    if !still_before || bounces || !course.plateaus[old].in_scope {
+        return None;
+    }
+    let rail = Rail::near(course, &found.stays, direction, new.set)?;
+    let at = direction.along(Volts(threshold.value));
+    let from = course.terminals(course.settled(old));
+    let before = at - direction.along(from);
+    let beyond = direction.along(rail.at(new.set)) - at;
+    let uncertainty = threshold.standard_uncertainty;
+    if before < BEFORE * uncertainty || beyond < BEYOND * uncertainty {
+        return None;
+    }
+    let burst = Burst::of(course, edge)?;
+    let (stepped, changed) = (burst.stepped(), burst.changed()?);
+    // An output moves no later than a straight line over its settling time would: the threshold's share of the way.
+    let share = ((before + BEFORE * uncertainty) / (before + beyond)).min(1.0);
+    let settle = course.trace.claims.times.map(|times| times.settle.as_secs_f64());
+    let remaining = (course.terminals(burst.first()) - rail.at(new.set)).abs().0;
+    let arrived = remaining <= ARRIVED * (before + beyond);
+    let crossed = match settle {
+        Some(settle) if arrived => stepped.to + share * settle,
+        _ => changed.to,
+    };
+    let delay = Span { from: (changed.from - crossed).max(0.0), to: (changed.to - stepped.from).max(0.0) };
+    Some(Step { delay, beyond: Volts(beyond) })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::fixture::{profile, staircase};
+    use super::super::{Edges, Quantity};
+    use super::*;
+    use crate::trace::{Times, Trace};
+    use std::time::Duration;
+
+    /// Readings of 20 ms back to back that begin 2 ms after a step from 6.02 V to 5.9 V; the switch opens `delay` ms after it.
+    fn step_test(delay: f64, times: Option<Times>) -> Trace {
+        let mut readings = vec![(7.6, 7.6 / 55.0), (6.1, 6.1 / 55.0), (6.02, 6.02 / 55.0)];
+        for index in 0..4 {
+            let begun = 2.0 + 20.0 * f64::from(index);
+            let share = ((delay - begun) / 20.0).clamp(0.0, 1.0);
+            readings.push((5.9, share * 5.9 / 55.0 + 2.5e-6));
+        }
+        let mut trace = staircase(&readings);
+        for (sample, index) in trace.samples.iter_mut().skip(3).zip(0..) {
+            sample.at = Duration::from_millis(300 + 10 + 2 + 10 + 20 * index);
+        }
+        trace.claims.times = times;
+        trace
+    }
+
+    fn measured(trace: &Trace) -> Quantity {
+        let profile = profile();
+        let course = Course::new(trace, &profile);
+        let trip = Quantity::new(QuantityName::Trip, 6.0, vec![Contribution::rectangular("bracket", 0.001)]);
+        delay(&course, &Edges::find(&course), &trip).expect("a step across the trip")
+    }
+
+    const TIMES: Times = Times { integration: Duration::from_millis(20), settle: Duration::from_millis(15) };
+
+    #[test]
+    fn the_share_of_a_reading_tells_when_the_switch_opened() {
+        for delay in [1.0, 3.5, 12.0, 30.0, 55.0] {
+            let found = measured(&step_test(delay, Some(TIMES)));
+            let half_width = found.standard_uncertainty * 3.0_f64.sqrt();
+            assert!((found.value - delay / 1e3).abs() <= half_width, "{delay} ms, found {found:?}");
+            // 2 ms of not knowing when the step was made, its way to the threshold, 2 x 3 % of the reading.
+            assert!(half_width < 3.5e-3, "{delay} ms, found {found:?}");
+        }
+    }
+
+    #[test]
+    fn without_stated_times_the_readings_alone_bound_it() {
+        for delay in [3.5, 12.0, 55.0] {
+            let found = measured(&step_test(delay, None));
+            let half_width = found.standard_uncertainty * 3.0_f64.sqrt();
+            assert!((found.value - delay / 1e3).abs() <= half_width, "{delay} ms, found {found:?}");
+            assert!(half_width > 8e-3, "{delay} ms, found {found:?}");
+        }
+    }
+
+    #[test]
+    fn a_step_that_ends_beside_the_threshold_says_nothing() {
+        let trace = step_test(3.5, Some(TIMES));
+        let profile = profile();
+        let course = Course::new(&trace, &profile);
+        let wide = Quantity::new(QuantityName::Trip, 6.0, vec![Contribution::rectangular("bracket", 0.1)]);
+        assert_eq!(delay(&course, &Edges::find(&course), &wide), None);
+    }
+}
