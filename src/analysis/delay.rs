@@ -12,7 +12,7 @@ use super::edges::{Direction, Edge, Edges};
 use super::plateau::Course;
 use super::quantity::{Contribution, Quantity};
 use super::switching_time::{Burst, Span};
-use super::terminals::Rail;
+use super::terminals::{Rail, source_resistance};
 use crate::profile::QuantityName;
 use crate::units::Volts;
 
@@ -99,7 +99,9 @@ fn step(course: &Course<'_>, found: &Edges, edge: &Edge, threshold: &Quantity) -
     let share = ((before + BEFORE * uncertainty) / (before + beyond)).min(1.0);
     let settle = course.trace.claims.times.map(|times| times.settle.as_secs_f64());
     let remaining = (course.terminals(burst.first()) - rail.at(new.set)).abs().0;
-    let arrived = remaining <= ARRIVED * (before + beyond);
+    // The drop in the leads comes and goes with the switch.
+    let drop = source_resistance(course).map_or(0.0, |leads| (burst.on_current() * leads).0);
+    let arrived = remaining <= ARRIVED * (before + beyond) + drop;
     let crossed = match settle {
         Some(settle) if arrived => stepped.to + share * settle,
         _ => changed.to,

@@ -7,6 +7,7 @@
 use super::edges::{Direction, Edge};
 use super::plateau::Course;
 use crate::trace::{Sample, SwitchState};
+use crate::units::Amps;
 use std::ops::Range;
 
 /// How far a share may be off: the voltage moved within the reading, the load warmed up, small capacitors.
@@ -65,6 +66,11 @@ impl<'c, 't> Burst<'c, 't> {
         })
     }
 
+    /// What the closed switch and its load draw at the set-point.
+    pub(super) fn on_current(&self) -> Amps {
+        Amps(self.on * self.first().set.0)
+    }
+
     /// When the set-point moved: after the last reading before it, and before the first after it.
     pub(super) fn stepped(&self) -> Span {
         // A reading takes at least as long as it integrates, whatever else it waits for.
@@ -76,10 +82,12 @@ impl<'c, 't> Burst<'c, 't> {
     pub(super) fn changed(&self) -> Option<Span> {
         let first = self.samples.clone().find(|sample| !self.is_before(*sample))?;
         let earlier = first.checked_sub(1).filter(|before| *before >= self.samples.start);
-        let from = earlier.map_or(self.stepped().from, |before| self.window(before).end.from);
+        // What is taken for one state throughout may hold a little of the other.
+        let slack = SHARE * self.integration.unwrap_or(0.0);
+        let from = earlier.map_or(self.stepped().from, |before| self.window(before).end.from - slack);
         let window = self.window(first);
         let clean = self.direction == Direction::Down && self.course.states[first] == SwitchState::Off;
-        let whole = Span { from, to: if clean { window.start.to } else { window.end.to } };
+        let whole = Span { from, to: if clean { window.start.to + slack } else { window.end.to } };
         let within = if clean { None } else { self.within(first, window) };
         Some(within.map_or(whole, |part| Span { from: whole.from.max(part.from), to: whole.to.min(part.to) }))
     }

@@ -190,7 +190,10 @@ mod tests {
         p.toml:39:14: measure.deep_floor = "50 mV": below 100 mV, where a supply's own error counts; wanted that or more
         p.toml:40:11: measure.in_band = "6.10 V": not above limits.trip.max = "6.12 V", so not inside the band of every board
         "#);
-        says!(told("delays = \"yes\"\nwanted_in_band = \"off\""), @r#""#);
-        says!(told("in_band = \"6.2 V\"\nin_band_times = 0"), @r#""#);
+        says!(told("delays = \"yes\"\nwanted_in_band = \"off\""), @r#"
+        p.toml:39:10: measure.delays: read a string, wanted true or false, without quotes
+        p.toml:40:18: measure.wanted_in_band = "off": says nothing without measure.in_band; wanted that as well
+        "#);
+        says!(told("in_band = \"6.2 V\"\nin_band_times = 0"), @"p.toml:40:17: measure.in_band_times = 0: wanted 1 to 100");
     }
 }

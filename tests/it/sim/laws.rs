@@ -229,6 +229,26 @@ fn a_board_with_deep_conduction_draws_its_peak_below_the_operating_voltage() {
     }
 }
 
+/// At 5.8 V through the 100 ohm of a small range 50 mA could flow at the window, more than its 20 mA: the voltage does not
+/// stay there, and the board draws what it draws without a window.
+#[test]
+fn deep_conduction_does_not_hold_a_high_voltage_down_behind_a_burden() {
+    let mut setup = quiet(3);
+    let without = setup.clone();
+    setup.board.deep_conduction =
+        Some(DeepConduction { from: Volts(0.55), to: Volts(0.85), peak: Amps(0.02) });
+    let [with, without] = [setup, without].map(|setup| {
+        let mut world = armed(&setup);
+        world.set_volts(Volts(5.8));
+        wait(&mut world, 500);
+        world.set_range(Amps(1e-4));
+        wait(&mut world, 500);
+        read(&mut world)
+    });
+    assert!((with.0 - without.0).abs() < 1e-3 && (with.1 - without.1).abs() < 1e-8, "{with:?} {without:?}");
+    assert!(with.0 > 5.7, "{with:?}");
+}
+
 #[test]
 fn the_same_seed_gives_the_same_readings_and_another_seed_others() {
     let readings = |seed: u64| {
