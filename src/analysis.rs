@@ -76,11 +76,14 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(diagnosis::bounces(&course, &found));
     findings.extend(off_findings);
     findings.extend(deep_findings);
-    findings.extend(in_band::in_band(&course));
+    let (note, unwanted): (Vec<Finding>, Vec<Finding>) =
+        in_band::in_band(&course).into_iter().partition(|finding| finding.code == FindingCode::InBand);
+    findings.extend(unwanted);
     findings.extend(diagnosis::current_limit(&course));
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));
     findings.extend(trust::accuracy(&course));
     findings.extend(discharge::still_charged(trace));
+    findings.extend(note);
     if trace.ending.stop == Stop::Aborted {
         // A run that was stopped before it came to the small ranges says nothing about them.
         findings.retain(|finding| finding.code != FindingCode::RangeNotAdequate);

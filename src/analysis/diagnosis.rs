@@ -220,8 +220,10 @@ fn bench(code: FindingCode, text: String) -> Finding {
 
 #[cfg(test)]
 mod tests {
+    use super::super::analyse;
     use super::super::fixture::{off, on, profile, staircase};
     use super::*;
+    use crate::profile::QuantityName;
     use crate::trace::Trace;
 
     fn code(trace: &Trace) -> Option<FindingCode> {
@@ -287,5 +289,20 @@ mod tests {
     fn a_swing_of_more_than_half_the_hysteresis_is_the_source() {
         let found = |ohms| source_resistance(Ohms(ohms), Amps(0.1), Volts(0.4)).is_some();
         assert!(found(2.1) && !found(1.9));
+    }
+
+    #[test]
+    fn a_change_in_several_goes_is_named_with_count_and_place_and_its_threshold_still_stated() {
+        let ramp = [on(7.6), on(6.01), off(5.99), off(5.2), off(6.39)];
+        let bouncing = [on(6.41), off(6.41), on(6.41), off(6.41), on(6.41), on(6.41), on(6.41), on(6.41)];
+        let analysis = analyse(&staircase(&[&ramp[..], &bouncing].concat()), &profile());
+        let re_enable = analysis.quantities.iter().find(|quantity| quantity.name == QuantityName::ReEnable);
+        assert!((re_enable.expect("stated").value - 6.40).abs() < 1e-9);
+        let finding = analysis.findings.iter().find(|finding| finding.code == FindingCode::Chatter);
+        let text = &finding.expect("named").text;
+        assert!(
+            text.contains("re-enable") && text.contains("up to 5 changes") && text.contains("6.410 V"),
+            "{text}"
+        );
     }
 }

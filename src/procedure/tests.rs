@@ -1,7 +1,7 @@
 //! What must hold on any bench, whatever it answers.
 
 use super::*;
-use crate::profile::{Limit, Load, Measure, Profile, QuantityName, Ramp, Supply, Timing};
+use crate::profile::{InBand, Limit, Load, Measure, Profile, QuantityName, Ramp, Supply, Timing};
 use crate::trace::{BenchFault, Current, FaultKind, OutputState, Sample, Stop};
 use crate::units::{Amps, Ohms, Volts, Watts};
 use proptest::prelude::*;
@@ -145,6 +145,27 @@ proptest! {
         let first_off = seen.iter().skip(1).position(|(a, _)| *a == Action::OutputOff).map_or(0, |at| at + 1);
         let later = &seen[first_off..];
         prop_assert!(later.iter().all(|(action, _)| !matches!(action, Action::SetVolts(_) | Action::OutputOn)));
+    }
+}
+
+proptest! {
+    #[test]
+    fn a_run_that_measures_everything_ends_with_the_output_off(answers in prop::collection::vec(answer(), 0..600)) {
+        let mut plan = plan(Ramp::Staircase { step: Volts(0.1) });
+        let in_band = InBand { at: Volts(6.18), times: 2, wanted: None };
+        plan.measure = Measure {
+            detect_delay: true,
+            release_delay: true,
+            deep_floor: Some(Volts(0.3)),
+            in_band: Some(in_band),
+        };
+        let seen = run(plan, &answers);
+        let Some((Action::Finish(ending), _)) = seen.last() else { panic!("no finish") };
+        let last = |wanted: fn(&Action) -> bool| seen.iter().rposition(|(action, _)| wanted(action)).unwrap_or(0);
+        let last_off = last(|action| *action == Action::OutputOff);
+        prop_assert!(last_off > last(|action| *action == Action::OutputOn));
+        prop_assert!(last_off > last(|action| matches!(action, Action::SetVolts(_))));
+        prop_assert_eq!(ending.output == OutputState::Off, seen[last_off].1 == Event::Done);
     }
 }
 

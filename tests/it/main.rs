@@ -9,6 +9,7 @@ mod deep_and_band;
 #[cfg(unix)]
 mod definitions_on_simulation;
 mod delays;
+mod everything;
 mod limits;
 mod live_circuit;
 mod log;
