@@ -64,7 +64,8 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
         quantities.extend(thresholds(&course, &down, &up));
     }
     quantities.extend(off_current);
-    quantities.extend(delays(&course, &found, &quantities));
+    let (delays, delay_findings) = delay::delays(&course, &found, &quantities);
+    quantities.extend(delays);
     let (deep_current, deep_findings) = deep::deep(&course);
     quantities.extend(deep_current);
 
@@ -75,6 +76,7 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(diagnosis.filter(|new| findings.iter().all(|old| old.code != new.code)));
     findings.extend(diagnosis::bounces(&course, &found));
     findings.extend(off_findings);
+    findings.extend(delay_findings);
     findings.extend(deep_findings);
     let (note, unwanted): (Vec<Finding>, Vec<Finding>) =
         in_band::in_band(&course).into_iter().partition(|finding| finding.code == FindingCode::InBand);
@@ -102,17 +104,6 @@ fn thresholds(course: &Course<'_>, down: &Search, up: &Search) -> Vec<Quantity> 
         .extend(trip.zip(re_enable).map(|(trip, re_enable)| hysteresis::hysteresis(course, trip, re_enable)));
     quantities.extend(trip.and_then(|trip| on_current::on_current(course, trip)));
     quantities
-}
-
-/// The delays the profile asks for, of the thresholds that were found.
-fn delays(course: &Course<'_>, found: &Edges, thresholds: &[Quantity]) -> Vec<Quantity> {
-    let measure = &course.profile.measure;
-    [(measure.detect_delay, QuantityName::Trip), (measure.release_delay, QuantityName::ReEnable)]
-        .into_iter()
-        .filter(|(asked, _)| *asked)
-        .filter_map(|(_, name)| thresholds.iter().find(|quantity| quantity.name == name))
-        .filter_map(|threshold| delay::delay(course, found, threshold))
-        .collect()
 }
 
 /// Holds the swing of the terminals against the least hysteresis the profile allows, or that of the board.

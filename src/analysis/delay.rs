@@ -9,12 +9,13 @@
 //! taken together, and the budget says how far they went.
 
 use super::edges::{Direction, Edge, Edges};
+use super::finding::{About, Finding, FindingCode};
 use super::plateau::Course;
 use super::quantity::{Contribution, Quantity};
 use super::switching_time::{Burst, Span};
 use super::terminals::{Rail, source_resistance};
 use crate::profile::QuantityName;
-use crate::units::Volts;
+use crate::units::{Unit, Volts, prefixed};
 
 /// The set-points must lie apart from the threshold by this many of its standard uncertainties: before it by the half-width
 /// of a rectangle, beyond it by more than any.
@@ -40,8 +41,56 @@ impl Step {
     }
 }
 
-/// The delay of the change in `direction`, given its threshold; `None` where no step leads clearly across it.
-pub(super) fn delay(course: &Course<'_>, found: &Edges, threshold: &Quantity) -> Option<Quantity> {
+/// The delays the profile asks for, of the `thresholds` that were found. One that its limit needs closer than this bench can
+/// tell is no figure but a finding, with the bounds.
+pub(super) fn delays(
+    course: &Course<'_>,
+    found: &Edges,
+    thresholds: &[Quantity],
+) -> (Vec<Quantity>, Vec<Finding>) {
+    let measure = &course.profile.measure;
+    let asked = [(measure.detect_delay, QuantityName::Trip), (measure.release_delay, QuantityName::ReEnable)];
+    let wanted = asked.into_iter().filter(|(asked, _)| *asked).map(|(_, name)| name);
+    let (mut quantities, mut findings) = (Vec::new(), Vec::new());
+    for name in wanted {
+        let threshold = thresholds.iter().find(|quantity| quantity.name == name);
+        let Some(delay) = threshold.and_then(|threshold| delay(course, found, threshold)) else { continue };
+        match unresolved(course, &delay) {
+            Some(finding) => findings.push(finding),
+            None => quantities.push(delay),
+        }
+    }
+    (quantities, findings)
+}
+
+/// The bounds leave open whether a limit is kept, and lie so far apart that this is the bench's doing.
+fn unresolved(course: &Course<'_>, delay: &Quantity) -> Option<Finding> {
+    let limit = course.profile.limits.get(&delay.name)?;
+    let half_width = delay.standard_uncertainty * 3.0_f64.sqrt();
+    let (least, most) = (delay.value - half_width, delay.value + half_width);
+    let blurred = |limit: &f64| least < *limit && *limit < most && half_width > limit * COARSE;
+    let limit = limit.max.filter(blurred).or(limit.min.filter(blurred))?;
+    let text = |seconds: f64| prefixed(seconds, Unit::Second);
+    Some(Finding {
+        code: FindingCode::DelayNotResolved,
+        about: About::Bench,
+        text: format!(
+            "the {} lies between {} and {}; setting and reading take this bench too long to tell closer, and the limit of {} lies in \
+             between. Judge so short a delay from an oscilloscope trace, or widen the limit to what this bench can tell.",
+            delay.name.title(),
+            text(least.max(0.0)),
+            text(most),
+            text(limit)
+        ),
+    })
+}
+
+/// Bounds farther from their middle than this share of a limit cannot judge it; as for the off current, a limit should
+/// be at least twice the uncertainty.
+const COARSE: f64 = 0.5;
+
+/// The delay of the change beyond `threshold`; `None` where no step leads clearly across it.
+fn delay(course: &Course<'_>, found: &Edges, threshold: &Quantity) -> Option<Quantity> {
     let (name, direction) = match threshold.name {
         QuantityName::Trip => (QuantityName::DetectDelay, Direction::Down),
         QuantityName::ReEnable => (QuantityName::ReleaseDelay, Direction::Up),
@@ -84,12 +133,16 @@ fn step(course: &Course<'_>, found: &Edges, edge: &Edge, threshold: &Quantity) -
     if !still_before || bounces || !course.plateaus[old].in_scope {
         return None;
     }
+    let uncertainty = threshold.standard_uncertainty;
+    let height = direction.along(new.set) - direction.along(course.plateaus[old].set);
+    if height < (BEFORE + BEYOND) * uncertainty {
+        return None;
+    }
     let rail = Rail::near(course, &found.stays, direction, new.set)?;
     let at = direction.along(Volts(threshold.value));
     let from = course.terminals(course.settled(old));
     let before = at - direction.along(from);
     let beyond = direction.along(rail.at(new.set)) - at;
-    let uncertainty = threshold.standard_uncertainty;
     if before < BEFORE * uncertainty || beyond < BEYOND * uncertainty {
         return None;
     }
@@ -113,8 +166,8 @@ fn step(course: &Course<'_>, found: &Edges, edge: &Edge, threshold: &Quantity) -
 #[cfg(test)]
 mod tests {
     use super::super::fixture::{profile, staircase};
-    use super::super::{Edges, Quantity};
     use super::*;
+    use crate::profile::Limit;
     use crate::trace::{Times, Trace};
     use std::time::Duration;
 
@@ -162,6 +215,30 @@ mod tests {
             assert!((found.value - delay / 1e3).abs() <= half_width, "{delay} ms, found {found:?}");
             assert!(half_width > 8e-3, "{delay} ms, found {found:?}");
         }
+    }
+
+    #[test]
+    fn bounds_too_wide_for_the_limit_are_a_finding_and_no_figure() {
+        let told = |delay: f64, max: f64| {
+            let (trace, mut profile) = (step_test(delay, Some(TIMES)), profile());
+            profile.measure.detect_delay = true;
+            profile.limits.insert(QuantityName::DetectDelay, Limit { at: None, min: None, max: Some(max) });
+            let course = Course::new(&trace, &profile);
+            let part = Contribution::rectangular("bracket", 0.001);
+            let trip = Quantity::new(QuantityName::Trip, 6.0, vec![part]);
+            let (quantities, findings) = delays(&course, &Edges::find(&course), &[trip]);
+            assert_eq!(quantities.len() + findings.len(), 1);
+            findings.first().map(|finding| (finding.code, finding.text.clone()))
+        };
+        let (code, text) = told(1.0, 2e-3).expect("a rectangle of some 2 ms half-width about the limit");
+        assert_eq!(code, FindingCode::DelayNotResolved);
+        assert!(
+            text.starts_with("the detect delay lies between 0.000 s and ") && text.contains("2.000 ms"),
+            "{text}"
+        );
+        assert_eq!(told(1.0, 20e-3), None, "clearly below");
+        assert_eq!(told(30.0, 20e-3), None, "clearly above");
+        assert_eq!(told(20.0, 20e-3), None, "near the limit, and the bench is good enough for it");
     }
 
     #[test]

@@ -79,6 +79,8 @@ pub enum FindingCode {
     OutputMayBeOn,
     /// The trace holds too little to find any threshold.
     NothingToSee,
+    /// A delay is bounded only so loosely that its limit cannot be judged.
+    DelayNotResolved,
     /// Far below the trip the switch conducts again.
     ConductsWhenDeep,
     /// The terminals did not come down to the deep floor.

@@ -94,6 +94,10 @@ fn not_judged(missing: &[QuantityName], profile: &Profile, findings: &[Finding])
         findings.iter().any(|finding| match finding.code {
             FindingCode::NeitherOnNorOff | FindingCode::NothingToSee => true,
             FindingCode::RangeNotAdequate => *name == QuantityName::OffCurrent,
+            FindingCode::DeepFloorNotReached => *name == QuantityName::DeepCurrent,
+            FindingCode::DelayNotResolved => {
+                matches!(name, QuantityName::DetectDelay | QuantityName::ReleaseDelay)
+            }
             _ => false,
         })
     };

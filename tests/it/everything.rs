@@ -1,5 +1,7 @@
 //! Every quantity a profile can ask for in one run, on every shipped profile, with and without faults of the bench.
 
+#![expect(clippy::expect_used, reason = "a test stops at what it cannot read")]
+
 use crate::virtual_run::{faulty_run, run};
 use ebbmark::analysis::FindingCode;
 use ebbmark::profile::{InBand, Profile, QuantityName, WantedInBand};
