@@ -54,7 +54,11 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
 
     let trip = narrow_trip(desk, plan, trip).await?;
     let re_enable = narrow_re_enable(desk, plan, trip, re_enable).await?;
+    measure_more(desk, plan, trip, re_enable).await
+}
 
+/// What the profile asks for beyond thresholds and off current.
+async fn measure_more(desk: &Desk, plan: &Plan, trip: Edge, re_enable: Edge) -> Result<(), Stop> {
     measure_delays(desk, plan, trip, re_enable).await?;
     switch_on_in_band(desk, plan).await?;
     sweep_deep(desk, plan, trip).await
