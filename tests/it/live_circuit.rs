@@ -9,10 +9,11 @@ use ebbmark::analysis::analyse;
 use ebbmark::bench::{drive, run_ready};
 use ebbmark::procedure::{Plan, Procedure};
 use ebbmark::profile::QuantityName;
-use ebbmark::trace::{Claims, Trace};
+use ebbmark::trace::{Claims, Times, Trace};
 use ebbmark::units::Volts;
 use ebbmark::verdict::{Outcome, Verdict, judge};
 use std::collections::BTreeMap;
+use std::time::Duration;
 
 /// The simulator's own error of a settled current: its least current, and a share it solves to.
 const SOLVED: (f64, f64) = (2e-10, 1e-5);
@@ -102,4 +103,35 @@ fn the_circuit_is_left_without_voltage() {
     let (trace, _) = run(&Board::good());
     let last = trace.samples.last().map(|sample| sample.terminals());
     assert!(last.is_some_and(|volts| volts.abs() < Volts(0.1)), "{last:?}");
+}
+
+/// The delay element charges a capacitor through 10 kohm and discharges it through 10 kohm and 100 kohm in series, and the
+/// switch follows at half the voltage: t = -R C ln(1 - Vth / VDD), with Vth / VDD = 1/2 both ways (common practice). The
+/// capacitor is chosen for the time through 10 kohm.
+#[test]
+fn delays_of_a_charged_capacitor_are_those_of_its_law() {
+    for delay in [0.5e-3, 3e-3, 9e-3] {
+        let board = Board { delay, ..Board::good() };
+        let mut profile = river::profile();
+        profile.timing.detect_delay = Duration::from_millis(150);
+        (profile.measure.detect_delay, profile.measure.release_delay) = (true, true);
+        let ability = CircuitBench::ability();
+        let times = Times { integration: ability.read_time, settle: ability.settle };
+        let mut bench = CircuitBench::start(&board).averaging();
+        let trace = run_ready(drive(
+            Procedure::new(Plan::new(&profile, &ability)),
+            &mut bench,
+            Claims { times: Some(times), ..Claims::default() },
+            &mut (),
+            std::future::pending(),
+        ));
+        let analysis = analyse(&trace, &profile);
+        for (name, law) in [(QuantityName::DetectDelay, 11.0 * delay), (QuantityName::ReleaseDelay, delay)] {
+            let found = analysis.quantities.iter().find(|quantity| quantity.name == name);
+            let found = found.unwrap_or_else(|| panic!("{board:?}: no {name:?}: {analysis:#?}"));
+            let half_width = found.standard_uncertainty * 3.0_f64.sqrt();
+            assert!((found.value - law).abs() <= half_width, "{board:?}: {law} s, found {found:?}");
+            assert!(half_width < 2.5e-3, "{board:?}: {found:?}");
+        }
+    }
 }

@@ -18,7 +18,7 @@ pub(super) struct Board {
     pub(super) trip: f64,
     /// At the terminals, V.
     pub(super) re_enable: f64,
-    /// Of the detector, both ways, s.
+    /// Of the release, s; the detection takes eleven times as long, through 110 kohm.
     pub(super) delay: f64,
     /// Resistance of the leads, ohm.
     pub(super) leads: f64,
@@ -38,8 +38,8 @@ impl Board {
         volts / self.pull_up + self.detector + volts / (OPEN_SWITCH + LOAD)
     }
 
-    /// The net list. The delay element charges through 10 kohm towards 1 V and switches at half of it, after ln 2 time
-    /// constants.
+    /// The net list. The delay element charges through 10 kohm towards 1 V, discharges through 10 kohm and 100 kohm in
+    /// series, and switches at half of it, after ln 2 time constants.
     fn circuit(&self) -> String {
         let Self { trip, re_enable, leads, pull_up, detector, .. } = self;
         let capacitor = self.delay / (10e3 * std::f64::consts::LN_2);
@@ -85,6 +85,7 @@ pub(super) struct CircuitBench {
     set: Volts,
     output: bool,
     range: Amps,
+    averaging: bool,
     _folder: tempfile::TempDir,
 }
 
@@ -111,6 +112,7 @@ impl CircuitBench {
             set: Volts::ZERO,
             output: false,
             range: Amps(3.0),
+            averaging: false,
             _folder: folder,
         };
         let first = 1e-4;
@@ -119,6 +121,12 @@ impl CircuitBench {
             path.display()
         ));
         bench
+    }
+
+    /// The same bench with meters that average over the whole reading, as real ones do; others read its last instant.
+    pub(super) fn averaging(mut self) -> Self {
+        self.averaging = true;
+        self
     }
 
     pub(super) fn ability() -> Ability {
@@ -166,6 +174,26 @@ impl CircuitBench {
         })
     }
 
+    /// Means of the vectors named since `from`, to six digits.
+    fn means<const N: usize>(&mut self, vectors: [&str; N], from: Duration) -> [f64; N] {
+        vectors.map(|vector| {
+            let (from, to) = (from.as_secs_f64(), self.now.as_secs_f64());
+            self.tell(&format!("meas tran mean avg {vector} from={from} to={to}\n"));
+            let mut line = String::new();
+            loop {
+                line.clear();
+                let read = self.answers.read_line(&mut line).expect("an answer");
+                assert!(read > 0, "ngspice ended before it told the mean of {vector}");
+                if let Some((name, value)) = line.split_once('=')
+                    && name.trim().ends_with("mean")
+                {
+                    let number = value.split_whitespace().next().unwrap_or_default();
+                    return number.parse().unwrap_or_else(|_| panic!("mean of {vector}: read {line:?}"));
+                }
+            }
+        })
+    }
+
     /// Lets simulated time pass.
     fn advance_to(&mut self, until: Duration) {
         if until > self.now {
@@ -181,7 +209,9 @@ impl CircuitBench {
 
     fn read(&mut self) -> Sample {
         self.advance_to(self.now + READING);
-        let [vin, out, amps] = self.ask(["v(vin)", "v(out)", "i(vam)"]);
+        let vectors = ["v(vin)", "v(out)", "i(vam)"];
+        let [vin, out, amps] =
+            if self.averaging { self.means(vectors, self.now - READING) } else { self.ask(vectors) };
         Sample {
             at: self.now - READING / 2,
             set: self.set,
