@@ -60,8 +60,9 @@ fn reasons(sheet: &Sheet<'_>, decision: Decision, about: About) -> String {
         .map(quantities::complaint)
         .collect();
     let spoken = |finding: &Finding| words::spoken(&words::code(finding.code));
-    let diagnoses: Vec<String> =
+    let mut diagnoses: Vec<String> =
         sheet.findings.iter().filter(|finding| finding.about == about).map(spoken).collect();
+    diagnoses.dedup();
     match (complaints.is_empty(), diagnoses.is_empty()) {
         (false, _) => complaints.join("; "),
         (true, false) => diagnoses.join("; "),
