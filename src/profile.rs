@@ -37,6 +37,28 @@
 //! in_band = "6.18 V"                  # switch on at this voltage between trip and re-enable, and note the state
 //! in_band_times = 3                   # how often; 3 if left out
 //! wanted_in_band = "off"              # the state the design wants; either is right if left out
+//! [off_line]                          # optional: the off current over a span, to tell a resistance from a leak
+//! from = "2.00 V"                     # the detector works here for certain
+//! to = "5.80 V"                       # below every trip the limits allow
+//! points = 5                          # 4 to 20
+//!
+//! [[off_path]]                        # optional, one block a path: the off-state budget
+//! name = "pull-up"
+//! resistance = "3.9 Mohm"             # or current = "0.9 uA"
+//! tolerance = "5 %"
+//! conducts = "off"                    # "off", "on" or "always"
+//!
+//! [pack]                              # optional: the battery behind the board
+//! chemistry = "li-ion"                # with cells: are the voltages plausible?
+//! cells = 2
+//! resistance = "150 mohm"             # the voltage rises by current x resistance when the switch opens,
+//! recovery = "200 mV"                 # and by this in the hours after
+//! rebound_hold = "2 s"                # optional: try it out, so long
+//! remaining_capacity = "200 mAh"      # between cut-off and harm
+//! capacity = "2.6 Ah"                 # loses self_discharge of it a month
+//! self_discharge = "2 %"
+//! tolerance = "30 %"                  # of remaining capacity and self-discharge
+//! storage_voltage = "5.80 V"          # where off_current has "at", if left out
 //! ```
 //!
 //! The tables `[detector]`, `[divider]` and `[environment]` may say what the thresholds are made of; see [`Parts`].
@@ -46,6 +68,9 @@ mod check_limits;
 mod draft;
 mod limit;
 mod measure;
+mod off_line;
+mod off_path;
+mod pack;
 mod parts;
 mod rewrite;
 #[cfg(test)]
@@ -54,6 +79,9 @@ mod serial_number;
 
 pub use limit::{Limit, QuantityName};
 pub use measure::{InBand, Measure, WantedInBand};
+pub use off_line::OffLine;
+pub use off_path::{Conducts, Draws, OffBudget, OffPath, Span};
+pub use pack::{Chemistry, Pack, Rebound, Storage};
 pub use parts::{Detector, Divider, Environment, Parts, Spread, Temperatures};
 pub use rewrite::{NewLimit, RewriteError, with_limits};
 
@@ -89,6 +117,12 @@ pub struct Profile {
     pub measure: Measure,
     /// What its thresholds are made of, where the profile says so.
     pub parts: Option<Parts>,
+    /// The off-state budget, path by path; empty where the profile gives none.
+    pub off_paths: Vec<OffPath>,
+    /// Where the off current is read at several voltages, as the file says; [`Profile::off_line`] knows more.
+    pub off_line: Option<OffLine>,
+    /// The battery behind the board, as far as the file tells.
+    pub pack: Pack,
     /// SHA-256 (FIPS 180-4) of the file's text, 64 hexadecimal digits.
     pub hash: String,
 }
@@ -160,6 +194,9 @@ impl Profile {
             check_limits::check(&draft, root);
             measure::check(&draft, root);
             parts::fits_the_ramp(&draft, root);
+            off_path::check(&draft, root);
+            off_line::check(&draft, root);
+            pack::check(&draft, root);
             draft.finish(hash(text))
         })
     }

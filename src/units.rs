@@ -13,6 +13,15 @@ pub use parse::{UnitError, parse_duration, parse_fraction, parse_quantity};
 use serde::{Deserialize, Serialize};
 use std::ops::{Add, AddAssign, Div, Mul, Neg, Sub};
 
+/// Coulombs of an ampere hour.
+pub const AMPERE_HOUR: f64 = 3600.0;
+
+/// Seconds of a day.
+pub const DAY: f64 = 86_400.0;
+
+/// Seconds of a Julian year of 365.25 days, the year of the IAU.
+pub const YEAR: f64 = 365.25 * DAY;
+
 /// A unit this program reads and writes.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
 pub enum Unit {
@@ -28,6 +37,8 @@ pub enum Unit {
     Siemens,
     /// Capacitance, F.
     Farad,
+    /// Electric charge, C; people write it in ampere hours.
+    Coulomb,
     /// Time, s.
     Second,
     /// Celsius temperature, degree Celsius.
@@ -39,7 +50,7 @@ pub enum Unit {
 }
 
 impl Unit {
-    /// The symbol as printed, after the prefix.
+    /// The symbol as printed, after the prefix; a charge is printed in ampere hours, a long time in days or years.
     pub fn symbol(self) -> &'static str {
         match self {
             Unit::Volt => "V",
@@ -48,6 +59,7 @@ impl Unit {
             Unit::Watt => "W",
             Unit::Siemens => "S",
             Unit::Farad => "F",
+            Unit::Coulomb => "Ah",
             Unit::Second => "s",
             Unit::Celsius => "°C",
             Unit::Percent => "%",
@@ -59,6 +71,7 @@ impl Unit {
     pub fn ascii(self) -> &'static str {
         match self {
             Unit::Ohm => "ohm",
+            Unit::Coulomb => "C",
             Unit::Celsius => "degC",
             other => other.symbol(),
         }
@@ -73,6 +86,7 @@ impl Unit {
             Unit::Watt => "a power",
             Unit::Siemens => "a conductance",
             Unit::Farad => "a capacitance",
+            Unit::Coulomb => "a charge",
             Unit::Second => "a time",
             Unit::Celsius => "a temperature",
             Unit::Percent => "a share in per cent",
@@ -89,6 +103,7 @@ impl Unit {
             Unit::Watt => "3 W",
             Unit::Siemens => "200 nS",
             Unit::Farad => "47 uF",
+            Unit::Coulomb => "200 mAh",
             Unit::Second => "20 ms",
             Unit::Celsius => "23 °C",
             Unit::Percent => "1 %",
@@ -218,6 +233,11 @@ quantity!(
     Unit::Farad
 );
 quantity!(
+    /// Electric charge in coulombs; one ampere hour is 3600 C.
+    Coulombs,
+    Unit::Coulomb
+);
+quantity!(
     /// Celsius temperature in degrees.
     Celsius,
     Unit::Celsius
@@ -239,6 +259,14 @@ impl Div<Amps> for Volts {
     type Output = Ohms;
     fn div(self, current: Amps) -> Ohms {
         Ohms(self.0 / current.0)
+    }
+}
+
+impl Div<Amps> for Coulombs {
+    type Output = f64;
+    /// Seconds for which the charge lasts.
+    fn div(self, current: Amps) -> f64 {
+        self.0 / current.0
     }
 }
 

@@ -232,6 +232,11 @@ impl<'d, 't> Table<'d, 't> {
         tables
     }
 
+    /// The tables of a list that may be left out; empty then, or when a problem was noted.
+    pub fn optional_tables(&mut self, key: &str) -> Vec<Table<'d, 't>> {
+        if self.look(key).is_some() { self.tables(key) } else { Vec::new() }
+    }
+
     /// True when the writer gave this key, whatever stands there.
     pub fn has(&self, key: &str) -> bool {
         self.entries.contains_key(key)

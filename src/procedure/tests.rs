@@ -1,7 +1,7 @@
 //! What must hold on any bench, whatever it answers.
 
 use super::*;
-use crate::profile::{InBand, Limit, Load, Measure, Profile, QuantityName, Ramp, Supply, Timing};
+use crate::profile::{InBand, Limit, Load, Measure, Pack, Profile, QuantityName, Ramp, Supply, Timing};
 use crate::trace::{BenchFault, Current, FaultKind, OutputState, Sample, Stop};
 use crate::units::{Amps, Ohms, Volts, Watts};
 use proptest::prelude::*;
@@ -26,6 +26,9 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         limits: BTreeMap::from([(QuantityName::OffCurrent, off)]),
         measure: Measure::default(),
         parts: None,
+        off_paths: Vec::new(),
+        off_line: None,
+        pack: Pack::default(),
         hash: String::new(),
     };
     let ability = Ability {

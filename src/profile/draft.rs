@@ -1,6 +1,9 @@
 //! What was read of a profile so far: each value by itself good, with its place, none compared with another yet.
 
 use super::measure::MeasureDraft;
+use super::off_line::{self, OffLineDraft};
+use super::off_path::{self, OffPath};
+use super::pack::{self, PackDraft};
 use super::parts::{self, PartsDraft};
 use super::serial_number;
 use super::{Limit, Load, Profile, QuantityName, Ramp, Supply, Timing};
@@ -24,6 +27,9 @@ pub(super) struct Draft {
     pub(super) limits: BTreeMap<QuantityName, LimitDraft>,
     pub(super) measure: MeasureDraft,
     pub(super) parts: Option<PartsDraft>,
+    pub(super) off_paths: Option<Vec<OffPath>>,
+    pub(super) off_line: Option<OffLineDraft>,
+    pub(super) pack: Option<PackDraft>,
 }
 
 #[derive(Default)]
@@ -83,6 +89,9 @@ impl Draft {
             limits: root.table("limits").map(read_limits).unwrap_or_default(),
             measure: root.optional_table("measure").map(MeasureDraft::read).unwrap_or_default(),
             parts: parts::read(root),
+            off_paths: off_path::read(root),
+            off_line: off_line::read(root),
+            pack: pack::read(root),
         }
     }
 
@@ -116,6 +125,9 @@ impl Draft {
             limits: self.limits.iter().map(|(name, limit)| (*name, limit.finish())).collect(),
             measure: self.measure.finish(&self.limits),
             parts: self.parts.map(|read| read.parts),
+            off_paths: self.off_paths?,
+            off_line: self.off_line.as_ref().and_then(OffLineDraft::finish),
+            pack: self.pack.as_ref().map(PackDraft::finish).unwrap_or_default(),
             hash,
         })
     }

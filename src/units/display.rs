@@ -1,17 +1,17 @@
 //! Writes a quantity for people: a prefix that keeps the number between 1 and 1000, and its unit.
 
-use super::Unit;
+use super::{AMPERE_HOUR, DAY, Unit, YEAR};
 
 /// Half a unit of the fourth digit more: what four digits round up to the next power of ten counts as that power.
 const HALF_DIGIT: f64 = 1.000_05;
 
 /// Writes `value` with four significant digits, a prefix and the unit: `6.000 V`, `2.400 µA`.
 pub fn prefixed(value: f64, unit: Unit) -> String {
-    let (scale, prefix) = prefix_for(value, unit);
+    let (scale, symbol) = scale_for(value, unit);
     let scaled = value / scale;
     let whole_digits = (scaled.abs() * HALF_DIGIT).max(1.0).log10().floor() + 1.0;
     let decimals = (4.0 - whole_digits).max(0.0) as usize;
-    format!("{scaled:.decimals$} {prefix}{}", unit.symbol())
+    format!("{scaled:.decimals$} {symbol}")
 }
 
 /// Writes `value` with as many decimals as two significant digits of `uncertainty` need, both under one prefix.
@@ -19,24 +19,39 @@ pub fn prefixed(value: f64, unit: Unit) -> String {
 /// Two significant digits of an expanded uncertainty are the custom of JCGM 100:2008, 7.2.6. Returns the value,
 /// the uncertainty, and prefix plus unit.
 pub fn with_decimals_of(value: f64, uncertainty: f64, unit: Unit) -> (String, String, String) {
-    let (scale, prefix) = prefix_for(value, unit);
+    let (scale, symbol) = scale_for(value, unit);
     let spread = (uncertainty / scale).abs();
     let decimals = if spread > 0.0 && spread.is_finite() {
         (1.0 - spread.log10().floor()).clamp(0.0, 9.0) as usize
     } else {
         3
     };
-    (
-        format!("{:.decimals$}", value / scale),
-        format!("{spread:.decimals$}"),
-        format!("{prefix}{}", unit.symbol()),
-    )
+    (format!("{:.decimals$}", value / scale), format!("{spread:.decimals$}"), symbol)
 }
 
 /// The number that `value` is under the prefix that [`with_decimals_of`] gives `reference`, so that limits can be
 /// written in the unit of the value beside them.
 pub fn under_prefix_of(value: f64, reference: f64, unit: Unit) -> f64 {
-    value / prefix_for(reference, unit).0
+    value / scale_for(reference, unit).0
+}
+
+/// Times from here on are told in days, and from the second on in years.
+const LONG: (f64, f64) = (2.0 * DAY, 2.0 * YEAR);
+
+/// What one of the printed unit is in the SI unit, and its symbol.
+fn scale_for(value: f64, unit: Unit) -> (f64, String) {
+    match unit {
+        Unit::Second if value.is_finite() && value.abs() >= LONG.1 => (YEAR, "years".to_owned()),
+        Unit::Second if value.is_finite() && value.abs() >= LONG.0 => (DAY, "days".to_owned()),
+        Unit::Coulomb => {
+            let (scale, prefix) = prefix_for(value / AMPERE_HOUR, unit);
+            (scale * AMPERE_HOUR, format!("{prefix}{}", unit.symbol()))
+        }
+        _ => {
+            let (scale, prefix) = prefix_for(value, unit);
+            (scale, format!("{prefix}{}", unit.symbol()))
+        }
+    }
 }
 
 fn prefix_for(value: f64, unit: Unit) -> (f64, &'static str) {
@@ -69,6 +84,10 @@ mod tests {
         assert_eq!(prefixed(1e-4, Unit::PerKelvin), "100.0 ppm/K");
         assert_eq!(prefixed(0.0, Unit::Volt), "0.000 V");
         assert_eq!(prefixed(4.7e6, Unit::Ohm), "4.700 MΩ");
+        assert_eq!(prefixed(720.0, Unit::Coulomb), "200.0 mAh");
+        assert_eq!(prefixed(150.0, Unit::Second), "150.0 s");
+        assert_eq!(prefixed(30.0 * DAY, Unit::Second), "30.00 days");
+        assert_eq!(prefixed(5.93 * YEAR, Unit::Second), "5.930 years");
     }
 
     #[test]

@@ -1,6 +1,6 @@
 //! Reads a quantity as people write it: a number, a space if they like, a prefix and a unit.
 
-use super::Unit;
+use super::{AMPERE_HOUR, DAY, Unit, YEAR};
 use std::time::Duration;
 
 /// Why a text is not a quantity of the wanted unit.
@@ -76,14 +76,14 @@ pub fn parse_quantity(text: &str, wanted: Unit) -> Result<f64, UnitError> {
     if symbol.is_empty() {
         return Err(UnitError::MissingUnit { read: read(), wanted });
     }
-    let Some((scale, unit)) = symbol_scale(symbol) else {
+    let Some((power, factor, unit)) = symbol_scale(symbol) else {
         let meant = nearest_symbol(symbol, wanted);
         return Err(UnitError::DoubtfulUnit { read: read(), wanted, symbol: symbol.to_owned(), meant });
     };
     if unit != wanted {
         return Err(UnitError::WrongUnit { read: read(), wanted, found: unit });
     }
-    let value = scaled(number, value, scale);
+    let value = scaled(number, value, power) * factor;
     if value.is_finite() { Ok(value) } else { Err(UnitError::NotFinite { read: read(), wanted }) }
 }
 
@@ -146,7 +146,8 @@ fn scaled(number: &str, value: f64, power: i32) -> f64 {
     }
 }
 
-const UNITS: [(&str, Unit); 16] = [
+/// Units with their symbols, to which a prefix may be set.
+const UNITS: [(&str, Unit); 17] = [
     ("V", Unit::Volt),
     ("A", Unit::Ampere),
     ("ohm", Unit::Ohm),
@@ -155,6 +156,7 @@ const UNITS: [(&str, Unit); 16] = [
     ("W", Unit::Watt),
     ("S", Unit::Siemens),
     ("F", Unit::Farad),
+    ("C", Unit::Coulomb),
     ("s", Unit::Second),
     ("degC", Unit::Celsius),
     ("°C", Unit::Celsius),
@@ -169,19 +171,41 @@ const UNITS: [(&str, Unit); 16] = [
 const PREFIXES: [(&str, i32); 9] =
     [("p", -12), ("n", -9), ("u", -6), ("µ", -6), ("μ", -6), ("m", -3), ("k", 3), ("M", 6), ("G", 9)];
 
-fn symbol_scale(symbol: &str) -> Option<(i32, Unit)> {
+/// Units outside the SI that are accepted with it (SI Brochure, table 8), and the Julian year: symbol, value in the
+/// SI unit, whether a prefix may be set to it.
+const ACCEPTED: [(&str, f64, Unit, bool); 8] = [
+    ("Ah", AMPERE_HOUR, Unit::Coulomb, true),
+    ("A h", AMPERE_HOUR, Unit::Coulomb, true),
+    ("min", 60.0, Unit::Second, false),
+    ("h", 3600.0, Unit::Second, false),
+    ("d", DAY, Unit::Second, false),
+    ("days", DAY, Unit::Second, false),
+    ("year", YEAR, Unit::Second, false),
+    ("years", YEAR, Unit::Second, false),
+];
+
+/// Power of ten, further factor and unit of a symbol.
+fn symbol_scale(symbol: &str) -> Option<(i32, f64, Unit)> {
     let plain = |symbol: &str| UNITS.iter().find(|(text, _)| *text == symbol).map(|(_, unit)| *unit);
+    let accepted = |symbol: &str| ACCEPTED.into_iter().find(|(text, ..)| *text == symbol);
     if let Some(unit) = plain(symbol) {
         let power = match symbol {
             "%" => -2,
             ratio if ratio.starts_with("ppm") => -6,
             _ => 0,
         };
-        return Some((power, unit));
+        return Some((power, 1.0, unit));
+    }
+    if let Some((_, factor, unit, _)) = accepted(symbol) {
+        return Some((0, factor, unit));
     }
     PREFIXES.iter().find_map(|(prefix, power)| {
-        let unit = plain(symbol.strip_prefix(prefix)?)?;
-        (!matches!(unit, Unit::Percent | Unit::PerKelvin | Unit::Celsius)).then_some((*power, unit))
+        let symbol = symbol.strip_prefix(prefix)?;
+        if let Some((_, factor, unit, true)) = accepted(symbol) {
+            return Some((*power, factor, unit));
+        }
+        let unit = plain(symbol)?;
+        (!matches!(unit, Unit::Percent | Unit::PerKelvin | Unit::Celsius)).then_some((*power, 1.0, unit))
     })
 }
 
@@ -192,6 +216,7 @@ fn nearest_symbol(symbol: &str, wanted: Unit) -> Option<String> {
         .flat_map(|name| {
             std::iter::once(name.to_owned()).chain(PREFIXES.iter().map(move |(p, _)| format!("{p}{name}")))
         })
+        .chain(ACCEPTED.iter().filter(|(_, _, unit, _)| *unit == wanted).map(|(name, ..)| (*name).to_owned()))
         .collect();
     let folded = symbol.to_lowercase();
     all.iter()
@@ -226,6 +251,11 @@ mod tests {
             ("100 ppm/°C", Unit::PerKelvin, 100e-6),
             ("-20 °C", Unit::Celsius, -20.0),
             ("1e-3 V", Unit::Volt, 1e-3),
+            ("200 mAh", Unit::Coulomb, 720.0),
+            ("2 A h", Unit::Coulomb, 7200.0),
+            ("5 C", Unit::Coulomb, 5.0),
+            ("36 h", Unit::Second, 129_600.0),
+            ("2 years", Unit::Second, 63_115_200.0),
         ] {
             assert_eq!(parse_quantity(text, unit), Ok(value), "{text}");
         }
@@ -255,6 +285,7 @@ mod tests {
             message("six V", Unit::Volt),
             "read \"six V\", wanted a voltage such as \"6.00 V\": it does not begin with a number"
         );
+        assert!(message("3 kyears", Unit::Second).contains("\"kyears\" is not a unit"));
         assert!(message("nan V", Unit::Volt).contains("does not begin with a number"));
         assert!(message("1e999 V", Unit::Volt).contains("too large"));
         assert!(parse_duration("-1 s").is_err());
