@@ -14,11 +14,14 @@ mod desk;
 mod fit;
 mod in_band;
 mod off_current;
+mod off_line;
 mod plan;
 mod pre_check;
 mod probe;
 mod progress;
+mod rebound;
 mod script;
+mod settling;
 mod switch_off;
 mod walk;
 
@@ -27,6 +30,7 @@ pub use action::{Action, Event};
 pub use fit::{Misfit, fits};
 pub use plan::Plan;
 pub use progress::{Progress, Stage};
+pub use rebound::Trial;
 
 use crate::trace::Ending;
 use desk::Desk;

@@ -4,9 +4,11 @@
 //! bench a second ago, from a record of last year or from a CSV file.
 
 pub mod csv;
+mod drift;
 mod ending;
 mod switch_state;
 
+pub use drift::{Drift, WHOLE_LINE_PERIODS};
 pub use ending::{BenchFault, Ending, FaultKind, OutputState, Stop};
 pub use switch_state::SwitchState;
 
@@ -108,6 +110,9 @@ pub struct Claims {
     pub set: Option<Accuracy>,
     /// Of the voltmeter at the board's terminals.
     pub sense: Option<Accuracy>,
+    /// Of the voltmeter at the load.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub load: Option<Accuracy>,
     /// Of the ammeter, a line per range, smallest range first.
     pub current: Vec<RangeAccuracy>,
     /// Resistance between where the voltage is known and the board, where no voltmeter sits at the board.

@@ -147,9 +147,17 @@ pub(super) fn source_resistance(course: &Course<'_>) -> Option<Ohms> {
         let came_down = drop > -(LAGS.0 + LAGS.1 * sample.set.0) && drop.is_finite() && amps.is_finite();
         came_down.then_some(Point::plain(amps.0, drop))
     });
+    let most = drops.clone().map(|drop| drop.x).fold(0.0, f64::max);
+    let load = course.profile.supply.floor / course.profile.load.resistance;
+    if most < FLOWS * load.0 {
+        return None;
+    }
     let slope = Line::fit(drops)?.slope;
     Some(Ohms(slope.max(0.0)))
 }
+
+/// Share of the load's current that must have flowed: microamperes say nothing about milliohms.
+const FLOWS: f64 = 0.1;
 
 /// Volts, and share of the set-point, by which terminals above it lag behind.
 const LAGS: (f64, f64) = (0.02, 0.01);

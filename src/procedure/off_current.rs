@@ -3,6 +3,7 @@
 use super::desk::Desk;
 use super::plan::Pace;
 use super::probe::{probe, state};
+use super::settling::settle_on_range;
 use super::{Action, Plan};
 use crate::trace::{Sample, Stop, SwitchState};
 use crate::units::Amps;
@@ -23,13 +24,13 @@ pub(super) async fn measure_off_current(desk: &Desk, plan: &Plan) -> Result<(), 
     Ok(())
 }
 
-/// Changes to the most sensitive range that holds what flows, reads until readings agree, and returns to the large range.
+/// Changes to the most sensitive range that holds what flows, reads until they stand, and returns to the large range.
 /// After an overload the next range is tried only once the switch is proven open again.
 pub(super) async fn read_settled(desk: &Desk, plan: &Plan, proven: Sample) -> Result<(), Stop> {
     let flows = proven.current.amps().unwrap_or(plan.on_range);
     for range in plan.off_ranges.iter().filter(|range| **range + plan.on_zero() >= flows) {
         change_range(desk, plan, *range).await?;
-        let settled = settle_on_range(desk).await?;
+        let settled = settle_on_range(desk, plan).await?;
         change_range(desk, plan, plan.on_range).await?;
         if settled || state(plan, &desk.read().await?) != SwitchState::Off {
             break;
@@ -42,28 +43,3 @@ async fn change_range(desk: &Desk, plan: &Plan, range: Amps) -> Result<(), Stop>
     desk.order(Action::Range(range)).await?;
     desk.wait(plan.range_settle).await
 }
-
-/// Reads until two successive pairs agree to one per cent; false when the range overflows.
-async fn settle_on_range(desk: &Desk) -> Result<bool, Stop> {
-    let mut last: Option<Amps> = None;
-    let mut agreed = 0;
-    for _ in 0..LONGEST {
-        let Some(now) = desk.read().await?.current.amps() else { return Ok(false) };
-        agreed = match last {
-            Some(before) if (now - before).abs() <= now.abs().max(SMALL) * AGREE => agreed + 1,
-            _ => 0,
-        };
-        if agreed >= 2 {
-            break;
-        }
-        last = Some(now);
-    }
-    Ok(true)
-}
-
-/// Successive readings agree within this share.
-const AGREE: f64 = 0.01;
-/// Below this the share is taken of this.
-const SMALL: Amps = Amps(0.5e-6);
-/// Readings before an unsettled current is taken as it is.
-const LONGEST: usize = 50;

@@ -1,6 +1,7 @@
 //! The numbers of one run, worked out once from the profile and the bench's abilities.
 
-use super::Ability;
+use super::rebound::{self, Trial};
+use super::{Ability, off_line};
 use crate::profile::{Load, Measure, Profile, QuantityName, Ramp};
 use crate::units::{Amps, Volts};
 use std::time::Duration;
@@ -42,6 +43,10 @@ pub struct Plan {
     pub voltmeter: bool,
     /// Voltages at which the off current is read, lowest first, all below the lowest trip.
     pub off_points: Vec<Volts>,
+    /// How far the off current may still move once it counts as settled.
+    pub off_drift: Amps,
+    /// The rebound to try out, if any.
+    pub rebound: Option<Trial>,
     /// Ammeter range while the board may conduct.
     pub on_range: Amps,
     /// Standard uncertainty of a reading near zero on that range.
@@ -75,10 +80,6 @@ impl Plan {
         let first_off = smallest_holding(&ability.ranges, expected_off);
         let off_ranges =
             ability.ranges.iter().copied().filter(|r| *r >= first_off && *r <= on_range).collect();
-        let off_at = off_limit.and_then(|limit| limit.at);
-        let mut off_points: Vec<Volts> = std::iter::once(supply.floor).chain(off_at).collect();
-        off_points.sort_by(|a, b| a.0.total_cmp(&b.0));
-        off_points.dedup();
         Self {
             maximum: supply.maximum,
             over_voltage: (supply.maximum * OVER_VOLTAGE).min(ability.max_voltage),
@@ -96,7 +97,9 @@ impl Plan {
             range_settle: ability.range_settle,
             arrival_tolerance: ability.arrival_tolerance,
             voltmeter: ability.voltmeter,
-            off_points,
+            off_points: off_line::points(profile),
+            off_drift: profile.off_drift().max(zero_uncertainty(ability, first_off)),
+            rebound: rebound::trial(profile.pack.rebound),
             on_range,
             on_uncertainty: zero_uncertainty(ability, on_range),
             off_ranges,

@@ -1,6 +1,7 @@
 //! How far a run has come, for the operator.
 
-use super::{Plan, deep, delay, in_band};
+use super::{Plan, deep, delay, in_band, rebound};
+use crate::trace::WHOLE_LINE_PERIODS;
 use std::time::Duration;
 
 /// The part of a run that is under way and the time still to come.
@@ -55,6 +56,8 @@ pub enum Stage {
     InBand,
     /// Down from the floor to the deep floor.
     DeepSweep,
+    /// Lifted after a trip as by its battery, to see that it stays off.
+    Rebound,
     /// Output off, board discharging.
     SwitchOff,
 }
@@ -74,6 +77,7 @@ impl Stage {
             Stage::Delays => "delays",
             Stage::InBand => "switching on inside the band",
             Stage::DeepSweep => "deep sweep",
+            Stage::Rebound => "rebound",
             Stage::SwitchOff => "switching off",
         }
     }
@@ -95,7 +99,8 @@ pub(super) fn left(plan: &Plan, stage: Stage) -> Duration {
         (Stage::SurveyDown, step_down * steps(span, plan.survey_step.0)),
         (
             Stage::OffCurrent,
-            (plan.settle + plan.range_settle + plan.read_time * 4) * plan.off_points.len() as u32,
+            (plan.settle + plan.range_settle * 2 + plan.read_time * 4 + WHOLE_LINE_PERIODS)
+                * plan.off_points.len() as u32,
         ),
         (Stage::SurveyUp, step_up * steps(span * 0.5, plan.survey_step.0)),
         (Stage::NarrowDown, narrow(step_down)),
@@ -105,6 +110,7 @@ pub(super) fn left(plan: &Plan, stage: Stage) -> Duration {
         (Stage::Delays, delay::expected(plan)),
         (Stage::InBand, in_band::expected(plan)),
         (Stage::DeepSweep, deep::expected(plan)),
+        (Stage::Rebound, rebound::duration(plan)),
         (Stage::SwitchOff, plan.settle + plan.read_time),
     ];
     let from = parts.iter().position(|(known, _)| *known == stage).unwrap_or(0);

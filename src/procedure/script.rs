@@ -10,6 +10,7 @@ use super::off_current::measure_off_current;
 use super::pre_check::pre_check;
 use super::probe::{arm_off, arm_on, probe};
 use super::progress::{Stage, left};
+use super::rebound::try_rebound;
 use super::switch_off::switch_off;
 use super::walk::{self, Edge, walk_down, walk_up};
 use super::{Action, Plan};
@@ -59,6 +60,7 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
 
 /// What the profile asks for beyond thresholds and off current.
 async fn measure_more(desk: &Desk, plan: &Plan, trip: Edge, re_enable: Edge) -> Result<(), Stop> {
+    try_rebound(desk, plan, trip).await?;
     measure_delays(desk, plan, trip, re_enable).await?;
     switch_on_in_band(desk, plan).await?;
     sweep_deep(desk, plan, trip).await

@@ -202,7 +202,6 @@ mod tests {
         let changes = [("8.40 V\" ", "36 V\" "), ("\"3 W\"", "\"50 W\""), ("\"350 mA\"", "\"6 A\"")];
         says!(problems(&changes), @r#"
         p.toml:17:11: supply.maximum = "36 V": outside the scope of this program, which ends at 30.00 V
-        p.toml:17:11: supply.maximum = "36 V": pack.cells = 2 of pack.chemistry = "li-ion" reach 8.800 V at most
         p.toml:18:17: supply.current_limit = "6 A": outside the scope of this program, which ends at 5.000 A
         "#);
     }

@@ -3,7 +3,7 @@
 use super::draft::Draft;
 use super::{Profile, QuantityName};
 use crate::document::{At, Table};
-use crate::units::Volts;
+use crate::units::{Amps, Volts};
 
 /// Where the off current is read for its line.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -31,6 +31,11 @@ const USUAL_POINTS: u32 = 5;
 /// Where neither the profile nor a limit gives an upper end: this share of the way from the floor to the lowest trip.
 const UP_TO: f64 = 0.75;
 
+/// Share of the off current's limit; one per cent is common practice.
+const DRIFT: f64 = 0.01;
+/// Off current where the profile sets no limit, in amperes.
+const USUAL_OFF_CURRENT: f64 = 10e-6;
+
 impl OffLine {
     /// The voltages, lowest first, evenly spaced.
     pub fn voltages(&self) -> impl Iterator<Item = Volts> {
@@ -50,6 +55,12 @@ impl Profile {
             || limited(QuantityName::OffConductance)
             || limited(QuantityName::OffConstantCurrent);
         asked.then(|| self.off_line.unwrap_or_else(|| self.usual_off_line()))
+    }
+
+    /// How far the off current may still move once it counts as settled: a share of what its limit allows.
+    pub fn off_drift(&self) -> Amps {
+        let most = self.limits.get(&QuantityName::OffCurrent).and_then(|limit| limit.max);
+        Amps(most.unwrap_or(USUAL_OFF_CURRENT) * DRIFT)
     }
 
     fn usual_off_line(&self) -> OffLine {

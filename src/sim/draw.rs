@@ -15,6 +15,7 @@ pub(super) enum Concern {
     MeterInputs = 6,
     Contact = 7,
     Conditions = 8,
+    OffPaths = 9,
 }
 
 /// The stream of one concern.

@@ -2,7 +2,7 @@
 
 use super::draw::Draw;
 use super::{BoardModel, PullUp, Switch};
-use crate::profile::{Profile, QuantityName};
+use crate::profile::{Conducts, Draws, OffPath, Profile, QuantityName};
 use crate::units::{Amps, Farads, Ohms, Siemens, Volts};
 
 /// Share of a limit's width in which good boards lie, around its middle.
@@ -79,6 +79,30 @@ pub(super) fn good_board(profile: &Profile, draw: &mut Draw) -> BoardModel {
         deep_conduction: None,
     }
 }
+
+/// Puts parts inside the tolerances of the profile's off-state budget in place of what was drawn from the limit of the
+/// off current. What conducts while the board is on as well is the detector.
+pub(super) fn fit_off_paths(board: &mut BoardModel, paths: &[OffPath], draw: &mut Draw) {
+    let off = || paths.iter().filter(|path| path.conducts != Conducts::On);
+    if off().next().is_none() {
+        return;
+    }
+    let (mut conductance, mut current) = (0.0, 0.0);
+    for path in off() {
+        let error = draw.within(path.tolerance * CENTRAL);
+        match path.draws {
+            Draws::Resistance(ohms) => conductance += 1.0 / (ohms.0 * (1.0 + error)),
+            Draws::Current(amps) => current += amps.0 * (1.0 + error),
+        }
+    }
+    board.pull_up = Ohms(1.0 / conductance);
+    board.detector_current = Amps(current);
+    board.leakage = Amps(current * SMALL_LEAK);
+    board.leakage_conductance = Siemens(0.0);
+}
+
+/// What a good switch leaks, as a share of the detector's current.
+const SMALL_LEAK: f64 = 0.01;
 
 /// Where hysteresis and re-enable are both well inside their limits; the hysteresis' own middle where they cannot be.
 fn hysteresis_window(profile: &Profile, trip: f64) -> Window {

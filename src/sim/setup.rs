@@ -4,7 +4,7 @@ mod bench_conditions;
 mod board_conditions;
 
 use super::draw::{Concern, Draw};
-use super::good_board::good_board;
+use super::good_board::{fit_off_paths, good_board};
 use super::link_faults::LinkFault;
 use super::temperature::ROOM;
 use super::{
@@ -70,7 +70,8 @@ impl Setup {
     /// conditions change, and each changes as much as it does alone.
     pub fn with(profile: &Profile, conditions: &[Condition], seed: u64) -> Self {
         let mut draw = Draw::new(seed, Concern::Board);
-        let board = good_board(profile, &mut draw);
+        let mut board = good_board(profile, &mut draw);
+        fit_off_paths(&mut board, &profile.off_paths, &mut Draw::new(seed, Concern::OffPaths));
         let wiring = Wiring::plain(Ohms(draw.between(0.04, 0.12)));
         let mut setup = Self::of(board, wiring, seed);
         setup.put_under(conditions, profile, &draw);
@@ -145,6 +146,7 @@ impl Setup {
         Claims {
             set: Some(self.supply.claim),
             sense: self.voltmeter.range_for(self.highest_voltage()).map(|range| range.claim),
+            load: self.load_voltmeter.range_for(self.highest_voltage()).map(|range| range.claim),
             current: self.ammeter.ranges.iter().map(line).collect(),
             lead_resistance: None,
             sense_resistance: self.voltmeter.input_resistance,

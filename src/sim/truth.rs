@@ -2,7 +2,7 @@
 
 use super::board::State;
 use super::{BoardModel, Setup, Wiring};
-use crate::units::{Amps, Celsius, Siemens, Volts};
+use crate::units::{Amps, Celsius, Ohms, Siemens, Volts};
 use std::time::Duration;
 
 /// What the board really is, noise and meters apart, at its terminals.
@@ -53,6 +53,21 @@ impl Truth {
     /// Current into the board at `at` across its terminals while the detector says on.
     pub fn on_current(&self, at: Volts) -> Amps {
         self.current(true, at)
+    }
+
+    /// Change of the off current between two voltages, for each volt.
+    pub fn off_conductance(&self, from: Volts, to: Volts) -> Siemens {
+        Siemens((self.off_current(to) - self.off_current(from)).0 / (to - from).0)
+    }
+
+    /// What of the off current would be left at no voltage, if it went on as between these two.
+    pub fn off_constant_current(&self, from: Volts, to: Volts) -> Amps {
+        self.off_current(from) - from * self.off_conductance(from, to)
+    }
+
+    /// Resistance of the closed switch.
+    pub fn on_resistance(&self) -> Ohms {
+        self.board.on_resistance
     }
 
     fn current(&self, on: bool, at: Volts) -> Amps {

@@ -135,6 +135,7 @@ impl Model {
                 lead_resistance: None,
                 sense_resistance: None,
                 times: None,
+                load: None,
             },
             ending: Ending { stop: Stop::Completed, output: OutputState::Off },
         }

@@ -56,6 +56,7 @@ impl BenchFile {
         Claims {
             set: Some(self.parts.source.programming),
             sense: self.sense_range(supply.maximum).map(|range| range.accuracy),
+            load: range_of(self.parts.load_voltmeter.as_ref(), supply.maximum).map(|range| range.accuracy),
             current: self.parts.ammeter.claims(),
             lead_resistance: self.series_resistance(supply.current_limit),
             sense_resistance: self.sense_resistance(supply.maximum),
@@ -111,9 +112,14 @@ impl BenchFile {
 
     /// The voltmeter's range for a run: the smallest that holds `maximum`, or its largest.
     fn sense_range(&self, maximum: Volts) -> Option<&Range<Volts>> {
-        let meter: &Voltmeter = self.parts.voltmeter.as_ref()?;
-        meter.range_for(maximum).or_else(|| meter.ranges.last())
+        range_of(self.parts.voltmeter.as_ref(), maximum)
     }
+}
+
+/// A voltmeter's range for a run: the smallest that holds `maximum`, or its largest.
+fn range_of(meter: Option<&Voltmeter>, maximum: Volts) -> Option<&Range<Volts>> {
+    let meter = meter?;
+    meter.range_for(maximum).or_else(|| meter.ranges.last())
 }
 
 /// Time one instrument takes to read all its roles, one after the other, wire included.
@@ -208,6 +214,7 @@ mod tests {
         let leads = claims.lead_resistance.expect("80 mohm of leads, 100 mohm of burden on 1 A");
         assert!((leads / Ohms(0.18) - 1.0).abs() < 1e-12, "{leads}");
         assert_eq!(claims.sense, None);
+        assert!((claims.load.expect("a voltmeter at the load").absolute - 50e-6).abs() < 1e-12);
         assert!(bare.ability(Volts(8.4)).load_voltmeter);
     }
 
