@@ -5,6 +5,7 @@
 
 mod deep;
 mod delay;
+mod derived;
 mod diagnosis;
 mod discharge;
 mod edges;
@@ -13,15 +14,22 @@ mod finding;
 pub(crate) mod fixture;
 mod hysteresis;
 mod in_band;
+mod meter_fuse;
+mod off_budget;
 mod off_current;
+mod off_fit;
 mod off_limits;
 mod on_current;
+mod on_resistance;
 mod plateau;
 mod quantity;
 mod rates;
+mod rebound;
+mod residuals;
 mod settled;
 mod slow;
 mod stop;
+mod storage;
 mod switching_time;
 mod terminals;
 mod threshold;
@@ -54,7 +62,10 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     let found = Edges::find(&course);
     let down = Search::run(&course, &found, Direction::Down);
     let up = Search::run(&course, &found, Direction::Up);
-    let (off_current, off_findings) = off_current::off_current(&course);
+    let off_fit = off_fit::off_fit(&course);
+    let paths = off_fit.as_ref().map(|fit| off_budget::off_budget(fit, profile)).unwrap_or_default();
+    let (off_current, off_findings) = off_current::off_current(&course, !paths.is_empty());
+    let fuse = meter_fuse::meter_fuse(&course);
 
     let restless = source_resistance(&course, &down, &up);
 
@@ -63,11 +74,15 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     if restless.is_none() {
         quantities.extend(thresholds(&course, &down, &up));
     }
+    let derived = derived::derived(&course, &found, &down, &quantities);
     quantities.extend(off_current);
     let (delays, delay_findings) = delay::delays(&course, &found, &quantities);
     quantities.extend(delays);
     let (deep_current, deep_findings) = deep::deep(&course);
     quantities.extend(deep_current);
+    quantities.extend(off_fit.into_iter().flat_map(|fit| [fit.conductance, fit.constant]));
+    quantities.extend(derived.quantities);
+    quantities.sort_by_key(|quantity| quantity.name);
 
     // A source that lets no board rest explains what the board seems to do.
     let mut findings: Vec<Finding> = restless.into_iter().collect();
@@ -75,17 +90,21 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     let diagnosis = diagnosis::diagnose(&course, &found);
     findings.extend(diagnosis.filter(|new| findings.iter().all(|old| old.code != new.code)));
     findings.extend(diagnosis::bounces(&course, &found));
+    findings.extend(fuse);
     findings.extend(off_findings);
+    findings.extend(paths);
     findings.extend(delay_findings);
     findings.extend(deep_findings);
     let (note, unwanted): (Vec<Finding>, Vec<Finding>) =
         in_band::in_band(&course).into_iter().partition(|finding| finding.code == FindingCode::InBand);
     findings.extend(unwanted);
+    findings.extend(derived.findings);
     findings.extend(diagnosis::current_limit(&course));
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));
     findings.extend(trust::accuracy(&course));
     findings.extend(discharge::still_charged(trace));
     findings.extend(note);
+    findings.extend(derived.remarks);
     if trace.ending.stop == Stop::Aborted {
         // A run that was stopped before it came to the small ranges says nothing about them.
         findings.retain(|finding| finding.code != FindingCode::RangeNotAdequate);

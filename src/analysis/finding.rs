@@ -63,6 +63,22 @@ pub enum FindingCode {
     OffCurrentHigh,
     /// Off current below what the limit allows.
     OffCurrentLow,
+    /// The off current grows with voltage by more or less than the off-state budget allows.
+    OffPathResistive,
+    /// The part of the off current that stays whatever the voltage is not what the off-state budget allows.
+    OffPathConstant,
+    /// The off current does not go with the voltage in a straight line.
+    OffCurrentBends,
+    /// The off current was still moving when its reading ended.
+    OffCurrentMoves,
+    /// A small range of the ammeter shows no current at all where some must flow.
+    MeterFuse,
+    /// The battery rises by more than the hysteresis once the load is gone.
+    Rebound,
+    /// The board came back when lifted after its trip as its battery would lift it.
+    RestartsAfterRebound,
+    /// What drains the stored battery, board or self-discharge.
+    StorageDrain,
     /// Instrument accuracy was not stated, so it is not in the uncertainty.
     AccuracyNotIncluded,
     /// No voltmeter at the board: the drop in the leads is not measured.

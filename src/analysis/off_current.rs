@@ -20,16 +20,16 @@ const NEAR: f64 = 0.02;
 const SPAN: f64 = 0.002;
 /// Standard uncertainty of a voltmeter's input resistance, as a share. Makers state 10 Mohm to within 1 % (common practice);
 /// taken whole and not as a rectangle, for the definitions do not state it.
-const INPUT_RESISTANCE: f64 = 0.01;
+pub(super) const INPUT_RESISTANCE: f64 = 0.01;
 /// Terminals this near to the set-point, in volts and as a share of it, have arrived.
 const ARRIVED: (f64, f64) = (0.02, 0.01);
 
-/// The off current, and what is to be said about it.
-pub(super) fn off_current(course: &Course<'_>) -> (Option<Quantity>, Vec<Finding>) {
+/// The off current, and what is to be said about it; `attributed` when its path has been told already.
+pub(super) fn off_current(course: &Course<'_>, attributed: bool) -> (Option<Quantity>, Vec<Finding>) {
     let readings = Readings::find(course);
     let limit = course.profile.limits.get(&QuantityName::OffCurrent).copied().unwrap_or_default();
     let Some(at) = limit.at.or_else(|| readings.highest()) else {
-        return (None, readings.overload_finding().into_iter().collect());
+        return (None, readings.moves().or_else(|| readings.overload_finding()).into_iter().collect());
     };
     let mut coarse = None;
     for range in readings.ranges() {
@@ -37,23 +37,40 @@ pub(super) fn off_current(course: &Course<'_>) -> (Option<Quantity>, Vec<Finding
             readings.settled.iter().filter(|settled| same(settled.range, range)).copied().collect();
         let Some(quantity) = estimate(course, &on_range, at) else { continue };
         if adequate(&quantity, &limit) {
-            let finding = outside_finding(&quantity, &limit, at, &on_range);
+            let finding = outside_finding(&quantity, &limit, at, (!attributed).then_some(&on_range));
             return (Some(quantity), finding.into_iter().collect());
         }
         coarse = coarse.or_else(|| Some(coarse_finding(&quantity, range)));
     }
-    (None, coarse.or_else(|| readings.overload_finding()).into_iter().collect())
+    (None, readings.moves().or(coarse).or_else(|| readings.overload_finding()).into_iter().collect())
+}
+
+/// All settled readings of the off current that count, on whatever range.
+pub(super) fn off_readings(course: &Course<'_>) -> Vec<Settled> {
+    Readings::find(course).settled
+}
+
+/// The off current at `at`, as the smallest range saw it.
+pub(super) fn off_current_at(course: &Course<'_>, at: Volts) -> Option<Quantity> {
+    let readings = Readings::find(course);
+    readings.ranges().into_iter().find_map(|range| {
+        let on_range: Vec<Settled> =
+            readings.settled.iter().filter(|settled| same(settled.range, range)).copied().collect();
+        estimate(course, &on_range, at)
+    })
 }
 
 /// All settled readings that count, and the ranges that overflowed.
 struct Readings {
     settled: Vec<Settled>,
     overloaded: Option<(Volts, Option<Amps>)>,
+    /// Where the last reading still moved.
+    moving: Option<Volts>,
 }
 
 impl Readings {
     fn find(course: &Course<'_>) -> Self {
-        let mut found = Self { settled: Vec::new(), overloaded: None };
+        let mut found = Self { settled: Vec::new(), overloaded: None, moving: None };
         // A board on its way off was on for its delay at voltages at which it rests off.
         let was_on = |plateau: &&Plateau| plateau.in_scope && plateau.settled == SwitchState::On;
         let Some(armed) = course.plateaus.iter().position(|plateau| was_on(&plateau)) else {
@@ -61,8 +78,11 @@ impl Readings {
         };
         let lowest_on = course.plateaus.iter().filter(was_on).map(|plateau| plateau.set.0);
         let below = lowest_on.fold(f64::INFINITY, f64::min) - SAME_SET;
+        // Far below the floor the detector may be asleep, unless the profile says how far down it works.
+        let awake = course.profile.off_line().map_or(f64::INFINITY, |line| line.from.0 - SAME_SET);
         for (index, plateau) in course.plateaus.iter().enumerate().skip(armed) {
-            if !plateau.in_scope || plateau.set.0 <= SAME_SET || plateau.set.0 > below {
+            let counts = plateau.in_scope || plateau.set.0 >= awake;
+            if !counts || plateau.set.0 <= SAME_SET || plateau.set.0 > below {
                 continue;
             }
             for samples in course.ranges(index) {
@@ -82,7 +102,9 @@ impl Readings {
         if last.current.amps().is_none() {
             self.overloaded = Some((last.set, last.range));
         } else if course.states[samples.end - 1] == SwitchState::Off {
-            self.settled.extend(Settled::of(course, samples));
+            let standing = Settled::standing(course, samples);
+            self.moving = standing.is_none().then_some(last.set).or(self.moving);
+            self.settled.extend(standing);
         }
     }
 
@@ -97,6 +119,20 @@ impl Readings {
 
     fn highest(&self) -> Option<Volts> {
         self.settled.iter().map(|settled| settled.volts).max_by(|a, b| a.0.total_cmp(&b.0))
+    }
+
+    /// Where no reading stood.
+    fn moves(&self) -> Option<Finding> {
+        let set = self.moving?;
+        Some(Finding {
+            code: FindingCode::OffCurrentMoves,
+            about: About::Bench,
+            text: format!(
+                "with the board off at {set} the current still moved when its reading ended, so that it is not stated: a \
+                     capacitor charges, forms or gives back what it absorbed. Dwell longer, and look first at the input \
+                     capacitor."
+            ),
+        })
     }
 
     fn overload_finding(&self) -> Option<Finding> {
@@ -229,7 +265,7 @@ mod tests {
 
     fn found(trace: &Trace) -> (Option<Quantity>, Vec<FindingCode>) {
         let profile = profile();
-        let (quantity, findings) = off_current(&Course::new(trace, &profile));
+        let (quantity, findings) = off_current(&Course::new(trace, &profile), false);
         (quantity, findings.iter().map(|finding| finding.code).collect())
     }
 
@@ -275,7 +311,7 @@ mod tests {
         let mut trace = run(&[(5.2, 26.52e-6), (5.8, 29.58e-6)], 1e-4);
         trace.claims.sense_resistance = Some(Ohms(10e6));
         let profile = profile();
-        let (_, findings) = off_current(&Course::new(&trace, &profile));
+        let (_, findings) = off_current(&Course::new(&trace, &profile), false);
         let text = &findings.first().expect("too high").text;
         assert!(text.contains("29.00 µA") && text.contains("about 200.0 kΩ"), "{text}");
     }
@@ -317,7 +353,7 @@ mod tests {
         {
             sample.current = Current::Value(Amps(9e-6 - 2e-6 * index as f64));
         }
-        assert_eq!(found(&trace).0, None);
+        assert_eq!(found(&trace), (None, vec![FindingCode::OffCurrentMoves]));
     }
 
     #[test]

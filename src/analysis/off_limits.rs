@@ -43,22 +43,24 @@ pub(super) fn coarse_finding(quantity: &Quantity, range: Option<Amps>) -> Findin
     }
 }
 
-/// Outside the limits: says so, with a hint at the path the current takes.
+/// Outside the limits: says so, with a hint at the path the current takes, from `readings`; `None` where the path has been
+/// told already.
 pub(super) fn outside_finding(
     quantity: &Quantity,
     limit: &Limit,
     at: Volts,
-    readings: &[Settled],
+    readings: Option<&Vec<Settled>>,
 ) -> Option<Finding> {
     let value = Amps(quantity.value);
     let (code, text) = if let Some(max) = limit.max.filter(|max| quantity.value > *max) {
         let text = format!("off current {value} at {at}, limit {}", Amps(max));
-        (FindingCode::OffCurrentHigh, format!("{text}; {}", path(readings, at)))
+        let hint = readings.map(|readings| path(readings, at));
+        (FindingCode::OffCurrentHigh, hint.map_or(text.clone(), |hint| format!("{text}; {hint}")))
     } else {
         let min = limit.min.filter(|min| quantity.value < *min)?;
         let text = format!("off current {value} at {at}, at least {} wanted", Amps(min));
         let hint = "look first at the pull-up (open or too large) and at the ammeter's fuse";
-        (FindingCode::OffCurrentLow, format!("{text}; {hint}"))
+        (FindingCode::OffCurrentLow, if readings.is_some() { format!("{text}; {hint}") } else { text })
     };
     Some(Finding { code, about: About::Board, text: format!("{text}.") })
 }
@@ -106,7 +108,7 @@ mod tests {
             squares: 0.0,
         };
         let readings: Vec<Settled> = currents.iter().map(settled).collect();
-        outside_finding(&quantity(29e-6, 1e-8), &LIMIT, AT, &readings).expect("outside").text
+        outside_finding(&quantity(29e-6, 1e-8), &LIMIT, AT, Some(&readings)).expect("outside").text
     }
 
     #[test]
@@ -118,8 +120,8 @@ mod tests {
 
     #[test]
     fn inside_the_limits_nothing_is_said_and_below_them_the_pull_up_is_named() {
-        assert_eq!(outside_finding(&quantity(2.5e-6, 1e-8), &LIMIT, AT, &[]), None);
-        let low = outside_finding(&quantity(0.5e-6, 1e-8), &LIMIT, AT, &[]).expect("below");
+        assert_eq!(outside_finding(&quantity(2.5e-6, 1e-8), &LIMIT, AT, None), None);
+        let low = outside_finding(&quantity(0.5e-6, 1e-8), &LIMIT, AT, Some(&Vec::new())).expect("below");
         assert_eq!(low.code, FindingCode::OffCurrentLow);
         assert!(low.text.contains("pull-up"));
     }

@@ -1,9 +1,12 @@
 //! The settled readings at one set-point and range: the last ones, as far back as they agree.
 
 use super::plateau::Course;
-use crate::trace::Sample;
+use crate::trace::{Drift, Sample};
 use crate::units::{Amps, Volts};
 use std::ops::Range;
+
+/// Fewest readings that show a drift.
+const FEWEST: usize = 3;
 
 /// Readings that differ from the last by less than this share of it have settled.
 const AGREES: f64 = 0.02;
@@ -38,7 +41,35 @@ impl Settled {
         if count == 0 || (count == 1 && samples.len() > 1) {
             return None;
         }
-        let settled = &samples[samples.len() - count..];
+        Self::mean(course, &samples[samples.len() - count..])
+    }
+
+    /// The readings at the end of `samples` that do not move, as far as their scatter lets one tell; `None` when the last
+    /// is overloaded or still moves. One or two readings show no drift and have to agree.
+    pub(super) fn standing(course: &Course<'_>, samples: Range<usize>) -> Option<Self> {
+        let all = &course.trace.samples[samples.clone()];
+        let last = all.last()?;
+        let last_amps = last.current.amps()?;
+        let from = all.iter().rposition(|sample| sample.current.amps().is_none()).map_or(0, |at| at + 1);
+        let mut tail = &all[from..];
+        if tail.len() < FEWEST {
+            return Self::of(course, samples);
+        }
+        let claimed = course.current_uncertainty(last.range, last_amps);
+        let budget = course.profile.off_drift().max(claimed).0;
+        while tail.len() >= FEWEST {
+            let readings = tail.iter().filter_map(|it| Some((it.at, it.current.amps()?.0)));
+            if !Drift::of(readings).is_some_and(|drift| drift.is_surely_beyond(budget)) {
+                return Self::mean(course, tail);
+            }
+            // A transient at the beginning is forgotten by halves.
+            tail = &tail[tail.len() / 2..];
+        }
+        None
+    }
+
+    fn mean(course: &Course<'_>, settled: &[Sample]) -> Option<Self> {
+        let (count, last) = (settled.len(), settled.last()?);
         let mean = |value: &dyn Fn(&Sample) -> f64| settled.iter().map(value).sum::<f64>() / count as f64;
         let amps = |sample: &Sample| {
             let passing = course.voltmeter_current(course.terminals(sample));
@@ -84,6 +115,28 @@ mod tests {
     #[test]
     fn a_current_still_on_its_way_is_not_settled() {
         assert_eq!(settled(&[9e-6, 6e-6, 4e-6]), None);
+    }
+
+    fn standing(amps: &[f64]) -> Option<Settled> {
+        let readings: Vec<(f64, f64)> = amps.iter().map(|amps| (5.8, *amps)).collect();
+        let (trace, profile) = (staircase(&readings), profile());
+        Settled::standing(&Course::new(&trace, &profile), 0..amps.len())
+    }
+
+    /// Noise of 2 % is no drift, and none of it is left out: all of it counts in the scatter.
+    #[test]
+    fn noise_stands_and_a_transient_is_forgotten() {
+        let noise = [2.55e-6, 2.45e-6, 2.55e-6, 2.45e-6, 2.55e-6, 2.45e-6];
+        assert_eq!(standing(&noise).expect("stands").count, 6);
+        let transient = [&[9e-6, 7e-6, 5e-6, 3e-6, 2.51e-6, 2.5e-6][..], &noise].concat();
+        assert_eq!(standing(&transient).expect("stands").count, 6);
+    }
+
+    /// 100 nA in every tenth of a second go on to 5 uA in five seconds; the limit of 4 uA allows 40 nA.
+    #[test]
+    fn a_steady_fall_does_not_stand() {
+        let fall: Vec<f64> = (0..20).map(|i| 6e-6 - 1e-7 * f64::from(i)).collect();
+        assert_eq!(standing(&fall), None);
     }
 
     #[test]

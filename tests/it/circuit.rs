@@ -110,10 +110,14 @@ fn a_leaking_switch_fails_on_its_off_current_and_the_path_is_named() {
     assert_eq!(verdict.outcome, Outcome::Fail);
     assert_eq!(decision(&verdict, QuantityName::OffCurrent), Some(Decision::Fail));
     assert_eq!(decision(&verdict, QuantityName::Trip), Some(Decision::Pass));
-    let finding = analysis.findings.iter().find(|finding| finding.code == FindingCode::OffCurrentHigh);
+    assert!(found(&analysis, FindingCode::OffCurrentHigh));
+    let finding = analysis.findings.iter().find(|finding| finding.code == FindingCode::OffPathResistive);
     let text = &finding.expect("a finding").text;
     // Pull-up and leak in parallel: 3.3 M || 220 k || 50 M = 205 k.
-    assert!(text.contains("follows the voltage") && text.contains("kΩ"), "{text}");
+    assert!(
+        text.contains("20") && text.contains("kΩ in all") && text.contains("across the switch"),
+        "{text}"
+    );
 }
 
 #[test]

@@ -10,7 +10,7 @@ use std::fs;
 use std::process::Command;
 
 /// Blocks of 512 bytes or of 1024, depending on the shell; more than one run needs.
-const BLOCKS: usize = 64;
+const BLOCKS: usize = 128;
 
 /// Tests the board with no file allowed to grow beyond so many blocks.
 fn test_within(place: &Workplace, blocks: usize) -> Said {

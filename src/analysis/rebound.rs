@@ -1,0 +1,160 @@
+//! Whether the battery's rise after the cut-off switches the board on again.
+//!
+//! The margin is worked out from the hysteresis, whose two thresholds were read by one voltmeter, and not from the
+//! re-enable voltage and the trip apart: what the voltmeter errs in common has cancelled there. Resistance and recovery
+//! are the most the design allows for, and carry no uncertainty of their own. Where the rise was tried out, a board
+//! that came back is told with the moment and the voltage.
+
+use super::edges::{Direction, Edges};
+use super::finding::{About, Finding, FindingCode};
+use super::plateau::Course;
+use super::quantity::{Contribution, Quantity};
+use super::threshold::Threshold;
+use crate::profile::{QuantityName, Rebound};
+use crate::trace::SwitchState;
+use crate::units::{Amps, Unit, Volts, prefixed};
+
+/// A lifted set-point this much above trip and rise still counts as the rise.
+const NEAR: Volts = Volts(5e-3);
+
+/// Re-enable less what the terminals rise to: `hysteresis - on current x resistance - recovery`.
+pub(super) fn rebound_margin(hysteresis: &Quantity, on_current: &Quantity, rebound: &Rebound) -> Quantity {
+    let mut parts = hysteresis.contributions.clone();
+    let of_current = rebound.resistance.0 * on_current.standard_uncertainty;
+    parts.push(Contribution::normal("on current, through the battery's resistance", of_current));
+    let margin = hysteresis.value - rebound.rise(Amps(on_current.value)).0;
+    Quantity::new(QuantityName::ReboundMargin, margin, parts)
+}
+
+/// What a margin below zero means.
+pub(super) fn negative_margin(
+    margin: &Quantity,
+    on_current: &Quantity,
+    rebound: &Rebound,
+) -> Option<Finding> {
+    let rise = rebound.rise(Amps(on_current.value));
+    (margin.value < 0.0).then(|| {
+        board(
+            FindingCode::Rebound,
+            format!(
+                "once the load is gone the battery rises by {rise}, {} more than the hysteresis: the board restarts by itself, \
+                 trips again, and goes on until the battery is empty. Look first at the hysteresis parts; widen the \
+                 hysteresis or latch the cut-off.",
+                Volts(-margin.value)
+            ),
+        )
+    })
+}
+
+/// A board that came back when it was lifted by no more than the battery's rise right after a trip.
+pub(super) fn restart(
+    course: &Course<'_>,
+    found: &Edges,
+    trip: &Threshold,
+    on_current: &Quantity,
+    rebound: &Rebound,
+) -> Option<Finding> {
+    let risen = trip.value + rebound.rise(Amps(on_current.value));
+    let lifted = found.edges.iter().filter(|edge| edge.direction == Direction::Down).filter_map(|edge| {
+        let (before, after) = (&course.plateaus[edge.plateau], course.plateaus.get(edge.plateau + 1)?);
+        (after.set > before.set && after.set <= risen + NEAR).then_some(after)
+    });
+    lifted.into_iter().find_map(|plateau| {
+        let on = plateau.samples.clone().find(|at| course.states[*at] == SwitchState::On)?;
+        let after = course.trace.samples[on].at.saturating_sub(plateau.began);
+        let hold = rebound.hold.map_or_else(String::new, |hold| {
+            format!("; it must stay off for {}", prefixed(hold.as_secs_f64(), Unit::Second))
+        });
+        Some(board(
+            FindingCode::RestartsAfterRebound,
+            format!(
+                "lifted to {} after its trip, as its battery would rise, the board was on again within {}{hold}. It restarts by itself \
+                 until the battery is empty. Look first at the hysteresis parts.",
+                plateau.set,
+                prefixed(after.as_secs_f64(), Unit::Second)
+            ),
+        ))
+    })
+}
+
+fn board(code: FindingCode, text: String) -> Finding {
+    Finding { code, about: About::Board, text }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::fixture::{off, on, profile, staircase};
+    use super::*;
+    use crate::analysis::{Analysis, analyse};
+    use crate::profile::{Pack, Profile};
+    use crate::trace::{Accuracy, Trace};
+    use crate::units::Ohms;
+    use std::time::Duration;
+
+    /// Trip between 5.99 V and 6.01 V, re-enable between 6.39 V and 6.41 V: hysteresis 0.4 V.
+    fn trace(lifted: &[(f64, f64)]) -> Trace {
+        let cycle =
+            [on(7.6), on(6.01), off(5.99), off(5.2), off(6.39), on(6.41), on(7.6), on(6.01), off(5.9)];
+        staircase(&[&cycle[..], lifted].concat())
+    }
+
+    fn with(recovery: f64) -> Profile {
+        let rebound =
+            Rebound { resistance: Ohms(0.15), recovery: Volts(recovery), hold: Some(Duration::from_secs(2)) };
+        Profile { pack: Pack { rebound: Some(rebound), storage: None }, ..profile() }
+    }
+
+    fn margin(analysis: &Analysis) -> &Quantity {
+        let margin = |quantity: &&Quantity| quantity.name == QuantityName::ReboundMargin;
+        analysis.quantities.iter().find(margin).expect("a margin")
+    }
+
+    fn codes(analysis: &Analysis) -> Vec<FindingCode> {
+        let ours = [FindingCode::Rebound, FindingCode::RestartsAfterRebound];
+        analysis.findings.iter().map(|finding| finding.code).filter(|code| ours.contains(code)).collect()
+    }
+
+    /// 0.4 V less 109.3 mA x 150 mohm less 0.2 V: 183.6 mV, by hand.
+    #[test]
+    fn the_margin_is_what_the_hysteresis_leaves_of_the_rise() {
+        let analysis = analyse(&trace(&[]), &with(0.2));
+        assert!((margin(&analysis).value - (0.4 - 6.01 / 55.0 * 0.15 - 0.2)).abs() < 1e-9);
+        assert_eq!(codes(&analysis), []);
+    }
+
+    /// A voltmeter off by 1 % moves both thresholds by 60 mV and the margin by 4 mV.
+    #[test]
+    fn what_the_voltmeter_errs_in_common_stays_cancelled() {
+        let mut trace = trace(&[]);
+        trace.claims.sense = Some(Accuracy { relative: 0.01, absolute: 0.0, resolution: 0.0 });
+        let analysis = analyse(&trace, &with(0.2));
+        let hysteresis = |quantity: &&Quantity| quantity.name == QuantityName::Hysteresis;
+        let hysteresis = analysis.quantities.iter().find(hysteresis).expect("a hysteresis");
+        assert!((margin(&analysis).standard_uncertainty - hysteresis.standard_uncertainty).abs() < 1e-9);
+    }
+
+    #[test]
+    fn a_rise_beyond_the_hysteresis_is_told() {
+        let analysis = analyse(&trace(&[]), &with(0.45));
+        assert!(margin(&analysis).value < 0.0);
+        assert_eq!(codes(&analysis), [FindingCode::Rebound]);
+        let text = &analysis.findings.iter().find(|f| f.code == FindingCode::Rebound).expect("told").text;
+        assert!(text.contains("466.4 mV") && text.contains("66.39 mV more"), "{text}");
+    }
+
+    #[test]
+    fn a_board_that_came_back_when_lifted_is_told_with_moment_and_voltage() {
+        let lifted = [off(6.46), off(6.46), on(6.46), on(6.46)];
+        let analysis = analyse(&trace(&lifted), &with(0.45));
+        assert_eq!(codes(&analysis), [FindingCode::RestartsAfterRebound], "the calculation is in it");
+        let finding = |code| analysis.findings.iter().find(|f| f.code == code).expect("told");
+        let text = &finding(FindingCode::RestartsAfterRebound).text;
+        assert!(text.contains("6.460 V") && text.contains("300.0 ms") && text.contains("2.000 s"), "{text}");
+    }
+
+    #[test]
+    fn a_way_up_beyond_the_rise_is_no_trial() {
+        let analysis = analyse(&trace(&[off(6.2), off(6.2), off(6.39), on(6.41)]), &with(0.2));
+        assert_eq!(codes(&analysis), []);
+    }
+}
