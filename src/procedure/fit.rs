@@ -56,6 +56,17 @@ pub enum Misfit {
         /// What the meter has.
         uncertainty: Amps,
     },
+    /// The profile limits the on-resistance, and no voltmeter sits at the load.
+    #[error(
+        "limits.on_resistance needs a voltmeter at the terminals and a load_voltmeter; add them or remove the limit"
+    )]
+    OnResistance,
+    /// The profile lifts the board after its trip, and no voltmeter says what stands at its terminals.
+    #[error(
+        "pack.rebound_hold needs a voltmeter at the board's terminals, for the drop in the leads vanishes at the trip; add one or \
+         remove the hold"
+    )]
+    ReboundHold,
     /// The profile's step is finer than the supply's.
     #[error("ramp.{key} is {step}, the supply sets steps of {finest}; wanted at least that")]
     Step {
@@ -106,6 +117,7 @@ pub fn fits(profile: &Profile, ability: &Ability) -> Vec<Misfit> {
         misfits.push(Misfit::OnCurrent { limit: supply.current_limit, largest });
     }
     misfits.extend(off_current(profile, ability));
+    misfits.extend(voltmeters(profile, ability));
     misfits.extend(step(profile, ability));
     misfits
 }
@@ -116,6 +128,14 @@ fn off_current(profile: &Profile, ability: &Ability) -> Option<Misfit> {
     let wanted = limit * OFF_UNCERTAINTY_SHARE;
     let uncertainty = ability.off_current_uncertainty();
     (uncertainty > wanted).then_some(Misfit::OffCurrent { limit, wanted, uncertainty })
+}
+
+fn voltmeters(profile: &Profile, ability: &Ability) -> impl Iterator<Item = Misfit> {
+    let limited = profile.limits.contains_key(&QuantityName::OnResistance);
+    let at_both = ability.voltmeter && ability.load_voltmeter;
+    let held = profile.pack.rebound.is_some_and(|rebound| rebound.hold.is_some());
+    let resistance = (limited && !at_both).then_some(Misfit::OnResistance);
+    resistance.into_iter().chain((held && !ability.voltmeter).then_some(Misfit::ReboundHold))
 }
 
 fn step(profile: &Profile, ability: &Ability) -> Option<Misfit> {
@@ -177,6 +197,19 @@ mod tests {
         says!(told(&Ability { zero_uncertainties: vec![Amps(4.6e-5)], ..ability() }),
             @"an off current limited to 4.000 µA needs a standard uncertainty of 1.000 µA or less, the ammeter's is 46.00 µA on its smallest range; take a meter with a smaller range or remove limits.off_current");
         says!(told(&Ability { set_step: Volts(0.02), ..ability() }), @"ramp.resolution is 2.000 mV, the supply sets steps of 20.00 mV; wanted at least that");
+    }
+
+    #[test]
+    fn what_needs_a_voltmeter_says_where() {
+        let mut profile = profile();
+        let limit = crate::profile::Limit { at: None, min: None, max: Some(0.1) };
+        profile.limits.insert(QuantityName::OnResistance, limit);
+        assert_eq!(fits(&profile, &ability()), [Misfit::OnResistance]);
+        let both = Ability { load_voltmeter: true, ..ability() };
+        assert_eq!(fits(&profile, &both), []);
+        let garden = include_str!("../../profiles/garden-probe.toml");
+        let garden = Profile::read("garden-probe.toml", garden).expect("a good profile");
+        assert_eq!(fits(&garden, &Ability { voltmeter: false, ..both }), [Misfit::ReboundHold]);
     }
 
     #[test]

@@ -56,6 +56,7 @@ fn readings_in_doubt(findings: &[Finding]) -> bool {
                 | FindingCode::SupplyNotArrived
                 | FindingCode::CurrentLimit
                 | FindingCode::SourceResistance
+                | FindingCode::MeterFuse
         )
     })
 }
@@ -77,6 +78,7 @@ fn fails_the_board(finding: &Finding) -> bool {
                 | FindingCode::ShortCircuit
                 | FindingCode::ConductsWhenDeep
                 | FindingCode::UnwantedInBand
+                | FindingCode::RestartsAfterRebound
         )
 }
 
@@ -93,11 +95,17 @@ fn not_judged(missing: &[QuantityName], profile: &Profile, findings: &[Finding])
     let explained = |name: &QuantityName| {
         findings.iter().any(|finding| match finding.code {
             FindingCode::NeitherOnNorOff | FindingCode::NothingToSee => true,
-            FindingCode::RangeNotAdequate => *name == QuantityName::OffCurrent,
             FindingCode::DeepFloorNotReached => *name == QuantityName::DeepCurrent,
             FindingCode::DelayNotResolved => {
                 matches!(name, QuantityName::DetectDelay | QuantityName::ReleaseDelay)
             }
+            FindingCode::RangeNotAdequate | FindingCode::OffCurrentMoves => matches!(
+                name,
+                QuantityName::OffCurrent
+                    | QuantityName::OffConductance
+                    | QuantityName::OffConstantCurrent
+                    | QuantityName::StorageTime
+            ),
             _ => false,
         })
     };

@@ -14,6 +14,7 @@ mod limits;
 mod live_circuit;
 mod log;
 mod nine_volt;
+mod off_state;
 #[cfg(unix)]
 mod outside_parser;
 mod relay;
