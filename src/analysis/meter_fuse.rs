@@ -22,9 +22,12 @@ const FALLEN: (f64, f64) = (0.05, 0.02);
 pub(super) fn meter_fuse(course: &Course<'_>) -> Option<Finding> {
     let on = course.trace.samples.iter().zip(&course.states).filter(|(_, state)| **state == SwitchState::On);
     let carried = on.filter_map(|(sample, _)| sample.range).max_by(|a, b| a.0.total_cmp(&b.0))?;
-    let mut ranges: Vec<Amps> = course.trace.samples.iter().filter_map(|sample| sample.range).collect();
-    ranges.sort_by(|a, b| a.0.total_cmp(&b.0));
-    ranges.dedup();
+    let mut ranges: Vec<Amps> = Vec::new();
+    for range in course.trace.samples.iter().filter_map(|sample| sample.range) {
+        if !ranges.contains(&range) {
+            ranges.push(range);
+        }
+    }
     ranges.into_iter().filter(|range| *range < carried).find_map(|range| on_range(course, range))
 }
 

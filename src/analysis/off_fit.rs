@@ -13,6 +13,7 @@ use super::settled::Settled;
 use crate::profile::QuantityName;
 use crate::statistics::line::{Line, Point};
 use crate::units::{Amps, Volts};
+use std::collections::BTreeMap;
 
 /// Fewest different voltages: two make the line, the others show whether it is one.
 const FEWEST: usize = 4;
@@ -96,11 +97,18 @@ fn scale(settled: &Settled) -> f64 {
 
 /// At each voltage only what the smallest range read there.
 fn most_sensitive(readings: &[Settled]) -> Vec<Settled> {
-    let here = |a: &Settled, b: &Settled| (a.volts - b.volts).abs().0 <= 1e-3 * a.volts.0;
-    let finest =
-        |settled: &&Settled| !readings.iter().any(|it| here(it, settled) && scale(it) < scale(settled));
-    readings.iter().filter(finest).copied().collect()
+    let place = |settled: &Settled| (settled.volts.0.ln() / SAME_VOLTAGE).round() as i64;
+    let mut finest: BTreeMap<i64, f64> = BTreeMap::new();
+    for settled in readings {
+        let here = finest.entry(place(settled)).or_insert(f64::INFINITY);
+        *here = here.min(scale(settled));
+    }
+    let kept = |it: &&Settled| finest.get(&place(it)).is_some_and(|finest| scale(it) <= *finest);
+    readings.iter().filter(kept).copied().collect()
 }
+
+/// Share by which two readings of one voltage may differ.
+const SAME_VOLTAGE: f64 = 2e-3;
 
 /// Lowest and highest voltage; `None` where there are too few, or they lie too close, for a line.
 fn span(readings: &[Settled]) -> Option<(Volts, Volts)> {

@@ -5,8 +5,11 @@ use crate::trace::{Drift, Sample};
 use crate::units::{Amps, Volts};
 use std::ops::Range;
 
-/// Fewest readings that show a drift.
-const FEWEST: usize = 3;
+/// Fewest readings that show a drift beside their scatter.
+const FEWEST: usize = 6;
+
+/// Volts by which terminals that have arrived may still move: a capacitor of 10 uF makes 40 nA of so slow a fall.
+const STANDS: f64 = 0.02;
 
 /// Readings that differ from the last by less than this share of it have settled.
 const AGREES: f64 = 0.02;
@@ -44,28 +47,37 @@ impl Settled {
         Self::mean(course, &samples[samples.len() - count..])
     }
 
-    /// The readings at the end of `samples` that do not move, as far as their scatter lets one tell; `None` when the last
-    /// is overloaded or still moves. One or two readings show no drift and have to agree.
+    /// The readings at the end of `samples` of which neither current nor voltage moves, as far as their scatter tells; `None` when the last
+    /// is overloaded or still moves. Fewer than six show no drift and have to agree.
     pub(super) fn standing(course: &Course<'_>, samples: Range<usize>) -> Option<Self> {
         let all = &course.trace.samples[samples.clone()];
         let last = all.last()?;
         let last_amps = last.current.amps()?;
         let from = all.iter().rposition(|sample| sample.current.amps().is_none()).map_or(0, |at| at + 1);
-        let mut tail = &all[from..];
-        if tail.len() < FEWEST {
+        let good = &all[from..];
+        if good.len() < FEWEST {
             return Self::of(course, samples);
         }
         let claimed = course.current_uncertainty(last.range, last_amps);
         let budget = course.profile.off_drift().max(claimed).0;
-        while tail.len() >= FEWEST {
-            let readings = tail.iter().filter_map(|it| Some((it.at, it.current.amps()?.0)));
-            if !Drift::of(readings).is_some_and(|drift| drift.is_surely_beyond(budget)) {
-                return Self::mean(course, tail);
+        let newest = |length: usize| &good[good.len() - length.min(good.len())..];
+        let mut length = FEWEST;
+        let mut found =
+            stands(course, newest(length), budget).then(|| Self::mean(course, newest(length)))??;
+        // Older readings count as long as they tell the same; a transient at the beginning does not.
+        while length < good.len() {
+            let (wider, older) = (newest(length * 2), length.min(good.len() - length));
+            let before = Self::mean(course, &wider[..older])?;
+            let spread = found.squares / (found.count as f64 - 1.0);
+            let apart = (spread / found.count as f64 + spread / older as f64).sqrt();
+            let agrees = (before.amps - found.amps).abs().0 <= (SURELY * apart).max(SAME * budget);
+            if !agrees || !stands(course, wider, budget) {
+                break;
             }
-            // A transient at the beginning is forgotten by halves.
-            tail = &tail[tail.len() / 2..];
+            found = Self::mean(course, wider)?;
+            length *= 2;
         }
-        None
+        Some(found)
     }
 
     fn mean(course: &Course<'_>, settled: &[Sample]) -> Option<Self> {
@@ -90,6 +102,19 @@ impl Settled {
         let count = self.count as f64;
         (self.count > 1).then(|| (self.squares / (count - 1.0) / count).sqrt())
     }
+}
+
+/// Standard deviations of a difference that are no accident.
+const SURELY: f64 = 4.0;
+/// Share of what a reading may drift, below which a difference does not matter.
+const SAME: f64 = 0.2;
+
+/// Whether neither current nor voltage moves.
+fn stands(course: &Course<'_>, samples: &[Sample], budget: f64) -> bool {
+    let currents = samples.iter().filter_map(|it| Some((it.at, it.current.amps()?.0)));
+    let voltages = samples.iter().map(|it| (it.at, course.terminals(it).0));
+    let moves = |drift: Option<Drift>, budget| drift.is_some_and(|it| it.is_surely_beyond(budget));
+    !moves(Drift::of(currents), budget) && !moves(Drift::of(voltages), STANDS)
 }
 
 #[cfg(test)]

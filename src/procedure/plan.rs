@@ -99,7 +99,7 @@ impl Plan {
             voltmeter: ability.voltmeter,
             off_points: off_line::points(profile),
             off_drift: profile.off_drift().max(zero_uncertainty(ability, first_off)),
-            rebound: rebound::trial(profile.pack.rebound),
+            rebound: rebound::trial(profile.pack.rebound).filter(|_| ability.voltmeter),
             on_range,
             on_uncertainty: zero_uncertainty(ability, on_range),
             off_ranges,

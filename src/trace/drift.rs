@@ -7,6 +7,9 @@ use std::time::Duration;
 /// microamperes, where the absorption of capacitors goes on for minutes.
 const HORIZON: f64 = 5.0;
 
+/// Standard uncertainties that are no accident: few readings know their own scatter badly.
+const SURELY: f64 = 4.0;
+
 /// Shortest time over which a slope is taken: ten whole periods of 50 Hz mains and twelve of 60 Hz.
 pub const WHOLE_LINE_PERIODS: Duration = Duration::from_millis(200);
 
@@ -31,9 +34,9 @@ impl Drift {
         self.slope.abs() * HORIZON < budget
     }
 
-    /// True when it moves by more than `budget`, whatever the scatter (two standard uncertainties).
+    /// True when it moves by more than `budget`, whatever the scatter.
     pub fn is_surely_beyond(&self, budget: f64) -> bool {
-        (self.slope.abs() - 2.0 * self.uncertainty) * HORIZON > budget
+        (self.slope.abs() - SURELY * self.uncertainty) * HORIZON > budget
     }
 }
 

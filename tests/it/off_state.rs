@@ -57,10 +57,10 @@ fn the_truth_lies_within_the_uncertainty_of_every_derived_quantity() {
             }
         }
         for (quantity, (inside, count, squares)) in names.iter().zip(inside) {
-            println!(
-                "{name}: {quantity:?} inside {inside} of {count}, {:.2}",
-                (squares / count as f64).sqrt()
-            );
+            let rms = (squares / count as f64).sqrt();
+            // Truth and storage share what the profile states of the battery, so nothing is left to scatter there.
+            let honest = count == 0 || *quantity == QuantityName::StorageTime || (0.3..1.25).contains(&rms);
+            assert!(honest, "{name}: {quantity:?} errs by {rms} standard uncertainties in the mean square");
             assert!(inside * 100 >= count * 93, "{name}: {quantity:?} inside {inside} of {count}");
         }
     }

@@ -46,7 +46,7 @@ impl Board {
             detect: Duration::from_micros(rng.random_range(100..5000)),
             release: Duration::from_micros(rng.random_range(1000..20_000)),
             lead: rng.random_range(0.02..0.6),
-            off_amps: rng.random_range(2.2e-6..2.7e-6),
+            off_amps: rng.random_range(2.2e-6..2.6e-6),
             stuck: None,
             load_connected: true,
         }
