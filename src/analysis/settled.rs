@@ -47,8 +47,8 @@ impl Settled {
         Self::mean(course, &samples[samples.len() - count..])
     }
 
-    /// The readings at the end of `samples` of which neither current nor voltage moves, as far as their scatter tells; `None` when the last
-    /// is overloaded or still moves. Fewer than six show no drift and have to agree.
+    /// The readings at the end of `samples` of which neither current nor voltage moves, as far as their scatter tells;
+    /// `None` when the last is overloaded or still moves. Fewer than six show no drift and have to agree.
     pub(super) fn standing(course: &Course<'_>, samples: Range<usize>) -> Option<Self> {
         let all = &course.trace.samples[samples.clone()];
         let last = all.last()?;
@@ -62,8 +62,14 @@ impl Settled {
         let budget = course.profile.off_drift().max(claimed).0;
         let newest = |length: usize| &good[good.len() - length.min(good.len())..];
         let mut length = FEWEST;
-        let mut found =
-            stands(course, newest(length), budget).then(|| Self::mean(course, newest(length)))??;
+        // Six readings may seem to move by chance; more of them tell.
+        while !stands(course, newest(length), budget) {
+            if length >= good.len() {
+                return None;
+            }
+            length *= 2;
+        }
+        let mut found = Self::mean(course, newest(length))?;
         // Older readings count as long as they tell the same; a transient at the beginning does not.
         while length < good.len() {
             let (wider, older) = (newest(length * 2), length.min(good.len() - length));
