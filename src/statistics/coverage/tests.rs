@@ -1,5 +1,7 @@
 use super::*;
 use crate::statistics::distribution::{Distribution, Normal, StudentT};
+use crate::statistics::monte_carlo::propagate;
+use proptest::prelude::*;
 use std::f64::consts::PI;
 
 /// What is promised of a coverage factor.
@@ -224,5 +226,52 @@ fn the_sides_of_a_spread_add_up() {
         }
         assert!(spread.beyond(f64::NAN).is_nan());
         assert!(spread.beyond(f64::INFINITY) < 1e-9);
+    }
+}
+
+/// The repeated-sampling promise of the GUM (G.3, G.4): scatter whose standard deviation is itself worked out from six
+/// readings, beside exactly known influences. 4000 samples; four standard errors are 1.4 %.
+#[test]
+fn the_factor_covers_as_often_as_stated() {
+    let (seed, degrees, samples) = (11, 5.0, 4000);
+    for (normal, rectangle) in [(0.5, 1.5), (0.0, 2.0), (1.0, 0.0), (0.2, 0.1)] {
+        let known = [Influence::normal(normal), Influence::rectangular(rectangle)];
+        let covered = std::cell::Cell::new(0);
+        propagate(seed, samples, |draws| {
+            let scatter = (0..5).map(|_| draws.normal().powi(2)).sum::<f64>() / degrees;
+            let mut influences = vec![Influence::scatter(scatter.sqrt(), degrees)];
+            influences.extend(known);
+            let half_width = Spread::new(&influences).and_then(|s| s.half_width(0.95)).unwrap_or(f64::NAN);
+            let error = draws.normal() + known.iter().map(|part| draws.deviation(part)).sum::<f64>();
+            covered.set(covered.get() + usize::from(error.abs() <= half_width));
+            error
+        });
+        let share = covered.get() as f64 / samples as f64;
+        assert!((share - 0.95).abs() < 0.014, "seed {seed}, {normal}, {rectangle}: {share}");
+    }
+}
+
+fn any_influence() -> impl Strategy<Value = Influence> {
+    (-14.0..4.0_f64, any::<bool>(), proptest::option::of(0.5..200.0_f64)).prop_map(
+        |(log, sharp, degrees_of_freedom)| {
+            let shape = if sharp { Shape::Rectangular } else { Shape::Normal };
+            Influence { standard_uncertainty: 10.0_f64.powf(log), shape, degrees_of_freedom }
+        },
+    )
+}
+
+proptest! {
+    /// Whatever the mix, there is a factor; it holds what it promises, and more probability asks for more.
+    #[test]
+    fn every_mix_has_a_factor(
+        influences in proptest::collection::vec(any_influence(), 1..9),
+        p in 0.01..0.9999_f64,
+    ) {
+        let spread = Spread::new(&influences).expect("a spread");
+        let half_width = spread.half_width(p).expect("a half width");
+        prop_assert!(half_width.is_finite() && half_width > 0.0);
+        let within = spread.within(half_width);
+        prop_assert!((within - p).abs() < 2e-5, "{within} against {p}");
+        prop_assert!(spread.half_width(0.5 * (1.0 + p)).is_some_and(|wider| wider > half_width));
     }
 }
