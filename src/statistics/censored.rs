@@ -1,9 +1,9 @@
 //! Mean and standard deviation of a normal population whose values were never read, only bracketed.
 //!
-//! A board that cycles through its threshold tells between which two set-points it changed, each time. Taking the middles
-//! for readings makes a small jitter too large and a very small one zero; the likelihood of the brackets does neither
-//! (interval censoring). In one over the standard deviation and mean over the standard deviation its logarithm has a single
-//! hill (Burridge 1981), so that climbing always leads to the top.
+//! A board that cycles through its threshold tells between which two set-points it changed, each time. Taking the
+//! middles for readings makes a small jitter too large and a very small one zero; the likelihood of the brackets does
+//! neither (interval censoring). In one over the standard deviation and mean over the standard deviation its
+//! logarithm has a single hill (Burridge 1981), so that climbing always leads to the top.
 
 mod likelihood;
 mod profile;
@@ -21,7 +21,8 @@ const MOST_HALVES: i32 = 40;
 /// Where the logarithm of the likelihood can be raised by no more than this, the next step ends the climb.
 const AT_THE_TOP: f64 = 1e-9;
 
-/// Where one value lies: between `low` and `high`, either of which may be infinite. Both the same for a value that was read.
+/// Where one value lies: between `low` and `high`, either of which may be infinite. Both the same for a value that
+/// was read.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Bracket {
     /// Not below this.

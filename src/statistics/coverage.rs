@@ -1,14 +1,15 @@
 //! How far a result may be from the truth with a stated probability, from how each influence on it is spread.
 //!
-//! A factor of 2 holds where many influences of like size add up (JCGM 100:2008, G.6.6). One wide rectangle, such as a
-//! bracket wider than the meter's error, reaches no further than its ends: there 2 overstates. So the distribution of
-//! the sum itself is worked out: rectangles are convolved with one another and with one bell, which stands for every
-//! bell-shaped influence. With finite degrees of freedom the bell is Student's t with the effective number of
-//! Welch and Satterthwaite (JCGM 100:2008, G.4.2), scaled by the combined uncertainty of its parts (JCGM 101:2008, 6.4.9).
+//! A factor of 2 holds where many influences of like size add up (JCGM 100:2008, G.6.6). One wide rectangle, such as
+//! a bracket wider than the meter's error, reaches no further than its ends: there 2 overstates. So the distribution
+//! of the sum itself is worked out: rectangles are convolved with one another and with one bell, which stands for
+//! every bell-shaped influence. With finite degrees of freedom the bell is Student's t with the effective number of
+//! Welch and Satterthwaite (JCGM 100:2008, G.4.2), scaled by the combined uncertainty of its parts (JCGM 101:2008,
+//! 6.4.9).
 //!
-//! The bells together are what a confidence interval of the GUM rests on: with Welch and Satterthwaite's number it covers
-//! the truth as often as stated. The sum of t distributions of JCGM 101 is wider where scatter of few readings meets other
-//! bells, by 3 % for five degrees of freedom beside a normal half as large and a rectangle.
+//! The bells together are what a confidence interval of the GUM rests on: with Welch and Satterthwaite's number it
+//! covers the truth as often as stated. The sum of t distributions of JCGM 101 is wider where scatter of few readings
+//! meets other bells, by 3 % for five degrees of freedom beside a normal half as large and a rectangle.
 //!
 //! A rectangle whose width itself is in doubt (finite degrees of freedom) has no sharp ends and counts as a bell.
 
@@ -120,7 +121,7 @@ impl Spread {
         Some(relative * self.standard_uncertainty)
     }
 
-    /// Probability that the sum is within `half_width` of its estimate; to 1e-5.
+    /// Probability that the sum is within `half_width` of its estimate; to 2e-5.
     pub fn within(&self, half_width: f64) -> f64 {
         let c = half_width / self.standard_uncertainty;
         if c <= 0.0 {
@@ -141,7 +142,7 @@ impl Spread {
         within.clamp(0.0, 1.0)
     }
 
-    /// Probability that the sum lies more than `deviation` above its estimate; to 1e-5, and to rounding where there are
+    /// Probability that the sum lies more than `deviation` above its estimate; to 2e-5, and to rounding where there are
     /// no rectangles. By symmetry also that it lies more than `deviation` below.
     pub fn beyond(&self, deviation: f64) -> f64 {
         let outside = match &self.parts {

@@ -143,8 +143,8 @@ mod tests {
         assert!((line.residual_test().expect("36 points") - 0.812_527_119_105_3).abs() < 1e-9);
     }
 
-    /// GUM (JCGM 100:2008) H.3: correction of a thermometer against its reading, as a line about 20 degrees. Inputs from
-    /// two public copies of Table H.6, printed results from memory.
+    /// GUM (JCGM 100:2008) H.3: correction of a thermometer against its reading, as a line about 20 degrees. Inputs
+    /// from two public copies of Table H.6, printed results from memory.
     #[test]
     fn the_thermometer_of_the_gum_comes_out_as_printed() {
         let text = include_str!("../../tests/data/statistics/gum_h3_thermometer.json");

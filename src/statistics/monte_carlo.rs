@@ -1,5 +1,5 @@
-//! Propagation of distributions by Monte Carlo (JCGM 101:2008): the check of an uncertainty budget where the model is not
-//! a straight sum.
+//! Propagation of distributions by Monte Carlo (JCGM 101:2008): the check of an uncertainty budget where the model is
+//! not a straight sum.
 //!
 //! The same seed gives the same result on every machine.
 
@@ -108,8 +108,8 @@ mod tests {
     const TRIALS: usize = 200_000;
     const SEED: u64 = 20;
 
-    /// JCGM 101:2008, 9.2: four normals, four rectangles, one dominant rectangle; 2.0, 2.0, 10.1 and half widths of 3.92,
-    /// 3.88 and 17.0. An end at 97.5 % of 200 000 trials is known to 0.4 in a thousand of probability.
+    /// JCGM 101:2008, 9.2: four normals, four rectangles, one dominant rectangle; 2.0, 2.0, 10.1 and half widths of
+    /// 3.92, 3.88 and 17.0. An end at 97.5 % of 200 000 trials is known to 0.4 in a thousand of probability.
     #[test]
     fn the_additive_examples_of_supplement_1_come_out() {
         let rectangle = Influence::rectangular;

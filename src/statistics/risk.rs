@@ -30,9 +30,9 @@ impl Interval {
     }
 }
 
-/// Probability that the true value lies outside of `limits`, where `value` was measured and `spread` is how far it may be
-/// off. It is the specific consumer's risk of accepting the item (JCGM 106:2012, 9.3.2), and one less the conformance
-/// probability (7.3, 7.4). What was known of the item beforehand is not used.
+/// Probability that the true value lies outside of `limits`, where `value` was measured and `spread` is how far it
+/// may be off. It is the specific consumer's risk of accepting the item (JCGM 106:2012, 9.3.2), and one less the
+/// conformance probability (7.3, 7.4). What was known of the item beforehand is not used.
 pub fn nonconformance(value: f64, spread: &Spread, limits: Interval) -> f64 {
     let below = limits.min.map_or(0.0, |min| spread.beyond(value - min));
     let above = limits.max.map_or(0.0, |max| spread.beyond(max - value));

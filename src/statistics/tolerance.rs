@@ -1,7 +1,8 @@
-//! Tolerance intervals: between which limits a stated part of a population lies, with a stated confidence, from a sample.
+//! Tolerance intervals: between which limits a stated part of a population lies, with a stated confidence, from a
+//! sample.
 //!
-//! For a normal population the limits are mean plus and minus factor times standard deviation of the sample (ISO 16269-6).
-//! For any other continuous one the sample's extremes serve, if the sample is large enough.
+//! For a normal population the limits are mean plus and minus factor times standard deviation of the sample (ISO
+//! 16269-6). For any other continuous one the sample's extremes serve, if the sample is large enough.
 
 use super::distribution::{ChiSquared, Distribution, NonCentralT, Normal};
 use super::root::root;
@@ -39,8 +40,9 @@ pub fn factor(sides: Sides, count: usize, content: f64, confidence: f64) -> Opti
     }
 }
 
-/// The smallest sample of any continuous population whose largest value (one side), or whose smallest and largest (two
-/// sides), bound at least the part `content` of it with `confidence` (Wilks 1941). `None` unless both lie between 0 and 1.
+/// The smallest sample of any continuous population whose largest value (one side), or whose smallest and largest
+/// (two sides), bound at least the part `content` of it with `confidence` (Wilks 1941). `None` unless both lie
+/// between 0 and 1.
 pub fn least_sample(sides: Sides, content: f64, confidence: f64) -> Option<usize> {
     if !is_part(content) || !is_part(confidence) {
         return None;
@@ -134,8 +136,8 @@ mod tests {
         rows.len()
     }
 
-    /// Two-sided factors computed with scipy 1.17.1 by quadrature and root finding; printed to two decimals in Berthouex
-    /// and Brown, Statistics for Environmental Engineers, Table 21.1 (ISO 16269-6 has the same quantity).
+    /// Two-sided factors computed with scipy 1.17.1 by quadrature and root finding; printed to two decimals in
+    /// Berthouex and Brown, Statistics for Environmental Engineers, Table 21.1 (ISO 16269-6 has the same quantity).
     #[test]
     fn two_sided_factors_agree_with_quadrature() {
         let file = file(include_str!("../../tests/data/statistics/tolerance_two_sided_95.json"));

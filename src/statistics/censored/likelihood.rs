@@ -4,8 +4,8 @@ use super::Bracket;
 use crate::statistics::distribution::{Distribution, Normal};
 use std::f64::consts::TAU;
 
-/// A bracket narrower than this many standard deviations is as good as a reading of its middle, to 1e-11; the difference
-/// of the probabilities at its ends is good to that no longer.
+/// A bracket narrower than this many standard deviations is as good as a reading of its middle, to 1e-11; the
+/// difference of the probabilities at its ends is good to that no longer.
 const AS_GOOD_AS_READ: f64 = 1e-5;
 
 /// Probabilities below this are about to run out of numbers.

@@ -50,8 +50,8 @@ fn a_mixed_bag_agrees_with_thirty_digit_arithmetic() {
     }
 }
 
-/// Values that are read, and brackets next to nothing wide, give mean and standard deviation by `n`; their uncertainties
-/// are those of a normal sample, `s / sqrt(n)` and `s / sqrt(2 n)`.
+/// Values that are read, and brackets next to nothing wide, give mean and standard deviation by `n`; their
+/// uncertainties are those of a normal sample, `s / sqrt(n)` and `s / sqrt(2 n)`.
 #[test]
 fn narrow_brackets_give_the_plain_sample() {
     let readings = [5.9975, 6.0002, 6.0011, 5.9998, 6.0031, 5.9984, 6.0007];
@@ -74,7 +74,8 @@ fn narrow_brackets_give_the_plain_sample() {
     }
 }
 
-/// Three cells have as many free shares as the population has parameters, so that it follows from the shares in closed form.
+/// Three cells have as many free shares as the population has parameters, so that it follows from the shares in
+/// closed form.
 #[test]
 fn three_cells_give_their_quantiles() {
     let cells = [between(f64::NEG_INFINITY, 2.0), between(2.0, 3.0), between(3.0, f64::INFINITY)];

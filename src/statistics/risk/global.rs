@@ -136,8 +136,8 @@ mod tests {
         Interval { min: Some(min), max: Some(max) }
     }
 
-    /// JCGM 106:2012, 9.5.3: wire-wound resistors of 1500 ohm. Printed (from memory): 10 % of the process do not conform,
-    /// the risks are 1 % and 7 %. More digits from scipy's bivariate integration.
+    /// JCGM 106:2012, 9.5.3: wire-wound resistors of 1500 ohm. Printed (from memory): 10 % of the process do not
+    /// conform, the risks are 1 % and 7 %. More digits from scipy's bivariate integration.
     #[test]
     fn the_resistors_of_jcgm_106_come_out() {
         let text = include_str!("../../../tests/data/statistics/jcgm106_global_resistor.json");
