@@ -31,7 +31,7 @@ pub struct Study {
     pub practically_all: Option<Window>,
     /// Of the boards drawn, 95 %.
     pub nineteen_of_twenty: Option<Window>,
-    /// What each part that varies contributes.
+    /// What each part that varies contributes, the largest share of the variance first.
     pub contributions: Vec<Contribution>,
 }
 
@@ -60,7 +60,7 @@ impl Study {
     ) -> Self {
         let linear = root_sum_square(inputs, &model);
         let alone = worst_case::alone(inputs, &model);
-        let contributions = causes
+        let mut contributions: Vec<Contribution> = causes
             .iter()
             .enumerate()
             .filter(|(index, _)| inputs[*index].varies() && alone[*index] != [0.0, 0.0])
@@ -72,6 +72,9 @@ impl Study {
                 drawn_share: drawn.shares[index],
             })
             .collect();
+        // Twins such as the two resistors keep their order, whatever the last digits of a derivative are.
+        let rank = |part: &Contribution| (part.variance_share * 1e6).round();
+        contributions.sort_by(|one, other| rank(other).total_cmp(&rank(one)));
         Self {
             nominal: model(&worst_case::nominals(inputs)),
             worst_case: worst_case::extremes(inputs, &model),

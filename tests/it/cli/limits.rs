@@ -60,13 +60,13 @@ fn the_engineer_sees_methods_parts_sets_and_risks() {
       detector accuracy            -72.0 +72.0 mV     63.7 %                 63.6 %
       top resistor tolerance       -30.0 +30.0 mV     11.1 %                 11.1 %
       bottom resistor tolerance    -29.7 +30.3 mV     11.1 %                 11.3 %
-      sense current                -2.2 +2.2 mV       0.1 %                  0.1 %
       detector temperature         -27.0 +27.0 mV     9.0 %                  9.2 %
-      detector ageing              -6.0 +6.0 mV       0.4 %                  0.5 %
       top resistor temperature     -13.5 +13.5 mV     2.2 %                  2.3 %
       bottom resistor temperature  -13.4 +13.6 mV     2.2 %                  2.2 %
+      detector ageing              -6.0 +6.0 mV       0.4 %                  0.5 %
       top resistor ageing          -3.0 +3.0 mV       0.1 %                  0.1 %
       bottom resistor ageing       -3.0 +3.0 mV       0.1 %                  0.1 %
+      sense current                -2.2 +2.2 mV       0.1 %                  0.1 %
 
     re-enable voltage, nominal 6.402 V
       method                                             re-enable voltage  from nominal
@@ -81,13 +81,13 @@ fn the_engineer_sees_methods_parts_sets_and_risks() {
       detector hysteresis          -102.0 +96.0 mV    34.6 %                 34.4 %
       top resistor tolerance       -32.0 +32.0 mV     7.2 %                  7.2 %
       bottom resistor tolerance    -31.7 +32.3 mV     7.2 %                  7.4 %
-      sense current                -2.2 +2.2 mV       0.0 %                  0.0 %
       detector temperature         -28.8 +28.8 mV     5.9 %                  5.9 %
-      detector ageing              -6.4 +6.4 mV       0.3 %                  0.3 %
       top resistor temperature     -14.4 +14.4 mV     1.5 %                  1.5 %
       bottom resistor temperature  -14.3 +14.5 mV     1.5 %                  1.5 %
+      detector ageing              -6.4 +6.4 mV       0.3 %                  0.3 %
       top resistor ageing          -3.2 +3.2 mV       0.1 %                  0.1 %
       bottom resistor ageing       -3.2 +3.2 mV       0.1 %                  0.1 %
+      sense current                -2.2 +2.2 mV       0.0 %                  0.0 %
 
     hysteresis, nominal 402.0 mV
       method                                             hysteresis         from nominal
@@ -98,14 +98,14 @@ fn the_engineer_sees_methods_parts_sets_and_risks() {
       Monte Carlo: 95 % of the boards drawn              322.2 to 476.7 mV  -79.8 +74.7 mV
 
       part                         alone, worst case  variance, first order  variance, boards drawn
-      detector accuracy            -4.8 +4.8 mV       0.5 %                  0.5 %
       detector hysteresis          -102.0 +96.0 mV    99.3 %                 99.3 %
+      detector accuracy            -4.8 +4.8 mV       0.5 %                  0.5 %
       top resistor tolerance       -2.0 +2.0 mV       0.1 %                  0.1 %
       bottom resistor tolerance    -2.0 +2.0 mV       0.1 %                  0.1 %
       detector temperature         -1.8 +1.8 mV       0.1 %                  0.0 %
-      detector ageing              -0.4 +0.4 mV       0.0 %                  0.0 %
       top resistor temperature     -0.9 +0.9 mV       0.0 %                  0.0 %
       bottom resistor temperature  -0.9 +0.9 mV       0.0 %                  0.0 %
+      detector ageing              -0.4 +0.4 mV       0.0 %                  0.0 %
       top resistor ageing          -0.2 +0.2 mV       0.0 %                  0.0 %
       bottom resistor ageing       -0.2 +0.2 mV       0.0 %                  0.0 %
 
