@@ -59,8 +59,8 @@ fn no_test_window(quantity: &Quantity) -> Option<Warning> {
         return None;
     }
     let text = format!(
-        "{}: {} down and {} up between test and work, and a guard band of {} at either end, leave nothing of the design \
-         limits, {}. Take better parts, test nearer the working temperature, or measure better.",
+        "{}: {} down and {} up between test and work, and a guard band of {} at either end, leave nothing of the \
+         design limits, {}. Take better parts, test nearer the working temperature, or measure better.",
         quantity.name.title(),
         volts(sets.share_down),
         volts(sets.share_up),
@@ -128,7 +128,8 @@ fn wider_than_test(quantity: &Quantity) -> Option<Warning> {
         format!("{title}: the profile has no {end} limit.")
     } else if design.contains(limit) {
         format!(
-            "{title}: the profile's {end} limit, {}, leaves {} to the design limit; temperature, age and guard band want {}.",
+            "{title}: the profile's {end} limit, {}, leaves {} to the design limit; temperature, age and guard band \
+             want {}.",
             volts(limit),
             volts((limit - design_end).abs()),
             volts((limit - design_end).abs() + by),

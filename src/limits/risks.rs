@@ -13,8 +13,8 @@ pub struct Risks {
     pub simple: GlobalRisk,
 }
 
-/// Risks of `production` against the limits `sets`, measured with `standard_uncertainty`. A board conforms when its true
-/// value at the test leaves room for what happens to it afterwards; it is accepted inside the test limits.
+/// Risks of `production` against the limits `sets`, measured with `standard_uncertainty`. A board conforms when its
+/// true value at the test leaves room for what happens to it afterwards; it is accepted inside the test limits.
 pub(super) fn risks(sets: &LimitSets, production: Process, standard_uncertainty: f64) -> Option<Risks> {
     let tolerance = interval(sets.at_test?);
     let risk = |accepted| global_risk(production, standard_uncertainty, tolerance, accepted);

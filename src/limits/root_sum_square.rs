@@ -2,8 +2,8 @@
 //!
 //! Two figures are told apart. The *root sum square at full tolerance* adds the largest deviation of each part; it is
 //! often read as "what nearly all boards keep", and is too small for that as soon as one bounded part dominates. *Three
-//! standard deviations* adds the standard deviations and takes three of the result; the same bounded part makes it wider
-//! than the worst case. Neither is a coverage interval; Monte Carlo gives that.
+//! standard deviations* adds the standard deviations and takes three of the result; the same bounded part makes it
+//! wider than the worst case. Neither is a coverage interval; Monte Carlo gives that.
 
 use super::input::Input;
 use super::window::Window;

@@ -1,7 +1,7 @@
 //! The promise of test limits: a board that passes keeps the design limits at any working temperature and age.
 //!
-//! Boards are made here with coefficients and temperatures of their own, by formulas of this file, most of them of parts
-//! at an end, where a promise breaks first.
+//! Boards are made here with coefficients and temperatures of their own, by formulas of this file, most of them of
+//! parts at an end, where a promise breaks first.
 
 use crate::river;
 use ebbmark::limits::{Basis, Proposal, Question};

@@ -105,8 +105,8 @@ fn the_boards_drawn_spread_as_those_of_another_generator() {
     }
 }
 
-/// 15 mV of drift either way at the nominal trip; the board that drifts most is the one that is highest already, 6.182 V
-/// x 100 ppm/K x 25 K = 15.45 mV. By hand.
+/// 15 mV of drift either way at the nominal trip; the board that drifts most is the one that is highest already,
+/// 6.182 V x 100 ppm/K x 25 K = 15.45 mV. By hand.
 #[test]
 fn what_happens_after_the_test_comes_off_the_design_limits() {
     let proposal = Proposal::new(&river::profile(), &parts(), &question(Basis::WorstCase));
