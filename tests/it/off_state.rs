@@ -1,8 +1,8 @@
 //! Off-state line, budget, on-resistance, rebound and storage on simulated boards, held against what the boards are.
 
-use crate::virtual_run::{Run, run, run_setup};
 #![expect(clippy::expect_used, reason = "a test stops at what it cannot read")]
 
+use crate::virtual_run::{Run, run, run_setup};
 use ebbmark::analysis::FindingCode;
 use ebbmark::profile::{Limit, Pack, Profile, QuantityName, Rebound, Storage};
 use ebbmark::sim::{Condition, Setup};
