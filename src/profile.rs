@@ -37,6 +37,7 @@
 //! in_band = "6.18 V"                  # switch on at this voltage between trip and re-enable, and note the state
 //! in_band_times = 3                   # how often; 3 if left out
 //! wanted_in_band = "off"              # the state the design wants; either is right if left out
+//!
 //! [off_line]                          # optional: the off current over a span, to tell a resistance from a leak
 //! from = "2.00 V"                     # the detector works here for certain
 //! to = "5.80 V"                       # below every trip the limits allow
@@ -59,10 +60,18 @@
 //! self_discharge = "2 %"
 //! tolerance = "30 %"                  # of remaining capacity and self-discharge
 //! storage_voltage = "5.80 V"          # where off_current has "at", if left out
+//!
+//! [bench]                             # may be left out, each key too: what a bench must have shown before a test
+//! check_every = "24 h"                # `ebbmark bench check`, with everything in order
+//! zero_every = "8 h"                  # `ebbmark bench zero`
+//! reference_every = "24 h"            # `ebbmark bench check --reference`
+//! when_overdue = "refuse"             # or "warn"
+//! when_calibration_overdue = "warn"   # or "refuse"
 //! ```
 //!
 //! The tables `[detector]`, `[divider]` and `[environment]` may say what the thresholds are made of; see [`Parts`].
 
+mod bench;
 mod check;
 mod check_limits;
 mod draft;
@@ -77,6 +86,7 @@ mod rewrite;
 mod sample;
 mod serial_number;
 
+pub use bench::{BenchRules, WhenOverdue};
 pub use limit::{Limit, QuantityName};
 pub use measure::{InBand, Measure, WantedInBand};
 pub use off_line::OffLine;
@@ -123,6 +133,8 @@ pub struct Profile {
     pub off_line: Option<OffLine>,
     /// The battery behind the board, as far as the file tells.
     pub pack: Pack,
+    /// What the bench must have shown before, and how long ago at most.
+    pub bench: BenchRules,
     /// SHA-256 (FIPS 180-4) of the file's text, 64 hexadecimal digits.
     pub hash: String,
 }

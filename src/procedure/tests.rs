@@ -29,6 +29,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         off_paths: Vec::new(),
         off_line: None,
         pack: Pack::default(),
+        bench: Default::default(),
         hash: String::new(),
     };
     let ability = Ability {

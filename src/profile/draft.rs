@@ -5,8 +5,8 @@ use super::off_line::{self, OffLineDraft};
 use super::off_path::{self, OffPath};
 use super::pack::{self, PackDraft};
 use super::parts::{self, PartsDraft};
-use super::serial_number;
-use super::{Limit, Load, Profile, QuantityName, Ramp, Supply, Timing};
+use super::{BenchRules, Limit, Load, Profile, QuantityName, Ramp, Supply, Timing};
+use super::{bench, serial_number};
 use crate::document::{At, Table};
 use crate::units::{Amps, Ohms, Volts, Watts};
 use regex_lite::Regex;
@@ -30,6 +30,7 @@ pub(super) struct Draft {
     pub(super) off_paths: Option<Vec<OffPath>>,
     pub(super) off_line: Option<OffLineDraft>,
     pub(super) pack: Option<PackDraft>,
+    pub(super) bench: BenchRules,
 }
 
 #[derive(Default)]
@@ -92,6 +93,7 @@ impl Draft {
             off_paths: off_path::read(root),
             off_line: off_line::read(root),
             pack: pack::read(root),
+            bench: root.optional_table("bench").map(bench::read).unwrap_or_default(),
         }
     }
 
@@ -128,6 +130,7 @@ impl Draft {
             off_paths: self.off_paths?,
             off_line: self.off_line.as_ref().and_then(OffLineDraft::finish),
             pack: self.pack.as_ref().map(PackDraft::finish).unwrap_or_default(),
+            bench: self.bench,
             hash,
         })
     }

@@ -87,12 +87,20 @@ pub fn parse_quantity(text: &str, wanted: Unit) -> Result<f64, UnitError> {
     if value.is_finite() { Ok(value) } else { Err(UnitError::NotFinite { read: read(), wanted }) }
 }
 
-/// Reads a time such as `"20 ms"`.
+/// Long times as people write them, in seconds (SI Brochure, table 8: units accepted for use with the SI).
+const LONG_TIMES: [(&str, f64); 3] = [("min", 60.0), ("h", 3600.0), ("d", 86_400.0)];
+
+/// Reads a time such as `"20 ms"`, `"90 min"`, `"8 h"` or `"365 d"`.
 ///
 /// # Errors
 /// As [`parse_quantity`], and [`UnitError::Negative`].
 pub fn parse_duration(text: &str) -> Result<Duration, UnitError> {
-    let seconds = parse_quantity(text, Unit::Second)?;
+    let (number, symbol) = split_number(text.trim());
+    let long = LONG_TIMES.iter().find(|(known, _)| *known == symbol);
+    let seconds = match (long, number.parse::<f64>()) {
+        (Some((_, seconds)), Ok(value)) => value * seconds,
+        _ => parse_quantity(text, Unit::Second)?,
+    };
     if seconds < 0.0 {
         return Err(UnitError::Negative { read: text.to_owned() });
     }
@@ -289,6 +297,16 @@ mod tests {
         assert!(message("nan V", Unit::Volt).contains("does not begin with a number"));
         assert!(message("1e999 V", Unit::Volt).contains("too large"));
         assert!(parse_duration("-1 s").is_err());
+    }
+
+    #[test]
+    fn long_times_are_read_in_minutes_hours_and_days() {
+        for (text, seconds) in [("90 min", 5400), ("8 h", 28_800), ("365 d", 31_536_000), ("2 s", 2)] {
+            assert_eq!(parse_duration(text), Ok(Duration::from_secs(seconds)), "{text}");
+        }
+        assert!(parse_duration("-1 h").is_err() && parse_duration("h").is_err());
+        assert!(parse_duration("1e999 d").is_err());
+        assert!(parse_quantity("8 h", Unit::Second).is_err(), "only where a time is meant");
     }
 
     proptest! {

@@ -1,0 +1,168 @@
+//! How often the expanded uncertainty covers the truth: many boards a condition in virtual time, each on a bench whose
+//! instruments' errors are drawn from what their makers claim.
+//!
+//! Prints, for every quantity, the share of boards whose true value lies inside U, and the mean error in U. The first
+//! argument is the number of boards a condition; 10,000 without one.
+
+#![expect(clippy::print_stdout, reason = "a study prints its table")]
+
+mod figures;
+
+use ebbmark::analysis::analyse;
+use ebbmark::bench::{VirtualBench, drive, run_ready};
+use ebbmark::procedure::{Plan, Procedure};
+use ebbmark::profile::{Profile, QuantityName};
+use ebbmark::sim::{Condition, Setup};
+use ebbmark::units::{Ohms, Volts};
+use ebbmark::verdict::judge;
+use figures::conclude;
+use std::collections::BTreeMap;
+use std::error::Error;
+use std::process::ExitCode;
+use std::thread;
+
+/// Boards of each condition.
+const BOARDS: u64 = 10_000;
+
+/// Shares of the truth inside U that a statement of 95 % allows.
+const COVERED: (f64, f64) = (0.94, 0.97);
+
+/// Largest mean error of a threshold, in U.
+const BIAS: f64 = 0.1;
+
+/// Boards are told apart by their seed; each condition has its own.
+const SEEDS_APART: u64 = 1_000_000;
+
+/// What a study varies: the name, and what it does to a good board on a good bench.
+type Variation = (&'static str, fn(&mut Setup, &Profile));
+
+const VARIATIONS: [Variation; 7] = [
+    ("as drawn", |_, _| {}),
+    ("noisy meters", |setup, _| {
+        for range in &mut setup.voltmeter.ranges {
+            range.noise *= 30.0;
+        }
+        for range in &mut setup.ammeter.ranges {
+            range.meter.noise *= 10.0;
+        }
+    }),
+    ("noise at the board", |setup, _| setup.board.noise = Volts(0.1e-3)),
+    ("long leads", |setup, _| setup.wiring.lead_resistance = Ohms(0.6)),
+    ("slowest board", |setup, profile| {
+        setup.board.detect_delay = profile.timing.detect_delay;
+        setup.board.release_delay = profile.timing.release_delay;
+    }),
+    ("coarse supply", |setup, _| setup.supply.set_step = Volts(5e-3)),
+    ("coarse voltmeter", |setup, _| {
+        for range in &mut setup.voltmeter.ranges {
+            range.claim.resolution = 1e-3;
+        }
+    }),
+];
+
+/// What was seen of one quantity.
+#[derive(Clone, Copy, Debug, Default)]
+struct Seen {
+    boards: u64,
+    inside: u64,
+    /// Sum of the errors, in U.
+    errors: f64,
+}
+
+impl Seen {
+    fn add(&mut self, other: Self) {
+        self.boards += other.boards;
+        self.inside += other.inside;
+        self.errors += other.errors;
+    }
+
+    fn covered(self) -> f64 {
+        self.inside as f64 / self.boards as f64
+    }
+
+    fn bias(self) -> f64 {
+        self.errors / self.boards as f64
+    }
+}
+
+type Table = BTreeMap<QuantityName, Seen>;
+
+fn main() -> Result<ExitCode, Box<dyn Error>> {
+    let boards = std::env::args().filter_map(|argument| argument.parse().ok()).next().unwrap_or(BOARDS);
+    let path = concat!(env!("CARGO_MANIFEST_DIR"), "/profiles/river-node.toml");
+    let profile = std::fs::read_to_string(path)?;
+    Profile::read(path, &profile)?;
+    println!("{boards} boards a condition; share with the truth inside U of 95 %, and mean error in U\n");
+    let (mut least, mut most, mut bias) = (1.0_f64, 0.0_f64, 0.0_f64);
+    for (index, (name, vary)) in VARIATIONS.iter().enumerate() {
+        let first = index as u64 * SEEDS_APART;
+        let table = study(&profile, *vary, first, boards)?;
+        println!("{name}");
+        for (quantity, seen) in &table {
+            println!(
+                "  {:22} {:6.2} %  {:+.3} U  {:6} boards",
+                quantity.title(),
+                seen.covered() * 100.0,
+                seen.bias(),
+                seen.boards
+            );
+            (least, most) = (least.min(seen.covered()), most.max(seen.covered()));
+            if matches!(quantity, QuantityName::Trip | QuantityName::ReEnable) {
+                bias = bias.max(seen.bias().abs());
+            }
+        }
+    }
+    Ok(conclude(
+        &format!(
+            "{:.2} to {:.2} % covered, thresholds off by at most {bias:.3} U",
+            least * 100.0,
+            most * 100.0
+        ),
+        &format!("{} to {} %, {BIAS} U", COVERED.0 * 100.0, COVERED.1 * 100.0),
+        least >= COVERED.0 && most <= COVERED.1 && bias < BIAS,
+    ))
+}
+
+/// All boards of one condition, shared among the cores.
+fn study(
+    profile: &str,
+    vary: fn(&mut Setup, &Profile),
+    first: u64,
+    boards: u64,
+) -> Result<Table, Box<dyn Error>> {
+    let cores = thread::available_parallelism()?.get() as u64;
+    let share = |core: u64| {
+        let profile = Profile::read("river-node.toml", profile).unwrap_or_else(|problems| panic!("{problems}"));
+        let mut table = Table::new();
+        for seed in (first + core..first + boards).step_by(cores as usize) {
+            board(&profile, vary, seed, &mut table);
+        }
+        table
+    };
+    let tables: Vec<Table> = thread::scope(|scope| {
+        let workers: Vec<_> = (0..cores).map(|core| scope.spawn(move || share(core))).collect();
+        workers.into_iter().map(|worker| worker.join().unwrap_or_default()).collect()
+    });
+    let mut all = Table::new();
+    for (name, seen) in tables.into_iter().flatten() {
+        all.entry(name).or_default().add(seen);
+    }
+    Ok(all)
+}
+
+/// Tests one board and holds every quantity against its truth.
+fn board(profile: &Profile, vary: fn(&mut Setup, &Profile), seed: u64, table: &mut Table) {
+    let mut setup = Setup::new(profile, Condition::Good, seed);
+    vary(&mut setup, profile);
+    let mut bench = VirtualBench::new(&setup, setup.ability());
+    let procedure = Procedure::new(Plan::new(profile, &setup.ability()));
+    let trace = run_ready(drive(procedure, &mut bench, setup.claims(), &mut (), std::future::pending()));
+    let truth = bench.world().truth();
+    for judged in judge(&analyse(&trace, profile), profile, &trace.ending).judged {
+        let name = judged.quantity.name;
+        let Some(truth) = truth.value(name, profile) else { continue };
+        let (error, expanded) = (judged.quantity.value - truth, judged.expanded_uncertainty());
+        let inside = u64::from(error.abs() <= expanded);
+        table.entry(name).or_default().add(Seen { boards: 1, inside, errors: error / expanded });
+    }
+}
