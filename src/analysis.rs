@@ -8,6 +8,7 @@ mod delay;
 mod derived;
 mod diagnosis;
 mod discharge;
+mod doubts;
 mod edges;
 mod finding;
 #[cfg(test)]
@@ -34,6 +35,7 @@ mod switching_time;
 mod terminals;
 mod threshold;
 mod trust;
+mod zero;
 
 pub use finding::{About, Finding, FindingCode};
 pub use quantity::{Contribution, Quantity, Shape};
@@ -102,6 +104,7 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(diagnosis::current_limit(&course));
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));
     findings.extend(trust::accuracy(&course));
+    findings.extend(doubts::findings(&trace.claims));
     findings.extend(discharge::still_charged(trace));
     findings.extend(note);
     findings.extend(derived.remarks);

@@ -4,15 +4,19 @@
 //! bench a second ago, from a record of last year or from a CSV file.
 
 pub mod csv;
+mod doubt;
 mod drift;
 mod ending;
 mod switch_state;
+mod zero;
 
+pub use doubt::Doubt;
 pub use drift::{Drift, WHOLE_LINE_PERIODS};
 pub use ending::{BenchFault, Ending, FaultKind, OutputState, Stop};
 pub use switch_state::SwitchState;
+pub use zero::Zero;
 
-use crate::units::{Amps, Ohms, Volts};
+use crate::units::{Amps, Celsius, Ohms, Volts};
 use serde::{Deserialize, Serialize};
 use std::time::Duration;
 
@@ -123,6 +127,15 @@ pub struct Claims {
     /// How long readings and steps take; `None` when not known.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub times: Option<Times>,
+    /// What the bench showed with an empty fixture, where that was read.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub zero: Vec<Zero>,
+    /// Temperature of the room, where it is known; what it adds is in the claims already.
+    #[serde(rename = "room_degc", default, skip_serializing_if = "Option::is_none")]
+    pub room: Option<Celsius>,
+    /// Why these claims may not hold.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub doubts: Vec<Doubt>,
 }
 
 /// How long the instruments' readings and steps take.
@@ -185,11 +198,16 @@ mod seconds {
     use serde::{Deserialize, Deserializer, Serializer, de::Error};
     use std::time::Duration;
 
-    pub(super) fn serialize<S: Serializer>(time: &Duration, serializer: S) -> Result<S::Ok, S::Error> {
+    pub(in crate::trace) fn serialize<S: Serializer>(
+        time: &Duration,
+        serializer: S,
+    ) -> Result<S::Ok, S::Error> {
         serializer.serialize_f64(time.as_secs_f64())
     }
 
-    pub(super) fn deserialize<'de, D: Deserializer<'de>>(deserializer: D) -> Result<Duration, D::Error> {
+    pub(in crate::trace) fn deserialize<'de, D: Deserializer<'de>>(
+        deserializer: D,
+    ) -> Result<Duration, D::Error> {
         let seconds = f64::deserialize(deserializer)?;
         Duration::try_from_secs_f64(seconds).map_err(D::Error::custom)
     }
@@ -216,6 +234,33 @@ mod tests {
             r#"{"time_s":0.25,"set_v":6.0,"current_a":"overload","load_v":5.9,"range_a":0.1,"limit":false}"#
         );
         assert_eq!(serde_json::from_str::<Sample>(&text).expect("its own text"), sample);
+    }
+
+    /// A line of claims as logs before zeros and temperatures have it.
+    #[test]
+    fn claims_of_an_older_record_are_read_and_empty_ones_leave_no_mark() {
+        let old = r#"{"set":null,"sense":null,"current":[],"lead_resistance":null}"#;
+        let claims: Claims = serde_json::from_str(old).expect("an old record");
+        assert_eq!(claims, Claims::default());
+        assert_eq!(serde_json::to_string(&claims).expect("plain data"), old);
+    }
+
+    #[test]
+    fn a_zero_is_written_with_its_units_and_read_back() {
+        let zero = Zero {
+            full_scale: Amps(1e-4),
+            at: Volts(5.8),
+            current: Amps(9e-9),
+            standard_uncertainty: Amps(2e-10),
+            readings: 20,
+            age: Duration::from_secs(90),
+        };
+        let text = serde_json::to_string(&zero).expect("plain data");
+        assert_eq!(
+            text,
+            r#"{"full_scale_a":0.0001,"at_v":5.8,"current_a":9e-9,"standard_uncertainty_a":2e-10,"readings":20,"age_s":90.0}"#
+        );
+        assert_eq!(serde_json::from_str::<Zero>(&text).expect("its own text"), zero);
     }
 
     #[test]

@@ -83,6 +83,10 @@ pub enum FindingCode {
     AccuracyNotIncluded,
     /// No voltmeter at the board: the drop in the leads is not measured.
     NoVoltmeter,
+    /// The calibration of an instrument no longer holds.
+    CalibrationOverdue,
+    /// The room is outside the temperatures for which an instrument's accuracy is stated.
+    OutsideTemperature,
     /// An instrument or its link failed.
     BenchFault,
     /// The run was stopped.

@@ -1,13 +1,15 @@
 //! The off current at the voltage its limit names, on the smallest range that could show it.
 //!
 //! It counts only where the board is certainly off (below every set-point at which it was ever on), the terminals have
-//! arrived and the reading has settled. What a voltmeter behind the ammeter draws is not the board's and is taken off.
+//! arrived and the reading has settled. What a voltmeter behind the ammeter draws is not
+//! the board's and is taken off, and so is the bench's own zero where it was read.
 
 use super::finding::{About, Finding, FindingCode};
 use super::off_limits::{adequate, coarse_finding, outside_finding};
 use super::plateau::{Course, Plateau, SAME_SET};
 use super::quantity::{Contribution, Quantity};
 use super::settled::Settled;
+use super::zero;
 use crate::profile::QuantityName;
 use crate::statistics::line::{Line, Point};
 use crate::trace::SwitchState;
@@ -18,9 +20,6 @@ use std::ops::Range;
 const NEAR: f64 = 0.02;
 /// Spread of voltage over which a line is worth drawing, as a share.
 const SPAN: f64 = 0.002;
-/// Standard uncertainty of a voltmeter's input resistance, as a share. Makers state 10 Mohm to within 1 % (common practice);
-/// taken whole and not as a rectangle, for the definitions do not state it.
-pub(super) const INPUT_RESISTANCE: f64 = 0.01;
 /// Terminals this near to the set-point, in volts and as a share of it, have arrived.
 const ARRIVED: (f64, f64) = (0.02, 0.01);
 
@@ -179,13 +178,8 @@ fn estimate(course: &Course<'_>, readings: &[Settled], at: Volts) -> Option<Quan
     };
     let range = readings.first()?.range;
     let passing = course.voltmeter_current(at);
-    let reading = Amps(value) + passing;
-    if let Some(accuracy) = course.trace.claims.current_accuracy(range, reading) {
-        parts.push(Contribution::normal("ammeter", accuracy.standard_uncertainty(reading.0)));
-    }
-    if passing > Amps::ZERO {
-        parts.push(Contribution::normal("voltmeter's input current", INPUT_RESISTANCE * passing.0));
-    }
+    let (value, of_bench) = zero::without_zero(course, range, at, value, passing);
+    parts.extend(of_bench);
     Some(Quantity::new(QuantityName::OffCurrent, value, parts))
 }
 

@@ -5,11 +5,12 @@
 //! errors says, so an offset of the ammeter goes into the constant part whole and into the conductance not at all, and
 //! its gain into both (JCGM 100:2008, 5.2.2). Nothing is said of voltages outside the span.
 
-use super::off_current::{INPUT_RESISTANCE, off_readings};
+use super::off_current::off_readings;
 use super::plateau::Course;
 use super::quantity::{Contribution, Quantity};
 use super::residuals::{Residuals, Shape};
 use super::settled::Settled;
+use super::zero::INPUT_RESISTANCE;
 use crate::profile::QuantityName;
 use crate::statistics::line::{Line, Point};
 use crate::units::{Amps, Volts};

@@ -154,6 +154,7 @@ impl Setup {
                 integration: self.ammeter.integration,
                 settle: self.supply.time_constant * SETTLE_CONSTANTS,
             }),
+            ..Claims::default()
         }
     }
 

@@ -126,16 +126,12 @@ impl Model {
             samples: self.samples,
             settings: Vec::new(),
             claims: Claims {
-                set: None,
                 sense: Some(CLAIM),
                 current: vec![
                     line(LOW, Accuracy { relative: 0.004, absolute: 1e-9, resolution: 1e-10 }),
                     line(HIGH, Accuracy { relative: 0.002, absolute: 1e-4, resolution: 1e-6 }),
                 ],
-                lead_resistance: None,
-                sense_resistance: None,
-                times: None,
-                load: None,
+                ..Claims::default()
             },
             ending: Ending { stop: Stop::Completed, output: OutputState::Off },
         }
