@@ -9,12 +9,16 @@
 //! lead_resistance = "80 mohm"             # both leads together; used when no voltmeter sits at the board
 //! voltmeter = "behind_ammeter"            # or "before_ammeter": on the supply's side
 //!
+//! [room]                                  # may be left out
+//! temperature = "24 degC"                 # outside what the makers state, their error limits are widened
+//!
 //! [[instrument]]                          # one block each
 //! name = "supply"                         # how messages call it
 //! definition = "programmable-supply"      # one that comes with the program, or a path to a TOML beside this file
 //! port = "/dev/serial/by-id/..."          # a path that stays the same when cables are replugged
 //! roles = ["source"]
 //! calibration_due = 2027-03-31            # may be left out
+//! calibrated = 2026-03-31                 # may be left out; due when what the definition states is over
 //! identity = { maker = "...", model = "...", serial = "..." }   # each may be left out; compared with *IDN?
 //! ```
 
@@ -23,6 +27,7 @@ mod fixture;
 mod identity;
 mod parts;
 mod read;
+mod room;
 #[cfg(test)]
 mod sample;
 
@@ -32,6 +37,7 @@ pub use parts::RoleMissing;
 
 use super::definition::{Definition, Role};
 use super::error::InstrumentError;
+use crate::units::Celsius;
 use jiff::civil::Date;
 use parts::Parts;
 use std::collections::BTreeSet;
@@ -46,7 +52,9 @@ pub struct BenchFile {
     /// How board and meters are connected.
     pub fixture: Fixture,
     instruments: Vec<BenchInstrument>,
+    /// Their parts as the room leaves them.
     parts: Parts,
+    room: Option<Celsius>,
 }
 
 /// One instrument on a bench.
@@ -64,6 +72,8 @@ pub struct BenchInstrument {
     pub identity: Identity,
     /// Day until which its calibration holds, where it is known.
     pub calibration_due: Option<Date>,
+    /// Day on which it was calibrated, where it is known.
+    pub calibrated: Option<Date>,
 }
 
 impl BenchFile {
@@ -78,7 +88,7 @@ impl BenchFile {
         instruments: Vec<BenchInstrument>,
     ) -> Result<Self, RoleMissing> {
         let parts = Parts::of(&instruments)?;
-        Ok(Self { name: name.to_owned(), title: title.to_owned(), fixture, instruments, parts })
+        Ok(Self { name: name.to_owned(), title: title.to_owned(), fixture, instruments, parts, room: None })
     }
 
     /// All instruments, in the order of the file.
@@ -102,6 +112,6 @@ impl BenchFile {
 impl BenchInstrument {
     /// The day its calibration ended, when that is before `today`. A calibration holds through its last day.
     pub fn overdue(&self, today: Date) -> Option<Date> {
-        self.calibration_due.filter(|due| today > *due)
+        self.due().filter(|due| today > *due)
     }
 }

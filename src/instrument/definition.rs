@@ -11,6 +11,7 @@ mod read;
 pub(super) mod sample;
 mod serial;
 mod source;
+mod validity;
 
 pub use builtin::{builtin, builtin_names};
 pub use command::Template;
@@ -18,6 +19,7 @@ pub use meter::{Ammeter, Meter, Range, RangeCommands, Voltmeter};
 pub(super) use read::read_roles;
 pub use serial::{DataBits, FlowControl, Parity, SerialSettings, StopBits, Terminator};
 pub use source::{LimitedQuery, Source, SourceCommands, Span};
+pub use validity::{PerDegree, Validity};
 
 use std::collections::BTreeSet;
 use std::time::Duration;

@@ -172,6 +172,7 @@ fn a_run_is_carried_out_on_it() {
         roles: [Role::Source, Role::Ammeter, Role::Voltmeter].into(),
         identity: Identity { maker: Some("Example".to_owned()), ..Identity::default() },
         calibration_due: None,
+        calibrated: None,
     };
     let bench = BenchFile::new("test", "Bench of a test", Fixture::default(), vec![unit]).expect("all roles");
     let work = async {

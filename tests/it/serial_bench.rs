@@ -37,6 +37,7 @@ fn seat(scripted: &Scripted, name: &str, roles: &[Role]) -> BenchInstrument {
         roles: roles.iter().copied().collect(),
         identity: Identity::default(),
         calibration_due: None,
+        calibrated: None,
     }
 }
 

@@ -64,6 +64,7 @@ impl BenchFile {
                 integration: self.parts.ammeter.integration,
                 settle: self.parts.source.settle,
             }),
+            room: self.room,
             ..Claims::default()
         }
     }

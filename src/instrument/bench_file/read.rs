@@ -4,6 +4,7 @@ use super::{BenchFile, BenchInstrument, Fixture, Identity};
 use crate::document::{At, Document, Problems, Table};
 use crate::instrument::definition::{Definition, Role, read_roles};
 use crate::instrument::library::FindError;
+use crate::units::Celsius;
 use std::collections::BTreeSet;
 
 /// Finds the definition of a name in a bench file.
@@ -24,6 +25,7 @@ fn read(root: &mut Table<'_, '_>, find: &Find<'_>) -> Option<BenchFile> {
     root.integer_choice("schema", &[(1, ())]);
     let name = root.text("name");
     let title = root.text("title");
+    let room = root.optional_table("room").and_then(|mut room| room.quantity::<Celsius>("temperature"));
     let fixture = root.optional_table("fixture").map(Fixture::read).unwrap_or_default();
     // All are read before any is missed, so that every problem is noted.
     let blocks: Vec<_> =
@@ -35,7 +37,12 @@ fn read(root: &mut Table<'_, '_>, find: &Find<'_>) -> Option<BenchFile> {
     nothing_is_shared(&blocks, root);
     let instruments = blocks.into_iter().map(|block| block.instrument).collect();
     match BenchFile::new(&name?.value, &title?.value, fixture, instruments) {
-        Ok(bench) => Some(bench),
+        Ok(mut bench) => {
+            if let Some(room) = room {
+                bench.set_room(room.value);
+            }
+            Some(bench)
+        }
         Err(missing) => {
             root.problem_here(missing.to_string());
             None
@@ -57,6 +64,7 @@ fn read_instrument(mut table: Table<'_, '_>, find: &Find<'_>) -> Option<Block> {
     let port = table.text_for("port", "the path of a serial port");
     let roles = table.texts("roles").and_then(|roles| read_roles(&roles, &table));
     let calibration_due = table.optional_date("calibration_due");
+    let calibrated = table.optional_date("calibrated");
     let identity = table.optional_table("identity").map(read_identity).unwrap_or_default();
     for text in [&name, &port].into_iter().flatten() {
         if text.value.trim().is_empty() {
@@ -79,6 +87,7 @@ fn read_instrument(mut table: Table<'_, '_>, find: &Find<'_>) -> Option<Block> {
         roles: roles.value.clone(),
         identity,
         calibration_due: calibration_due.map(|date| date.value),
+        calibrated: calibrated.map(|date| date.value),
     };
     Some(Block { instrument, name, port, roles })
 }

@@ -2,6 +2,7 @@
 
 use super::check::{above_zero, not_negative};
 use super::command::{self, Template};
+use super::validity::{PerDegree, Validity};
 use crate::document::{At, Table};
 use crate::trace::{Accuracy, RangeAccuracy};
 use crate::units::{Amps, Ohms, Quantity, Volts};
@@ -26,6 +27,8 @@ pub struct Meter<Q> {
     pub read: String,
     /// Changes the range; `None` only for a meter of one range.
     pub range: Option<RangeCommands>,
+    /// When the claims of its ranges hold.
+    pub valid: Validity,
 }
 
 /// One range of a meter.
@@ -35,6 +38,8 @@ pub struct Range<Q> {
     pub full_scale: Q,
     /// The maker's claim.
     pub accuracy: Accuracy,
+    /// What each degree outside adds to it.
+    pub per_degree: PerDegree,
     /// Of an ammeter the burden in series, of a voltmeter the input resistance.
     pub resistance: Ohms,
     /// Time after changing to this range until readings are good.
@@ -56,10 +61,16 @@ impl<Q: Quantity> Meter<Q> {
         let integration = table.duration("integration");
         let setup = command::commands(&mut table, "setup");
         let ranges = read_ranges(&mut table, resistance);
+        let valid = Validity::read(&mut table);
+        if valid.temperature.is_none()
+            && ranges.iter().flatten().any(|range: &Range<Q>| !range.per_degree.is_nothing())
+        {
+            table.problem_here("what a degree adds needs the temperatures it counts from; wanted a table \"valid\" with \"from\" and \"to\"".to_owned());
+        }
         let commands = table.table("commands");
         let several = ranges.as_ref().is_some_and(|ranges| ranges.len() > 1);
         let (read, range) = commands.and_then(|commands| read_commands(commands, several))?;
-        Some(Self { ranges: ranges?, integration: integration?.value, setup: setup?, read, range })
+        Some(Self { ranges: ranges?, integration: integration?.value, setup: setup?, read, range, valid })
     }
 
     /// The smallest range that holds `value`, if any does.
@@ -105,6 +116,8 @@ fn read_range<Q: Quantity>(mut table: Table<'_, '_>, resistance: &str) -> Option
     let resolution = table.quantity::<Q>("resolution");
     let ohms = table.quantity::<Ohms>(resistance);
     let settle = table.duration("settle");
+    let scale = full_scale.as_ref().map_or(0.0, |full_scale| full_scale.value.si());
+    let per_degree = PerDegree::read::<Q>(&mut table, "of_reading", Some(scale));
     above_zero(&full_scale, &table);
     above_zero(&resolution, &table);
     for share in [&of_reading, &of_range] {
@@ -120,6 +133,7 @@ fn read_range<Q: Quantity>(mut table: Table<'_, '_>, resistance: &str) -> Option
     let range = Range {
         full_scale: full_scale.value,
         accuracy: Accuracy { relative: of_reading?.value, absolute, resolution },
+        per_degree,
         resistance: ohms?.value,
         settle: settle?.value,
     };
@@ -171,13 +185,13 @@ mod tests {
         let voltmeter = good("source-measure-unit").voltmeter.expect("it is a voltmeter");
         assert_eq!(voltmeter.range, None);
         says!(problems(AMMETER, &[("set_range = \"SENS:CURR:RANG {}\"", "")]),
-            @r#"d.toml:84:1: [ammeter.commands] has no key "set_range"; wanted a command such as "VOLT {}""#);
+            @r#"d.toml:96:1: [ammeter.commands] has no key "set_range"; wanted a command such as "VOLT {}""#);
     }
 
     #[test]
     fn ranges_that_cannot_be_are_refused() {
         says!(problems(AMMETER, &[("full_scale = \"1 mA\"", "full_scale = \"1 uA\"")]),
-            @r#"d.toml:45:14: ammeter.range[2].full_scale = "1 uA": not above ammeter.range[1].full_scale = "100 uA"; wanted the smallest range first"#);
+            @r#"d.toml:47:14: ammeter.range[2].full_scale = "1 uA": not above ammeter.range[1].full_scale = "100 uA"; wanted the smallest range first"#);
         says!(problems(AMMETER, &[("\"100 pA\"", "\"0 pA\""), ("\"0.05 %\"", "\"-1 %\""), ("\"100 ohm\"", "\"-1 ohm\"")]), @r#"
         d.toml:38:14: ammeter.range[1].of_reading = "-1 %": below zero
         d.toml:40:14: ammeter.range[1].resolution = "0 pA": not above zero

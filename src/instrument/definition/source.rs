@@ -2,6 +2,7 @@
 
 use super::check::{above_zero, not_negative};
 use super::command::{self, Template};
+use super::validity::{PerDegree, Validity};
 use crate::document::{At, Table};
 use crate::trace::Accuracy;
 use crate::units::{Amps, Quantity, Volts};
@@ -20,6 +21,10 @@ pub struct Source {
     pub over_voltage: Span<Volts>,
     /// Error limit of the set voltage at its terminals.
     pub programming: Accuracy,
+    /// What each degree outside adds to it.
+    pub per_degree: PerDegree,
+    /// When it holds.
+    pub valid: Validity,
     /// Time after a step until the output has settled, board on.
     pub settle: Duration,
     /// How close to its final value a voltage counts as settled.
@@ -40,19 +45,25 @@ impl Source {
         let current = table.table("current").and_then(|mut current| Span::read(&mut current));
         let over_voltage = table.table("over_voltage").and_then(|mut level| Span::read(&mut level));
         let accuracy = table.table("accuracy").and_then(read_accuracy);
+        let valid = Validity::read(&mut table);
+        if valid.temperature.is_none() && accuracy.is_some_and(|(.., per_degree)| !per_degree.is_nothing()) {
+            table.problem_here("what a degree adds needs [source.valid] with \"from\" and \"to\"".to_owned());
+        }
         let settle = table.duration("settle");
         let settled_within = table.quantity("settled_within");
         above_zero(&settled_within, &table);
         let setup = command::commands(&mut table, "setup");
         let commands = table.table("commands").and_then(SourceCommands::read);
         let (voltage, set_step) = voltage?;
-        let (relative, absolute) = accuracy?;
+        let (relative, absolute, per_degree) = accuracy?;
         Some(Self {
             voltage,
             set_step,
             current: current?,
             over_voltage: over_voltage?,
             programming: Accuracy { relative, absolute: absolute.0, resolution: set_step.0 },
+            per_degree,
+            valid,
             settle: settle?.value,
             settled_within: settled_within?.value,
             setup: setup?,
@@ -61,13 +72,14 @@ impl Source {
     }
 }
 
-/// Share of the setting, and the fixed part.
-fn read_accuracy(mut table: Table<'_, '_>) -> Option<(f64, Volts)> {
+/// Share of the setting, the fixed part, and what a degree adds to both.
+fn read_accuracy(mut table: Table<'_, '_>) -> Option<(f64, Volts, PerDegree)> {
     let of_setting = table.fraction("of_setting");
     let fixed = table.quantity::<Volts>("fixed");
     not_negative(&of_setting, &table);
     not_negative(&fixed.as_ref().map(|fixed| fixed.with(fixed.value.0)), &table);
-    Some((of_setting?.value, fixed?.value))
+    let per_degree = PerDegree::read::<Volts>(&mut table, "of_setting", None);
+    Some((of_setting?.value, fixed?.value, per_degree))
 }
 
 /// Lowest and highest value of a setting, both allowed.
