@@ -10,6 +10,7 @@
 //! - [`trace`]: what was measured
 //! - [`analysis`]: from a trace to quantities with uncertainty, and findings (pure)
 //! - [`verdict`]: quantities and limits to decisions and one outcome (pure)
+//! - [`verification`]: is the bench itself in order? rest, zeros, leads, reference boards (pure)
 //! - [`sim`]: a board's physics on a bench, in simulated time
 //! - [`statistics`]: published methods on plain numbers (pure)
 //! - [`record`]: what is kept of a run, and the append-only log that keeps it
@@ -35,3 +36,4 @@ pub mod statistics;
 pub mod trace;
 pub mod units;
 pub mod verdict;
+pub mod verification;

@@ -7,6 +7,7 @@
 mod ability;
 mod action;
 mod approach;
+mod bench_work;
 mod confirm;
 mod deep;
 mod delay;
@@ -27,6 +28,7 @@ mod walk;
 
 pub use ability::Ability;
 pub use action::{Action, Event};
+pub use bench_work::{BenchWork, Task};
 pub use fit::{Misfit, fits};
 pub use plan::Plan;
 pub use progress::{Progress, Stage};
@@ -39,7 +41,7 @@ use std::rc::Rc;
 use std::task::{Context, Poll, Waker};
 use std::time::Duration;
 
-/// One run of one board.
+/// One run of one board, or work on a bench.
 pub struct Procedure {
     desk: Rc<Desk>,
     script: Pin<Box<dyn Future<Output = Ending>>>,
@@ -51,6 +53,13 @@ impl Procedure {
     pub fn new(plan: Plan) -> Self {
         let desk = Rc::new(Desk::new(&plan));
         let script = Box::pin(script::run(Rc::clone(&desk), plan));
+        Self { desk, script, over: None }
+    }
+
+    /// Work on the bench itself, without a board.
+    pub fn on_bench(work: BenchWork) -> Self {
+        let desk = Rc::new(Desk::within(work.maximum, work.large_zero));
+        let script = Box::pin(bench_work::run(Rc::clone(&desk), work));
         Self { desk, script, over: None }
     }
 

@@ -20,9 +20,14 @@ pub(super) struct Desk {
 
 impl Desk {
     pub(super) fn new(plan: &Plan) -> Self {
+        Self::within(plan.maximum, plan.on_zero())
+    }
+
+    /// No set-point goes above `maximum`, and less than `zero` out of the board is no current.
+    pub(super) fn within(maximum: Volts, zero: Amps) -> Self {
         Self {
-            maximum: plan.maximum,
-            back_feed: -plan.on_zero().max(LEAST_BACK_FEED),
+            maximum,
+            back_feed: -zero.max(LEAST_BACK_FEED),
             now: Cell::new(Duration::ZERO),
             event: RefCell::new(None),
             action: RefCell::new(None),

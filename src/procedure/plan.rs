@@ -119,6 +119,11 @@ impl Plan {
     }
 }
 
+/// The same for any range of a bench.
+pub(super) fn on_zero(ability: &Ability, range: Amps) -> Amps {
+    zero_uncertainty(ability, range) * ZERO_UNCERTAINTIES
+}
+
 impl Pace {
     fn new(delay: Duration) -> Self {
         Self { dwell: delay.mul_f64(1.25) + Duration::from_millis(1), hold: (delay * 10).max(SHORTEST_HOLD) }

@@ -19,7 +19,7 @@ pub(super) async fn pre_check(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     desk.order(Action::Protect { over_voltage: plan.over_voltage, current_limit }).await?;
     desk.order(Action::Range(plan.on_range)).await?;
     desk.wait(plan.range_settle).await?;
-    wait_until_dead(desk, plan).await?;
+    wait_until_dead(desk, plan.voltmeter).await?;
 
     desk.set(PRE_CHECK_LOW).await?;
     desk.order(Action::OutputOn).await?;
@@ -82,8 +82,8 @@ async fn settled(desk: &Desk, plan: &Plan) -> Result<Sample, Stop> {
 }
 
 /// With the output off nothing may stand at the terminals; charge left from before gets time to drain.
-async fn wait_until_dead(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
-    if !plan.voltmeter {
+pub(super) async fn wait_until_dead(desk: &Desk, voltmeter: bool) -> Result<(), Stop> {
+    if !voltmeter {
         return Ok(());
     }
     let patience = desk.now() + DRAIN;

@@ -11,6 +11,11 @@ use std::time::Duration;
 /// interrupt it.
 pub(super) async fn switch_off(desk: &Desk, plan: &Plan, stop: Stop) -> Ending {
     desk.enter(Stage::SwitchOff, left(plan, Stage::SwitchOff));
+    output_off(desk, plan.voltmeter, stop).await
+}
+
+/// The same without a plan; `voltmeter` says whether the discharge can be seen.
+pub(super) async fn output_off(desk: &Desk, voltmeter: bool, stop: Stop) -> Ending {
     let mut output = OutputState::MayBeOn;
     for _ in 0..TRIES {
         if desk.perform(Action::OutputOff).await == Event::Done {
@@ -18,7 +23,7 @@ pub(super) async fn switch_off(desk: &Desk, plan: &Plan, stop: Stop) -> Ending {
             break;
         }
     }
-    if output == OutputState::Off && plan.voltmeter {
+    if output == OutputState::Off && voltmeter {
         discharge(desk).await;
     }
     Ending { stop, output }
