@@ -4,6 +4,7 @@
 //! to it, each synced, and takes the mark away. A mark that is still there at the next [`Log::open`] means that a run
 //! never ended: it is recorded as `INCOMPLETE`, and no run starts until somebody has confirmed the output to be off.
 
+mod bench_entries;
 mod error;
 mod folder;
 mod history;

@@ -6,8 +6,9 @@
 use super::device::{Device, Kind};
 use super::link_faults::{LinkFault, LinkFaults, When};
 use super::terminal::{Exchange, Pace, Terminal};
-use super::{Setup, SharedWorld, SimulationClock, World, lock};
+use super::{BoardModel, LoadWiring, PullUp, Setup, SharedWorld, SimulationClock, Switch, World, lock};
 use crate::clock::Clock;
+use crate::units::{Amps, Farads, Ohms, Siemens};
 use std::fmt::Write;
 use std::io;
 use std::path::{Path, PathBuf};
@@ -27,7 +28,27 @@ pub struct Options {
     pub pace: Pace,
     /// What will go wrong.
     pub faults: Vec<LinkFault>,
+    /// What is in the fixture.
+    pub in_fixture: InFixture,
 }
+
+/// What is in the fixture.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub enum InFixture {
+    /// The board of the setup.
+    #[default]
+    Board,
+    /// Nothing, but what leaks in any fixture.
+    Nothing,
+    /// A resistor in the place of the board.
+    Resistor(Ohms),
+}
+
+/// What leaks in a clean fixture: some gigaohms are common practice for good insulation at moderate humidity.
+const CLEAN_FIXTURE: Ohms = Ohms(5e9);
+
+/// What cables and fixture have between their leads.
+const CABLE_CAPACITANCE: Farads = Farads(1e-9);
 
 /// Which instruments stand on the bench.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -64,6 +85,7 @@ impl Default for Options {
             clock: Clock::real(),
             pace: Pace { response: Duration::from_millis(2), baud: Some(115_200) },
             faults: Vec::new(),
+            in_fixture: InFixture::default(),
         }
     }
 }
@@ -88,6 +110,7 @@ impl SimulatedBench {
             Arrangement::Separate => setup.clone(),
             Arrangement::SourceMeasureUnit => setup.with_source_measure_unit(),
         };
+        let setup = options.in_fixture.in_place_of_board(setup);
         let world = SharedWorld::new(World::new(&setup), Arc::new(options.clock));
         let own = setup.link_faults.iter().map(|fault| options.arrangement.befalls(fault));
         let faults = Arc::new(Mutex::new(LinkFaults::new(own.chain(options.faults).collect())));
@@ -187,6 +210,37 @@ impl SimulatedBench {
 
     fn terminal(&self, kind: Kind) -> Option<&Terminal> {
         self.terminals.iter().find(|terminal| terminal.kind() == kind)
+    }
+}
+
+impl InFixture {
+    /// The setup with this in its fixture: a switch without a detector, open on nothing or closed on a resistor.
+    fn in_place_of_board(self, mut setup: Setup) -> Setup {
+        let switch = match self {
+            Self::Board => return setup,
+            Self::Nothing => Switch::StuckOpen,
+            Self::Resistor(resistance) => {
+                setup.board.load = resistance;
+                Switch::StuckClosed
+            }
+        };
+        if switch == Switch::StuckOpen {
+            setup.wiring.load = LoadWiring::Lifted;
+        }
+        setup.board = BoardModel {
+            switch,
+            on_resistance: Ohms::ZERO,
+            pull_up: CLEAN_FIXTURE,
+            pull_up_conducts: PullUp::Always,
+            detector_current: Amps::ZERO,
+            leakage: Amps::ZERO,
+            leakage_conductance: Siemens::ZERO,
+            input_capacitance: CABLE_CAPACITANCE,
+            load_capacitance: CABLE_CAPACITANCE,
+            deep_conduction: None,
+            ..setup.board
+        };
+        setup
     }
 }
 

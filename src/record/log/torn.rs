@@ -1,7 +1,7 @@
 //! Half-written last lines: cut off, set aside and reported; never dropped, and never joined by the next line.
 
 use super::folder::Kind;
-use super::{LogError, LogFolder, lines};
+use super::{LogError, LogFolder, bench_entries, lines};
 use crate::record::Moment;
 use serde::de::IgnoredAny;
 use std::fs::OpenOptions;
@@ -36,15 +36,14 @@ impl std::fmt::Display for Torn {
 
 /// Makes every file of the log end with a whole line.
 pub(super) fn mend(folder: &LogFolder, now: &Moment) -> Result<Vec<Torn>, LogError> {
-    let mut torn = Vec::new();
+    let mut files = vec![(folder.bench_file(), folder.path().join(bench_entries::TORN_FILE))];
     for month in folder.months()? {
-        for kind in Kind::ALL {
-            let (file, kept) = (folder.file(&month, kind), folder.torn_file(&month, kind));
-            while let Some(cut) =
-                mend_end(&file, &kept, now).map_err(LogError::disk("mend the end of", &file))?
-            {
-                torn.push(cut);
-            }
+        files.extend(Kind::ALL.map(|kind| (folder.file(&month, kind), folder.torn_file(&month, kind))));
+    }
+    let mut torn = Vec::new();
+    for (file, kept) in files {
+        while let Some(cut) = mend_end(&file, &kept, now).map_err(LogError::disk("mend the end of", &file))? {
+            torn.push(cut);
         }
     }
     Ok(torn)
