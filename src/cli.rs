@@ -3,6 +3,7 @@
 mod analyse;
 mod bench;
 mod demo;
+mod due;
 mod exit;
 mod files;
 mod guard;
@@ -11,6 +12,7 @@ mod limits;
 mod live;
 mod log;
 mod one_run;
+mod room;
 mod show;
 mod sim;
 mod simulated;

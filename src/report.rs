@@ -3,6 +3,7 @@
 //! Everything here turns values into text. Nothing is measured, judged or printed.
 
 mod banner;
+mod bench_page;
 mod cautions;
 mod columns;
 mod csv;
@@ -17,6 +18,7 @@ mod sheet;
 mod text;
 mod words;
 
+pub use bench_page::{bench_json, bench_text};
 pub use cautions::CAUTIONS;
 pub use csv::runs_csv;
 pub use full::full;

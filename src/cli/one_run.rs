@@ -1,5 +1,6 @@
 //! One board, from the mark in the log to the kept record.
 
+use super::due::{self, BenchState};
 use super::live::Live;
 use super::station::Station;
 use super::stop::listen;
@@ -20,6 +21,8 @@ pub(super) struct Order<'o> {
     pub(super) simulated: Option<Simulated>,
     pub(super) board: BoardUnderTest,
     pub(super) operator: Option<String>,
+    /// A reference board shows whether the bench is in order, so it is measured whatever is overdue.
+    pub(super) is_reference: bool,
 }
 
 /// A run that is on disk, and the folder of its log.
@@ -34,13 +37,24 @@ impl Order<'_> {
     pub(super) fn carry_out(&self, mut station: Station<'_>) -> Result<Kept, Failure> {
         files::fit(self.profile, station.bench)?;
         station.note_calibration();
+        if !self.is_reference {
+            due::refuse_overdue_calibration(self.profile, station.bench)?;
+        }
         let maximum = self.profile.supply.maximum;
         let mut bench = station.connect(maximum)?;
 
         let asked_to_stop = listen(&station.runtime)?;
+        let state = BenchState::of(&station, &who::instruments(station.bench, &bench))?;
+        match self.simulated {
+            Some(_) => state.note_exempt(&self.profile.bench),
+            None if self.is_reference => {}
+            None => state.refuse_overdue(self.profile)?,
+        }
         station.log.start(self.subject(&station, &bench), now())?;
         let plan = Plan::new(self.profile, &station.bench.ability(maximum));
-        let claims = station.bench.claims(&self.profile.supply);
+        let mut claims = station.bench.claims(&self.profile.supply);
+        claims.zero = state.zeros();
+        claims.doubts = station.bench.doubts(now().date());
         let mut live = Live::new(self.profile.load.resistance);
         let procedure = Procedure::new(plan);
         let runtime = &station.runtime;

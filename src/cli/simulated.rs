@@ -6,7 +6,7 @@ use crate::instrument::bench_file::BenchFile;
 use crate::instrument::library;
 use crate::profile::Profile;
 use crate::record::Simulated;
-use crate::sim::bench::{Arrangement, Options, SimulatedBench};
+use crate::sim::bench::{Arrangement, InFixture, Options, SimulatedBench};
 use crate::sim::{Condition, Setup};
 use anyhow::Context;
 use clap::Args;
@@ -55,6 +55,15 @@ impl Simulation {
         hurried || self.seed.is_some() || self.condition != [Condition::Good]
     }
 
+    /// What is simulated has no place on a real bench.
+    pub(super) fn refuse_on_real_bench(&self) -> Result<(), Failure> {
+        if !self.is_asked_for() {
+            return Ok(());
+        }
+        let error = "--condition, --seed and --speed go with --bench sim or sim-smu; real instruments are as they are";
+        Err(anyhow::anyhow!(error).into())
+    }
+
     /// The condition and the seed for the board called `serial_number`: the same board each time it is tested.
     pub(super) fn of_board(&self, serial_number: &str) -> Simulated {
         let seed = self.seed.unwrap_or_else(|| {
@@ -72,9 +81,21 @@ impl Simulation {
         simulated: &Simulated,
         arrangement: Arrangement,
     ) -> Result<SimulatedBench, Failure> {
+        self.start_with(profile, simulated, arrangement, InFixture::Board)
+    }
+
+    /// The same with something else in the place of the board.
+    pub(super) fn start_with(
+        &self,
+        profile: &Profile,
+        simulated: &Simulated,
+        arrangement: Arrangement,
+        in_fixture: InFixture,
+    ) -> Result<SimulatedBench, Failure> {
         let mut setup = Setup::with(profile, &self.condition, simulated.seed);
         setup.link_faults = setup.link_faults.into_iter().map(|fault| fault.at_speed(self.speed)).collect();
-        let options = Options { arrangement, clock: Clock::faster(self.speed), ..Options::default() };
+        let clock = Clock::faster(self.speed);
+        let options = Options { arrangement, clock, in_fixture, ..Options::default() };
         Ok(SimulatedBench::start(&setup, options).context("the simulated bench cannot be started")?)
     }
 

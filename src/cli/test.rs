@@ -4,12 +4,13 @@ use super::one_run::{Kept, Order};
 use super::show::print_result;
 use super::simulated::{Simulation, bench_file};
 use super::station::Station;
-use super::{Exit, Failure, Format, files};
+use super::{Exit, Failure, Format, files, room::room};
 use crate::clock::Clock;
 use crate::profile::Profile;
 use crate::record::BoardUnderTest;
 use crate::report::CAUTIONS;
 use crate::sim::bench::Arrangement;
+use crate::units::Celsius;
 use clap::Args;
 use std::io::IsTerminal;
 use std::path::{Path, PathBuf};
@@ -33,6 +34,9 @@ pub(super) struct Arguments {
     /// How the result is written to standard output.
     #[arg(long, value_enum, default_value_t)]
     format: Format,
+    /// Temperature of the room, such as "24 degC"; as the bench file says when left out.
+    #[arg(long, value_name = "TEMPERATURE", value_parser = room)]
+    temperature: Option<Celsius>,
     #[command(flatten)]
     keeping: Keeping,
     #[command(flatten)]
@@ -70,11 +74,11 @@ impl Arguments {
 
     /// The station comes before profile and board: what an earlier run left on goes off even when this one is refused.
     fn on_bench(&self) -> Result<Kept, Failure> {
-        if self.simulation.is_asked_for() {
-            let error = "--condition, --seed and --speed go with --bench sim or sim-smu; real instruments are as they are";
-            return Err(anyhow::anyhow!(error).into());
+        self.simulation.refuse_on_real_bench()?;
+        let mut bench = files::bench(&self.bench)?;
+        if let Some(room) = self.temperature {
+            bench.set_room(room);
         }
-        let bench = files::bench(&self.bench)?;
         let name = self.keeping.station.as_deref().unwrap_or(&bench.name);
         let station = Station::open(&bench, Clock::real(), &self.keeping.logs, name)?;
         let profile = files::profile(&self.profile)?;
@@ -88,11 +92,16 @@ impl Arguments {
             simulated: None,
             board,
             operator: self.keeping.operator.clone(),
+            is_reference: false,
         }
         .carry_out(station)
     }
 
     fn on_simulation(&self, arrangement: Arrangement) -> Result<Kept, Failure> {
+        if self.temperature.is_some() {
+            let error = "--temperature goes with a real bench; simulated instruments stand in a room they are stated for";
+            return Err(anyhow::anyhow!(error).into());
+        }
         let profile = files::profile(&self.profile)?;
         let path = self.profile.display().to_string();
         let board = self.keeping.board(&profile, &self.serial_number)?;
@@ -115,7 +124,8 @@ pub(super) fn on_simulation(
     let name = keeping.station.as_deref().unwrap_or("simulated");
     let station = Station::open(&bench, simulation.clock(), &keeping.logs, name)?;
     let operator = keeping.operator.clone();
-    Order { profile, profile_path, simulated: Some(simulated), board, operator }.carry_out(station)
+    let simulated = Some(simulated);
+    Order { profile, profile_path, simulated, board, operator, is_reference: false }.carry_out(station)
 }
 
 impl Keeping {
@@ -140,7 +150,8 @@ impl Keeping {
     }
 }
 
-fn arrangement(bench: &Path) -> Option<Arrangement> {
+/// Which simulated bench is named, if one is.
+pub(super) fn arrangement(bench: &Path) -> Option<Arrangement> {
     match bench.to_str() {
         Some("sim") => Some(Arrangement::Separate),
         Some("sim-smu") => Some(Arrangement::SourceMeasureUnit),

@@ -22,7 +22,7 @@ pub struct BenchWork {
     pub over_voltage: Volts,
     /// Current limit set in the supply.
     pub current_limit: Amps,
-    /// Ammeter range that holds the current limit.
+    /// Ammeter range that holds the current limit, and what an output capacitor may give besides.
     pub large_range: Amps,
     /// Current that a reading of zero on that range may show.
     pub large_zero: Amps,
@@ -56,6 +56,9 @@ pub enum Task {
 /// Readings after a change of range that are not counted: the first may hold what went before.
 const DISCARDED: usize = 2;
 
+/// The large range carries at least this, whatever the current limit: capacitors at a supply's output do not know it.
+const CARRIED: Amps = Amps(0.1);
+
 /// Over-voltage protection above the highest voltage used, so that an error of the set-point does not trigger it.
 const OVER_VOLTAGE: f64 = 1.05;
 
@@ -73,8 +76,8 @@ impl BenchWork {
     pub fn new(ability: &Ability, highest: Volts, current_limit: Amps, readings: usize, task: Task) -> Self {
         let current_limit = current_limit.max(ability.min_current);
         let largest = ability.ranges.last().copied().unwrap_or(current_limit);
-        let large_range =
-            ability.ranges.iter().copied().find(|range| *range >= current_limit).unwrap_or(largest);
+        let carried = current_limit.max(CARRIED);
+        let large_range = ability.ranges.iter().copied().find(|range| *range >= carried).unwrap_or(largest);
         let mut small_ranges: Vec<Amps> =
             ability.ranges.iter().copied().filter(|range| *range <= SMALL && *range < large_range).collect();
         if small_ranges.is_empty() {
@@ -297,7 +300,7 @@ mod tests {
             .iter()
             .filter_map(|action| if let Action::Range(range) = action { Some(range.0) } else { None })
             .collect();
-        assert_eq!(ranges, [1e-2, 1e-3, 1e-4, 1e-2, 1e-3, 1e-4, 1e-2]);
+        assert_eq!(ranges, [1.0, 1e-3, 1e-4, 1.0, 1e-3, 1e-4, 1.0]);
         let Some(Action::Finish(ending)) = actions.last() else { panic!("{actions:?}") };
         assert_eq!((&ending.stop, ending.output), (&Stop::Completed, OutputState::Off));
     }
@@ -305,7 +308,7 @@ mod tests {
     #[test]
     fn what_draws_current_keeps_the_ammeter_off_its_small_ranges() {
         let actions = actions(&zeros_at(&[5.8]), 5e-3, usize::MAX);
-        let small = |action: &&Action| matches!(action, Action::Range(range) if *range < Amps(1e-2));
+        let small = |action: &&Action| matches!(action, Action::Range(range) if *range < Amps(1.0));
         assert_eq!(actions.iter().filter(small).count(), 0);
     }
 

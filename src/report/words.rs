@@ -20,7 +20,7 @@ pub(super) fn spoken(code: &str) -> String {
 }
 
 /// The word as it stands in files, so that there is no second list of them.
-fn in_files(word: &impl Serialize) -> String {
+pub(super) fn in_files(word: &impl Serialize) -> String {
     match serde_json::to_value(word) {
         Ok(serde_json::Value::String(text)) => text,
         other => format!("{other:?}"),

@@ -3,7 +3,9 @@
 
 mod bad_files;
 mod bad_traces;
+mod bench_check;
 mod bench_not_ready;
+mod bench_zero;
 mod disk_full;
 mod fault_mid_run;
 mod leftover;

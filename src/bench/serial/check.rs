@@ -21,6 +21,8 @@ pub struct Report {
     pub greeting: Greeting,
     /// Median time from a short question to its answer, on the wall.
     pub round_trip: Duration,
+    /// The longest of them.
+    pub slowest: Duration,
     /// The port's settings as the system reports them, for people; `None` where it cannot say.
     pub port_settings: Option<String>,
 }
@@ -53,6 +55,7 @@ fn report(session: &mut Session, greeting: Greeting) -> Result<Report, Instrumen
         place: Arc::clone(session.place()),
         greeting,
         round_trip: times.get(QUESTIONS / 2).copied().unwrap_or_default(),
+        slowest: times.last().copied().unwrap_or_default(),
         port_settings: session.port_settings(),
     })
 }

@@ -77,6 +77,13 @@ impl BenchFile {
         (apart && self.voltmeter_at_board()).then(|| self.sense_range(maximum))?.map(|range| range.resistance)
     }
 
+    /// What the ammeter puts between supply and voltmeter on the range that holds `current`, as its definition states.
+    pub fn burden(&self, current: Amps) -> Ohms {
+        let behind = self.fixture.voltmeter == VoltmeterPlace::BehindAmmeter;
+        let range = self.parts.ammeter.range_for(current).filter(|_| behind);
+        range.map_or(Ohms::ZERO, |range| range.resistance)
+    }
+
     fn voltmeter_at_board(&self) -> bool {
         self.parts.voltmeter.is_some() && self.fixture.voltmeter == VoltmeterPlace::BehindAmmeter
     }

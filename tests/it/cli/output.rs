@@ -133,6 +133,7 @@ fn the_help_of_every_command_has_an_example() {
         &["analyse"],
         &["bench"],
         &["bench", "check"],
+        &["bench", "zero"],
         &["bench", "list"],
         &["sim"],
         &["log"],

@@ -8,7 +8,7 @@ use crate::simulated_bench::setup;
 use ebbmark::clock::Clock;
 use ebbmark::instrument::definition::builtin;
 use ebbmark::record::{LogFolder, Run};
-use ebbmark::sim::bench::{Options, SimulatedBench};
+use ebbmark::sim::bench::{InFixture, Options, SimulatedBench};
 use ebbmark::sim::device::Kind;
 use ebbmark::sim::link_faults::{Effect, Lasting, LinkFault, When};
 use ebbmark::sim::terminal::Pace;
@@ -58,11 +58,21 @@ impl Workplace {
         Self::start(&setup, Vec::new())
     }
 
+    /// A bench in order with this in its fixture, and something that will go wrong.
+    pub(super) fn holding(in_fixture: InFixture, faults: Vec<LinkFault>) -> Self {
+        Self::start_with(&setup(), in_fixture, faults)
+    }
+
     fn start(setup: &Setup, faults: Vec<LinkFault>) -> Self {
+        Self::start_with(setup, InFixture::Board, faults)
+    }
+
+    fn start_with(setup: &Setup, in_fixture: InFixture, faults: Vec<LinkFault>) -> Self {
         let options = Options {
             clock: Clock::real(),
             pace: Pace { response: Duration::ZERO, baud: None },
             faults,
+            in_fixture,
             ..Options::default()
         };
         let bench = SimulatedBench::start(setup, options).expect("pseudo-terminals");
