@@ -29,8 +29,9 @@ pub struct BenchEntry {
     pub found: BenchFound,
     /// What is wrong; empty when the bench is in order.
     pub problems: Vec<String>,
-    /// Every reading, where the bench was read.
-    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    /// Every reading, where the bench was read. They stay on disk when a line is read back: whoever tests a board asks
+    /// for what was found, many times a day.
+    #[serde(skip_deserializing, skip_serializing_if = "Vec::is_empty")]
     pub traces: Vec<Trace>,
 }
 

@@ -46,7 +46,7 @@ pub struct Compared {
 /// Holds what was measured against what is known.
 ///
 /// Measured and known agree when E_n is at most 1 (ISO/IEC 17043:2010, B.3.1.3: normalised error of a comparison with a
-/// reference value). That alone lets a bench of large uncertainty pass, so the drift has a bound of its own.
+/// reference value; cited from memory). That alone lets a bench of large uncertainty pass, so the drift has a bound of its own.
 pub fn compare(reference: &Reference, outcome: Outcome, measured: &[Judged]) -> ReferenceResult {
     let mut problems = Vec::new();
     problems.extend(wrong_outcome(reference, outcome));

@@ -145,6 +145,16 @@ pub(super) mod tests {
     }
 
     #[test]
+    fn the_shipped_example_is_read_as_written() {
+        let text = include_str!("../../instruments/references/river-node-good.toml");
+        let example = Reference::read("example", text).unwrap_or_else(|problems| panic!("{problems}"));
+        assert_eq!((example.must, example.values.len()), (Must::Pass, 4));
+        assert!((example.allowed_drift - 0.3).abs() < 1e-12);
+        let off_current = example.values[&QuantityName::OffCurrent];
+        assert_eq!(off_current, KnownValue { value: 2.48e-6, expanded_uncertainty: 40e-9 });
+    }
+
+    #[test]
     fn what_cannot_be_is_refused_at_its_place() {
         for (from, to, phrase) in [
             ("\"pass\"", "\"pass\"\nfails = [\"trip\"]", "nothing may fail on a board that must pass"),

@@ -7,7 +7,7 @@ use ebbmark::record::{BenchEntry, BenchFound};
 use ebbmark::sim::bench::InFixture;
 use ebbmark::sim::device::Kind;
 use ebbmark::sim::link_faults::Effect;
-use ebbmark::units::Ohms;
+use ebbmark::units::{Ohms, Volts};
 
 fn check(place: &Workplace, more: &[&str]) -> Said {
     ebbmark(place.folder(), &[&["bench", "check", "bench.toml"][..], more].concat())
@@ -82,17 +82,22 @@ fn a_known_load_shows_the_leads() {
 }
 
 #[test]
-fn a_voltmeter_that_disagrees_and_a_garbled_reading_are_told_with_the_output_off() {
-    let five_per_cent = Effect::Garbage(b"+1.0500000E+00\n".to_vec());
-    let place = Workplace::new();
-    check(&place, &["--energise"]).ended(0);
-    let place = Workplace::holding(InFixture::Nothing, Vec::new());
-    place.edit("bench-meter-voltage.toml", "read = \"READ?\"", "read = \"MEAS:VOLT?\"");
-    place.bench.inject(always(Kind::Voltmeter, at("MEAS:VOLT?"), five_per_cent));
+fn a_supply_and_a_voltmeter_that_disagree_are_told() {
+    let mut apart = setup();
+    apart.supply.offset_error = Volts(0.05);
+    let place = Workplace::of(&apart);
+    check(&place, &[]).ended(0);
+    not_ready(&place, &["--energise"], "look for an open or loose sense lead");
+}
+
+#[test]
+fn a_live_fixture_and_a_garbled_reading_end_it_with_the_output_off() {
+    let live = Effect::Garbage(b"+1.0500000E+00\n".to_vec());
+    let place = Workplace::with(vec![always(Kind::Voltmeter, at("READ?"), live)]);
     not_ready(&place, &["--energise"], "stood at the terminals with the output off");
 
-    let place =
-        Workplace::with(vec![always(Kind::Ammeter, at("READ?"), Effect::Garbage(b"\xff~\n".to_vec()))]);
+    let garbage = Effect::Garbage(b"\xff~\n".to_vec());
+    let place = Workplace::with(vec![always(Kind::Ammeter, at("READ?"), garbage)]);
     not_ready(&place, &["--energise"], "READ?");
 }
 
