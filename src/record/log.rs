@@ -147,6 +147,19 @@ impl Log {
         Ok(identity)
     }
 
+    /// Ends what was started and leaves no run: work on the bench itself. Unless the output was read back as off, the mark
+    /// stays, and the next start finds work that never ended.
+    ///
+    /// # Errors
+    /// Nothing was started, or the mark cannot be taken away.
+    pub fn end_work(&mut self, output: OutputState) -> Result<(), LogError> {
+        let State::Running { identity, .. } = &self.state else {
+            return Err(LogError::NotStarted);
+        };
+        self.state = State::OutputUnknown { run: Some(identity.run.clone()) };
+        if output == OutputState::Off { self.confirm_output_off() } else { Ok(()) }
+    }
+
     /// Keeps the run that was started: its trace, then the line that points to it. When this returns, both are on
     /// disk. If it fails, the run is still open: free some space and call it again with the same arguments.
     ///

@@ -64,6 +64,9 @@ fn share(text: &str) -> Result<f64, String> {
     })
 }
 
+/// What the mark in the log says meanwhile.
+const NAME: &str = "bench check";
+
 /// The lowest current limit of most supplies lies below this; a load of its own gets what it draws.
 const LITTLE_CURRENT: Amps = Amps(1e-3);
 
@@ -111,7 +114,7 @@ impl Arguments {
 
     /// All that needs no board, kept in the log.
     fn check(&self, found: &Found) -> Result<(BenchEntry, Exit), Failure> {
-        let station = Station::open(&found.file, found.clock, &self.place.logs, &found.station)?;
+        let mut station = Station::open(&found.file, found.clock, &self.place.logs, &found.station)?;
         let mut findings = Findings::default();
         let reports = station.runtime.block_on(check(&found.file, Volts::ZERO, found.clock));
         let stays_on =
@@ -120,11 +123,11 @@ impl Arguments {
         for (seat, report) in found.file.instruments().iter().zip(&reports) {
             findings.take_instrument(seat, report, today);
         }
-        let mut instruments = Vec::new();
+        let mut used = found.used(Vec::new());
         if reports.iter().all(Result::is_ok) {
-            match Connected::new(&station, self.test_voltage) {
+            match Connected::new(&mut station, found, self.test_voltage) {
                 Ok(mut bench) => {
-                    instruments = bench.instruments();
+                    used = bench.used();
                     self.read(found, &mut bench, &mut findings)?;
                 }
                 Err(failure) if failure.exit == Exit::Invalid => {
@@ -134,7 +137,6 @@ impl Arguments {
             }
         }
         let Findings { check, problems, traces } = findings;
-        let used = found.used(instruments);
         let mut entry = BenchEntry::new(&found.station, now(), used, BenchFound::Check(check), problems);
         entry.operator.clone_from(&self.place.operator);
         entry.traces = traces;
@@ -159,7 +161,7 @@ impl Arguments {
         let (ability, readings) = (found.file.ability(self.test_voltage), self.place.readings());
         let (current_limit, voltages) = self.energised();
         let work = |task| BenchWork::new(&ability, self.test_voltage, current_limit, readings, task);
-        let at_rest = bench.carry_out(work(Task::Rest))?;
+        let at_rest = bench.carry_out(NAME, work(Task::Rest))?;
         let (at_rest_found, problems) = rest(&at_rest, readings);
         findings.check.rest = at_rest_found;
         findings.problems.extend(problems);
@@ -169,7 +171,7 @@ impl Arguments {
         }
         let steps_up = work(Task::Steps(voltages));
         let burden = found.file.burden(steps_up.large_range);
-        let trace = bench.carry_out(steps_up)?;
+        let trace = bench.carry_out(NAME, steps_up)?;
         let (found_steps, problems) = steps(&trace, readings);
         findings.problems.extend(problems);
         if found_steps.is_empty() && findings.problems.is_empty() {

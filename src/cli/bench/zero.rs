@@ -54,8 +54,8 @@ impl Arguments {
         let found = self.place.find(profile.as_ref(), InFixture::Nothing)?;
         let voltages = self.voltages(profile.as_ref(), &found)?;
         let highest = voltages.last().copied().unwrap_or(Volts::ZERO);
-        let station = Station::open(&found.file, found.clock, &self.place.logs, &found.station)?;
-        let mut bench = Connected::new(&station, highest)?;
+        let mut station = Station::open(&found.file, found.clock, &self.place.logs, &found.station)?;
+        let mut bench = Connected::new(&mut station, &found, highest)?;
 
         let ability = found.file.ability(highest);
         let readings = self.place.readings();
@@ -67,11 +67,12 @@ impl Arguments {
             arrival_tolerance: work.arrival_tolerance,
             off_current: limit.and_then(|limit| limit.max).map(Amps),
         };
-        let instruments = bench.instruments();
-        let trace = bench.carry_out(work)?;
+        let used = bench.used();
+        let trace = bench.carry_out("bench zero", work)?;
+        drop(bench);
         let (zeros, problems) = zeros(&trace, &task);
 
-        let (used, what) = (found.used(instruments), BenchFound::Zero { zeros });
+        let what = BenchFound::Zero { zeros };
         let mut entry = BenchEntry::new(&found.station, now(), used, what, problems);
         entry.operator.clone_from(&self.place.operator);
         entry.traces.push(trace);

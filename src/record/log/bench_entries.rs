@@ -55,8 +55,10 @@ impl LogFolder {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::record::{BenchFound, BenchUsed, Moment};
+    use crate::record::{BenchFound, BenchUsed, BoardUnderTest, Moment, ProfileUsed, Subject};
+    use crate::trace::OutputState;
     use jiff::tz::TimeZone;
+    use std::collections::BTreeMap;
 
     fn entry(minute: u8) -> BenchEntry {
         let utc = format!("2026-12-01T08:{minute:02}:00Z").parse().expect("RFC 3339");
@@ -88,6 +90,36 @@ mod tests {
         assert_eq!(kept, [entry(1), entry(2), entry(3)]);
         let set_aside = std::fs::read_to_string(root.path().join("s").join(TORN_FILE)).expect("text");
         assert!(set_aside.contains(&whole[..40]), "{set_aside}");
+    }
+
+    /// Work on a bench that was cut off is found at the next start, and work that ended leaves nothing.
+    #[test]
+    fn work_leaves_a_mark_until_the_output_is_off() {
+        let root = tempfile::tempdir().expect("a temporary folder");
+        let board = BoardUnderTest {
+            board: "(none)".to_owned(),
+            revision: "-".to_owned(),
+            serial_number: "bench zero".to_owned(),
+            batch: None,
+            work_order: None,
+        };
+        let profile = ProfileUsed { path: String::new(), sha256: String::new(), limits: BTreeMap::new() };
+        let subject = || Subject {
+            board: board.clone(),
+            profile: profile.clone(),
+            bench: entry(0).bench,
+            operator: None,
+        };
+        let mut log = opened(root.path()).log;
+        log.start(subject(), entry(1).taken).expect("begun");
+        log.end_work(OutputState::Off).expect("ended");
+        log.start(subject(), entry(2).taken).expect("nothing in the way");
+        log.end_work(OutputState::MayBeOn).expect("the mark stays");
+        assert!(log.start(subject(), entry(3).taken).is_err(), "the output may be on");
+        drop(log);
+        let opened = opened(root.path());
+        assert_eq!(opened.leftovers.len(), 1);
+        assert!(opened.leftovers[0].to_string().contains("the run of bench zero"), "{}", opened.leftovers[0]);
     }
 
     #[test]

@@ -1,6 +1,6 @@
 //! The zeros of an empty fixture: taken, refused when they cannot be true, and taken off in a test.
 
-use super::workplace::{Workplace, always, at, once, quick_profile};
+use super::workplace::{Running, Workplace, always, at, once, quick_profile};
 use super::{Said, ebbmark};
 use crate::simulated_bench::setup;
 use ebbmark::profile::QuantityName;
@@ -124,6 +124,19 @@ fn a_link_lost_with_the_output_on_is_said_aloud() {
     let said = zero(&place, &["--fixture-empty"]);
     said.refuses(5, &["THE OUTPUT MAY STILL BE ON"]);
     assert!(place.bench.output(), "nobody could switch it off\n{said}");
+}
+
+#[test]
+fn a_program_that_is_killed_with_the_output_on_is_found_out_at_the_next_start() {
+    let place = Workplace::holding(InFixture::Nothing, Vec::new());
+    let arguments = ["bench", "zero", "bench.toml", "--fixture-empty", "--at", "5.8 V"];
+    let mut running = Running::start(place.folder(), &arguments);
+    running.until("the output is on", || place.bench.output());
+    running.kill();
+    assert!(place.bench.output(), "nobody has switched it off");
+    let said = ebbmark(place.folder(), &["bench", "check", "bench.toml"]);
+    said.refuses(0, &["note: the run of bench zero begun", "never ended", "reads back as off"]);
+    assert!(!place.bench.output(), "{said}");
 }
 
 #[test]
