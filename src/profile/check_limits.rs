@@ -145,7 +145,7 @@ mod tests {
         says!(problems(&[("\"5.88 V\"", "\"5.00 V\"")]), @r#"
         p.toml:16:9: supply.floor = "5.20 V": not below limits.trip.min = "5.00 V"; the ramp must pass the whole trip window
         p.toml:42:22: limits.off_current.at = "5.80 V": not below limits.trip.min = "5.00 V"; it is measured below the trip, switch open
-        p.toml:49:6: off_line.to = "5.80 V": not below limits.trip.min = "5.00 V"; it is measured below the trip, switch open
+        p.toml:71:6: off_line.to = "5.80 V": not below limits.trip.min = "5.00 V"; it is measured below the trip, switch open
         "#);
         says!(problems(&[("\"6.12 V\"", "\"7.70 V\"")]), @r#"
         p.toml:39:39: limits.trip.max = "7.70 V": not below supply.start = "7.60 V"; the board must be on at the start

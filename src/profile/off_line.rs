@@ -125,8 +125,8 @@ mod tests {
 
     #[test]
     fn a_line_that_cannot_be_measured_is_refused() {
-        says!(problems(&[("from = \"2.00 V\"", "from = \"5.90 V\"")]), @r#"p.toml:48:8: off_line.from = "5.90 V": not below off_line.to = "5.80 V"; the line goes up"#);
-        says!(problems(&[("to = \"5.80 V\"", "to = \"5.95 V\"")]), @r#"p.toml:49:6: off_line.to = "5.95 V": not below limits.trip.min = "5.88 V"; it is measured below the trip, switch open"#);
-        says!(problems(&[("points = 5", "points = 3")]), @"p.toml:50:10: off_line.points = 3: wanted 4 to 20: fewer show no bend beside the line");
+        says!(problems(&[("from = \"2.00 V\"", "from = \"5.90 V\"")]), @r#"p.toml:70:8: off_line.from = "5.90 V": not below off_line.to = "5.80 V"; the line goes up"#);
+        says!(problems(&[("to = \"5.80 V\"", "to = \"5.95 V\"")]), @r#"p.toml:71:6: off_line.to = "5.95 V": not below limits.trip.min = "5.88 V"; it is measured below the trip, switch open"#);
+        says!(problems(&[("points = 5", "points = 3")]), @"p.toml:72:10: off_line.points = 3: wanted 4 to 20: fewer show no bend beside the line");
     }
 }

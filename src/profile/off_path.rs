@@ -199,9 +199,9 @@ mod tests {
 
     #[test]
     fn a_path_is_a_resistance_or_a_current_and_says_when_it_conducts() {
-        says!(problems(&[("resistance = \"3.9 Mohm\"", "resistance = \"3.9 Mohm\"\ncurrent = \"1 uA\"")]), @r#"p.toml:53:1: a path has either "resistance" or "current""#);
-        says!(problems(&[("resistance = \"3.9 Mohm\"", "resistance = \"0 Mohm\"")]), @r#"p.toml:55:14: off_path[1].resistance = "0 Mohm": not above zero"#);
+        says!(problems(&[("resistance = \"3.9 Mohm\"", "resistance = \"3.9 Mohm\"\ncurrent = \"1 uA\"")]), @r#"p.toml:75:1: a path has either "resistance" or "current""#);
+        says!(problems(&[("resistance = \"3.9 Mohm\"", "resistance = \"0 Mohm\"")]), @r#"p.toml:77:14: off_path[1].resistance = "0 Mohm": not above zero"#);
         says!(problems(&[("resistance = \"3.9 Mohm\"", "resistance = \"390 kohm\"")]), @r#"p.toml:42:54: limits.off_current.max = "4.0 uA": the paths of [[off_path]] draw 15.77 µA at 5.800 V, so that no board of this design passes"#);
-        says!(problems(&[("conducts = \"off\"", "conducts = \"perhaps\"")]), @r#"p.toml:57:12: off_path[1].conducts = "perhaps": wanted "off" or "on" or "always""#);
+        says!(problems(&[("conducts = \"off\"", "conducts = \"perhaps\"")]), @r#"p.toml:79:12: off_path[1].conducts = "perhaps": wanted "off" or "on" or "always""#);
     }
 }

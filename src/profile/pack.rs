@@ -210,11 +210,11 @@ mod tests {
 
     #[test]
     fn what_belongs_together_is_wanted_together() {
-        says!(problems(&[("resistance = \"150 mohm\"", "")]), @"p.toml:66:1: pack.recovery says nothing without pack.resistance");
-        says!(problems(&[("remaining_capacity = \"200 mAh\"", "remaining_capacity = \"3 Ah\"")]), @r#"p.toml:70:22: pack.remaining_capacity = "3 Ah": more than pack.capacity = "2.6 Ah""#);
+        says!(problems(&[("resistance = \"150 mohm\"", "")]), @"p.toml:88:1: pack.recovery says nothing without pack.resistance");
+        says!(problems(&[("remaining_capacity = \"200 mAh\"", "remaining_capacity = \"3 Ah\"")]), @r#"p.toml:92:22: pack.remaining_capacity = "3 Ah": more than pack.capacity = "2.6 Ah""#);
         says!(problems(&[("[pack]", "[pack]\nchemistry = \"li-ion\"\ncells = 3")]), @r#"p.toml:39:23: limits.trip.min = "5.88 V": pack.cells = 3 of pack.chemistry = "li-ion" are harmed below 7.500 V"#);
         says!(problems(&[("[pack]", "[pack]\nchemistry = \"li-ion\"\ncells = 1")]), @r#"p.toml:17:11: supply.maximum = "8.40 V": pack.cells = 1 of pack.chemistry = "li-ion" reach 4.400 V at most"#);
-        says!(problems(&[("recovery = \"200 mV\"", "recovery = \"3 V\"\nrebound_hold = \"2 s\"")]), @r#"p.toml:70:16: pack.rebound_hold = "2 s": the voltage rises to 9.137 V, above supply.maximum = "8.40 V""#);
+        says!(problems(&[("recovery = \"200 mV\"", "recovery = \"3 V\"\nrebound_hold = \"2 s\"")]), @r#"p.toml:92:16: pack.rebound_hold = "2 s": the voltage rises to 9.137 V, above supply.maximum = "8.40 V""#);
     }
 
     #[test]
@@ -223,7 +223,7 @@ mod tests {
         says!(problems(&[("[pack]", "[pack_of_old]"), ("\n[limits]", limit)]), @r#"
         p.toml:39:26: limits.rebound_margin.min = "0 V": it is worked out from pack.resistance, which is not there
         p.toml:40:24: limits.storage_time.min = "1 year": it is worked out from pack.remaining_capacity, which is not there
-        p.toml:69:2: unknown key "pack_of_old" in the file; known keys: board, limits, load, off_line, off_path, pack, ramp, revision, schema, serial_number, supply, timing, title
+        p.toml:91:2: unknown key "pack_of_old" in the file; known keys: board, detector, divider, environment, limits, load, measure, off_line, off_path, pack, ramp, revision, schema, serial_number, supply, timing, title
         "#);
     }
 }
