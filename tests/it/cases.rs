@@ -1,9 +1,14 @@
 //! Nasty boards and benches: each comes out as it should, and is called by its name.
 
+#![expect(clippy::expect_used, reason = "a test that cannot be set up has failed")]
+
 mod pairs;
 mod single;
 mod table;
 
+use crate::relay;
+use ebbmark::profile::QuantityName;
+use ebbmark::units::Volts;
 use pairs::PAIRS;
 use single::CASES;
 
@@ -26,7 +31,7 @@ const NOT_YET: &[(&str, &str)] = &[
     ("8", "source_resistance comes first where the noise of readings without current looks like a slope"),
     ("9", "as 8"),
     ("10", "both thresholds are a tenth too low and their ratio is right; nothing says so"),
-    ("11", "on one seed of five a board that chatters is called neither_on_nor_off"),
+    ("11", "on some seeds a board that chatters is called neither_on_nor_off"),
     (
         "14",
         "the procedure does not go below the floor; the discharge through the bump at the end is called chatter",
@@ -90,4 +95,58 @@ fn every_case_has_its_outcome_and_its_name() {
 #[test]
 fn every_pair_has_its_outcome_and_its_name() {
     table::check(PAIRS, NOT_YET, SEEDS);
+}
+
+/// Share of boards of a case, with this noise at their detectors, whose true value lies within the expanded uncertainty.
+fn covered(number: &str, noise: Volts, name: QuantityName) -> f64 {
+    const BOARDS: u64 = 100;
+    let case = CASES.iter().find(|case| case.number == number).expect("a case");
+    let profile = relay::profile(&[]);
+    let covers = |seed: &u64| {
+        let run = case.run_with(*seed, |setup| setup.board.noise = noise);
+        let (value, uncertainty) = run.measured(name).expect("measured");
+        let truth = run.true_value(name, &profile).expect("known");
+        (value - truth).abs() <= uncertainty
+    };
+    (0..BOARDS).filter(covers).count() as f64 / BOARDS as f64
+}
+
+/// What passes was measured right, even where the readings were hard to come by.
+#[test]
+fn what_passes_is_true_within_its_expanded_uncertainty() {
+    /// Of a normal distribution 95.45 % lies within two standard deviations (JCGM 100:2008, table G.1); of 100 draws of that
+    /// fewer than 88 come in once in a thousand times.
+    const LEAST: f64 = 0.88;
+    /// As quiet as the boards of the shipped profiles.
+    const QUIET: Volts = Volts(0.1e-3);
+    for number in ["1", "13", "17", "29", "30"] {
+        for name in
+            [QuantityName::Trip, QuantityName::ReEnable, QuantityName::Hysteresis, QuantityName::OffCurrent]
+        {
+            let share = covered(number, QUIET, name);
+            assert!(share >= LEAST, "case {number}, {}: covered in {share} of seeds 0 to 99", name.key());
+        }
+    }
+}
+
+/// Noise at the detector brings both thresholds nearer to each other the longer one waits beside them. At half a
+/// millivolt that is more than the uncertainty, in which it is not counted yet: strike this off once it is.
+#[test]
+fn noise_at_the_detector_is_not_in_the_uncertainty_yet() {
+    let share = covered("1", Volts(0.5e-3), QuantityName::Hysteresis);
+    assert!(share < 0.88, "the hysteresis is covered in {share} of seeds 0 to 99 now");
+}
+
+/// 0.28 µA through 10 MΩ at 2.8 V pass unseen; a reference board of known off current shows them.
+#[test]
+fn a_voltmeter_that_no_file_states_is_seen_on_a_reference_board_only() {
+    let case = CASES.iter().find(|case| case.number == "35").expect("a case");
+    let profile = relay::profile(&[]);
+    for seed in SEEDS {
+        let run = case.run(seed);
+        let (value, uncertainty) = run.measured(QuantityName::OffCurrent).expect("measured");
+        let truth = run.true_value(QuantityName::OffCurrent, &profile).expect("known");
+        assert!((value - truth - 0.28e-6).abs() < uncertainty, "seed {seed}: {value} A, in truth {truth} A");
+        assert!(uncertainty < 0.1e-6, "seed {seed}: {uncertainty} A");
+    }
 }
