@@ -54,7 +54,7 @@ pub(super) const CASES: &[Case] = &[
     Case::new("12", "reversed board", &[Reversed], INVALID, First("reversed")),
     Case::new("13", "detector of 50 ms", &[SlowDetector], PASS, First("dwell_shorter_than_delay"))
         .figures(|setup| setup.board.detect_delay = Duration::from_millis(50)),
-    Case::new("14", "conducts in deep discharge", &[DeepConduction], FAIL, First("deep_conduction"))
+    Case::new("14", "conducts in deep discharge", &[DeepConduction], FAIL, First("conducts_when_deep"))
         .limits(DEEP),
     Case::new("15", "intermittent contact", &[IntermittentContact], INVALID, First("contact")),
     Case::new("16", "ammeter's leads swapped", &[MeterReversed], INVALID, First("meter_reversed")),
