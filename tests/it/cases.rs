@@ -50,7 +50,7 @@ const NOT_YET: &[(&str, &str)] = &[
     ("25", "no thermometer is read"),
     (
         "27a",
-        "the board is failed as never_on; readings come and go between none and 3 mA, the limit flag is caught in one of sixty",
+        "the board is failed as never_on; readings come and go up to 3 mA, the limit flag shows in one of sixty",
     ),
     ("27b", "the board is failed for chatter; the limit flag is hardly ever caught"),
     ("28a", "the load's stop is taken for the trip though the load's voltage stays up"),
