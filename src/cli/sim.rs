@@ -32,7 +32,8 @@ fn conditions() -> String {
         .map(|condition| format!("  {:22} {}", condition.key(), condition.description()))
         .collect();
     format!(
-        "Conditions, several joined by + (a source-measure unit knows none of the supply's and the ammeter's own):\n{}\n\nExample:\n  ebbmark sim --condition high-trip+no-sink",
+        "Conditions, several joined by + (a source-measure unit knows none of the supply's and the ammeter's own):\n\
+         {}\n\nExample:\n  ebbmark sim --condition high-trip+no-sink",
         lines.join("\n")
     )
 }

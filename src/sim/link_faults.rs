@@ -66,8 +66,8 @@ pub enum Effect {
 }
 
 impl LinkFault {
-    /// The same fault for a bench whose time runs `speed` times faster than that of the program, which waits on the wall
-    /// clock for a reply.
+    /// The same fault for a bench whose time runs `speed` times faster than that of the program, which waits on the
+    /// wall clock for a reply.
     #[must_use]
     pub fn at_speed(mut self, speed: f64) -> Self {
         match &mut self.effect {

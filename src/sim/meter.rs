@@ -53,8 +53,8 @@ pub struct VoltmeterModel {
     pub ranges: Vec<MeterRange>,
     /// Time over which a reading is averaged.
     pub integration: Duration,
-    /// What its maker states of the resistance between its terminals; `None` for the sense of a source-measure unit, whose
-    /// current does not pass the ammeter.
+    /// What its maker states of the resistance between its terminals; `None` for the sense of a source-measure unit,
+    /// whose current does not pass the ammeter.
     pub input_resistance: Option<Ohms>,
     /// How far the true resistance is off what is stated, as a share.
     pub input_error: f64,

@@ -22,8 +22,8 @@ impl Ripple {
         self.rms.0 * SQRT_2
     }
 
-    /// How far above its trip voltage a detector of this delay trips, V; negative for one so slow that whole crests must
-    /// lie below its trip.
+    /// How far above its trip voltage a detector of this delay trips, V; negative for one so slow that whole crests
+    /// must lie below its trip.
     ///
     /// A trough of a sine of amplitude `a` lies below `-a cos(pi f t)` for the time `t`.
     pub(super) fn trip_shift(&self, detect_delay: Duration) -> f64 {

@@ -7,8 +7,8 @@ use std::time::Duration;
 
 /// What the board really is, noise and meters apart, at its terminals.
 ///
-/// Thresholds and delays are the detector's at the temperature it has, without hum or contacts that come and go; a stuck
-/// switch does not obey it. Currents are the board's own, without other sources and meters.
+/// Thresholds and delays are the detector's at the temperature it has, without hum or contacts that come and go; a
+/// stuck switch does not obey it. Currents are the board's own, without other sources and meters.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Truth {
     /// Voltage below which the switch opens.
@@ -21,7 +21,8 @@ pub struct Truth {
     pub detect_delay: Duration,
     /// Time above the re-enable until it closes.
     pub release_delay: Duration,
-    /// Whether it stays off once tripped, until its supply has gone; the re-enable is then that of a board just connected.
+    /// Whether it stays off once tripped, until its supply has gone; the re-enable is then that of a board just
+    /// connected.
     pub latches: bool,
     /// Temperature of the board.
     pub temperature: Celsius,

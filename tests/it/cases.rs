@@ -92,7 +92,8 @@ fn every_pair_has_its_outcome_and_its_name() {
     table::check(PAIRS, NOT_YET, SEEDS);
 }
 
-/// Share of boards of a case, with this noise at their detectors, whose true value lies within the expanded uncertainty.
+/// Share of boards of a case, with this noise at their detectors, whose true value lies within the expanded
+/// uncertainty.
 fn covered(number: &str, noise: Volts, name: QuantityName) -> f64 {
     const BOARDS: u64 = 100;
     let case = CASES.iter().find(|case| case.number == number).expect("a case");
@@ -109,8 +110,8 @@ fn covered(number: &str, noise: Volts, name: QuantityName) -> f64 {
 /// What passes was measured right, even where the readings were hard to come by.
 #[test]
 fn what_passes_is_true_within_its_expanded_uncertainty() {
-    /// Of a normal distribution 95.45 % lies within two standard deviations (JCGM 100:2008, table G.1); of 100 draws of that
-    /// fewer than 88 come in once in a thousand times.
+    /// Of a normal distribution 95.45 % lies within two standard deviations (JCGM 100:2008, table G.1); of 100 draws
+    /// of that fewer than 88 come in once in a thousand times.
     const LEAST: f64 = 0.88;
     /// As quiet as the boards of the shipped profiles.
     const QUIET: Volts = Volts(0.1e-3);

@@ -31,8 +31,8 @@ pub(crate) const BOARD: BoardModel = BoardModel {
     deep_conduction: None,
 };
 
-/// Leads and contacts. With the 0.1 ohm of the ammeter's range they move the terminals by 36 mV when the board switches;
-/// half of the least hysteresis is 45 mV.
+/// Leads and contacts. With the 0.1 ohm of the ammeter's range they move the terminals by 36 mV when the board
+/// switches; half of the least hysteresis is 45 mV.
 const LEADS: Ohms = Ohms(0.02);
 
 /// The board in order.

@@ -1,9 +1,9 @@
 //! The cases, one thing wrong at a time, on the relay node's board.
 //!
 //! Three more are not played in virtual time, because they are about the log and the operator: a serial number tested
-//! before (the log counts every attempt, `log::leftover`), a program killed in the middle of a run (`cli::leftover`), and
-//! a run stopped after a failing reading (`verdict::judge`, `cli::stopped`). Late and cut replies are played here as
-//! what the bench makes of them; over a real line they are in `cli::fault_mid_run`.
+//! before (the log counts every attempt, `log::leftover`), a program killed in the middle of a run (`cli::leftover`),
+//! and a run stopped after a failing reading (`verdict::judge`, `cli::stopped`). Late and cut replies are played here
+//! as what the bench makes of them; over a real line they are in `cli::fault_mid_run`.
 
 use super::table::Wanted::{Anything, First, Nothing};
 use super::table::{Case, FAIL, INVALID, PASS};

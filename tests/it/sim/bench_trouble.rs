@@ -25,8 +25,8 @@ fn to(world: &mut World, volts: f64) {
     wait(world, 300);
 }
 
-/// The highest voltage at which the board is off on the way down and the lowest at which it is on on the way up, in steps
-/// of 2 mV.
+/// The highest voltage at which the board is off on the way down and the lowest at which it is on on the way up, in
+/// steps of 2 mV.
 fn thresholds(setup: &Setup) -> (f64, f64) {
     let mut world = up(setup, 3.8);
     let find = |world: &mut World, from: i32, step: i32, on: bool| {
@@ -82,7 +82,8 @@ fn a_drifting_supply_does_not_see_its_drift() {
     assert!(before.0 - before.1 > 40e-3, "it has drifted for ten minutes and more: {before:?}");
 }
 
-/// 5 V less a diode, through 100 Ω into the 100 Ω and 5 mA of a supply that is off: (4.3 V - V) / 100 Ω = V / 100 Ω + 5 mA.
+/// 5 V less a diode, through 100 Ω into the 100 Ω and 5 mA of a supply that is off: (4.3 V - V) / 100 Ω = V / 100 Ω +
+/// 5 mA.
 #[test]
 fn another_source_lifts_the_board_while_the_output_is_off_and_flows_out_through_the_supply() {
     let mut world = World::new(&under(Condition::BackFeed, 1));
