@@ -20,6 +20,7 @@ mod off_budget;
 mod off_current;
 mod off_fit;
 mod off_limits;
+mod off_noise;
 mod on_current;
 mod on_resistance;
 mod plateau;

@@ -6,6 +6,7 @@
 //! its gain into both (JCGM 100:2008, 5.2.2). Nothing is said of voltages outside the span.
 
 use super::off_current::off_readings;
+use super::off_noise::{Noise, scale};
 use super::plateau::Course;
 use super::quantity::{Contribution, Quantity};
 use super::residuals::{Residuals, Shape};
@@ -91,11 +92,6 @@ fn chosen(course: &Course<'_>) -> Option<Vec<Settled>> {
     })
 }
 
-/// Full scale of the range, in amperes; endless where it is not known.
-fn scale(settled: &Settled) -> f64 {
-    settled.range.map_or(f64::INFINITY, |range| range.0)
-}
-
 /// At each voltage only what the smallest range read there.
 fn most_sensitive(readings: &[Settled]) -> Vec<Settled> {
     let place = |settled: &Settled| (settled.volts.0.ln() / SAME_VOLTAGE).round() as i64;
@@ -125,67 +121,6 @@ fn span(readings: &[Settled]) -> Option<(Volts, Volts)> {
         }
     }
     (count >= FEWEST && highest - lowest >= highest * SPAN).then_some((lowest, highest))
-}
-
-/// What the ammeter does at random on each range, from all plateaus there: one plateau is too short to tell.
-struct Noise {
-    ranges: Vec<RangeNoise>,
-    /// Whether every range has readings enough to know it.
-    is_known: bool,
-    degrees_of_freedom: f64,
-    /// Bend that the ammeter's claim leaves room for, in amperes.
-    meter_bends: f64,
-}
-
-struct RangeNoise {
-    scale: f64,
-    /// Variance of one reading.
-    variance: f64,
-    /// Variance of the last digit.
-    digit: f64,
-    degrees_of_freedom: f64,
-}
-
-impl Noise {
-    fn of(course: &Course<'_>, readings: &[Settled]) -> Self {
-        let mut scales: Vec<f64> = readings.iter().map(scale).collect();
-        scales.sort_by(f64::total_cmp);
-        scales.dedup();
-        let claim = |settled: &Settled| course.trace.claims.current_accuracy(settled.range, settled.amps);
-        let ranges: Vec<RangeNoise> = scales
-            .into_iter()
-            .map(|scale_of| {
-                let here = || readings.iter().filter(|it| scale(it).total_cmp(&scale_of).is_eq());
-                let degrees_of_freedom: f64 = here().map(|it| it.count as f64 - 1.0).sum();
-                let squares: f64 = here().map(|it| it.squares).sum();
-                let digit = here().find_map(claim).map_or(0.0, |claim| claim.resolution.powi(2) / 12.0);
-                RangeNoise {
-                    scale: scale_of,
-                    variance: squares / degrees_of_freedom,
-                    digit,
-                    degrees_of_freedom,
-                }
-            })
-            .collect();
-        // Readings that all agree to the last digit are known to that digit, and no better.
-        let known = |range: &RangeNoise| range.degrees_of_freedom > 0.0 && range.variance + range.digit > 0.0;
-        Self {
-            is_known: ranges.iter().all(known),
-            degrees_of_freedom: ranges.iter().map(|range| range.degrees_of_freedom).sum(),
-            meter_bends: readings.iter().filter_map(claim).map(|claim| claim.absolute).fold(0.0, f64::max),
-            ranges,
-        }
-    }
-
-    fn point(&self, settled: &Settled) -> Point {
-        let range = self.ranges.iter().find(|range| range.scale.total_cmp(&scale(settled)).is_eq());
-        let variance = range.map(|range| range.variance / settled.count as f64 + range.digit);
-        let weight = match variance {
-            Some(variance) if self.is_known => 1.0 / variance,
-            _ => settled.count as f64,
-        };
-        Point { x: settled.volts.0, y: settled.amps.0, weight }
-    }
 }
 
 /// Makes a line of the budget of what an error does.

@@ -15,8 +15,10 @@ pub(super) enum Shape {
     Scattered,
 }
 
-/// Standard normal quantile of one in a thousand, upper tail (any table).
-const ONE_IN_A_THOUSAND: f64 = 3.090;
+/// A chance so small is none.
+const CHANCE: f64 = 1e-3;
+/// Its standard normal quantile (any table).
+const NORMAL: f64 = 3.090;
 /// Share of the squares that lies in the bend, for it to be called one.
 const MOST: f64 = 0.5;
 
@@ -24,7 +26,8 @@ const MOST: f64 = 0.5;
 pub(super) struct Residuals {
     /// Sum of the weighted squares.
     squares: f64,
-    degrees_of_freedom: f64,
+    /// Chance that the points scatter so much about a straight line.
+    chance: f64,
     /// The part of them that a parabola explains, as a standard normal under a straight line; positive upwards.
     bend: f64,
     largest: f64,
@@ -42,7 +45,7 @@ impl Residuals {
         let size: f64 = points.iter().map(|point| point.weight * bow(point).powi(2)).sum();
         Self {
             squares: points.iter().map(|point| point.weight * rest(point).powi(2)).sum(),
-            degrees_of_freedom: points.len() as f64 - 2.0,
+            chance: line.residual_test().unwrap_or(1.0),
             bend: if size > 0.0 { product / size.sqrt() } else { 0.0 },
             largest: points.iter().map(|point| rest(point).abs()).fold(0.0, f64::max),
         }
@@ -53,10 +56,10 @@ impl Residuals {
         self.largest
     }
 
-    /// Chi-squared against its upper one in a thousand, or the parabola alone against the same.
+    /// Chi-squared of all residuals, and the part of a parabola by itself, each against one in a thousand.
     pub(super) fn shape(&self) -> Shape {
-        let scattered = as_normal(self.squares, self.degrees_of_freedom) > ONE_IN_A_THOUSAND;
-        let bent = self.bend.powi(2) > MOST * self.squares && self.bend.abs() > ONE_IN_A_THOUSAND;
+        let scattered = self.chance < CHANCE;
+        let bent = self.bend.powi(2) > MOST * self.squares && self.bend.abs() > NORMAL;
         match (scattered, bent) {
             (_, true) if self.bend > 0.0 => Shape::BendsUp,
             (_, true) => Shape::BendsDown,
@@ -66,26 +69,9 @@ impl Residuals {
     }
 }
 
-/// A chi-squared value as a standard normal one: E. B. Wilson and M. M. Hilferty, The distribution of chi-square,
-/// Proc. Natl. Acad. Sci. 17 (1931) 684.
-fn as_normal(chi_squared: f64, degrees_of_freedom: f64) -> f64 {
-    let part = 2.0 / (9.0 * degrees_of_freedom);
-    ((chi_squared / degrees_of_freedom).cbrt() - (1.0 - part)) / part.sqrt()
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
-
-    /// Upper 0.1 % of chi-squared for 2, 3 and 10 degrees of freedom (the tables' 13.816, 16.266 and 29.588, from memory);
-    /// the approximation is good to a few hundredths of a deviation there.
-    #[test]
-    fn chi_squared_reaches_one_in_a_thousand_where_the_tables_say() {
-        for (degrees, quantile) in [(2.0, 13.816), (3.0, 16.266), (10.0, 29.588)] {
-            let z = as_normal(quantile, degrees);
-            assert!((z - ONE_IN_A_THOUSAND).abs() < 0.05, "{degrees}: {z}");
-        }
-    }
 
     fn shape(rests: &[f64]) -> Shape {
         let point = |(i, rest): (usize, &f64)| Point { x: i as f64, y: i as f64 + rest, weight: 1.0 };
