@@ -11,8 +11,10 @@ use ebbmark::instrument::bench_file::BenchFile;
 use ebbmark::procedure::{Plan, Procedure};
 use ebbmark::profile::{InBand, Profile, QuantityName, WantedInBand};
 use ebbmark::sim::bench::{Arrangement, Options, SimulatedBench};
+use ebbmark::sim::{Condition, Setup};
 use ebbmark::trace::{OutputState, Stop, Trace};
 use ebbmark::units::{Amps, Volts};
+use ebbmark::verdict::{Outcome, judge};
 use std::path::Path;
 use std::time::Duration;
 
@@ -44,9 +46,18 @@ fn run(arrangement: Arrangement, abort: impl Future<Output = ()>) -> Trace {
 }
 
 fn run_profile(profile: &Profile, arrangement: Arrangement, abort: impl Future<Output = ()>) -> Trace {
+    run_board(profile, &setup(), arrangement, abort)
+}
+
+fn run_board(
+    profile: &Profile,
+    setup: &Setup,
+    arrangement: Arrangement,
+    abort: impl Future<Output = ()>,
+) -> Trace {
     let clock = Clock::faster(SPEED);
     let options = Options { clock, arrangement, ..Options::default() };
-    let simulated = SimulatedBench::start(&setup(), options).expect("pseudo-terminals");
+    let simulated = SimulatedBench::start(setup, options).expect("pseudo-terminals");
     let file = bench_file(&simulated);
     assert_eq!(file.misfits(profile), []);
     let trace = block_on(async {
@@ -104,6 +115,31 @@ fn everything_is_measured_over_the_ports() {
         quantity(QuantityName::DeepCurrent);
         let codes: Vec<_> = analysis.findings.iter().map(|finding| finding.code).collect();
         assert_eq!(codes, [FindingCode::InBand], "{:?}", analysis.findings);
+    }
+}
+
+/// Off-state line and budget, on-resistance, rebound with a hold, and storage, with a limit on each.
+#[test]
+fn off_state_and_battery_are_measured_and_judged_over_the_ports() {
+    let text = include_str!("../../profiles/garden-probe.toml").replace(
+        "[off_line]",
+        "on_resistance = { max = \"100 mohm\" }
+         off_conductance = { min = \"0.9 uS\", max = \"1.1 uS\" }
+         off_constant_current = { min = \"0.5 uA\", max = \"1.1 uA\" }
+         rebound_margin = { min = \"10 mV\" }
+         storage_time = { min = \"1 year\" }
+         [off_line]",
+    );
+    let text = text.replace("[pack]", "[pack]\nremaining_capacity = \"200 mAh\"");
+    let profile = Profile::read("garden-probe.toml", &text).unwrap_or_else(|problems| panic!("{problems}"));
+    for arrangement in [Arrangement::Separate, Arrangement::SourceMeasureUnit] {
+        let setup = Setup::new(&profile, Condition::Good, 11);
+        let trace = run_board(&profile, &setup, arrangement, std::future::pending());
+        assert_eq!((&trace.ending.stop, trace.ending.output), (&Stop::Completed, OutputState::Off));
+        let verdict = judge(&analyse(&trace, &profile), &profile, &trace.ending);
+        assert_eq!(verdict.outcome, Outcome::Pass, "{arrangement:?}: {verdict:#?}");
+        let judged = verdict.judged.iter().filter(|judged| judged.decision.is_some()).count();
+        assert_eq!(judged, profile.limits.len(), "{arrangement:?}: {verdict:#?}");
     }
 }
 
