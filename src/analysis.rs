@@ -58,7 +58,7 @@ pub struct Analysis {
     pub findings: Vec<Finding>,
 }
 
-/// Reads the thresholds, their hysteresis, the on current and the off current from `trace`, and what it says about
+/// Reads the thresholds, their hysteresis, the currents and what follows from them from `trace`, and what it says about
 /// board and bench. The same trace and profile give the same answer.
 pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     let course = Course::new(trace, profile);

@@ -2,7 +2,7 @@
 //!
 //! [`Procedure::handle`] takes what came of the last action and the time since the start of the run, and returns the
 //! next action. Inside, a run is told from top to bottom (`script`): prepare, pre-check, arm, survey, off current,
-//! narrow, confirm. Whatever happens on the way, the script's only way out is `switch_off`.
+//! narrow, confirm, rebound. Whatever happens on the way, the script's only way out is `switch_off`.
 
 mod ability;
 mod action;

@@ -62,24 +62,24 @@ fn resistive(fit: &OffFit, budget: &OffBudget, profile: &Profile) -> Option<Find
     let text = match beyond {
         Beyond::High => {
             let beside = Ohms(1.0 / excess);
-            let otherwise = if beside > DIRT { "flux residue or dirt" } else { "a wrong part" };
+            let found = if beside > DIRT { "flux residue or dirt" } else { "a wrong part" };
+            let first = match cause {
+                Some(cause) => format!("Look first at the {cause} Otherwise for"),
+                None => format!("Look first at the {}, and for", resistors(&profile.off_paths)),
+            };
             format!(
-                "the off current changes by {}, the budget allows {}: {} in all, or {beside} beside the design's paths. {}, then \
-                 {otherwise} across the switch or the fixture.",
+                "the off current changes by {}, the budget allows {}: {} in all, or {beside} beside the design's paths. {first} {found} \
+                 across the switch or the fixture.",
                 change(slope),
                 change(allowed.most.0),
                 Ohms(1.0 / slope),
-                cause.map_or_else(
-                    || "Look first for a leak across the board".to_owned(),
-                    |cause| { format!("Look first at the {cause}") }
-                )
             )
         }
         Beyond::Low => format!(
-            "the off current changes by {}, the budget wants at least {}. Look first at the {}.",
+            "the off current changes by {}, the budget wants at least {}. Look first at the {}",
             change(slope),
             change(allowed.least.0),
-            cause.unwrap_or_else(|| format!("{}: too large or open", resistors(&profile.off_paths)))
+            cause.unwrap_or_else(|| format!("{}: too large or open?", resistors(&profile.off_paths)))
         ),
     };
     Some(Finding { code: FindingCode::OffPathResistive, about: About::Board, text })
@@ -128,7 +128,7 @@ fn decade(excess: f64, paths: &[OffPath]) -> Option<String> {
         let Draws::Resistance(ohms) = path.draws else { return None };
         let (conductance, name) = (1.0 / ohms.0, &path.name);
         if fits(9.0 * conductance) {
-            Some(format!("{name}, a decade low: {} in place of {ohms}?", ohms / 10.0))
+            Some(format!("{name}: {} in place of {ohms}, a decade low?", ohms / 10.0))
         } else if fits(-conductance) || fits(-0.9 * conductance) {
             Some(format!("{name} of {ohms}: open, or a decade high?"))
         } else {
@@ -208,7 +208,7 @@ mod tests {
             10e-6,
             1.05e-6,
             FindingCode::OffPathResistive,
-            &["10.00 µA/V", "100.0 kΩ in all", "pull-up, a decade low", "in place of 1.000 MΩ"],
+            &["10.00 µA/V", "100.0 kΩ in all", "pull-up: 100.0 kΩ in place of 1.000 MΩ, a decade low?"],
         );
         only(1.0e-6, 41.05e-6, FindingCode::OffPathConstant, &["41.05 µA", "Lift the load"]);
     }
