@@ -4,6 +4,7 @@ mod analyse;
 mod bench;
 mod demo;
 mod due;
+mod earlier;
 mod exit;
 mod files;
 mod guard;

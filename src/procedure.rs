@@ -1,8 +1,8 @@
 //! What to do next: one answer in, one action out. Pure: no clock, no port, no file.
 //!
 //! [`Procedure::handle`] takes what came of the last action and the time since the start of the run, and returns the
-//! next action. Inside, a run is told from top to bottom (`script`): prepare, pre-check, arm, survey, off current,
-//! narrow, confirm, rebound. Whatever happens on the way, the script's only way out is `switch_off`.
+//! next action. Inside, a run is told from top to bottom (`script`): prepare, pre-check, arm, search or staircase, off
+//! current, and what the profile asks for beyond. Whatever happens on the way, the script's only way out is `switch_off`.
 
 mod ability;
 mod action;
@@ -11,9 +11,11 @@ mod bench_work;
 mod confirm;
 mod deep;
 mod delay;
+mod descent;
 mod desk;
 mod fit;
 mod in_band;
+mod narrow;
 mod off_current;
 mod off_line;
 mod plan;
@@ -22,6 +24,7 @@ mod probe;
 mod progress;
 mod rebound;
 mod script;
+mod search;
 mod settling;
 mod switch_off;
 mod walk;
@@ -33,6 +36,7 @@ pub use fit::{Misfit, fits};
 pub use plan::Plan;
 pub use progress::{Progress, Stage};
 pub use rebound::Trial;
+pub use search::{Prior, Spread};
 
 use crate::trace::Ending;
 use desk::Desk;

@@ -4,7 +4,7 @@ use super::due::{self, BenchState};
 use super::live::Live;
 use super::station::Station;
 use super::stop::listen;
-use super::{Failure, files, guard, who};
+use super::{Failure, earlier, files, guard, who};
 use crate::bench::Bench;
 use crate::bench::serial::SerialBench;
 use crate::procedure::{Plan, Procedure};
@@ -50,8 +50,10 @@ impl Order<'_> {
             None if self.is_reference => {}
             None => state.refuse_overdue(self.profile)?,
         }
-        station.log.start(self.subject(&station, &bench), now())?;
-        let plan = Plan::new(self.profile, &station.bench.ability(maximum));
+        let subject = self.subject(&station, &bench);
+        let prior = earlier::prior(station.log.folder(), &subject.profile, self.simulated.is_some());
+        station.log.start(subject, now())?;
+        let plan = Plan::new(self.profile, &station.bench.ability(maximum)).with_prior(prior);
         let mut claims = station.bench.claims(&self.profile.supply);
         claims.zero = state.zeros();
         claims.doubts = station.bench.doubts(now().date());

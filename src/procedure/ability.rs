@@ -24,6 +24,8 @@ pub struct Ability {
     pub set_step: Volts,
     /// Time the supply needs after a step until its output has settled, board on.
     pub settle: Duration,
+    /// Share of an upward step by which the supply may overshoot its set-point; 0 where it does not.
+    pub overshoot: f64,
     /// Time one reading of all roles takes, wire included.
     pub read_time: Duration,
     /// How far a settled voltage at the terminals may lie from the set-point, lead drop aside.

@@ -49,7 +49,8 @@ pub(super) async fn confirm_re_enable(
     hold(desk, plan, first, SwitchState::Off, pace).await
 }
 
-async fn hold(
+/// Looks for as long as the pace says whether the board stays in its `expected` state.
+pub(super) async fn hold(
     desk: &Desk,
     plan: &Plan,
     first: Sample,

@@ -169,6 +169,7 @@ mod tests {
             min_current: Amps(0.001),
             set_step: Volts(0.001),
             settle: Duration::from_millis(15),
+            overshoot: 0.0,
             read_time: Duration::from_millis(25),
             arrival_tolerance: Volts(0.01),
             zero_uncertainties: vec![Amps(15e-9), Amps(6e-5)],

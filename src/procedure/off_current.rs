@@ -3,6 +3,7 @@
 use super::desk::Desk;
 use super::plan::Pace;
 use super::probe::{probe, state};
+use super::progress::{Stage, left};
 use super::settling::settle_on_range;
 use super::{Action, Plan};
 use crate::trace::{Sample, Stop, SwitchState};
@@ -12,6 +13,7 @@ use crate::units::Amps;
 ///
 /// A board that cannot be shown to be off keeps the large range: its off current is not measured.
 pub(super) async fn measure_off_current(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
+    desk.enter(Stage::OffCurrent, left(plan, Stage::OffCurrent));
     // The way to the higher points is up, and a board that would come back there gets the time to do so.
     let pace = Pace { dwell: plan.down.dwell.max(plan.up.dwell), hold: plan.up.hold };
     for volts in &plan.off_points {

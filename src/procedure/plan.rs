@@ -1,7 +1,8 @@
 //! The numbers of one run, worked out once from the profile and the bench's abilities.
 
 use super::rebound::{self, Trial};
-use super::{Ability, off_line};
+use super::search::{Belief, Costs, Grid, SearchPlan};
+use super::{Ability, Prior, off_line};
 use crate::profile::{Load, Measure, Profile, QuantityName, Ramp};
 use crate::units::{Amps, Volts};
 use std::time::Duration;
@@ -57,6 +58,8 @@ pub struct Plan {
     pub measure: Measure,
     /// Limit of the deep current, if any.
     pub deep_limit: Option<Amps>,
+    /// How both thresholds are looked for together; `None` for a staircase.
+    pub(super) search: Option<SearchPlan>,
 }
 
 /// Waiting times in one direction.
@@ -80,6 +83,7 @@ impl Plan {
         let first_off = smallest_holding(&ability.ranges, expected_off);
         let off_ranges =
             ability.ranges.iter().copied().filter(|r| *r >= first_off && *r <= on_range).collect();
+        let (down, up) = (Pace::new(profile.timing.detect_delay), Pace::new(profile.timing.release_delay));
         Self {
             maximum: supply.maximum,
             over_voltage: (supply.maximum * OVER_VOLTAGE).min(ability.max_voltage),
@@ -90,8 +94,8 @@ impl Plan {
             load: profile.load,
             survey_step,
             fine_step,
-            down: Pace::new(profile.timing.detect_delay),
-            up: Pace::new(profile.timing.release_delay),
+            down,
+            up,
             settle: ability.settle,
             read_time: ability.read_time,
             range_settle: ability.range_settle,
@@ -105,7 +109,18 @@ impl Plan {
             off_ranges,
             measure: profile.measure,
             deep_limit: profile.limits.get(&QuantityName::DeepCurrent).and_then(|limit| limit.max).map(Amps),
+            search: search(profile, ability, down, up),
         }
+    }
+
+    /// The same run for a board of which earlier ones are known: its thresholds are looked for first where theirs were.
+    /// A board that is not like them costs some set-points more.
+    #[must_use]
+    pub fn with_prior(mut self, prior: Prior) -> Self {
+        if let Some(search) = &mut self.search {
+            (search.trip.earlier, search.re_enable.earlier) = (prior.trip, prior.re_enable);
+        }
+        self
     }
 
     /// Current limit during the pre-check at `volts`: twice what the load draws there.
@@ -148,7 +163,7 @@ const OFF_CURRENT_GUESS: Amps = Amps(10e-6);
 /// A slow board shows itself within this time beside its threshold.
 const SHORTEST_HOLD: Duration = Duration::from_millis(250);
 
-/// Survey and fine step. Two passes with n and m steps over a span cost n + m and resolve n x m, so the geometric
+/// Survey and fine step of a staircase, and of a search that had to give up. Two passes with n and m steps over a span cost n + m and resolve n x m, so the geometric
 /// mean of span and resolution is the cheapest survey step.
 fn steps(profile: &Profile, set_step: Volts) -> (Volts, Option<Volts>) {
     match profile.ramp {
@@ -160,6 +175,35 @@ fn steps(profile: &Profile, set_step: Volts) -> (Volts, Option<Volts>) {
             (fine * cells, (cells > 1.0).then_some(fine))
         }
     }
+}
+
+/// The search of a profile that asks for one: cells, costs, and where the limits lead one to expect the thresholds.
+fn search(profile: &Profile, ability: &Ability, down: Pace, up: Pace) -> Option<SearchPlan> {
+    let Ramp::Search { resolution } = profile.ramp else { return None };
+    let supply = &profile.supply;
+    let settles_up = if ability.overshoot > 0.0 { 2.0 } else { 1.0 };
+    let cost = |settles: f64, pace: Pace| {
+        (ability.settle.mul_f64(settles) + pace.dwell + ability.read_time).as_secs_f64()
+    };
+    let window = |name| {
+        let limit = profile.limits.get(&name)?;
+        Some((Volts(limit.min.unwrap_or(supply.floor.0)), Volts(limit.max.unwrap_or(supply.start.0))))
+    };
+    let belief = |window| Belief { window, earlier: None };
+    let trip = window(QuantityName::Trip);
+    let by_hysteresis = || {
+        let limit = profile.limits.get(&QuantityName::Hysteresis)?;
+        let (low, high) = trip?;
+        Some((low + Volts(limit.min.unwrap_or(0.0)), high + Volts(limit.max?)))
+    };
+    Some(SearchPlan {
+        grid: Grid::new(supply.floor, supply.start, resolution, ability.set_step),
+        table: SearchPlan::table(Costs { down: cost(1.0, down), up: cost(settles_up, up) }),
+        trip: belief(trip),
+        re_enable: belief(window(QuantityName::ReEnable).or_else(by_hysteresis)),
+        tolerance: ability.arrival_tolerance,
+        overshoot: ability.overshoot,
+    })
 }
 
 /// Standard uncertainties within which nearly every reading of zero lies, whatever its distribution: for a rectangular

@@ -103,4 +103,4 @@ pub(super) async fn wait_until_dead(desk: &Desk, voltmeter: bool) -> Result<(), 
 pub(super) const DEAD: Volts = Volts(0.1);
 const DRAIN: Duration = Duration::from_secs(5);
 /// Pause between looks at a draining board.
-pub(super) const DRAIN_POLL: Duration = Duration::from_millis(100);
+pub(super) const DRAIN_POLL: Duration = Duration::from_millis(20);

@@ -55,8 +55,8 @@ pub(super) fn state(plan: &Plan, sample: &Sample) -> SwitchState {
     SwitchState::of(sample.current, sample.terminals(), plan.load.resistance, plan.on_uncertainty)
 }
 
-/// Brings the board into its on state by the start voltage, whatever it did before.
-pub(super) async fn arm_on(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
+/// Brings the board into its on state by the start voltage, whatever it did before, and returns a reading there.
+pub(super) async fn arm_on(desk: &Desk, plan: &Plan) -> Result<Sample, Stop> {
     let mut sample = probe(desk, plan, plan.start, plan.up).await?;
     let patience = desk.now() + PATIENCE + plan.up.hold;
     let armed = |sample: &Sample| state(plan, sample) == SwitchState::On && sample.limited != Some(true);
@@ -68,7 +68,7 @@ pub(super) async fn arm_on(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     let current = sample.current.amps().unwrap_or(plan.on_range);
     match state(plan, &sample) {
         _ if sample.limited == Some(true) => Err(Stop::CurrentLimited { at, current }),
-        SwitchState::On => Ok(()),
+        SwitchState::On => Ok(sample),
         // The supply has cut its own output, as by its over-voltage protection: no board does that.
         _ if at < plan.start * COLLAPSED => Err(Stop::NotArrived { set: sample.set, sense: at }),
         SwitchState::Off => Err(Stop::NotOn { at, current }),

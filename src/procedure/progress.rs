@@ -1,7 +1,9 @@
 //! How far a run has come, for the operator.
 
+use super::plan::Pace;
 use super::{Plan, deep, delay, in_band, rebound};
 use crate::trace::WHOLE_LINE_PERIODS;
+use crate::units::Volts;
 use std::time::Duration;
 
 /// The part of a run that is under way and the time still to come.
@@ -36,8 +38,12 @@ pub enum Stage {
     PreCheck,
     /// Bringing the board into its on state.
     Arm,
+    /// Looking for both thresholds together.
+    Search,
     /// Down in steps until it trips, and on to the floor.
     SurveyDown,
+    /// Below the trip, down to the floor.
+    Descend,
     /// Reading the off current.
     OffCurrent,
     /// Up in steps until it comes back.
@@ -68,7 +74,9 @@ impl Stage {
         match self {
             Stage::PreCheck => "pre-check",
             Stage::Arm => "arming",
+            Stage::Search => "searching",
             Stage::SurveyDown => "ramp down",
+            Stage::Descend => "below the trip",
             Stage::OffCurrent => "off current",
             Stage::SurveyUp => "ramp up",
             Stage::NarrowDown => "fine ramp down",
@@ -85,34 +93,73 @@ impl Stage {
 
 /// Time expected from the beginning of `stage` to the end of a run that goes as planned.
 pub(super) fn left(plan: &Plan, stage: Stage) -> Duration {
-    let step_down = plan.settle + plan.down.dwell + plan.read_time;
-    let step_up = plan.settle + plan.up.dwell + plan.read_time;
-    let steps = |span: f64, step: f64| (span / step).ceil() as u32 + 1;
-    let span = plan.start.0 - plan.floor.0;
+    let mut parts = match &plan.search {
+        Some(search_plan) => search(plan, search_plan.expected()),
+        None => staircase(plan),
+    };
+    parts.extend(more(plan));
+    let from = parts.iter().position(|(known, _)| *known == stage).unwrap_or(0);
+    parts[from..].iter().map(|(_, time)| *time).sum()
+}
+
+fn step(plan: &Plan, pace: Pace) -> Duration {
+    plan.settle + pace.dwell + plan.read_time
+}
+
+fn steps(span: Volts, step: Volts) -> u32 {
+    (span / step).ceil() as u32 + 1
+}
+
+fn search(plan: &Plan, seconds: f64) -> Vec<(Stage, Duration)> {
+    let (down, up) = (step(plan, plan.down), step(plan, plan.up));
+    let below_trip = (plan.start - plan.floor) / 3.0;
+    vec![
+        pre_check(plan),
+        (Stage::Arm, up),
+        (Stage::Search, Duration::from_secs_f64(seconds)),
+        (Stage::ConfirmTrip, down * 2 + plan.down.hold),
+        (Stage::ConfirmReEnable, up * 2 + plan.up.hold),
+        (Stage::Descend, down * steps(below_trip, plan.survey_step)),
+        off_current(plan),
+    ]
+}
+
+fn staircase(plan: &Plan) -> Vec<(Stage, Duration)> {
+    let (down, up) = (step(plan, plan.down), step(plan, plan.up));
+    let span = plan.start - plan.floor;
     let narrow = |step: Duration| match plan.fine_step {
-        Some(fine) => step * (steps(plan.survey_step.0, fine.0) + 2),
+        Some(fine) => step * (steps(plan.survey_step, fine) + 2),
         None => Duration::ZERO,
     };
-    let parts = [
-        (Stage::PreCheck, plan.settle * 3 + plan.read_time * 3),
-        (Stage::Arm, step_up),
-        (Stage::SurveyDown, step_down * steps(span, plan.survey_step.0)),
-        (
-            Stage::OffCurrent,
-            (plan.settle + plan.range_settle * 2 + plan.read_time * 4 + WHOLE_LINE_PERIODS)
-                * plan.off_points.len() as u32,
-        ),
-        (Stage::SurveyUp, step_up * steps(span * 0.5, plan.survey_step.0)),
-        (Stage::NarrowDown, narrow(step_down)),
-        (Stage::ConfirmTrip, step_up + step_down + plan.down.hold),
-        (Stage::NarrowUp, narrow(step_up)),
-        (Stage::ConfirmReEnable, step_down + step_up + plan.up.hold),
+    vec![
+        pre_check(plan),
+        (Stage::Arm, up),
+        (Stage::SurveyDown, down * steps(span, plan.survey_step)),
+        off_current(plan),
+        (Stage::SurveyUp, up * steps(span * 0.5, plan.survey_step)),
+        (Stage::NarrowDown, narrow(down)),
+        (Stage::ConfirmTrip, up + down + plan.down.hold),
+        (Stage::NarrowUp, narrow(up)),
+        (Stage::ConfirmReEnable, down + up + plan.up.hold),
+    ]
+}
+
+/// What comes after the thresholds, in either mode.
+fn more(plan: &Plan) -> [(Stage, Duration); 5] {
+    [
         (Stage::Delays, delay::expected(plan)),
         (Stage::InBand, in_band::expected(plan)),
         (Stage::DeepSweep, deep::expected(plan)),
         (Stage::Rebound, rebound::duration(plan)),
         (Stage::SwitchOff, plan.settle + plan.read_time),
-    ];
-    let from = parts.iter().position(|(known, _)| *known == stage).unwrap_or(0);
-    parts[from..].iter().map(|(_, time)| *time).sum()
+    ]
+}
+
+fn pre_check(plan: &Plan) -> (Stage, Duration) {
+    (Stage::PreCheck, plan.range_settle + plan.settle * 3 + plan.read_time * 3)
+}
+
+fn off_current(plan: &Plan) -> (Stage, Duration) {
+    let point = plan.settle + plan.range_settle * 2 + plan.read_time * 4 + WHOLE_LINE_PERIODS;
+    (Stage::OffCurrent, point * plan.off_points.len() as u32)
 }

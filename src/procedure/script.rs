@@ -4,18 +4,19 @@ use super::approach::Approach;
 use super::confirm::{Confirmed, confirm_re_enable, confirm_trip};
 use super::deep::sweep_deep;
 use super::delay::measure_delays;
+use super::descent::descend_to_floor;
 use super::desk::Desk;
 use super::in_band::switch_on_in_band;
+use super::narrow::{Narrowed, narrow};
 use super::off_current::measure_off_current;
 use super::pre_check::pre_check;
-use super::probe::{arm_off, arm_on, probe};
+use super::probe::{arm_off, arm_on};
 use super::progress::{Stage, left};
 use super::rebound::try_rebound;
 use super::switch_off::switch_off;
-use super::walk::{self, Edge, walk_down, walk_up};
+use super::walk::{Edge, walk_down, walk_up};
 use super::{Action, Plan};
 use crate::trace::{Ending, Stop};
-use crate::units::Volts;
 use std::rc::Rc;
 
 /// The whole run. Whatever ends the measuring, the output is switched off.
@@ -36,15 +37,28 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
 
     enter(Stage::Arm);
     desk.order(Action::LimitCurrent(plan.current_limit)).await?;
-    arm_on(desk, plan).await?;
+    let armed = arm_on(desk, plan).await?;
+
+    if let Some(search) = &plan.search {
+        match narrow(desk, plan, search, armed).await? {
+            Narrowed::Both { trip, re_enable } => return measure_more(desk, plan, trip, re_enable).await,
+            Narrowed::OneMissing => return Ok(()),
+            // Every step of the whole range shows what the board does.
+            Narrowed::Odd => arm_on(desk, plan).await?,
+        };
+    }
+    staircase(desk, plan).await
+}
+
+/// One threshold after the other, the board being on.
+async fn staircase(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
+    let enter = |stage| desk.enter(stage, left(plan, stage));
 
     enter(Stage::SurveyDown);
     let Some(trip) = walk_down(desk, plan, plan.start, plan.floor, plan.survey_step, plan.down).await? else {
         return Ok(());
     };
     descend_to_floor(desk, plan, trip.changed).await?;
-
-    enter(Stage::OffCurrent);
     measure_off_current(desk, plan).await?;
 
     enter(Stage::SurveyUp);
@@ -64,14 +78,6 @@ async fn measure_more(desk: &Desk, plan: &Plan, trip: Edge, re_enable: Edge) -> 
     measure_delays(desk, plan, trip, re_enable).await?;
     switch_on_in_band(desk, plan).await?;
     sweep_deep(desk, plan, trip).await
-}
-
-/// Goes on below the trip to the floor, whatever the board does there: one that conducts again must be seen.
-async fn descend_to_floor(desk: &Desk, plan: &Plan, from: Volts) -> Result<(), Stop> {
-    for volts in walk::set_points(from - plan.survey_step, plan.floor, -plan.survey_step) {
-        probe(desk, plan, volts, plan.down).await?;
-    }
-    Ok(())
 }
 
 /// Small steps through the bracket, then a hold just above it; a board that trips there is slow and gets more time.

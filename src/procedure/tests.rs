@@ -42,6 +42,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         min_current: Amps(1e-3),
         set_step: Volts(1e-3),
         settle: Duration::from_millis(15),
+        overshoot: 0.0,
         read_time: Duration::from_millis(22),
         arrival_tolerance: Volts(0.02),
         zero_uncertainties: vec![Amps(2e-8), Amps(1e-7), Amps(6e-5)],

@@ -5,6 +5,7 @@
 //! never ended: it is recorded as `INCOMPLETE`, and no run starts until somebody has confirmed the output to be off.
 
 mod bench_entries;
+mod earlier;
 mod error;
 mod folder;
 mod history;

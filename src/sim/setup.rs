@@ -126,6 +126,7 @@ impl Setup {
             min_current: supply.min_current,
             set_step: supply.set_step,
             settle: supply.time_constant * SETTLE_CONSTANTS,
+            overshoot: supply.overshoot,
             read_time: self.ammeter.integration.max(self.voltmeter.integration),
             arrival_tolerance: SETTLED_WITHIN + Volts(supply.claim.limit(highest) + sense_limit),
             zero_uncertainties: self

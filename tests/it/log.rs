@@ -133,3 +133,26 @@ fn a_line_that_is_no_run_is_reported_and_the_next_one_is_read() {
         ]
     );
 }
+
+#[test]
+fn earlier_passes_are_the_newest_of_the_same_profile_in_the_two_newest_months() {
+    let root = tempfile::tempdir().expect("a temporary folder");
+    let mut log = open(root.path()).log;
+    let old = run(&mut log, "RN000001", moment("2026-07-01T08:00:00Z"));
+    let runs: Vec<Run> = ["2026-08-01T08:00:00Z", "2026-08-02T08:00:00Z", "2026-10-19T08:00:00Z"]
+        .into_iter()
+        .map(|started| run(&mut log, "RN000123", moment(started)))
+        .collect();
+    log.start(subject("RN000124"), moment(MORNING)).expect("ready");
+    let mut failed = passing();
+    failed.outcome = ebbmark::verdict::Outcome::Fail;
+    log.finish(&finished(failed), &trace()).expect("space left");
+    let mut other = subject("RN000125");
+    other.profile.sha256 = "cd".repeat(32);
+    log.start(other, moment(MORNING)).expect("ready");
+    log.finish(&finished(passing()), &trace()).expect("space left");
+
+    let earlier = |most| log.folder().earlier_passes(&old.identity.profile, most).expect("readable");
+    assert_eq!(earlier(50), runs, "nothing from July, nothing that failed, nothing of another profile");
+    assert_eq!(earlier(2), runs[1..]);
+}

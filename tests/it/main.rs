@@ -27,6 +27,7 @@ mod run_sample;
 mod runs;
 #[cfg(unix)]
 mod scripted;
+mod search;
 #[cfg(unix)]
 mod serial_bench;
 #[cfg(unix)]

@@ -36,6 +36,7 @@ impl BenchFile {
             min_current: source.current.min,
             set_step: source.set_step,
             settle: source.settle,
+            overshoot: source.overshoot,
             read_time: self.instruments.iter().map(read_time).max().unwrap_or_default(),
             arrival_tolerance: source.settled_within
                 + Volts(source.programming.limit(profile_maximum.0))

@@ -29,6 +29,8 @@ pub struct Source {
     pub settle: Duration,
     /// How close to its final value a voltage counts as settled.
     pub settled_within: Volts,
+    /// Share of an upward step by which the output may overshoot; 0 where nothing is said.
+    pub overshoot: f64,
     /// Commands sent once after [`super::Definition::setup`], in order.
     pub setup: Vec<String>,
     /// What to send for each action.
@@ -52,6 +54,8 @@ impl Source {
         let settle = table.duration("settle");
         let settled_within = table.quantity("settled_within");
         above_zero(&settled_within, &table);
+        let overshoot = table.optional_fraction("overshoot");
+        not_negative(&overshoot, &table);
         let setup = command::commands(&mut table, "setup");
         let commands = table.table("commands").and_then(SourceCommands::read);
         let (voltage, set_step) = voltage?;
@@ -66,6 +70,7 @@ impl Source {
             valid,
             settle: settle?.value,
             settled_within: settled_within?.value,
+            overshoot: overshoot.map_or(0.0, |share| share.value),
             setup: setup?,
             commands: commands?,
         })

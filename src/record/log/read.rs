@@ -184,7 +184,7 @@ impl OpenFile {
     }
 }
 
-fn run_of(line: &[u8]) -> Result<Run, String> {
+pub(super) fn run_of(line: &[u8]) -> Result<Run, String> {
     #[derive(Deserialize)]
     struct Layout {
         schema: u32,

@@ -141,6 +141,7 @@ impl CircuitBench {
             min_current: Amps(1e-3),
             set_step: Volts(1e-3),
             settle: Duration::from_millis(5),
+            overshoot: 0.0,
             read_time: READING,
             arrival_tolerance: Volts(5e-3),
             zero_uncertainties: ranges.map(|range| Amps(range * 1e-5)).to_vec(),
