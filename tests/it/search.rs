@@ -1,4 +1,6 @@
 //! Whole runs in search mode: how many set-points they take against the least there can be, and that odd boards are found.
+#![expect(clippy::expect_used, reason = "a profile without limits stops the test")]
+#![expect(clippy::print_stdout, reason = "the ratios are worth a look even when they hold")]
 
 #[path = "../bench/optimum.rs"]
 mod optimum;
@@ -132,12 +134,13 @@ fn what_never_happens_is_looked_for_to_the_ends_of_the_range() {
     let profile = river::profile();
     let mut latched = Setup::new(&profile, Condition::Good, 4);
     latched.board.hysteresis = Volts(9.0);
-    // Armed at the start it must be on: the detector comes up off, so such a board is never on.
+    // A detector comes up off: such a board is never on.
     let run_of = |setup: &Setup| run(&profile, setup, Prior::default());
     assert_eq!(run_of(&latched).verdict.outcome, Outcome::Fail);
     let stuck = run_of(&Setup::new(&profile, Condition::NeverTrips, 4));
     let lowest = stuck.trace.samples.iter().skip(5).map(|sample| sample.set.0).filter(|set| *set > 2.0);
-    assert_eq!(lowest.fold(f64::INFINITY, f64::min), profile.supply.floor.0);
+    let lowest = lowest.fold(f64::INFINITY, f64::min);
+    assert!((lowest - profile.supply.floor.0).abs() < 1e-6, "{lowest} V");
     let first = stuck.verdict.findings.first().map(|finding| finding.code);
     assert_eq!(first, Some(FindingCode::NeverTrips));
 }
@@ -145,14 +148,10 @@ fn what_never_happens_is_looked_for_to_the_ends_of_the_range() {
 #[test]
 fn trips_far_outside_their_limits_are_found_wherever_they_lie() {
     let profile = river::profile();
-    for (trip, hysteresis) in [(5.25, 0.4), (5.5, 1.9), (6.9, 0.3), (7.2, 0.2), (6.0, 0.02), (5.21, 2.3)] {
+    for (trip, hysteresis) in [(5.25, 0.4), (5.5, 1.9), (6.9, 0.3), (7.2, 0.2), (5.21, 2.3)] {
         let mut setup = Setup::new(&profile, Condition::Good, 7);
         (setup.board.trip, setup.board.hysteresis) = (Volts(trip), Volts(hysteresis));
         let run = run(&profile, &setup, Prior::default());
-        if hysteresis < 0.1 {
-            // The drop in the leads lets it rest nowhere near its thresholds.
-            continue;
-        }
         let (found, uncertainty) = measured(&run, QuantityName::Trip);
         assert!((found - trip).abs() <= uncertainty, "{trip} {hysteresis}: {found}");
         let (found, uncertainty) = measured(&run, QuantityName::ReEnable);
