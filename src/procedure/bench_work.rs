@@ -224,6 +224,7 @@ mod tests {
             min_current: Amps(1e-3),
             set_step: Volts(1e-3),
             settle: Duration::from_millis(15),
+            overshoot: 0.0,
             read_time: Duration::from_millis(22),
             arrival_tolerance: Volts(0.02),
             zero_uncertainties: [2e-8, 1e-7, 1e-6, 6e-5].map(Amps).to_vec(),

@@ -11,7 +11,7 @@ use super::progress::{Stage, left};
 use super::search::{Found, Search, SearchPlan, Step};
 use super::walk::Edge;
 use crate::trace::{Sample, Stop, SwitchState};
-use crate::units::Volts;
+use crate::units::{Ohms, Volts};
 use std::time::Duration;
 
 /// What came of a search.
@@ -53,6 +53,7 @@ pub(super) async fn narrow(
         at: plan.start,
         seen_off: false,
         been_below: false,
+        load: armed.current.amps().map_or(plan.load.resistance, |current| armed.terminals() / current),
     };
     for _ in 0..MOST_STEPS {
         let step = hunt.search.next();
@@ -87,6 +88,8 @@ struct Hunt<'r> {
     seen_off: bool,
     /// The board has been taken down to the floor, and its off current read.
     been_below: bool,
+    /// What draws the current of a board that is on, as seen when it was armed.
+    load: Ohms,
 }
 
 impl Hunt<'_> {
@@ -105,28 +108,9 @@ impl Hunt<'_> {
     /// Probes a set-point; false when the board is neither on nor off there.
     async fn probe(&mut self, set_point: usize) -> Result<bool, Stop> {
         let was_on = self.search.is_on();
-        let must_change = self.search.must_change(set_point);
-        let mut sample = self.approach(set_point).await?;
-        let Some(mut on) = self.decided(sample).await? else { return Ok(false) };
-        if must_change && on == was_on {
-            sample = self.steady(sample).await?;
-            match self.decided(sample).await? {
-                Some(again) => on = again,
-                None => return Ok(false),
-            }
-        }
-        if must_change && on == was_on && !self.search.is_held() {
-            // Where it had changed before. It may take its time, and does when its threshold lies at this very border; whether
-            // the cell beside is the right one, the hold on its other border tells.
-            if let Confirmed::Moved { after } = self.wait(sample, was_on).await? {
-                self.look_longer(was_on, after);
-                self.search.note(set_point, !was_on);
-            } else if !self.search.withstood(set_point) {
-                self.search.note(set_point, was_on);
-            }
-        } else {
-            self.search.note(set_point, on);
-        }
+        let sample = self.approach(set_point).await?;
+        let Some(on) = self.decided(sample).await? else { return Ok(false) };
+        self.search.note(set_point, on);
         if was_on && !self.search.is_on() && self.search.trip_is_settled() && !self.been_below {
             self.look_below().await?;
         }
@@ -147,6 +131,12 @@ impl Hunt<'_> {
         measure_off_current(self.desk, self.plan).await?;
         self.at = self.plan.off_points.last().copied().unwrap_or(self.plan.floor);
         Ok(())
+    }
+
+    /// True for a reading with the whole of the load's current. One with a part of it has caught a change.
+    fn is_whole(&self, sample: &Sample) -> bool {
+        let Some(current) = sample.current.amps() else { return true };
+        current >= sample.terminals() / self.load * WHOLE
     }
 
     fn narrowed(&self, found: Found) -> Narrowed {
@@ -244,28 +234,12 @@ impl Hunt<'_> {
         Ok(())
     }
 
-    /// The next reading that agrees with the one before it: a reading may have caught the board in the middle of a change.
-    async fn steady(&self, first: Sample) -> Result<Sample, Stop> {
-        let mut before = first;
-        for _ in 0..MOST_LOOKS {
-            let sample = self.desk.read().await?;
-            let agree = before.current.amps().zip(sample.current.amps()).is_none_or(|(before, now)| {
-                (now - before).abs() <= before.abs() * AGREES + self.plan.on_zero()
-            });
-            if agree {
-                return Ok(sample);
-            }
-            before = sample;
-        }
-        Ok(before)
-    }
-
     /// On or off, once the readings say so; `None` for a board that will not say.
     async fn decided(&mut self, first: Sample) -> Result<Option<bool>, Stop> {
         let mut sample = first;
         for _ in 0..MOST_LOOKS {
             match state(self.plan, &sample) {
-                SwitchState::On => return Ok(Some(true)),
+                SwitchState::On if self.is_whole(&sample) => return Ok(Some(true)),
                 SwitchState::Off => {
                     if !self.seen_off {
                         self.seen_off = true;
@@ -273,7 +247,7 @@ impl Hunt<'_> {
                     }
                     return Ok(Some(false));
                 }
-                SwitchState::Neither => sample = self.desk.read().await?,
+                SwitchState::On | SwitchState::Neither => sample = self.desk.read().await?,
             }
         }
         Ok(None)
@@ -282,7 +256,7 @@ impl Hunt<'_> {
 
 /// Share of a cell by which a voltage may be off without a word.
 const NOTICEABLE: f64 = 0.1;
-/// Share of a current within which two readings agree.
-const AGREES: f64 = 0.1;
+/// Share of the load's current above which it is whole.
+const WHOLE: f64 = 0.95;
 /// Readings after which a board that is neither on nor off is given up.
 const MOST_LOOKS: usize = 4;

@@ -117,11 +117,6 @@ impl Search {
         self.trip.window.is_single() && self.re_enable.window.is_single()
     }
 
-    /// Whether the threshold that is next in this state is known to a cell, of which one border has been held.
-    pub(super) fn is_held(&self) -> bool {
-        if self.on { self.trip.is_held() } else { self.re_enable.is_held() }
-    }
-
     /// Whether the trip is known to a cell and the border above it has been held.
     pub(super) fn trip_is_held(&self) -> bool {
         self.trip.is_held()
@@ -216,11 +211,6 @@ impl Search {
         })
     }
 
-    /// True for a set-point at which the board in its present state has been seen to change.
-    pub(super) fn must_change(&self, set_point: usize) -> bool {
-        if self.on { set_point < self.trip.low() } else { set_point + 1 >= self.re_enable.high() }
-    }
-
     /// The board is on, or off, at `set_point`.
     pub(super) fn note(&mut self, set_point: usize, on: bool) {
         let split = set_point + 1;
@@ -242,28 +232,13 @@ impl Search {
         self.own().held = true;
     }
 
-    /// At `set_point`, where it had changed before, the board did not change, however long it was held. True when it had
-    /// changed there at rest: then noise carries its threshold across that border either way, and the cell beside it is as
-    /// good as the other.
-    pub(super) fn withstood(&mut self, set_point: usize) -> bool {
-        let side = self.own();
-        side.withstood_at = Some(set_point);
-        let noise = side.moved_at == Some(set_point);
-        if noise {
-            side.pass();
-        }
-        noise
-    }
-
     /// The board changed while it was held at `set_point`. The first time noise may have done that, and the threshold
-    /// lies in the next cell; after that the board is slow, and all the cells beyond are open again, unless it has
-    /// withstood the same. True when it is slow.
+    /// lies in the next cell; after that the board is slow, and all the cells beyond are open again. True when it is slow.
     pub(super) fn moved(&mut self, set_point: usize) -> bool {
         let (was_on, split) = (self.on, set_point + 1);
         let side = self.own();
         side.moved += 1;
-        side.moved_at = Some(set_point);
-        let slow = side.moved > 1 && side.withstood_at != Some(set_point);
+        let slow = side.moved > 1;
         let (low, high) = match (was_on, slow) {
             (true, false) => (split, split + 1),
             (true, true) => (split, side.widest.1),

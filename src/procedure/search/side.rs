@@ -13,11 +13,8 @@ pub(super) struct Side {
     /// How often it has been seen to change at the other border, and how often it must.
     pub(super) passes: u32,
     needed: u32,
-    /// How often the board changed while it was held, and where it last did.
+    /// How often the board changed while it was held.
     pub(super) moved: u32,
-    pub(super) moved_at: Option<usize>,
-    /// Where it had changed, it last did not, however long it was held.
-    pub(super) withstood_at: Option<usize>,
     /// How often it did what it had been seen not to do.
     pub(super) contradicted: u32,
 }
@@ -35,17 +32,7 @@ impl Side {
     pub(super) fn new(weights: Vec<f64>, low: usize, high: usize, needed: u32) -> Self {
         let mut window = Window::new(weights);
         window.narrow(low, high);
-        Self {
-            window,
-            widest: (low, high),
-            held: false,
-            passes: 0,
-            needed,
-            moved: 0,
-            moved_at: None,
-            withstood_at: None,
-            contradicted: 0,
-        }
+        Self { window, widest: (low, high), held: false, passes: 0, needed, moved: 0, contradicted: 0 }
     }
 
     pub(super) fn low(&self) -> usize {
@@ -123,10 +110,10 @@ impl Side {
     }
 
     /// Looks for the threshold between a border that proved false and as many cells farther along as
-    /// [`wider`](Self::wider) says. A hold that was stood still counts, for the board is not slow; but the new border must
-    /// be seen to change it.
+    /// [`wider`](Self::wider) says. The new border must be seen to change it. A hold that a trip stood still counts, for the
+    /// board is not slow: what noise did once at a border it would do again to a board that waits there.
     fn widen(&mut self, low: usize, high: usize) {
-        let held = self.is_held();
+        let held = self.is_held() && self.needed > 1;
         self.reopen(low, high);
         self.held = held && self.window.is_single();
         self.passes = self.needed - 1;
