@@ -17,10 +17,13 @@ pub(super) fn on_resistance(course: &Course<'_>, trip: &Threshold) -> Option<Qua
     let set = course.plateaus[trip.stayed].set;
     let at_set = |sample: &&Sample| (sample.set - set).abs().0 < SAME_SET && sample.limited != Some(true);
     let on = course.trace.samples.iter().zip(&course.states);
-    let readings: Vec<Reading> = on
+    let mut readings: Vec<Reading> = on
         .filter(|(sample, state)| **state == SwitchState::On && at_set(sample))
         .filter_map(|(sample, _)| Reading::of(sample))
         .collect();
+    // A reading with a part of the current has caught a change: its voltages are of before and after.
+    let most = readings.iter().map(|reading| reading.amps).fold(0.0, f64::max);
+    readings.retain(|reading| reading.amps >= most * WHOLE);
     let count = readings.len() as f64;
     let mean = |value: &dyn Fn(&Reading) -> f64| readings.iter().map(value).sum::<f64>() / count;
     let (sense, load, amps) = (mean(&|it| it.sense), mean(&|it| it.load), mean(&|it| it.amps));
@@ -50,6 +53,9 @@ pub(super) fn on_resistance(course: &Course<'_>, trip: &Threshold) -> Option<Qua
     }));
     Some(Quantity::new(QuantityName::OnResistance, resistance, parts))
 }
+
+/// Share of the current at a set-point above which it is whole.
+const WHOLE: f64 = 0.95;
 
 struct Reading {
     sense: f64,

@@ -42,6 +42,9 @@ impl Slow {
     /// A board that needs longer than `longer_than` was beyond its threshold that long before each of its changes was
     /// seen. And where it stayed for `at_most` or longer, it was not beyond. Both at one set-point is within the noise.
     fn refuted(&self, course: &Course<'_>, found: &Edges, direction: Direction) -> bool {
+        if self.outrun(course, found, direction) {
+            return true;
+        }
         let along = |plateau: usize| direction.along(course.plateaus[plateau].set);
         let beyond = found.edges.iter().filter(|edge| edge.direction == direction).map(|edge| {
             let crossed = course.trace.samples[edge.seen].at.saturating_sub(self.longer_than);
@@ -53,6 +56,18 @@ impl Slow {
         let farthest = stayed.map(|stay| along(stay.plateau)).max_by(f64::total_cmp);
         let nearest = beyond.min_by(f64::total_cmp);
         farthest.zip(nearest).is_some_and(|(stayed, beyond)| stayed > beyond + SAME_SET)
+    }
+
+    /// True when the board once changed sooner than that after it had come into the state before: its delay cannot have begun
+    /// earlier.
+    fn outrun(&self, course: &Course<'_>, found: &Edges, direction: Direction) -> bool {
+        found.edges.windows(2).any(|pair| {
+            let came = course.plateaus[pair[0].plateau].began;
+            let changed = course.trace.samples[pair[1].seen].at;
+            pair[0].direction != direction
+                && pair[1].direction == direction
+                && changed.saturating_sub(came) < self.longer_than
+        })
     }
 
     /// For a change while the set-point rested: how long that took, at least and at most.
@@ -118,6 +133,14 @@ mod tests {
         assert!(slow(&staircase(&changed)).is_some());
         let stayed = [on(5.98); 8];
         assert_eq!(slow(&staircase(&[&changed[..], &stayed[..]].concat())), None);
+    }
+
+    #[test]
+    fn a_board_that_once_tripped_sooner_after_it_came_back_is_not_slow() {
+        let held = [on(7.6), on(6.2), on(6.0), on(6.0), on(6.0), on(6.0), off(6.0), off(5.9)];
+        assert!(slow(&staircase(&held)).is_some());
+        // 200 ms at most lie between coming back and the next trip, 300 ms at least were needed at rest.
+        assert_eq!(slow(&staircase(&[&held[..], &[on(6.5), off(5.9)]].concat())), None);
     }
 
     #[test]
