@@ -14,7 +14,7 @@ use crate::profile::{QuantityName, Rebound};
 use crate::trace::SwitchState;
 use crate::units::{Amps, Unit, Volts, prefixed};
 
-/// A lifted set-point this much above trip and rise still counts as the rise.
+/// A set-point this much beside trip and rise, and beside what the trip's bracket leaves open, still counts as the rise.
 const NEAR: Volts = Volts(5e-3);
 
 /// Re-enable less what the terminals rise to: `hysteresis - on current x resistance - recovery`.
@@ -46,7 +46,8 @@ pub(super) fn negative_margin(
     })
 }
 
-/// A board that came back when it was lifted by no more than the battery's rise right after a trip.
+/// A board that came back when it was lifted by the battery's rise right after a trip. Only where the profile asks for the
+/// trial: other steps that lead up from a trip are no rise of a battery.
 pub(super) fn restart(
     course: &Course<'_>,
     found: &Edges,
@@ -54,21 +55,22 @@ pub(super) fn restart(
     on_current: &Quantity,
     rebound: &Rebound,
 ) -> Option<Finding> {
+    let hold = rebound.hold?;
     let risen = trip.value + rebound.rise(Amps(on_current.value));
+    let risen = risen.min(course.profile.supply.maximum);
+    let near = NEAR + Volts(12.0_f64.sqrt() * trip.bracket_uncertainty());
     let lifted = found.edges.iter().filter(|edge| edge.direction == Direction::Down).filter_map(|edge| {
         let (before, after) = (&course.plateaus[edge.plateau], course.plateaus.get(edge.plateau + 1)?);
-        (after.set > before.set && after.set <= risen + NEAR).then_some(after)
+        (after.set > before.set && (after.set - risen).abs() <= near).then_some(after)
     });
     lifted.into_iter().find_map(|plateau| {
         let on = plateau.samples.clone().find(|at| course.states[*at] == SwitchState::On)?;
         let after = course.trace.samples[on].at.saturating_sub(plateau.began);
-        let hold = rebound.hold.map_or_else(String::new, |hold| {
-            format!("; it must stay off for {}", prefixed(hold.as_secs_f64(), Unit::Second))
-        });
+        let hold = prefixed(hold.as_secs_f64(), Unit::Second);
         Some(board(
             FindingCode::RestartsAfterRebound,
             format!(
-                "lifted to {} after its trip, as its battery would rise, the board was on again within {}{hold}. It restarts by itself \
+                "lifted to {} after its trip, as its battery would rise, the board was on again within {}; it must stay off for {hold}. It restarts by itself \
                  until the battery is empty. Look first at the hysteresis parts.",
                 plateau.set,
                 prefixed(after.as_secs_f64(), Unit::Second)

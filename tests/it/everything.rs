@@ -47,7 +47,9 @@ fn good_boards_of_every_profile_pass_and_the_truth_lies_inside() {
                 (&Stop::Completed, OutputState::Off)
             );
             assert!(highest(&run.trace) <= profile.supply.maximum, "{what}");
-            let codes: Vec<_> = run.verdict.findings.iter().map(|finding| finding.code).collect();
+            let codes = run.verdict.findings.iter().map(|finding| finding.code);
+            // What drains the battery is told wherever its storage time is limited.
+            let codes: Vec<_> = codes.filter(|code| *code != FindingCode::StorageDrain).collect();
             assert_eq!(codes, [FindingCode::InBand], "{what}: {:?}", run.verdict.findings);
             assert!(
                 matches!(run.verdict.outcome, Outcome::Pass | Outcome::ConditionalPass),
@@ -95,7 +97,11 @@ fn faulty_boards_and_benches_keep_their_outcome() {
                 // Down to 0.3 V there is no charge left to warn of.
                 let first = without.verdict.findings.first().map(|finding| finding.code);
                 let first = first.filter(|code| *code != FindingCode::StillCharged);
-                assert!(first.is_none_or(|code| with.verdict.findings[0].code == code), "{what}");
+                // A hysteresis too narrow for the battery is worked out in both; in the band it shows first.
+                let told = |code| with.verdict.findings.iter().position(|finding| finding.code == code);
+                let last = first.map(|code| if code == FindingCode::Rebound { 1 } else { 0 });
+                let in_place = first.is_none_or(|code| told(code).is_some_and(|at| Some(at) <= last));
+                assert!(in_place, "{what}");
             }
         }
     }

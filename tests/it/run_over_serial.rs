@@ -122,13 +122,13 @@ fn everything_is_measured_over_the_ports() {
 #[test]
 fn off_state_and_battery_are_measured_and_judged_over_the_ports() {
     let text = include_str!("../../profiles/garden-probe.toml").replace(
-        "[off_line]",
-        "on_resistance = { max = \"100 mohm\" }
+        "[limits]",
+        "[limits]
+         on_resistance = { max = \"100 mohm\" }
          off_conductance = { min = \"0.9 uS\", max = \"1.1 uS\" }
          off_constant_current = { min = \"0.5 uA\", max = \"1.1 uA\" }
          rebound_margin = { min = \"10 mV\" }
-         storage_time = { min = \"1 year\" }
-         [off_line]",
+         storage_time = { min = \"1 year\" }",
     );
     let text = text.replace("[pack]", "[pack]\nremaining_capacity = \"200 mAh\"");
     let profile = Profile::read("garden-probe.toml", &text).unwrap_or_else(|problems| panic!("{problems}"));
