@@ -69,11 +69,14 @@
 //! when_calibration_overdue = "warn"   # or "refuse"
 //! ```
 //!
+//! A table `[decision]` may say how values are held against the limits: [`DecisionRule`].
+//!
 //! The tables `[detector]`, `[divider]` and `[environment]` may say what the thresholds are made of; see [`Parts`].
 
 mod bench;
 mod check;
 mod check_limits;
+mod decision;
 mod draft;
 mod limit;
 mod measure;
@@ -87,6 +90,7 @@ mod sample;
 mod serial_number;
 
 pub use bench::{BenchRules, WhenOverdue};
+pub use decision::{Acceptance, DecisionRule, WhenBelow};
 pub use limit::{Limit, QuantityName};
 pub use measure::{InBand, Measure, WantedInBand};
 pub use off_line::OffLine;
@@ -123,6 +127,8 @@ pub struct Profile {
     pub ramp: Ramp,
     /// Limits by quantity.
     pub limits: BTreeMap<QuantityName, Limit>,
+    /// How values are held against them.
+    pub decision: DecisionRule,
     /// What is measured beyond thresholds and off current.
     pub measure: Measure,
     /// What its thresholds are made of, where the profile says so.

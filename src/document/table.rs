@@ -113,6 +113,20 @@ impl<'d, 't> Table<'d, 't> {
         }
     }
 
+    /// A plain number without a unit, such as a ratio, that may be left out.
+    pub fn optional_number(&mut self, key: &str) -> Option<At<f64>> {
+        let value = self.look(key)?;
+        let whole = || value.get_ref().as_integer().map(|number| number.as_str());
+        let text = value.get_ref().as_float().map(|number| number.as_str()).or_else(whole);
+        match text
+            .and_then(|text| text.replace('_', "").parse::<f64>().ok())
+            .filter(|number| number.is_finite())
+        {
+            Some(number) => Some(self.at(key, value, number)),
+            None => self.wrong_type(key, value, "a number without quotes"),
+        }
+    }
+
     /// One of a few whole numbers, each standing for a value; required.
     pub fn integer_choice<T: Copy>(&mut self, key: &str, choices: &[(i64, T)]) -> Option<At<T>> {
         let wanted = any_of(choices.iter().map(|(number, _)| number.to_string()));

@@ -24,6 +24,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         timing: Timing { detect_delay: Duration::from_millis(5), release_delay: Duration::from_millis(20) },
         ramp,
         limits: BTreeMap::from([(QuantityName::OffCurrent, off)]),
+        decision: crate::profile::DecisionRule::default(),
         measure: Measure::default(),
         parts: None,
         off_paths: Vec::new(),

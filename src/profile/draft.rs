@@ -1,5 +1,6 @@
 //! What was read of a profile so far: each value by itself good, with its place, none compared with another yet.
 
+use super::decision::DecisionDraft;
 use super::measure::MeasureDraft;
 use super::off_line::{self, OffLineDraft};
 use super::off_path::{self, OffPath};
@@ -25,6 +26,7 @@ pub(super) struct Draft {
     pub(super) timing: TimingDraft,
     pub(super) ramp: RampDraft,
     pub(super) limits: BTreeMap<QuantityName, LimitDraft>,
+    pub(super) decision: DecisionDraft,
     pub(super) measure: MeasureDraft,
     pub(super) parts: Option<PartsDraft>,
     pub(super) off_paths: Option<Vec<OffPath>>,
@@ -88,6 +90,7 @@ impl Draft {
             timing: root.table("timing").map(read_timing).unwrap_or_default(),
             ramp: root.table("ramp").map(read_ramp).unwrap_or_default(),
             limits: root.table("limits").map(read_limits).unwrap_or_default(),
+            decision: root.optional_table("decision").map(DecisionDraft::read).unwrap_or_default(),
             measure: root.optional_table("measure").map(MeasureDraft::read).unwrap_or_default(),
             parts: parts::read(root),
             off_paths: off_path::read(root),
@@ -125,6 +128,7 @@ impl Draft {
             },
             ramp,
             limits: self.limits.iter().map(|(name, limit)| (*name, limit.finish())).collect(),
+            decision: self.decision.finish(),
             measure: self.measure.finish(&self.limits),
             parts: self.parts.map(|read| read.parts),
             off_paths: self.off_paths?,
