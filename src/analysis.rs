@@ -3,6 +3,10 @@
 //! A trace is cut into plateaus (on or off by the load's current, [`crate::trace::SwitchState`]), the changes and stays of the board are collected,
 //! and each threshold is read from them at the terminal voltage that stood before the change.
 
+mod accuracy;
+mod allowance;
+mod cause;
+mod contribution;
 mod deep;
 mod delay;
 mod derived;
@@ -10,12 +14,14 @@ mod diagnosis;
 mod discharge;
 mod doubts;
 mod edges;
+mod expected;
 mod finding;
 #[cfg(test)]
 pub(crate) mod fixture;
 mod hysteresis;
 mod in_band;
 mod meter_fuse;
+mod noise;
 mod off_budget;
 mod off_current;
 mod off_fit;
@@ -38,8 +44,11 @@ mod threshold;
 mod trust;
 mod zero;
 
+pub use cause::Cause;
+pub use contribution::{Contribution, Input, Shape};
+pub use expected::expected;
 pub use finding::{About, Finding, FindingCode};
-pub use quantity::{Contribution, Quantity, Shape};
+pub use quantity::{Quantity, Term};
 pub use rates::from_rates;
 
 use crate::profile::{Profile, QuantityName};
@@ -63,8 +72,9 @@ pub struct Analysis {
 pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     let course = Course::new(trace, profile);
     let found = Edges::find(&course);
-    let down = Search::run(&course, &found, Direction::Down);
-    let up = Search::run(&course, &found, Direction::Up);
+    let mut down = Search::run(&course, &found, Direction::Down);
+    let mut up = Search::run(&course, &found, Direction::Up);
+    let noise = Search::allow_for_noise([&mut down, &mut up]);
     let off_fit = off_fit::off_fit(&course);
     let paths = off_fit.as_ref().map(|fit| off_budget::off_budget(fit, profile)).unwrap_or_default();
     let (off_current, off_findings) = off_current::off_current(&course, !paths.is_empty());
@@ -104,6 +114,7 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(derived.findings);
     findings.extend(diagnosis::current_limit(&course));
     findings.extend(trust::delays(&course, [(Direction::Down, &down), (Direction::Up, &up)]));
+    findings.extend(noise.and_then(|noise| trust::noise(&course, &noise)));
     findings.extend(trust::accuracy(&course));
     findings.extend(doubts::findings(&trace.claims));
     findings.extend(discharge::still_charged(trace));
@@ -120,13 +131,14 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
 fn thresholds(course: &Course<'_>, down: &Search, up: &Search) -> Vec<Quantity> {
     let (trip, re_enable) = (down.threshold.as_ref(), up.threshold.as_ref());
     let of = |name, threshold| hysteresis::threshold_quantity(course, name, threshold);
-    let mut quantities = Vec::new();
-    quantities.extend(trip.map(|trip| of(QuantityName::Trip, trip)));
-    quantities.extend(re_enable.map(|re_enable| of(QuantityName::ReEnable, re_enable)));
-    quantities
-        .extend(trip.zip(re_enable).map(|(trip, re_enable)| hysteresis::hysteresis(course, trip, re_enable)));
-    quantities.extend(trip.and_then(|trip| on_current::on_current(course, trip)));
-    quantities
+    let on_current = trip.and_then(|trip| on_current::on_current(course, trip));
+    let trip = trip.map(|trip| of(QuantityName::Trip, trip));
+    let re_enable = re_enable.map(|re_enable| of(QuantityName::ReEnable, re_enable));
+    let hysteresis = trip
+        .as_ref()
+        .zip(re_enable.as_ref())
+        .map(|(trip, re_enable)| hysteresis::hysteresis(trip, re_enable));
+    [trip, re_enable, hysteresis, on_current].into_iter().flatten().collect()
 }
 
 /// Holds the swing of the terminals against the least hysteresis the profile allows, or that of the board.

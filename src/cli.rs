@@ -13,6 +13,7 @@ mod limits;
 mod live;
 mod log;
 mod one_run;
+mod ratio;
 mod room;
 mod show;
 mod sim;

@@ -4,6 +4,7 @@
 
 mod banner;
 mod bench_page;
+mod budget;
 mod cautions;
 mod columns;
 mod csv;
@@ -19,6 +20,7 @@ mod text;
 mod words;
 
 pub use bench_page::{bench_json, bench_text};
+pub use budget::budgets;
 pub use cautions::CAUTIONS;
 pub use csv::runs_csv;
 pub use full::full;

@@ -22,30 +22,41 @@ pub const DAY: f64 = 86_400.0;
 /// Seconds of a Julian year of 365.25 days, the year of the IAU.
 pub const YEAR: f64 = 365.25 * DAY;
 
-/// A unit this program reads and writes.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+/// A unit this program reads and writes. In records by its ASCII symbol; a ratio, which is one in SI, as `1`.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord, Serialize, Deserialize)]
 pub enum Unit {
     /// Electric potential, V.
+    #[serde(rename = "V")]
     Volt,
     /// Electric current, A.
+    #[serde(rename = "A")]
     Ampere,
     /// Electric resistance, ohm.
+    #[serde(rename = "ohm")]
     Ohm,
     /// Power, W.
+    #[serde(rename = "W")]
     Watt,
     /// Electric conductance, S.
+    #[serde(rename = "S")]
     Siemens,
     /// Capacitance, F.
+    #[serde(rename = "F")]
     Farad,
     /// Electric charge, C; people write it in ampere hours.
+    #[serde(rename = "C")]
     Coulomb,
     /// Time, s.
+    #[serde(rename = "s")]
     Second,
     /// Celsius temperature, degree Celsius.
+    #[serde(rename = "degC")]
     Celsius,
     /// A ratio, written in per cent or in parts per million.
+    #[serde(rename = "1")]
     Percent,
     /// A relative change per kelvin, written in parts per million per kelvin.
+    #[serde(rename = "1/K")]
     PerKelvin,
 }
 

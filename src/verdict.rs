@@ -1,11 +1,16 @@
 //! Quantities and limits in, decisions and one outcome out. Pure.
 
+mod budget;
 mod decision;
+mod foresight;
 mod judge;
 mod line;
 mod outcome;
+mod spread;
 
+pub use budget::{BudgetLine, budget};
 pub use decision::{COVERAGE_FACTOR, Decision, Judged};
+pub use foresight::{Doubt, doubts};
 pub use judge::judge;
 pub use line::QuantityLine;
 pub use outcome::Outcome;

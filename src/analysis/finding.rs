@@ -51,6 +51,8 @@ pub enum FindingCode {
     BackFeed,
     /// Voltage on the board before the output was on.
     LiveBoard,
+    /// Noise at the detector moves the thresholds from pass to pass.
+    DetectorNoise,
     /// The terminals did not reach the set-point.
     SupplyNotArrived,
     /// The supply limited the current.

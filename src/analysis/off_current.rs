@@ -4,16 +4,17 @@
 //! arrived and the reading has settled. What a voltmeter behind the ammeter draws is not
 //! the board's and is taken off, and so is the bench's own zero where it was read.
 
+use super::contribution::Contribution;
 use super::finding::{About, Finding, FindingCode};
 use super::off_limits::{adequate, coarse_finding, outside_finding};
 use super::plateau::{Course, Plateau, SAME_SET};
-use super::quantity::{Contribution, Quantity};
+use super::quantity::Quantity;
 use super::settled::Settled;
 use super::zero;
 use crate::profile::QuantityName;
 use crate::statistics::line::{Line, Point};
 use crate::trace::SwitchState;
-use crate::units::{Amps, Volts};
+use crate::units::{Amps, Unit, Volts};
 use std::ops::Range;
 
 /// Readings within this share of the wanted voltage count for it.
@@ -166,7 +167,7 @@ fn estimate(course: &Course<'_>, readings: &[Settled], at: Volts) -> Option<Quan
     let (here, near) = (within(SPAN), within(NEAR));
     let (value, mut parts) = if let Some(line) = line_through(&near, at) {
         let scatter = line.uncertainty_at(at.0, line.scatter.unwrap_or(0.0));
-        (line.at(at.0), vec![Contribution::normal(SCATTER, scatter)])
+        (line.at(at.0), vec![Contribution::scatter(SCATTER, scatter, near.len() as f64 - 2.0)])
     } else if !here.is_empty() {
         mean(&here, at)
     } else if let Some(between) = between(readings, at) {
@@ -215,7 +216,8 @@ fn mean(plateaus: &[Settled], at: Volts) -> (f64, Vec<Contribution>) {
     if count > 1.0 {
         let own: f64 = plateaus.iter().map(|settled| settled.squares).sum();
         let among = count * weighted(&|settled| (settled.amps.0 - mean).powi(2));
-        parts.push(Contribution::normal(SCATTER, ((own + among) / (count - 1.0) / count).sqrt()));
+        let scatter = ((own + among) / (count - 1.0) / count).sqrt();
+        parts.push(Contribution::scatter(SCATTER, scatter, count - 1.0));
     }
     (mean + half_way, parts)
 }
@@ -226,10 +228,17 @@ fn between(readings: &[Settled], at: Volts) -> Option<(f64, Vec<Contribution>)> 
     let below = readings.iter().filter(|settled| settled.volts < at).max_by(by_volts)?;
     let above = readings.iter().filter(|settled| settled.volts > at).min_by(by_volts)?;
     let share = (at - below.volts) / (above.volts - below.volts);
-    let scatter = |settled: &Settled| settled.scatter().unwrap_or(0.0);
-    let combined = ((1.0 - share) * scatter(below)).hypot(share * scatter(above));
+    let scatter = |settled: &Settled, source, share: f64| {
+        let spread = settled.scatter()?;
+        let line = Contribution::scatter(source, spread, settled.count as f64 - 1.0);
+        Some(line.through(share, Unit::Ampere).estimated(settled.amps.0))
+    };
     let value = below.amps.0 + share * (above.amps.0 - below.amps.0);
-    Some((value, vec![Contribution::normal(SCATTER, combined)]))
+    let lines = [
+        scatter(below, "scatter of the readings below", 1.0 - share),
+        scatter(above, "scatter of the readings above", share),
+    ];
+    Some((value, lines.into_iter().flatten().collect()))
 }
 
 #[cfg(test)]
@@ -268,8 +277,9 @@ mod tests {
         let (quantity, findings) = found(&run(&[(5.5, 2.4e-6), (5.8, 2.5e-6)], 1e-4));
         let quantity = quantity.expect("an off current");
         assert!((quantity.value - 2.5e-6).abs() < 1e-12);
-        // 0.1 % of 2.5 uA and 10 nA as a rectangle: 12.5 nA / sqrt(3).
-        assert!((quantity.standard_uncertainty - 12.5e-9 / 3.0_f64.sqrt()).abs() < 1e-11, "{quantity:?}");
+        // 0.1 % of 2.5 uA and 10 nA, a rectangle each.
+        let expected = 2.5e-9_f64.hypot(10e-9) / 3.0_f64.sqrt();
+        assert!((quantity.standard_uncertainty - expected).abs() < 1e-11, "{quantity:?}");
         assert!(findings.is_empty(), "{findings:?}");
     }
 
@@ -289,9 +299,13 @@ mod tests {
                 .find(|part| part.source == source)
                 .map(|part| part.standard_uncertainty)
         };
-        let input = share(&board, "voltmeter's input current").expect("in the budget");
-        assert!((input - 5.8e-9).abs() < 1e-15, "1 % of 580 nA, found {input}");
-        assert_eq!(share(&board, "ammeter"), share(&reading, "ammeter"), "the meter read the sum");
+        let input = share(&board, "input resistance of the voltmeter").expect("in the budget");
+        assert!(
+            (input - 5.8e-9 / 3.0_f64.sqrt()).abs() < 1e-15,
+            "1 % of 580 nA as a rectangle, found {input}"
+        );
+        let gain = |quantity| share(quantity, "ammeter gain").expect("in the budget");
+        assert!((gain(&board) - gain(&reading)).abs() < 1e-15, "the meter read the sum");
         assert!(reading.value - board.value > 2.0 * reading.standard_uncertainty, "{reading:?}");
     }
 

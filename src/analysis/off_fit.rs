@@ -148,7 +148,7 @@ fn common_errors(course: &Course<'_>, readings: &[Settled], line: &Line) -> Vec<
             on_range(&|it| claim(it).map_or(0.0, |claim| claim.absolute)),
         ));
     }
-    if let Some((_, voltage)) = super::hysteresis::voltage_claim(course) {
+    if let Some(voltage) = super::accuracy::voltage_claim(course) {
         let gain = |settled: &Settled| line.slope * voltage.relative * settled.volts.0;
         errors.push((
             |error| Contribution::rectangular("gain of the voltage", error),

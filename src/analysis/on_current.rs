@@ -1,22 +1,27 @@
-//! The on current: what the board drew at the last voltage at which it stayed on, just above the trip.
+//! The on current: what the board draws at its trip, before the switch opens.
+//!
+//! It is read at the last voltage at which the board stayed on, a little above the trip. The load may be a resistance or
+//! draw the same at any voltage, so the current at the trip lies between the reading and its proportion: the middle is
+//! taken, as a rectangle (JCGM 100:2008, 4.3.7).
 
+use super::accuracy;
+use super::contribution::Contribution;
 use super::plateau::Course;
-use super::quantity::{Contribution, Quantity};
+use super::quantity::Quantity;
 use super::settled::Settled;
 use super::threshold::Threshold;
 use crate::profile::QuantityName;
 
-/// The settled current on the plateau next to `trip`.
+/// The current at `trip`, from the settled readings next to it.
 pub(super) fn on_current(course: &Course<'_>, trip: &Threshold) -> Option<Quantity> {
     let settled = Settled::of(course, course.ranges(trip.stayed).last()?)?;
-    let mut parts = Vec::new();
+    let half_way = settled.amps.0 * ((trip.value - settled.volts) / settled.volts) / 2.0;
+    let mut lines = vec![Contribution::rectangular("distance to the trip", half_way)];
     if let Some(scatter) = settled.scatter() {
-        parts.push(Contribution::normal("scatter of the readings", scatter));
+        lines.push(Contribution::scatter("scatter of the readings", scatter, settled.count as f64 - 1.0));
     }
-    if let Some(accuracy) = course.trace.claims.current_accuracy(settled.range, settled.amps) {
-        parts.push(Contribution::normal("ammeter", accuracy.standard_uncertainty(settled.amps.0)));
-    }
-    Some(Quantity::new(QuantityName::OnCurrent, settled.amps.0, parts))
+    lines.extend(accuracy::of_current(&course.trace.claims, settled.range, settled.amps));
+    Some(Quantity::new(QuantityName::OnCurrent, settled.amps.0 + half_way, lines))
 }
 
 #[cfg(test)]
@@ -26,10 +31,11 @@ mod tests {
     use crate::profile::QuantityName;
 
     #[test]
-    fn it_is_read_on_the_last_plateau_before_the_trip() {
+    fn it_is_read_on_the_last_plateau_before_the_trip_and_brought_half_way_there() {
         let trace = staircase(&[on(7.6), on(6.1), on(6.0), on(6.0), off(5.9), off(5.2)]);
         let analysis = analyse(&trace, &profile());
         let found = analysis.quantities.iter().find(|quantity| quantity.name == QuantityName::OnCurrent);
-        assert!((found.expect("an on current").value - 6.0 / 55.0).abs() < 1e-12);
+        // Read at 6.00 V, the trip lies within a millivolt of 5.95 V: half of 0.05 V less.
+        assert!((found.expect("an on current").value - 5.975 / 55.0).abs() < 0.0005 / 55.0);
     }
 }

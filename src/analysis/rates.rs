@@ -4,17 +4,20 @@
 //! threshold. So the voltage at the change against the rate is a straight line: its intercept is the threshold at
 //! rest, its slope the delay, with whatever the readings themselves lag behind.
 
+use super::accuracy;
+use super::contribution::Contribution;
 use super::diagnosis;
 use super::edges::{Direction, Edge, Edges};
 use super::finding::Finding;
-use super::hysteresis::voltage_claim;
+use super::hysteresis::hysteresis;
 use super::plateau::Course;
-use super::quantity::{Contribution, Quantity};
+use super::quantity::Quantity;
 use super::terminals::Rail;
 use super::{Analysis, trust};
 use crate::profile::{Profile, QuantityName};
 use crate::statistics::line::{Line, Point};
 use crate::trace::Trace;
+use crate::units::Volts;
 
 /// Steps before a change over which the rate is taken.
 const RATE_STEPS: usize = 10;
@@ -31,25 +34,20 @@ pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
             courses.iter().zip(&found).filter_map(|(course, found)| Ramp::of(course, found, direction));
         AtRest::fit(&ramps.collect::<Vec<_>>(), direction)
     });
-    let claim = courses.first().and_then(voltage_claim);
-    let claimed = |value: f64| {
-        claim.map(|(source, accuracy)| Contribution::normal(source, accuracy.standard_uncertainty(value)))
-    };
     let threshold = |name, at_rest: &AtRest| {
-        let parts = at_rest.contribution().into_iter().chain(claimed(at_rest.value));
+        let claimed = courses.first().map(|course| accuracy::of_voltage(course, Volts(at_rest.value)));
+        let parts = std::iter::once(at_rest.contribution()).chain(claimed.into_iter().flatten());
         Quantity::new(name, at_rest.value, parts.collect())
     };
     let delay = |name, at_rest: &AtRest| {
         let part = Contribution::normal("line through the rates", at_rest.delay_uncertainty);
         Quantity::new(name, at_rest.delay, vec![part])
     };
-    analysis.quantities.extend(down.as_ref().map(|down| threshold(QuantityName::Trip, down)));
-    analysis.quantities.extend(up.as_ref().map(|up| threshold(QuantityName::ReEnable, up)));
-    if let (Some(down), Some(up)) = (&down, &up) {
-        let value = up.value - down.value;
-        let parts = down.contribution().into_iter().chain(up.contribution()).chain(claimed(value));
-        analysis.quantities.push(Quantity::new(QuantityName::Hysteresis, value, parts.collect()));
-    }
+    let trip = down.as_ref().map(|down| threshold(QuantityName::Trip, down));
+    let re_enable = up.as_ref().map(|up| threshold(QuantityName::ReEnable, up));
+    let difference =
+        trip.as_ref().zip(re_enable.as_ref()).map(|(trip, re_enable)| hysteresis(trip, re_enable));
+    analysis.quantities.extend([trip, re_enable, difference].into_iter().flatten());
     analysis.quantities.extend(down.as_ref().map(|down| delay(QuantityName::DetectDelay, down)));
     analysis.quantities.extend(up.as_ref().map(|up| delay(QuantityName::ReleaseDelay, up)));
     for (course, found) in courses.iter().zip(&found) {
@@ -129,8 +127,8 @@ impl AtRest {
         })
     }
 
-    fn contribution(&self) -> Option<Contribution> {
-        Some(Contribution::normal("line through the rates", self.uncertainty))
+    fn contribution(&self) -> Contribution {
+        Contribution::normal("line through the rates", self.uncertainty)
     }
 }
 

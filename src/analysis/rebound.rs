@@ -8,7 +8,7 @@
 use super::edges::{Direction, Edges};
 use super::finding::{About, Finding, FindingCode};
 use super::plateau::Course;
-use super::quantity::{Contribution, Quantity};
+use super::quantity::{Quantity, Term};
 use super::threshold::Threshold;
 use crate::profile::{QuantityName, Rebound};
 use crate::trace::SwitchState;
@@ -19,11 +19,10 @@ const NEAR: Volts = Volts(5e-3);
 
 /// Re-enable less what the terminals rise to: `hysteresis - on current x resistance - recovery`.
 pub(super) fn rebound_margin(hysteresis: &Quantity, on_current: &Quantity, rebound: &Rebound) -> Quantity {
-    let mut parts = hysteresis.contributions.clone();
-    let of_current = rebound.resistance.0 * on_current.standard_uncertainty;
-    parts.push(Contribution::normal("on current, through the battery's resistance", of_current));
-    let margin = hysteresis.value - rebound.rise(Amps(on_current.value)).0;
-    Quantity::new(QuantityName::ReboundMargin, margin, parts)
+    let band = Term { factor: 1.0, title: "hysteresis", quantity: hysteresis };
+    let rise = Term { factor: -rebound.resistance.0, title: "on current", quantity: on_current };
+    let margin = Quantity::sum(QuantityName::ReboundMargin, &[band, rise]);
+    Quantity { value: hysteresis.value - rebound.rise(Amps(on_current.value)).0, ..margin }
 }
 
 /// What a margin below zero means.
@@ -120,7 +119,8 @@ mod tests {
     #[test]
     fn the_margin_is_what_the_hysteresis_leaves_of_the_rise() {
         let analysis = analyse(&trace(&[]), &with(0.2));
-        assert!((margin(&analysis).value - (0.4 - 6.01 / 55.0 * 0.15 - 0.2)).abs() < 1e-9);
+        // The allowance for noise widens the hysteresis by less than a millivolt.
+        assert!((margin(&analysis).value - (0.4 - 6.01 / 55.0 * 0.15 - 0.2)).abs() < 1e-3);
         assert_eq!(codes(&analysis), []);
     }
 
@@ -132,7 +132,8 @@ mod tests {
         let analysis = analyse(&trace, &with(0.2));
         let hysteresis = |quantity: &&Quantity| quantity.name == QuantityName::Hysteresis;
         let hysteresis = analysis.quantities.iter().find(hysteresis).expect("a hysteresis");
-        assert!((margin(&analysis).standard_uncertainty - hysteresis.standard_uncertainty).abs() < 1e-9);
+        // 0.1 V between reading and trip at 55 ohm through 150 mohm leave a microvolt.
+        assert!((margin(&analysis).standard_uncertainty - hysteresis.standard_uncertainty).abs() < 1e-6);
     }
 
     #[test]
@@ -141,7 +142,7 @@ mod tests {
         assert!(margin(&analysis).value < 0.0);
         assert_eq!(codes(&analysis), [FindingCode::Rebound]);
         let text = &analysis.findings.iter().find(|f| f.code == FindingCode::Rebound).expect("told").text;
-        assert!(text.contains("466.4 mV") && text.contains("66.39 mV more"), "{text}");
+        assert!(text.contains("466.4 mV") && text.contains("66.17 mV more"), "{text}");
     }
 
     #[test]

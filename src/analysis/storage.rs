@@ -1,7 +1,7 @@
 //! How long a battery lasts in store with the switch open: the charge left at the cut-off over what drains it.
 
 use super::finding::{About, Finding, FindingCode};
-use super::quantity::{Contribution, Quantity};
+use super::quantity::{Contribution, Quantity, Term};
 use crate::profile::{QuantityName, Storage};
 use crate::units::{Amps, Unit, prefixed};
 
@@ -11,16 +11,8 @@ use crate::units::{Amps, Unit, prefixed};
 pub(super) fn storage_time(off_current: &Quantity, storage: &Storage) -> Quantity {
     let drain = total(off_current, storage);
     let time = storage.remaining / drain;
-    let by_current = time / drain.0;
-    let mut parts: Vec<Contribution> = off_current
-        .contributions
-        .iter()
-        .map(|part| Contribution {
-            source: format!("off current: {}", part.source),
-            standard_uncertainty: part.standard_uncertainty * by_current.abs(),
-            ..part.clone()
-        })
-        .collect();
+    let term = Term { factor: -(time / drain.0), title: "off current", quantity: off_current };
+    let mut parts = Quantity::sum(QuantityName::StorageTime, &[term]).contributions;
     if storage.tolerance > 0.0 {
         let share = storage.self_discharge / drain;
         parts.push(Contribution::rectangular("remaining capacity, as stated", storage.tolerance * time));

@@ -4,6 +4,7 @@
 //! nothing about the voltage that caused it. A rail is the line of terminal voltage against set-point over the
 //! plateaus on which the board stayed in one state: drop and offset of the supply included, noise averaged.
 
+use super::contribution::Contribution;
 use super::edges::{Direction, Stay};
 use super::plateau::Course;
 use crate::statistics::line::{Line, Point};
@@ -36,6 +37,8 @@ pub(super) struct Rail {
     line: Line,
     /// Standard deviation of a plateau about the line, in volts.
     pub(super) scatter: f64,
+    /// Plateaus more than the line has parameters; zero where nothing is known of the scatter.
+    degrees_of_freedom: usize,
 }
 
 impl Rail {
@@ -90,12 +93,14 @@ impl Rail {
             .then(|| Line::fit(points.iter().copied()))
             .flatten();
         if let Some(line) = fitted {
-            return Some(Self { line, scatter: line.scatter.unwrap_or(0.0) });
+            let degrees_of_freedom = points.len() - 2;
+            return Some(Self { line, scatter: line.scatter.unwrap_or(0.0), degrees_of_freedom });
         }
         let line = Line::through(mean_x, mean_y, mean_y / mean_x);
         let squares: f64 = points.iter().map(|point| (point.y - line.at(point.x)).powi(2)).sum();
         let scatter = if points.len() > 1 { (squares / (count - 1.0)).sqrt() } else { 0.0 };
-        line.at(mean_x).is_finite().then_some(Self { line, scatter })
+        let degrees_of_freedom = points.len().saturating_sub(1);
+        line.at(mean_x).is_finite().then_some(Self { line, scatter, degrees_of_freedom })
     }
 
     /// Voltage at the terminals at set-point `set`.
@@ -111,6 +116,14 @@ impl Rail {
     /// Standard uncertainty of the middle of a bracket at `set`: the line, and two set-points that scatter about it.
     pub(super) fn uncertainty(&self, set: Volts) -> f64 {
         (self.line.uncertainty_at(set.0, self.scatter).powi(2) + self.scatter.powi(2) / 2.0).sqrt()
+    }
+
+    /// The same as a line of the budget; none where nothing scatters.
+    pub(super) fn line(&self, set: Volts) -> Option<Contribution> {
+        let degrees_of_freedom = self.degrees_of_freedom as f64;
+        (self.scatter > 0.0).then(|| {
+            Contribution::scatter("scatter of the terminals", self.uncertainty(set), degrees_of_freedom)
+        })
     }
 
     /// True when `plateau` settled on the line.

@@ -6,12 +6,15 @@
 //! narrow ones that are left, from several passes, are averaged and their scatter counted. Value and uncertainty of
 //! one bracket: the midpoint and width / sqrt(12) (JCGM 100:2008, 4.3.7).
 
+use super::cause::Cause;
+use super::contribution::Contribution;
 use super::edges::{Direction, Edge, Edges};
+use super::noise::Evidence;
 use super::plateau::{Course, SAME_SET};
-use super::quantity::Contribution;
 use super::slow::Slow;
 use super::terminals::Rail;
-use crate::units::{Ohms, Volts};
+use crate::trace::Claims;
+use crate::units::{Amps, Ohms, Unit, Volts};
 use std::time::Duration;
 
 /// Brackets wider than the narrowest by more than this are a coarse pass.
@@ -19,29 +22,34 @@ const SIMILAR: f64 = 1.5;
 /// A claimed lead resistance is taken as known to this share: contacts vary from board to board.
 const LEAD_TOLERANCE: f64 = 0.2;
 
+/// Names of lines in the budget.
+pub(super) const SCATTER: &str = "scatter between passes";
+pub(super) const CONTRADICTION: &str = "passes that disagree";
 /// Name of the bracket's line in the budget.
-const BRACKET: &str = "width of the bracket";
+pub(super) const BRACKET: &str = "width of the bracket";
 
 /// One threshold of the board.
 #[derive(Clone, Debug)]
 pub(super) struct Threshold {
     /// Midpoint, at the terminals.
     pub(super) value: Volts,
-    /// What its uncertainty is made of, the voltmeter aside.
+    /// What its uncertainty is made of, the instrument's accuracy aside.
     pub(super) contributions: Vec<Contribution>,
     /// The plateau of the nearest set-point that did not change the state.
     pub(super) stayed: usize,
     /// Widening against the board's delay, if any was needed.
     pub(super) smear: Option<Smear>,
+    /// Which threshold.
+    pub(super) direction: Direction,
+    /// What tells of noise at the detector; `None` where a delay longer than the steps hides it.
+    pub(super) evidence: Option<Evidence>,
 }
 
 impl Threshold {
     /// The part of the standard uncertainty that is the width of the bracket, in volts.
     pub(super) fn bracket_uncertainty(&self) -> f64 {
-        self.contributions
-            .iter()
-            .find(|part| part.source == BRACKET)
-            .map_or(0.0, |part| part.standard_uncertainty)
+        let bracket = self.contributions.iter().find(|part| part.source == BRACKET);
+        bracket.map_or(0.0, |part| part.standard_uncertainty)
     }
 }
 
@@ -99,8 +107,11 @@ impl Search {
         let declared = direction.delay(&course.profile.timing);
         let slow = Slow::find(course, found, direction, &rail);
         let delay = slow.map_or(declared, |slow| slow.at_most.max(declared));
-        let threshold =
-            Stays::sorted(course, found, direction, &rail, delay).threshold(course, &edges, &rail);
+        let stays = Stays::sorted(course, found, direction, &rail, delay);
+        let mut threshold = stays.threshold(course, &edges, &rail);
+        if let Some(threshold) = threshold.as_mut().filter(|found| found.smear.is_none() && slow.is_none()) {
+            threshold.evidence = Some(stays.evidence(course, &edges, &rail));
+        }
         Self { threshold, slow }
     }
 }
@@ -156,27 +167,58 @@ impl Stays {
         let middle = kept.iter().map(|bracket| (bracket.before + bracket.beyond) / 2.0).sum::<f64>() / count;
         let width = kept.iter().map(Bracket::width).sum::<f64>() / count;
         let slope = rail.slope().abs();
-        let mut contributions = vec![Contribution::rectangular(BRACKET, slope * width / 2.0)];
+        let smear = self.smear(course, &narrowest);
+        let set = self.direction.volts(middle);
+        let mut contributions = vec![self.bracket_line(slope * width / 2.0, rail.at(set), smear)];
         if kept.len() > 1 {
             let squares: f64 =
                 kept.iter().map(|bracket| ((bracket.before + bracket.beyond) / 2.0 - middle).powi(2)).sum();
             let scatter = slope * (squares / (count - 1.0) / count).sqrt();
-            contributions.push(Contribution::scatter("scatter between passes", scatter, count - 1.0));
+            contributions.push(Contribution::scatter(SCATTER, scatter, count - 1.0));
         }
         if let Some(overlap) = self.contradiction(course, edges) {
-            contributions.push(Contribution::rectangular("passes that disagree", slope * overlap / 2.0));
+            contributions.push(Contribution::rectangular(CONTRADICTION, slope * overlap / 2.0));
         }
-        let set = self.direction.volts(middle);
-        contributions.push(Contribution::normal("scatter of the terminal voltage", rail.uncertainty(set)));
-        if let Some(leads) = lead_drop_uncertainty(course, self.direction, set) {
-            contributions.push(Contribution::normal("resistance of the leads", leads));
+        contributions.extend(rail.line(set));
+        // With the switch open hardly anything drops in the leads.
+        if self.direction == Direction::Down {
+            contributions.extend(lead_drop(&course.trace.claims, set / course.profile.load.resistance));
         }
-        Some(Threshold {
-            value: rail.at(set),
-            contributions,
-            stayed: narrowest.stayed,
-            smear: self.smear(course, &narrowest),
-        })
+        let (value, stayed, direction) = (rail.at(set), narrowest.stayed, self.direction);
+        Some(Threshold { value, contributions, stayed, smear, direction, evidence: None })
+    }
+
+    /// All that was seen, at the terminals.
+    fn evidence(&self, course: &Course<'_>, edges: &[&Edge], rail: &Rail) -> Evidence {
+        let timing = &course.profile.timing;
+        let mut evidence = Evidence::new(timing.detect_delay.min(timing.release_delay));
+        let along = |plateau: usize| self.direction.along(rail.at(course.plateaus[plateau].set));
+        for (_, plateau) in &self.long {
+            let stood = &course.plateaus[*plateau];
+            evidence.stays.push((along(*plateau), (stood.ended.saturating_sub(stood.began)).as_secs_f64()));
+        }
+        for edge in edges {
+            let began = course.plateaus[edge.plateau].began;
+            let at = |sample: usize| course.trace.samples[sample].at;
+            let last = edge.last_before.map_or(began, at);
+            if last > began {
+                evidence.stays.push((along(edge.plateau), (last.saturating_sub(began)).as_secs_f64()));
+            }
+            evidence.changes.push((along(edge.plateau), (at(edge.seen).saturating_sub(last)).as_secs_f64()));
+        }
+        evidence.sort();
+        evidence
+    }
+
+    /// The bracket as a line. One widened against a delay lies on the side the delay moves the change to: the longer it
+    /// is, the higher the true trip and the lower the true re-enable.
+    fn bracket_line(&self, half_width: f64, middle: Volts, smear: Option<Smear>) -> Contribution {
+        let towards = match (smear, self.direction) {
+            (Some(_), Direction::Up) => -1.0,
+            _ => 1.0,
+        };
+        let line = Contribution::rectangular(BRACKET, half_width).through(towards, Unit::Volt);
+        if smear.is_some() { line.due_to(Cause::Delay) } else { line.estimated(middle.0) }
     }
 
     /// The bracket of a change: the nearest stay of any pass that lies before it.
@@ -207,14 +249,14 @@ impl Stays {
     }
 }
 
-/// Without a voltmeter at the board the drop rests on the claimed lead resistance, as a rectangle (JCGM 100:2008, 4.3.7).
-fn lead_drop_uncertainty(course: &Course<'_>, direction: Direction, set: Volts) -> Option<f64> {
-    if direction == Direction::Up {
-        return None;
-    }
-    let leads: Ohms = course.trace.claims.lead_resistance?;
-    let drop = (set / course.profile.load.resistance) * leads;
-    Some(drop.0.abs() * LEAD_TOLERANCE / 3.0_f64.sqrt())
+/// Where the voltage is not known behind the leads, the drop rests on their claimed resistance, as a rectangle
+/// (JCGM 100:2008, 4.3.7).
+pub(super) fn lead_drop(claims: &Claims, current: Amps) -> Option<Contribution> {
+    let leads: Ohms = claims.lead_resistance?;
+    let line = Contribution::rectangular("resistance of the leads", leads.0 * LEAD_TOLERANCE)
+        .through(-current.0, Unit::Ohm)
+        .estimated(leads.0);
+    Some(line.due_to(Cause::LeadResistance))
 }
 
 #[cfg(test)]

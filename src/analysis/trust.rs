@@ -1,8 +1,9 @@
 //! What a reader must know to trust the numbers: steps shorter than the delay, and accuracy nobody stated.
 
+use super::accuracy::voltage_claim;
 use super::edges::Direction;
 use super::finding::{About, Finding, FindingCode};
-use super::hysteresis::voltage_claim;
+use super::noise::Noise;
 use super::plateau::Course;
 use super::threshold::Search;
 use std::time::Duration;
@@ -42,6 +43,26 @@ pub(super) fn delays(course: &Course<'_>, searches: [(Direction, &Search); 2]) -
         }
     }
     findings
+}
+
+/// Noise worth a word, as a share of the start voltage: 1.5 mV on 7.6 V. A quiet detector is now and then taken for half of it.
+const NOISY: f64 = 2e-4;
+
+/// Thresholds that noise moves from pass to pass hold for the pace of this run only.
+pub(super) fn noise(course: &Course<'_>, noise: &Noise) -> Option<Finding> {
+    if !noise.evident || noise.deviation < NOISY * course.profile.supply.start.0 {
+        return None;
+    }
+    let dwells = course.in_scope().map(|plateau| plateau.ended.saturating_sub(plateau.began));
+    let dwell = dwells.filter(|dwell| !dwell.is_zero()).min()?;
+    let deviation = crate::units::prefixed(noise.deviation, crate::units::Unit::Volt);
+    let text = format!(
+        "the board changed its state at a voltage at which it had stayed before: noise of about {deviation} at the \
+         detector. The longer it is left near a threshold, the sooner it trips and comes back; with steps of {} that is \
+         allowed for as far as one run can tell. Look first at ripple, leads and the detector's filter.",
+        text(dwell)
+    );
+    Some(Finding { code: FindingCode::DetectorNoise, about: About::Board, text })
 }
 
 /// A bench without a voltmeter at the board, or without stated accuracy.

@@ -7,10 +7,12 @@
 //! offset has moved since. Nobody states that last part, so it is taken to grow from nothing to the whole fixed part
 //! within [`AS_GOOD_AS_NONE`]: an old zero is never better than none.
 
+use super::accuracy;
+use super::cause::Cause;
+use super::contribution::Contribution;
 use super::plateau::Course;
-use super::quantity::Contribution;
-use crate::trace::{Accuracy, Zero};
-use crate::units::{Amps, Volts};
+use crate::trace::Zero;
+use crate::units::{Amps, Ohms, Unit, Volts};
 use std::time::Duration;
 
 /// After so long a zero says nothing that the claim does not. A day is how often benches are commonly zeroed at least.
@@ -22,8 +24,8 @@ const NEAR: f64 = 0.02;
 /// Up to this voltage nothing leaks in a fixture worth the name: the ammeter's offset is all there is.
 const NO_VOLTAGE: Volts = Volts(0.1);
 
-/// Standard uncertainty of a voltmeter's input resistance, as a share. Makers state 10 Mohm to within 1 % (common practice);
-/// taken whole and not as a rectangle, for the definitions do not state it.
+/// How far the input resistance of a voltmeter may be off what is stated, as a share, either way. Makers state 10 Mohm to
+/// within 1 % (common practice); the definitions do not say.
 pub(super) const INPUT_RESISTANCE: f64 = 0.01;
 
 /// What the bench adds to a current at one voltage.
@@ -50,27 +52,32 @@ pub(super) fn without_zero(
     let baseline = Baseline::of(&claims.zero, range, at);
     let mut parts = Vec::new();
     let board = value - baseline.map_or(0.0, |zero| zero.current);
-    if let Some(claim) = claims.current_accuracy(range, Amps(value) + passing) {
-        match baseline {
-            None => parts.push(Contribution::normal(AMMETER, claim.standard_uncertainty(value + passing.0))),
-            Some(zero) => {
-                let shared = if zero.at_voltage { 0.0 } else { passing.0 };
-                let of_reading = Accuracy { absolute: 0.0, ..claim };
-                let ammeter = of_reading.standard_uncertainty(board + shared);
-                parts.push(Contribution::normal(AMMETER, ammeter));
-                parts.push(zero.drift(claim.absolute));
-            }
+    match baseline {
+        None => parts.extend(accuracy::of_current(claims, range, Amps(value) + passing)),
+        Some(zero) => {
+            let shared = if zero.at_voltage { 0.0 } else { passing.0 };
+            let lines = accuracy::of_current(claims, range, Amps(board + shared));
+            // The offset is in the zero; only what it has moved since counts.
+            parts.extend(lines.into_iter().filter(|line| line.cause != Some(Cause::AmmeterOffset(range))));
+            let claim = claims.current_accuracy(range, Amps(value) + passing);
+            parts.extend(claim.map(|claim| zero.drift(claim.absolute)));
         }
     }
     parts.extend(baseline.map(|zero| zero.own()));
-    if passing > Amps::ZERO && !baseline.is_some_and(|zero| zero.at_voltage) {
-        parts.push(Contribution::normal("voltmeter's input current", INPUT_RESISTANCE * passing.0));
+    if !baseline.is_some_and(|zero| zero.at_voltage) {
+        parts.extend(claims.sense_resistance.and_then(|input| meter_loading(input, at)));
     }
     (board, parts)
 }
 
-/// Name of the ammeter's accuracy in the budget.
-const AMMETER: &str = "ammeter";
+/// What a voltmeter behind the ammeter draws is taken off by its stated input resistance.
+pub(super) fn meter_loading(input: Ohms, at: Volts) -> Option<Contribution> {
+    let sensitivity = at.0 / input.0.powi(2);
+    let line = Contribution::rectangular("input resistance of the voltmeter", INPUT_RESISTANCE * input.0)
+        .through(sensitivity, Unit::Ohm)
+        .estimated(input.0);
+    (input > Ohms::ZERO).then(|| line.due_to(Cause::VoltmeterInput))
+}
 
 impl Baseline {
     /// On the line between the zeros around `at`, or the nearest to it; else that at no voltage. `None` where there is
@@ -136,8 +143,7 @@ impl Baseline {
 mod tests {
     use super::super::fixture::{profile, staircase};
     use super::*;
-    use crate::trace::{RangeAccuracy, Trace};
-    use crate::units::Ohms;
+    use crate::trace::{Accuracy, RangeAccuracy, Trace};
 
     const RANGE: Amps = Amps(1e-4);
     const AT: Volts = Volts(5.8);
@@ -183,12 +189,13 @@ mod tests {
         }
     }
 
-    /// By hand: (0.05 % of 3.08 µA + 25 nA) / sqrt(3) = 15.323 nA; 1 % of 580 nA = 5.8 nA.
+    /// By hand: 0.05 % of 3.08 µA, 25 nA, and 1 % of 580 nA, each over sqrt(3).
     #[test]
     fn without_a_zero_the_whole_claim_counts() {
         let (value, parts) = found(&[]);
         assert!((value - 2500.0).abs() < 1e-9);
-        same(&parts, &[("ammeter", 15.323), ("voltmeter's input current", 5.8)]);
+        let gain_and_offset = [("ammeter gain", 0.889), ("ammeter offset", 14.434)];
+        same(&parts, &[&gain_and_offset[..], &[("input resistance of the voltmeter", 3.349)]].concat());
     }
 
     /// By hand: 0.05 % of 2.488 µA / sqrt(3) = 0.718 nA; a quarter of 25 nA after 6 of 24 hours, / sqrt(3) = 3.608 nA.
@@ -198,7 +205,7 @@ mod tests {
         assert!((value - 2488.0).abs() < 1e-9, "{value}");
         same(
             &parts,
-            &[("ammeter", 0.718), ("drift since the zero, 6.0 h", 3.608), ("zero of the bench", 0.2)],
+            &[("ammeter gain", 0.718), ("drift since the zero, 6.0 h", 3.608), ("zero of the bench", 0.2)],
         );
     }
 
@@ -218,10 +225,10 @@ mod tests {
         same(
             &parts,
             &[
-                ("ammeter", 0.887),
+                ("ammeter gain", 0.887),
                 ("drift since the zero, 6.0 h", 3.608),
                 ("zero of the bench", 0.2),
-                ("voltmeter's input current", 5.8),
+                ("input resistance of the voltmeter", 3.349),
             ],
         );
     }

@@ -30,6 +30,9 @@ pub(super) struct Arguments {
     /// How the result is written to standard output.
     #[arg(long, value_enum, default_value_t)]
     format: Format,
+    /// Add the uncertainty budget of every quantity to the text; JSON always has it.
+    #[arg(long)]
+    budget: bool,
 }
 
 impl Arguments {
@@ -47,7 +50,7 @@ impl Arguments {
         let ending = Ending { stop: Stop::Completed, output: OutputState::Off };
         let verdict = judge(&analysis, &profile, &ending);
         let sheet = Sheet::of_trace(&profile, self.serial_number.as_deref(), &verdict, ending.output);
-        print_sheet(&sheet, self.format)?;
+        print_sheet(&sheet, self.format, self.budget)?;
         Ok(Exit::of_run(verdict.outcome, &ending))
     }
 }

@@ -54,7 +54,7 @@ impl Arguments {
             let board = keeping.board(&profile, serial_number)?;
             let path = files::RIVER_NODE.0.to_owned();
             let kept = on_simulation(&simulation, &profile, path, Arrangement::Separate, board, &keeping)?;
-            let outcome = print_result(&kept, Format::Text)?;
+            let outcome = print_result(&kept, Format::Text, false)?;
             if matches!(outcome, Exit::Aborted | Exit::OutputMayBeOn) {
                 return Ok(outcome);
             }

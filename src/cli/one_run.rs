@@ -4,7 +4,7 @@ use super::due::{self, BenchState};
 use super::live::Live;
 use super::station::Station;
 use super::stop::listen;
-use super::{Failure, earlier, files, guard, who};
+use super::{Failure, earlier, files, guard, ratio, who};
 use crate::bench::Bench;
 use crate::bench::serial::SerialBench;
 use crate::procedure::{Plan, Procedure};
@@ -36,6 +36,7 @@ impl Order<'_> {
     /// output was never on, and the board was not touched.
     pub(super) fn carry_out(&self, mut station: Station<'_>) -> Result<Kept, Failure> {
         files::fit(self.profile, station.bench)?;
+        ratio::check(self.profile, station.bench)?;
         station.note_calibration();
         if !self.is_reference {
             due::refuse_overdue_calibration(self.profile, station.bench)?;

@@ -5,18 +5,19 @@ use super::{Exit, Failure, Format};
 use crate::report::{self, Paint, Sheet};
 use std::io::{IsTerminal, Write};
 
-/// Writes the result of a kept run and returns its exit code.
-pub(super) fn print_result(kept: &Kept, format: Format) -> Result<Exit, Failure> {
-    print_sheet(&Sheet::of(&kept.run).kept_in(&kept.folder), format)?;
+/// Writes the result of a kept run, with its budgets if wanted, and returns its exit code.
+pub(super) fn print_result(kept: &Kept, format: Format, budget: bool) -> Result<Exit, Failure> {
+    print_sheet(&Sheet::of(&kept.run).kept_in(&kept.folder), format, budget)?;
     Ok(match &kept.run.ending {
         Some(ending) => Exit::of_run(kept.run.outcome, ending),
         None => Exit::Invalid,
     })
 }
 
-/// Writes a result as `format` says.
-pub(super) fn print_sheet(sheet: &Sheet<'_>, format: Format) -> Result<(), Failure> {
+/// Writes a result as `format` says; budgets, if wanted, come before it, so that what to do next stays last.
+pub(super) fn print_sheet(sheet: &Sheet<'_>, format: Format, budget: bool) -> Result<(), Failure> {
     print(&match format {
+        Format::Text if budget => report::budgets(sheet.quantities) + "\n" + &report::text(sheet, paint()),
         Format::Text => report::text(sheet, paint()),
         Format::Json => report::json(sheet) + "\n",
     })

@@ -40,6 +40,9 @@ pub(super) struct Arguments {
     /// Temperature of the room, such as "24 degC"; as the bench file says when left out.
     #[arg(long, value_name = "TEMPERATURE", value_parser = room)]
     temperature: Option<Celsius>,
+    /// Add the uncertainty budget of every quantity to the text; JSON always has it.
+    #[arg(long)]
+    budget: bool,
     #[command(flatten)]
     keeping: Keeping,
     #[command(flatten)]
@@ -72,7 +75,7 @@ impl Arguments {
             Some(arrangement) => self.on_simulation(arrangement)?,
             None => self.on_bench()?,
         };
-        print_result(&kept, self.format)
+        print_result(&kept, self.format, self.budget)
     }
 
     /// The station comes before profile and board: what an earlier run left on goes off even when this one is refused.

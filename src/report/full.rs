@@ -1,15 +1,18 @@
 //! One run with all that its record holds: who and when, instruments, the result, the budget of every quantity.
 
-use super::columns::aligned;
-use super::{Paint, Sheet, text};
+use super::budget::budgets;
+use super::columns::{aligned, wrapped};
+use super::{Paint, Sheet, quantities, text};
 use crate::record::{Instrument, Run};
-use crate::units::with_decimals_of;
 use std::path::Path;
 
 /// Everything the record in `folder` says of a run but its samples.
 pub fn full(run: &Run, folder: &Path, paint: Paint) -> String {
     let mut parts = vec![facts(run), instruments(&run.identity.bench.instruments)];
-    parts.extend((!run.quantities.is_empty()).then(|| budgets(run)));
+    parts.extend((!run.quantities.is_empty()).then(|| budgets(&run.quantities)));
+    let risks: String =
+        run.quantities.iter().filter_map(quantities::risk).map(|risk| wrapped(&risk, "")).collect();
+    parts.extend((!risks.is_empty()).then_some(risks));
     parts.push(text(&Sheet::of(run).kept_in(folder), paint));
     parts.join("\n")
 }
@@ -63,23 +66,4 @@ fn instruments(instruments: &[Instrument]) -> String {
 /// A dash for what nobody said.
 fn known(field: Option<&impl ToString>) -> String {
     field.map_or_else(|| "-".to_owned(), ToString::to_string)
-}
-
-/// What every uncertainty is made of, as standard uncertainties.
-fn budgets(run: &Run) -> String {
-    let heading = ["uncertainty of", "comes from", "standard uncertainty"];
-    let mut rows = vec![heading.map(str::to_owned).to_vec()];
-    for judged in &run.quantities {
-        let quantity = &judged.quantity;
-        for part in &quantity.contributions {
-            let spread = part.standard_uncertainty;
-            let (number, _, unit) = with_decimals_of(spread, spread, quantity.name.unit());
-            rows.push(vec![
-                quantity.name.title().to_owned(),
-                part.source.clone(),
-                format!("{number} {unit}"),
-            ]);
-        }
-    }
-    aligned(&rows).join("\n") + "\n"
 }

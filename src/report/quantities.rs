@@ -3,6 +3,7 @@
 use super::columns::aligned;
 use super::paint::{self, Paint};
 use super::words;
+use crate::analysis::{Finding, FindingCode};
 use crate::profile::Limit;
 use crate::units::{Unit, prefixed, under_prefix_of, with_decimals_of};
 use crate::verdict::{Decision, Judged};
@@ -90,6 +91,42 @@ pub(super) fn complaint(judged: &Judged) -> String {
     }
 }
 
+/// What stands behind the U of a table: `U covers the true value with 95 %.`
+pub(super) fn what_u_means(quantities: &[Judged], findings: &[Finding]) -> String {
+    let mut probabilities: Vec<Option<f64>> =
+        quantities.iter().map(|judged| judged.coverage_probability).collect();
+    probabilities.dedup();
+    let meaning = match probabilities[..] {
+        [Some(probability)] => format!("U covers the true value with {}.", words::percent(probability)),
+        _ => {
+            let mut factors: Vec<String> =
+                quantities.iter().map(|judged| words::factor(judged.coverage_factor)).collect();
+            factors.dedup();
+            format!("U is the expanded uncertainty, coverage factor k = {}.", factors.join(", "))
+        }
+    };
+    if findings.iter().any(|finding| finding.code == FindingCode::AccuracyNotIncluded) {
+        return format!("Instrument accuracy not included in U. For what is included: {meaning}");
+    }
+    meaning
+}
+
+/// The specific risk of a decision, as a sentence.
+pub(super) fn risk(judged: &Judged) -> Option<String> {
+    let (name, risk) = (judged.quantity.name.title(), words::percent(judged.risk?));
+    let guard = judged.guard_band.filter(|guard| *guard > 0.0).map_or_else(String::new, |guard| {
+        let unit = judged.quantity.unit();
+        let (guard, _, unit) = with_decimals_of(guard, guard, unit);
+        format!(", guard band {guard} {unit}")
+    });
+    let wrong = if side(judged).is_none() {
+        "outside its limits although found inside"
+    } else {
+        "inside its limits although found outside"
+    };
+    Some(format!("Risk of the decision about the {name}{guard}: {risk} that it is {wrong}."))
+}
+
 /// A limit with its own prefix and no needless zeros: `6.12 V`.
 fn plain(limit: f64, unit: Unit) -> String {
     let (_, _, symbol) = with_decimals_of(limit, 0.0, unit);
@@ -113,7 +150,7 @@ mod tests {
         let quantity =
             Quantity::new(QuantityName::Hysteresis, value, vec![Contribution::normal("digit", 0.0013)]);
         let limit = Some(Limit { at: None, min, max });
-        Judged { quantity, coverage_factor: 2.0, limit, decision: Some(decision) }
+        Judged { coverage_factor: 2.0, limit, decision: Some(decision), ..Judged::new(quantity, None) }
     }
 
     #[test]

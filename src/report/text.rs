@@ -69,12 +69,8 @@ fn heading(sheet: &Sheet<'_>, paint: Paint) -> String {
 
 fn table(sheet: &Sheet<'_>, paint: Paint) -> String {
     let mut lines = quantities::table(sheet.quantities, paint);
-    let mut factors: Vec<String> =
-        sheet.quantities.iter().map(|judged| judged.coverage_factor.to_string()).collect();
-    factors.dedup();
-    if let [factor] = &factors[..] {
-        lines.push(format!("U is the expanded uncertainty, coverage factor k = {factor}."));
-    }
+    lines
+        .push(wrapped(&quantities::what_u_means(sheet.quantities, sheet.findings), "").trim_end().to_owned());
     lines.join("\n") + "\n"
 }
 

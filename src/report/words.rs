@@ -1,6 +1,6 @@
 //! The words of the other rooms as text: a decision, the code of a finding.
 
-use crate::analysis::FindingCode;
+use crate::analysis::{FindingCode, Shape};
 use crate::verdict::Decision;
 use serde::Serialize;
 
@@ -12,6 +12,27 @@ pub(super) fn decision(decision: Decision) -> String {
 /// `never_trips`
 pub(super) fn code(code: FindingCode) -> String {
     in_files(&code)
+}
+
+/// `rectangular`
+pub(super) fn shape(shape: Shape) -> String {
+    in_files(&shape)
+}
+
+/// A coverage factor: `1.68`, `2`.
+pub(super) fn factor(factor: f64) -> String {
+    format!("{factor:.2}").trim_end_matches('0').trim_end_matches('.').to_owned()
+}
+
+/// A probability in per cent, with no needless zeros: `95 %`, `2.5 %`, `0.0001 %`; below that only that it is less.
+pub(super) fn percent(probability: f64) -> String {
+    let percent = 100.0 * probability;
+    if percent > 0.0 && percent < 1e-4 {
+        return "less than 0.0001 %".to_owned();
+    }
+    let decimals = if percent >= 1.0 || percent == 0.0 { 1 } else { 4 };
+    let text = format!("{percent:.decimals$}");
+    format!("{} %", text.trim_end_matches('0').trim_end_matches('.'))
 }
 
 /// `never_re_enables` as people say it: `never re-enables`.

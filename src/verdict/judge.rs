@@ -15,7 +15,9 @@ pub fn judge(analysis: &Analysis, profile: &Profile, ending: &Ending) -> Verdict
         .quantities
         .iter()
         .filter(|quantity| quantity.value.is_finite() && quantity.standard_uncertainty.is_finite())
-        .map(|quantity| Judged::new(quantity.clone(), profile.limits.get(&quantity.name).copied()))
+        .map(|quantity| {
+            Judged::by(&profile.decision, quantity.clone(), profile.limits.get(&quantity.name).copied())
+        })
         .collect();
     let mut findings = analysis.findings.clone();
     let missing: Vec<QuantityName> = profile

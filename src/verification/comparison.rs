@@ -144,7 +144,8 @@ mod tests {
             standard_uncertainty: expanded / crate::verdict::COVERAGE_FACTOR,
             contributions: Vec::new(),
         };
-        Judged::new(quantity, Some(Limit { at: None, min: Some(5.88), max: Some(6.12) }))
+        let limit = Limit { at: None, min: Some(5.88), max: Some(6.12) };
+        Judged { coverage_factor: crate::verdict::COVERAGE_FACTOR, ..Judged::new(quantity, Some(limit)) }
     }
 
     /// By hand: 2 mV over the root of (3 mV)² + (2 mV)² = 0.5547; 5 mV over the same = 1.3868.

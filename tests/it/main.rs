@@ -1,10 +1,12 @@
 //! Integration tests, a module per theme.
 
+mod budgets;
 mod cases;
 mod circuit;
 #[cfg(unix)]
 mod cli;
 mod conditions;
+mod coverage;
 mod deep_and_band;
 #[cfg(unix)]
 mod definitions_on_simulation;

@@ -155,7 +155,8 @@ fn a_pull_up_of_100_kohm_is_ten_microamperes_a_volt() {
     setup.board.pull_up = Ohms(100e3);
     let run = run_setup(&profile, &setup);
     let (slope, expanded) = run.measured(QuantityName::OffConductance).expect("a line");
-    assert!((slope - 10e-6).abs() <= expanded && expanded < 30e-9, "{slope} ± {expanded}");
+    // One board in twenty lies outside of U; none half as far again.
+    assert!((slope - 10e-6).abs() <= 1.5 * expanded && expanded < 30e-9, "{slope} ± {expanded}");
     assert!(text(&run, FindingCode::OffPathResistive).contains("kΩ in all"));
     assert_eq!(codes(&run)[0], FindingCode::OffCurrentHigh, "first what is out, then why");
     assert!(!text(&run, FindingCode::OffCurrentHigh).contains("look first"), "the path is told once");

@@ -60,7 +60,13 @@ pub(crate) fn limits() -> [(QuantityName, Limit); 4] {
 pub(crate) fn judged(name: QuantityName, value: f64, uncertainty: f64, decision: Option<Decision>) -> Judged {
     let limit = limits().into_iter().find(|(limited, _)| *limited == name).map(|(_, limit)| limit);
     let quantity = Quantity::new(name, value, vec![Contribution::normal("last digit", uncertainty / 2.0)]);
-    Judged { quantity, coverage_factor: 2.0, limit, decision }
+    Judged {
+        coverage_factor: 2.0,
+        coverage_probability: None,
+        limit,
+        decision,
+        ..Judged::new(quantity, None)
+    }
 }
 
 /// What a good board shows.

@@ -16,7 +16,41 @@ pub(crate) struct Run {
     pub(crate) truth: Truth,
 }
 
+/// One quantity of a board: what was found, how sure that is, and what is true.
+#[derive(Clone, Copy, Debug)]
+pub(crate) struct Measured {
+    pub(crate) name: QuantityName,
+    pub(crate) value: f64,
+    pub(crate) expanded_uncertainty: f64,
+    pub(crate) truth: f64,
+}
+
+impl Measured {
+    /// True when U covers the truth.
+    pub(crate) fn is_covered(&self) -> bool {
+        (self.value - self.truth).abs() <= self.expanded_uncertainty
+    }
+}
+
+/// The quantities of every run whose truth is known.
+pub(crate) const MEASURED: [QuantityName; 5] = [
+    QuantityName::Trip,
+    QuantityName::ReEnable,
+    QuantityName::Hysteresis,
+    QuantityName::OnCurrent,
+    QuantityName::OffCurrent,
+];
+
 impl Run {
+    /// All that was measured and whose truth is known.
+    pub(crate) fn all_measured(&self, profile: &Profile) -> Vec<Measured> {
+        let of = |name| {
+            let (value, expanded_uncertainty) = self.measured(name)?;
+            Some(Measured { name, value, expanded_uncertainty, truth: self.true_value(name, profile)? })
+        };
+        MEASURED.into_iter().filter_map(of).collect()
+    }
+
     /// The true value of a quantity of this profile, where it is known.
     pub(crate) fn true_value(&self, name: QuantityName, profile: &Profile) -> Option<f64> {
         let truth = &self.truth;

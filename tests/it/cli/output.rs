@@ -98,7 +98,9 @@ fn what_is_no_terminal_gets_no_escape_codes() {
     for condition in ["good", "high-trip"] {
         let said = simulated(&folder, condition, &[]);
         assert!(!said.out.contains('\x1b') && !said.err.contains('\x1b'), "{said}");
-        assert!(!said.out.contains('\r') && said.err.is_empty(), "no progress either: {said}");
+        // The steps of this profile are coarse for its hysteresis, and that is said.
+        let note = |line: &str| line.starts_with("note: the limits of the hysteresis are");
+        assert!(!said.out.contains('\r') && said.err.lines().all(note), "no progress either: {said}");
     }
     let said = analysed(&folder, "high.csv", &[]);
     assert!(!said.out.contains('\x1b'), "{said}");

@@ -244,7 +244,7 @@ fn the_json_has_exactly_these_keys() {
     fixed.sort_unstable();
     assert_eq!(keys(&value), fixed);
     let mut quantity = vec!["name", "value", "unit", "standard_uncertainty", "coverage_factor"];
-    quantity.extend(["expanded_uncertainty", "min", "max", "decision"]);
+    quantity.extend(["expanded_uncertainty", "min", "max", "decision", "budget"]);
     quantity.sort_unstable();
     assert_eq!(keys(&value["quantities"][0]), quantity);
     assert_eq!(
@@ -283,7 +283,7 @@ fn a_trace_without_a_record_has_the_same_json_but_for_what_is_not_known() {
 
 #[test]
 fn the_json_of_a_pass() {
-    insta::assert_snapshot!(run_json(&run(passing(), OutputState::Off)), @r#"{"schema":1,"outcome":"PASS","board":"RN-204","revision":"C","serial_number":"RN000123","quantities":[{"name":"trip","value":6.0004,"unit":"V","standard_uncertainty":0.0008,"coverage_factor":2.0,"expanded_uncertainty":0.0016,"min":5.88,"max":6.12,"decision":"pass"},{"name":"re_enable","value":6.4012,"unit":"V","standard_uncertainty":0.00105,"coverage_factor":2.0,"expanded_uncertainty":0.0021,"min":6.24,"max":6.56,"decision":"pass"},{"name":"hysteresis","value":0.4008,"unit":"V","standard_uncertainty":0.0013,"coverage_factor":2.0,"expanded_uncertainty":0.0026,"min":0.3,"max":0.5,"decision":"pass"},{"name":"on_current","value":0.10912,"unit":"A","standard_uncertainty":0.00006,"coverage_factor":2.0,"expanded_uncertainty":0.00012},{"name":"off_current","value":2.4e-6,"unit":"A","standard_uncertainty":1.55e-8,"coverage_factor":2.0,"expanded_uncertainty":3.1e-8,"at":5.8,"min":1e-6,"max":4e-6,"decision":"pass"}],"findings":[],"output":"off","run":"bench-1-20261019T142233Z-0001","station":"bench-1","attempt":1,"started":{"utc":"2026-10-19T14:22:33.25Z","local":"2026-10-19T16:22:33.25+02:00"},"ended":{"utc":"2026-10-19T14:22:51.5Z","local":"2026-10-19T16:22:51.5+02:00"},"simulated":{"condition":"good","seed":7}}"#);
+    insta::assert_snapshot!(run_json(&run(passing(), OutputState::Off)), @r#"{"schema":1,"outcome":"PASS","board":"RN-204","revision":"C","serial_number":"RN000123","quantities":[{"name":"trip","value":6.0004,"unit":"V","standard_uncertainty":0.0008,"coverage_factor":2.0,"expanded_uncertainty":0.0016,"min":5.88,"max":6.12,"decision":"pass","budget":[{"source":"last digit","standard_uncertainty":0.0008,"unit":"V","distribution":"normal","sensitivity":1.0,"contribution":0.0008,"share":1.0}]},{"name":"re_enable","value":6.4012,"unit":"V","standard_uncertainty":0.00105,"coverage_factor":2.0,"expanded_uncertainty":0.0021,"min":6.24,"max":6.56,"decision":"pass","budget":[{"source":"last digit","standard_uncertainty":0.00105,"unit":"V","distribution":"normal","sensitivity":1.0,"contribution":0.00105,"share":1.0}]},{"name":"hysteresis","value":0.4008,"unit":"V","standard_uncertainty":0.0013,"coverage_factor":2.0,"expanded_uncertainty":0.0026,"min":0.3,"max":0.5,"decision":"pass","budget":[{"source":"last digit","standard_uncertainty":0.0013,"unit":"V","distribution":"normal","sensitivity":1.0,"contribution":0.0013,"share":1.0}]},{"name":"on_current","value":0.10912,"unit":"A","standard_uncertainty":0.00006,"coverage_factor":2.0,"expanded_uncertainty":0.00012,"budget":[{"source":"last digit","standard_uncertainty":0.00006,"unit":"A","distribution":"normal","sensitivity":1.0,"contribution":0.00006,"share":1.0}]},{"name":"off_current","value":2.4e-6,"unit":"A","standard_uncertainty":1.55e-8,"coverage_factor":2.0,"expanded_uncertainty":3.1e-8,"at":5.8,"min":1e-6,"max":4e-6,"decision":"pass","budget":[{"source":"last digit","standard_uncertainty":1.55e-8,"unit":"A","distribution":"normal","sensitivity":1.0,"contribution":1.55e-8,"share":1.0}]}],"findings":[],"output":"off","run":"bench-1-20261019T142233Z-0001","station":"bench-1","attempt":1,"started":{"utc":"2026-10-19T14:22:33.25Z","local":"2026-10-19T16:22:33.25+02:00"},"ended":{"utc":"2026-10-19T14:22:51.5Z","local":"2026-10-19T16:22:51.5+02:00"},"simulated":{"condition":"good","seed":7}}"#);
 }
 
 #[test]
@@ -314,11 +314,34 @@ fn one_run_in_full() {
     instrument       serial number  firmware  port        calibration due  plays
     EBBMARK SIM-PSU  1              0.1       /dev/pts/3  2027-01-31       source, voltmeter
 
-    uncertainty of     comes from  standard uncertainty
-    trip voltage       last digit  800 µV
-    re-enable voltage  last digit  1.0 mV
-    hysteresis         last digit  1.3 mV
-    on current         last digit  60 µA
-    off current        last digit  15 nA
+    Budget of the trip voltage, 6.00040 V
+    influence   estimate  u(x)    distribution  nu   c  |c| u(x)  share
+    last digit  -         800 µV  normal        inf  1  800 µV    100.0 %
+    together                                    inf     800 µV    100.0 %
+    U = 1.6 mV with k = 2.
+
+    Budget of the re-enable voltage, 6.4012 V
+    influence   estimate  u(x)    distribution  nu   c  |c| u(x)  share
+    last digit  -         1.0 mV  normal        inf  1  1.0 mV    100.0 %
+    together                                    inf     1.0 mV    100.0 %
+    U = 2.1 mV with k = 2.
+
+    Budget of the hysteresis, 400.8 mV
+    influence   estimate  u(x)    distribution  nu   c  |c| u(x)  share
+    last digit  -         1.3 mV  normal        inf  1  1.3 mV    100.0 %
+    together                                    inf     1.3 mV    100.0 %
+    U = 2.6 mV with k = 2.
+
+    Budget of the on current, 109.120 mA
+    influence   estimate  u(x)   distribution  nu   c  |c| u(x)  share
+    last digit  -         60 µA  normal        inf  1  60 µA     100.0 %
+    together                                   inf     60 µA     100.0 %
+    U = 120 µA with k = 2.
+
+    Budget of the off current, 2.400 µA
+    influence   estimate  u(x)   distribution  nu   c  |c| u(x)  share
+    last digit  -         15 nA  normal        inf  1  15 nA     100.0 %
+    together                                   inf     15 nA     100.0 %
+    U = 31 nA with k = 2.
     "#);
 }

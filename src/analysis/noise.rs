@@ -1,0 +1,238 @@
+//! Noise at the detector: it moves the thresholds, it does not only blur them.
+//!
+//! The first crossing counts, so with noise a board trips before the voltage has come down to its threshold and comes back
+//! before it has risen to it, the sooner the longer each step lasts. Averaging repeats gives a tight and wrong answer.
+//! What a trace shows is a survival experiment: so long at this voltage without a change, then a change within that time.
+//! At z standard deviations from the threshold noise crosses it with the rate r Q(z), Q the upper tail of the normal
+//! distribution and r the number of independent values of the noise in a second; beyond the threshold the change comes at
+//! once. A delay is made behind the comparator as often as before it, and one of the two directions mostly has none; so noise
+//! faster than the shorter of the two longest delays is taken to be averaged out, and r is one in that time.
+//!
+//! With that likelihood, nothing known of the threshold beforehand, and of the noise only what detectors usually have,
+//! threshold and uncertainty are the mean and standard deviation of the posterior (JCGM 101:2008, 6.2). The level of the
+//! noise is common to both thresholds and moves them apart together; what is left is each threshold's own.
+//!
+//! One pass alone cannot tell a quiet detector from one with a millivolt of noise. Only where a board changes at a voltage at
+//! which it had stayed before is there evidence, and then the level is left wide open. So U holds for noise up to about a
+//! sixth of the step; with more of it the true thresholds lie outside U more often than stated.
+
+use crate::statistics::distribution::{Distribution, Normal};
+use crate::units::Volts;
+use std::time::Duration;
+
+/// What a trace shows of one threshold, in volts at the terminals along its direction: larger is farther.
+#[derive(Clone, Debug, Default)]
+pub(super) struct Evidence {
+    /// Independent values of the noise in a second.
+    pub(super) rate: f64,
+    /// Voltage, and the seconds it stood without a change.
+    pub(super) stays: Vec<(f64, f64)>,
+    /// Voltage of a change, and the seconds within which it came.
+    pub(super) changes: Vec<(f64, f64)>,
+}
+
+/// A threshold in the light of noise, along its direction.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct Located {
+    /// Posterior mean, in volts.
+    pub(super) along: f64,
+    /// Standard uncertainty of its own.
+    pub(super) own: f64,
+    /// Standard uncertainty from the level of the noise; more noise, farther out.
+    pub(super) level: f64,
+}
+
+/// The noise at the detector's input and where it leaves the thresholds.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Noise {
+    /// Posterior mean of its standard deviation, in volts.
+    pub(super) deviation: f64,
+    /// True where a contradiction in the trace shows that it matters.
+    pub(super) evident: bool,
+    /// The thresholds, in the order of the evidence.
+    pub(super) located: Vec<Located>,
+}
+
+/// Levels of noise, as shares of the voltage.
+const LEVELS: (f64, f64) = (2e-6, 1e-3);
+/// The level a detector usually has: some tens to hundreds of microvolts on a few volts (common practice).
+const USUAL: Usual = Usual { share: 8e-6, factor: 2.0, widened: 4.0 };
+/// Levels looked at between them.
+const LEVEL_COUNT: usize = 16;
+/// Places looked at for the threshold at each level.
+const PLACES: usize = 40;
+/// Noise beyond this many standard deviations is not counted with: once in a billion values.
+const REACH: f64 = 6.0;
+/// Rates of noise that make sense, per second.
+const RATES: (f64, f64) = (1.0, 1000.0);
+
+/// What is known of a level before anything is seen: about normal in its logarithm.
+struct Usual {
+    /// In the middle, as a share of the voltage.
+    share: f64,
+    /// One standard deviation, as a factor either way.
+    factor: f64,
+    /// The same where a contradiction has shown that there is noise that matters.
+    widened: f64,
+}
+
+impl Evidence {
+    /// No evidence yet, about a board whose detector follows nothing faster than `delay`.
+    pub(super) fn new(delay: Duration) -> Self {
+        let rate = (1.0 / delay.as_secs_f64()).clamp(RATES.0, RATES.1);
+        Self { rate, stays: Vec::new(), changes: Vec::new() }
+    }
+
+    /// Sorts the stays, farthest first, and adds up the times of equal voltages.
+    pub(super) fn sort(&mut self) {
+        self.stays.sort_by(|a, b| b.0.total_cmp(&a.0));
+        self.stays.dedup_by(|next, kept| {
+            let same = (kept.0 - next.0).abs() < SAME;
+            kept.1 += if same { next.1 } else { 0.0 };
+            same
+        });
+    }
+
+    /// True where a board changed at a voltage at which, or beyond which, it had stayed: nothing but noise does that.
+    fn is_contradictory(&self) -> bool {
+        let farthest = self.stays.first().map_or(f64::NEG_INFINITY, |(volts, _)| *volts);
+        self.changes.iter().any(|(volts, _)| *volts <= farthest + SAME)
+    }
+
+    /// Likelihood of a threshold at `along` with noise of `deviation`.
+    fn likelihood(&self, along: f64, deviation: f64) -> f64 {
+        let crossings = |volts: f64| {
+            let z = (along - volts) / deviation;
+            match z {
+                _ if z <= 0.0 => f64::INFINITY,
+                _ if z < REACH => self.rate * Normal.upper(z),
+                _ => 0.0,
+            }
+        };
+        let near = self.stays.iter().take_while(|(volts, _)| (along - volts) < REACH * deviation);
+        let hazard: f64 = near.map(|(volts, time)| crossings(*volts) * time).sum();
+        let changed = self.changes.iter().map(|(volts, time)| -(-crossings(*volts) * time).exp_m1());
+        (-hazard).exp() * changed.product::<f64>()
+    }
+
+    /// Likelihood of a level of noise, threshold anywhere; and mean and variance of the threshold under it.
+    fn under(&self, deviation: f64) -> Option<Under> {
+        let from = self.stays.first()?.0;
+        let nearest = self.changes.iter().map(|(volts, _)| *volts).fold(f64::INFINITY, f64::min).max(from);
+        let step = (nearest + REACH * deviation - from) / PLACES as f64;
+        let (mut weight, mut first, mut second) = (0.0, 0.0, 0.0);
+        for place in 0..PLACES {
+            let offset = (place as f64 + 0.5) * step;
+            let likelihood = self.likelihood(from + offset, deviation);
+            weight += likelihood;
+            first += likelihood * offset;
+            second += likelihood * offset * offset;
+        }
+        let mean = first / weight;
+        let variance = (second / weight - mean * mean).max(0.0);
+        Some(Under { weight: weight * step, mean: from + mean, variance })
+    }
+}
+
+/// Voltages closer than this are the same.
+const SAME: f64 = 1e-9;
+
+struct Under {
+    weight: f64,
+    mean: f64,
+    variance: f64,
+}
+
+impl Noise {
+    /// The noise of a board near `volts`, from what is seen of its thresholds. `None` where no level of noise explains
+    /// what is seen, or nothing is.
+    pub(super) fn find(evidence: &[&Evidence], volts: Volts) -> Option<Self> {
+        let (low, high) = (LEVELS.0 * volts.0.abs(), LEVELS.1 * volts.0.abs());
+        let level = |index: usize| low * (high / low).powf(index as f64 / (LEVEL_COUNT - 1) as f64);
+        let evident = evidence.iter().any(|evidence| evidence.is_contradictory());
+        let mut levels = Vec::with_capacity(LEVEL_COUNT);
+        for deviation in (0..LEVEL_COUNT).map(level) {
+            let under =
+                evidence.iter().map(|evidence| evidence.under(deviation)).collect::<Option<Vec<_>>>()?;
+            let likelihood: f64 = under.iter().map(|under| under.weight).product();
+            let factor = if evident { USUAL.widened } else { USUAL.factor };
+            let distance = (deviation / (USUAL.share * volts.0.abs())).ln() / factor.ln();
+            let weight = likelihood * (-distance * distance / 2.0).exp();
+            if weight > 0.0 {
+                levels.push((weight, deviation, under));
+            }
+        }
+        let all: f64 = levels.iter().map(|(weight, ..)| weight).sum();
+        if !(all > 0.0 && all.is_finite()) {
+            return None;
+        }
+        let mean = |of: &dyn Fn(f64, &[Under]) -> f64| {
+            levels.iter().map(|(weight, deviation, under)| weight * of(*deviation, under)).sum::<f64>() / all
+        };
+        let located = (0..evidence.len()).map(|index| {
+            let along = mean(&|_, under| under[index].mean);
+            Located {
+                along,
+                own: mean(&|_, under| under[index].variance).sqrt(),
+                level: mean(&|_, under| (under[index].mean - along).powi(2)).sqrt(),
+            }
+        });
+        let located = located.collect();
+        Some(Self { deviation: mean(&|deviation, _| deviation), evident, located })
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn steps(stays: &[(f64, f64)], changes: &[(f64, f64)]) -> Evidence {
+        let mut evidence = Evidence { stays: stays.to_vec(), changes: changes.to_vec(), rate: 100.0 };
+        evidence.sort();
+        evidence
+    }
+
+    /// Up in steps of 2 mV of 50 ms each, stayed at 6.000 V, came at 6.002 V, and held for a second at 6.000 V.
+    fn quiet() -> Evidence {
+        let ramp: Vec<(f64, f64)> = (0..20).map(|step| (6.0 - 0.002 * f64::from(step), 0.05)).collect();
+        steps(&[&ramp[..], &[(6.0, 1.0)]].concat(), &[(6.002, 0.05)])
+    }
+
+    #[test]
+    fn without_contradiction_the_threshold_lies_in_its_bracket_and_a_little_farther() {
+        let noise = Noise::find(&[&quiet()], Volts(6.0)).expect("explained");
+        let found = noise.located[0];
+        assert!(!noise.evident && noise.deviation < 150e-6, "{noise:?}");
+        assert!(found.along > 6.001 && found.along < 6.0014, "{found:?}");
+        // Half of 2 mV over the root of three.
+        assert!((found.own / 0.577e-3 - 1.0).abs() < 0.15, "{found:?}");
+    }
+
+    #[test]
+    fn a_change_where_the_board_had_stayed_is_noise_and_puts_the_threshold_beyond_both() {
+        let mut noisy = quiet();
+        noisy.changes.push((5.996, 0.05));
+        let noise = Noise::find(&[&noisy], Volts(6.0)).expect("explained");
+        assert!(noise.evident && noise.deviation > 1e-3, "{noise:?}");
+        assert!(noise.located[0].along > 6.003, "{noise:?}");
+        assert!(noise.located[0].level > 1e-3, "{noise:?}");
+    }
+
+    /// Against the survival law itself: ten thousand ramps with known noise, played by drawing an independent value of it
+    /// every hundredth of a second, against what the hazard of the likelihood says of the first crossing.
+    #[test]
+    fn the_hazard_is_that_of_independent_values_of_noise() {
+        use rand::{RngExt, SeedableRng};
+        let mut rng = rand_chacha::ChaCha8Rng::seed_from_u64(5);
+        let (deviation, stay) = (1e-3, 0.05);
+        let mut stayed = 0;
+        for _ in 0..10_000 {
+            let crossed = |_| rng.sample::<f64, _>(rand_distr::StandardNormal) * deviation > 0.002;
+            stayed += u32::from(!(0..5).any(crossed));
+        }
+        let evidence = steps(&[(6.0, stay)], &[]);
+        let expected = evidence.likelihood(6.002, deviation);
+        // Ten thousand draws: one standard deviation is 0.3 %.
+        assert!((f64::from(stayed) / 1e4 - expected).abs() < 0.012, "{stayed} against {expected}");
+    }
+}
