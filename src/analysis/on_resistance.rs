@@ -55,7 +55,7 @@ pub(super) fn on_resistance(course: &Course<'_>, trip: &Threshold) -> Option<Qua
 }
 
 /// Share of the current at a set-point above which it is whole.
-const WHOLE: f64 = 0.95;
+const WHOLE: f64 = 0.99;
 
 struct Reading {
     sense: f64,

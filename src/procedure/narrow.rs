@@ -133,7 +133,7 @@ impl Hunt<'_> {
         Ok(())
     }
 
-    /// True for a reading with the whole of the load's current. One with a part of it has caught a change.
+    /// True for a reading with the whole of the load's current. One with a part of it may have caught a change.
     fn is_whole(&self, sample: &Sample) -> bool {
         let Some(current) = sample.current.amps() else { return true };
         current >= sample.terminals() / self.load * WHOLE
@@ -237,9 +237,9 @@ impl Hunt<'_> {
     /// On or off, once the readings say so; `None` for a board that will not say.
     async fn decided(&mut self, first: Sample) -> Result<Option<bool>, Stop> {
         let mut sample = first;
-        for _ in 0..MOST_LOOKS {
+        for look in 0..MOST_LOOKS {
             match state(self.plan, &sample) {
-                SwitchState::On if self.is_whole(&sample) => return Ok(Some(true)),
+                SwitchState::On if look > 0 || self.is_whole(&sample) => return Ok(Some(true)),
                 SwitchState::Off => {
                     if !self.seen_off {
                         self.seen_off = true;
@@ -257,6 +257,6 @@ impl Hunt<'_> {
 /// Share of a cell by which a voltage may be off without a word.
 const NOTICEABLE: f64 = 0.1;
 /// Share of the load's current above which it is whole.
-const WHOLE: f64 = 0.95;
+const WHOLE: f64 = 0.99;
 /// Readings after which a board that is neither on nor off is given up.
 const MOST_LOOKS: usize = 4;
