@@ -2,6 +2,7 @@
 
 use super::board::State;
 use super::{BoardModel, Setup, Wiring};
+use crate::profile::{Profile, QuantityName};
 use crate::units::{Amps, Celsius, Ohms, Siemens, Volts};
 use std::time::Duration;
 
@@ -44,6 +45,38 @@ impl Truth {
             board: *board,
             wiring: Wiring { feed: None, stray: Siemens::ZERO, ..setup.wiring },
         }
+    }
+
+    /// The true value of a quantity as `profile` wants it measured, in the SI unit of its name; `None` where the profile
+    /// does not say what it depends on, and for the deep current.
+    pub fn value(&self, name: QuantityName, profile: &Profile) -> Option<f64> {
+        let off_at = || profile.limits.get(&QuantityName::OffCurrent)?.at;
+        Some(match name {
+            QuantityName::Trip => self.trip.0,
+            QuantityName::ReEnable => self.re_enable.0,
+            QuantityName::Hysteresis => self.hysteresis.0,
+            QuantityName::OnCurrent => self.on_current(self.trip).0,
+            QuantityName::OffCurrent => self.off_current(off_at()?).0,
+            QuantityName::OffConductance => {
+                let line = profile.off_line()?;
+                self.off_conductance(line.from, line.to).0
+            }
+            QuantityName::OffConstantCurrent => {
+                let line = profile.off_line()?;
+                self.off_constant_current(line.from, line.to).0
+            }
+            QuantityName::DetectDelay => self.detect_delay.as_secs_f64(),
+            QuantityName::ReleaseDelay => self.release_delay.as_secs_f64(),
+            QuantityName::DeepCurrent => return None,
+            QuantityName::ReboundMargin => {
+                (self.hysteresis - profile.pack.rebound?.rise(self.on_current(self.trip))).0
+            }
+            QuantityName::OnResistance => self.on_resistance().0,
+            QuantityName::StorageTime => {
+                let storage = profile.pack.storage?;
+                storage.remaining / (self.off_current(storage.at.or_else(off_at)?) + storage.self_discharge)
+            }
+        })
     }
 
     /// Current into the board at `at` across its terminals while the detector says off.

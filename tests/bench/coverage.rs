@@ -13,9 +13,9 @@ use ebbmark::bench::{VirtualBench, drive, run_ready};
 use ebbmark::procedure::{Plan, Procedure};
 use ebbmark::profile::{Profile, QuantityName};
 use ebbmark::sim::{Condition, Setup};
-use ebbmark::units::{Ohms, Volts};
+use ebbmark::units::{Ohms, Volts, prefixed};
 use ebbmark::verdict::judge;
-use figures::conclude;
+use figures::{conclude, quantile};
 use std::collections::BTreeMap;
 use std::error::Error;
 use std::process::ExitCode;
@@ -61,27 +61,28 @@ const VARIATIONS: [Variation; 7] = [
 ];
 
 /// What was seen of one quantity.
-#[derive(Clone, Copy, Debug, Default)]
+#[derive(Clone, Debug, Default)]
 struct Seen {
-    boards: u64,
     inside: u64,
     /// Sum of the errors, in U.
     errors: f64,
+    /// U of each board, in the unit of the quantity.
+    expanded: Vec<f64>,
 }
 
 impl Seen {
     fn add(&mut self, other: Self) {
-        self.boards += other.boards;
         self.inside += other.inside;
         self.errors += other.errors;
+        self.expanded.extend(other.expanded);
     }
 
-    fn covered(self) -> f64 {
-        self.inside as f64 / self.boards as f64
+    fn covered(&self) -> f64 {
+        self.inside as f64 / self.expanded.len() as f64
     }
 
-    fn bias(self) -> f64 {
-        self.errors / self.boards as f64
+    fn bias(&self) -> f64 {
+        self.errors / self.expanded.len() as f64
     }
 }
 
@@ -100,11 +101,12 @@ fn main() -> Result<ExitCode, Box<dyn Error>> {
         println!("{name}");
         for (quantity, seen) in &table {
             println!(
-                "  {:22} {:6.2} %  {:+.3} U  {:6} boards",
+                "  {:22} {:6.2} %  {:+.3} U  {:6} boards, U mostly {}",
                 quantity.title(),
                 seen.covered() * 100.0,
                 seen.bias(),
-                seen.boards
+                seen.expanded.len(),
+                prefixed(quantile(&seen.expanded, 0.5), quantity.unit())
             );
             (least, most) = (least.min(seen.covered()), most.max(seen.covered()));
             if matches!(quantity, QuantityName::Trip | QuantityName::ReEnable) {
@@ -132,7 +134,8 @@ fn study(
 ) -> Result<Table, Box<dyn Error>> {
     let cores = thread::available_parallelism()?.get() as u64;
     let share = |core: u64| {
-        let profile = Profile::read("river-node.toml", profile).unwrap_or_else(|problems| panic!("{problems}"));
+        let profile =
+            Profile::read("river-node.toml", profile).unwrap_or_else(|problems| panic!("{problems}"));
         let mut table = Table::new();
         for seed in (first + core..first + boards).step_by(cores as usize) {
             board(&profile, vary, seed, &mut table);
@@ -163,6 +166,10 @@ fn board(profile: &Profile, vary: fn(&mut Setup, &Profile), seed: u64, table: &m
         let Some(truth) = truth.value(name, profile) else { continue };
         let (error, expanded) = (judged.quantity.value - truth, judged.expanded_uncertainty());
         let inside = u64::from(error.abs() <= expanded);
-        table.entry(name).or_default().add(Seen { boards: 1, inside, errors: error / expanded });
+        table.entry(name).or_default().add(Seen {
+            inside,
+            errors: error / expanded,
+            expanded: vec![expanded],
+        });
     }
 }

@@ -53,31 +53,7 @@ impl Run {
 
     /// The true value of a quantity of this profile, where it is known.
     pub(crate) fn true_value(&self, name: QuantityName, profile: &Profile) -> Option<f64> {
-        let truth = &self.truth;
-        match name {
-            QuantityName::Trip => Some(truth.trip.0),
-            QuantityName::ReEnable => Some(truth.re_enable.0),
-            QuantityName::Hysteresis => Some(truth.hysteresis.0),
-            QuantityName::OnCurrent => Some(truth.on_current(truth.trip).0),
-            QuantityName::OffConductance => {
-                profile.off_line().map(|it| truth.off_conductance(it.from, it.to).0)
-            }
-            QuantityName::OffConstantCurrent => {
-                profile.off_line().map(|it| truth.off_constant_current(it.from, it.to).0)
-            }
-            QuantityName::OnResistance => Some(truth.on_resistance().0),
-            QuantityName::ReboundMargin => {
-                let rise = profile.pack.rebound?.rise(truth.on_current(truth.trip));
-                Some((truth.hysteresis - rise).0)
-            }
-            QuantityName::StorageTime => {
-                let storage = profile.pack.storage?;
-                let at = storage.at.or(profile.limits.get(&QuantityName::OffCurrent)?.at)?;
-                Some(storage.remaining / (truth.off_current(at) + storage.self_discharge))
-            }
-            QuantityName::OffCurrent => profile.limits.get(&name)?.at.map(|at| truth.off_current(at).0),
-            _ => None,
-        }
+        self.truth.value(name, profile)
     }
 
     /// What was measured, with its expanded uncertainty.
