@@ -40,6 +40,17 @@ pub(super) fn of_voltmeter(claims: &Claims, at: Volts) -> Vec<Contribution> {
     claims.sense.map(|claim| instrument.lines(&claim, at.0)).unwrap_or_default()
 }
 
+/// The lines of a voltage read by the voltmeter at the load.
+pub(super) fn of_load_voltmeter(claims: &Claims, at: Volts) -> Vec<Contribution> {
+    let instrument = Instrument {
+        name: "voltmeter at the load,",
+        unit: Unit::Volt,
+        gain: Cause::LoadVoltmeterGain,
+        offset: Cause::LoadVoltmeterOffset,
+    };
+    claims.load.map(|claim| instrument.lines(&claim, at.0)).unwrap_or_default()
+}
+
 /// The lines of a voltage known from the supply's set-point alone.
 pub(super) fn of_set_point(claims: &Claims, at: Volts) -> Vec<Contribution> {
     let instrument = Instrument {

@@ -16,6 +16,10 @@ pub enum Cause {
     VoltmeterOffset,
     /// Input resistance of the voltmeter at the terminals.
     VoltmeterInput,
+    /// Gain of the voltmeter at the load.
+    LoadVoltmeterGain,
+    /// Offset of the voltmeter at the load.
+    LoadVoltmeterOffset,
     /// Gain of the supply's set-point.
     SetPointGain,
     /// Offset of the supply's set-point.

@@ -160,9 +160,8 @@ fn common_errors(course: &Course<'_>, readings: &[Settled], line: &Line) -> Vec<
         ));
     }
     let input = |settled: &Settled| INPUT_RESISTANCE * course.voltmeter_current(settled.volts).0;
-    // As in the off current: taken whole, for the definitions do not state it.
     errors.push((
-        |error| Contribution::normal("voltmeter's input current", error.abs()),
+        |error| Contribution::rectangular("voltmeter's input current", error),
         readings.iter().map(input).collect(),
     ));
     errors.retain(|(_, errors)| errors.iter().any(|error| *error != 0.0));
@@ -232,7 +231,7 @@ mod tests {
         near(share(&fit.conductance, "ammeter's gain"), 5e-4 * 1e-6 / root3);
     }
 
-    /// 10 Mohm at the terminals: 0.1 uA/V of the reading, known to 1 %.
+    /// 10 Mohm at the terminals: 0.1 uA/V of the reading, known to within 1 %.
     #[test]
     fn the_voltmeters_own_path_is_taken_off_the_slope() {
         let mut trace = run(&VOLTS, 1e-9, |volts| 1.05e-6 + 1.1e-6 * volts);
@@ -240,7 +239,7 @@ mod tests {
         let fit = fit(&trace);
         assert!((fit.conductance.value - 1e-6).abs() < 1e-12);
         let input = share(&fit.conductance, "voltmeter's input current");
-        assert!((input - 1e-9).abs() < 1e-13, "{input}");
+        assert!((input - 1e-9 / 3.0_f64.sqrt()).abs() < 1e-13, "{input}");
     }
 
     #[test]

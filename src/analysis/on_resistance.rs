@@ -5,12 +5,13 @@
 //! how far they differ under load, for with the switch open the one at the load reads nearly nothing. Both must sit on
 //! the board's own pads; a clip between pad and voltmeter counts as the switch.
 
+use super::accuracy;
 use super::plateau::{Course, SAME_SET};
 use super::quantity::{Contribution, Quantity};
 use super::threshold::Threshold;
 use crate::profile::QuantityName;
 use crate::trace::{Sample, SwitchState};
-use crate::units::{Ohms, Volts};
+use crate::units::{Amps, Ohms, Unit, Volts};
 
 /// The resistance at the set-point next to `trip`; `None` without a voltmeter at the terminals and one at the load.
 pub(super) fn on_resistance(course: &Course<'_>, trip: &Threshold) -> Option<Quantity> {
@@ -38,19 +39,15 @@ pub(super) fn on_resistance(course: &Course<'_>, trip: &Threshold) -> Option<Qua
         parts.push(Contribution::scatter("scatter of the readings", scatter, count - 1.0));
     }
     let claims = &course.trace.claims;
-    let voltmeters = [
-        ("voltmeter at the terminals, on its whole voltage", &claims.sense, sense),
-        ("voltmeter at the load, on its whole voltage", &claims.load, load),
-    ];
-    for (source, claim, volts) in voltmeters {
-        parts.extend(
-            claim.map(|claim| Contribution::normal(source, claim.standard_uncertainty(volts) / amps)),
-        );
-    }
     let range = readings.first()?.range;
-    parts.extend(claims.current_accuracy(range, crate::units::Amps(amps)).map(|claim| {
-        Contribution::normal("ammeter", resistance.abs() * claim.standard_uncertainty(amps) / amps)
-    }));
+    // What a voltmeter errs on its whole voltage counts in the small difference.
+    let of_voltage = |lines: Vec<Contribution>, sensitivity: f64| {
+        lines.into_iter().map(move |line| line.times(sensitivity, Unit::Volt))
+    };
+    parts.extend(of_voltage(accuracy::of_voltmeter(claims, Volts(sense)), 1.0 / amps));
+    parts.extend(of_voltage(accuracy::of_load_voltmeter(claims, Volts(load)), -1.0 / amps));
+    let of_current = accuracy::of_current(claims, range, Amps(amps));
+    parts.extend(of_current.into_iter().map(|line| line.times(-resistance / amps, Unit::Ampere)));
     Some(Quantity::new(QuantityName::OnResistance, resistance, parts))
 }
 
@@ -84,7 +81,7 @@ struct Reading {
     sense: f64,
     load: f64,
     amps: f64,
-    range: Option<crate::units::Amps>,
+    range: Option<Amps>,
 }
 
 impl Reading {
@@ -122,7 +119,8 @@ mod tests {
         found.into_iter().find(|quantity| quantity.name == QuantityName::OnResistance)
     }
 
-    /// By hand: two meters of 0.0035 % + 50 uV at 6 V err by up to 0.26 mV, 0.15 mV standard; over 109 mA 1.38 mohm each.
+    /// By hand: two meters of 0.0035 % + 50 uV at 6 V err by up to 0.21 mV and 0.05 mV, 0.125 mV standard; over 109 mA
+    /// 1.14 mohm each.
     #[test]
     fn it_is_the_drop_over_the_current_and_both_voltmeters_count_whole() {
         let mut trace = trace();
@@ -130,7 +128,7 @@ mod tests {
         let claim = Accuracy { relative: 35e-6, absolute: 50e-6, resolution: 0.0 };
         (trace.claims.sense, trace.claims.load) = (Some(claim), Some(claim));
         let quantity = found(&trace).expect("two voltmeters");
-        let wanted = 2.0_f64.sqrt() * (260e-6 / 3.0_f64.sqrt()) / (6.0 / 55.0);
+        let wanted = 2.0_f64.sqrt() * (210e-6_f64.hypot(50e-6) / 3.0_f64.sqrt()) / (6.0 / 55.0);
         // The reading at 6.1 V counts as well and moves it by a two-hundredth at most.
         assert!((quantity.standard_uncertainty / wanted - 1.0).abs() < 5e-3, "{quantity:?}");
     }
