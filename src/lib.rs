@@ -13,6 +13,7 @@
 //! - [`verification`]: is the bench itself in order? rest, zeros, leads, reference boards (pure)
 //! - [`sim`]: a board's physics on a bench, in simulated time
 //! - [`statistics`]: published methods on plain numbers (pure)
+//! - [`study`]: what many cycles of few boards say about a design (pure)
 //! - [`record`]: what is kept of a run, and the append-only log that keeps it
 //! - [`report`]: what a run says, for people and for programs
 //! - [`cli`]: the commands
@@ -33,6 +34,7 @@ pub mod record;
 pub mod report;
 pub mod sim;
 pub mod statistics;
+pub mod study;
 pub mod trace;
 pub mod units;
 pub mod verdict;

@@ -9,6 +9,7 @@ mod action;
 mod approach;
 mod bench_work;
 mod confirm;
+mod cycle;
 mod deep;
 mod delay;
 mod descent;
@@ -32,6 +33,7 @@ mod walk;
 pub use ability::Ability;
 pub use action::{Action, Event};
 pub use bench_work::{BenchWork, Task};
+pub use cycle::{Steps, Sweep, Window, shortest_period};
 pub use fit::{Misfit, fits};
 pub use plan::Plan;
 pub use progress::{Progress, Stage};
@@ -57,6 +59,13 @@ impl Procedure {
     pub fn new(plan: Plan) -> Self {
         let desk = Rc::new(Desk::new(&plan));
         let script = Box::pin(script::run(Rc::clone(&desk), plan));
+        Self { desk, script, over: None }
+    }
+
+    /// One cycle of a study: through both thresholds as `sweep` says, and off. No set-point is above the start voltage.
+    pub fn cycle(plan: Plan, sweep: Sweep) -> Self {
+        let desk = Rc::new(Desk::new(&plan));
+        let script = Box::pin(cycle::run(Rc::clone(&desk), plan, sweep));
         Self { desk, script, over: None }
     }
 

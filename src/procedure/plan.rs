@@ -24,6 +24,8 @@ pub struct Plan {
     pub floor: Volts,
     /// The load behind the switch.
     pub load: Load,
+    /// Smallest step of the supply's voltage.
+    pub set_step: Volts,
     /// Step of the ramp over the whole range.
     pub survey_step: Volts,
     /// Step of the second ramp through the bracket of the first; `None` when the first is the only one.
@@ -92,6 +94,7 @@ impl Plan {
             start: supply.start,
             floor: supply.floor,
             load: profile.load,
+            set_step: ability.set_step,
             survey_step,
             fine_step,
             down,

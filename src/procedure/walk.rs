@@ -83,7 +83,7 @@ async fn walk(
 }
 
 /// Set-points in a row at which a board may be neither on nor off before it is given up: it will not rest.
-const MOST_UNDECIDED: u32 = 10;
+pub(super) const MOST_UNDECIDED: u32 = 10;
 
 /// The state in which the board rests at a set-point. A change counts when the next reading says so too; a board that
 /// says something else each time is in neither state.
