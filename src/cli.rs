@@ -2,6 +2,7 @@
 
 mod analyse;
 mod bench;
+mod characterise;
 mod demo;
 mod due;
 mod earlier;
@@ -48,6 +49,8 @@ enum Command {
     Demo(demo::Arguments),
     /// Test one board.
     Test(test::Arguments),
+    /// Cycle a few boards many times: thresholds, jitter, drift, temperature, delays, limits that follow.
+    Characterise(characterise::Arguments),
     /// Judge a trace (CSV) made elsewhere.
     Analyse(analyse::Arguments),
     /// Look at a bench: check its instruments, list what is known.
@@ -93,7 +96,10 @@ pub fn run<T: Into<std::ffi::OsString> + Clone>(arguments: impl IntoIterator<Ite
         }
     };
     start_diagnostics(cli.verbose);
-    let drives_a_supply = matches!(cli.command, Command::Demo(_) | Command::Test(_) | Command::Bench(_));
+    let drives_a_supply = matches!(
+        cli.command,
+        Command::Demo(_) | Command::Test(_) | Command::Characterise(_) | Command::Bench(_)
+    );
     match catch_unwind(AssertUnwindSafe(|| cli.command.run())) {
         Ok(Ok(exit)) => exit.into(),
         Ok(Err(failure)) => {
@@ -109,6 +115,7 @@ impl Command {
         match self {
             Command::Demo(arguments) => arguments.run(),
             Command::Test(arguments) => arguments.run(),
+            Command::Characterise(arguments) => arguments.run(),
             Command::Analyse(arguments) => arguments.run(),
             Command::Bench(arguments) => arguments.run(),
             Command::Sim(arguments) => arguments.run(),

@@ -15,7 +15,10 @@ pub use bench_entry::{BenchEntry, BenchFound, CheckFound, InstrumentFound};
 pub use identity::{
     BenchUsed, BoardUnderTest, Identity, Instrument, ProfileUsed, RunId, Simulated, Software, Subject,
 };
-pub use log::{Finished, Leftover, Log, LogError, LogFolder, Opened, Rescue, Runs, Torn, Unreadable};
+pub use log::{
+    Finished, KeptStudy, Leftover, Log, LogError, LogFolder, Opened, Rescue, Runs, Study, StudyHeading, Torn,
+    Unreadable,
+};
 pub use moment::Moment;
 pub use run::{Run, SCHEMA, TraceReference};
 pub use stamp::now;

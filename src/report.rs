@@ -16,6 +16,7 @@ mod next;
 mod paint;
 mod quantities;
 mod sheet;
+mod study;
 mod text;
 mod words;
 
@@ -30,4 +31,5 @@ pub use list::{Filter, list};
 pub use next::{OUTPUT_MAY_BE_ON, next_action};
 pub use paint::Paint;
 pub use sheet::Sheet;
+pub use study::{StudySheet, rate_text, study_csv, study_json, study_text};
 pub use text::text;

@@ -72,7 +72,7 @@ enum Basis {
 
 /// How limits are written.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, ValueEnum)]
-enum Layout {
+pub(super) enum Layout {
     /// For people.
     #[default]
     Text,

@@ -92,7 +92,21 @@ impl Simulation {
         arrangement: Arrangement,
         in_fixture: InFixture,
     ) -> Result<SimulatedBench, Failure> {
-        let mut setup = Setup::with(profile, &self.condition, simulated.seed);
+        self.start_setup(self.setup(profile, simulated), arrangement, in_fixture)
+    }
+
+    /// The board and bench drawn from the seed.
+    pub(super) fn setup(&self, profile: &Profile, simulated: &Simulated) -> Setup {
+        Setup::with(profile, &self.condition, simulated.seed)
+    }
+
+    /// Starts instruments around a board that was drawn before.
+    pub(super) fn start_setup(
+        &self,
+        mut setup: Setup,
+        arrangement: Arrangement,
+        in_fixture: InFixture,
+    ) -> Result<SimulatedBench, Failure> {
         setup.link_faults = setup.link_faults.into_iter().map(|fault| fault.at_speed(self.speed)).collect();
         let clock = Clock::faster(self.speed);
         let options = Options { arrangement, clock, in_fixture, ..Options::default() };

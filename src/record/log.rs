@@ -15,12 +15,14 @@ mod mark;
 mod read;
 mod recovery;
 mod rescue;
+mod studies;
 mod torn;
 
 pub use error::{LogError, Rescue};
 pub use folder::LogFolder;
 pub use read::{Runs, Unreadable};
 pub use recovery::Leftover;
+pub use studies::{KeptStudy, Study, StudyHeading};
 pub use torn::Torn;
 
 use super::{Identity, Moment, Run, RunId, SCHEMA, Software, Subject, TraceReference};

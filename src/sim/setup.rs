@@ -103,6 +103,14 @@ impl Setup {
         self
     }
 
+    /// The same board, drawn for a room, at another temperature.
+    #[must_use]
+    pub fn at(mut self, temperature: Celsius) -> Self {
+        self.board = self.board.at(temperature);
+        self.temperature = temperature;
+        self
+    }
+
     fn put_under(&mut self, conditions: &[Condition], profile: &Profile, draw: &Draw) {
         for condition in conditions {
             board_conditions::apply(*condition, self, profile, &mut draw.clone());

@@ -15,6 +15,28 @@ pub enum LogError {
         /// The name as given.
         station: String,
     },
+    /// The name of a study cannot be the name of a file.
+    #[error(
+        "study \"{name}\": wanted letters, digits, '-', '_' and '.', not beginning with '.', such as \"first-prototypes\""
+    )]
+    StudyName {
+        /// The name as given.
+        name: String,
+    },
+    /// A line of a study that is whole and not understood.
+    #[error(
+        "{path}:{line}: not a line of a study: {cause}; was it changed, or written by a newer version? \
+         give the study another --name to begin anew",
+        path = .path.display()
+    )]
+    StudyLine {
+        /// The file.
+        path: PathBuf,
+        /// The line, counted from 1.
+        line: usize,
+        /// What the reader said.
+        cause: serde_json::Error,
+    },
     /// Another program has the log open.
     #[error(
         "{path} is in use by {holder}: a second program on the same bench would disturb its measurement; \

@@ -50,7 +50,7 @@ pub(super) fn mend(folder: &LogFolder, now: &Moment) -> Result<Vec<Torn>, LogErr
 }
 
 /// Cuts off one torn line. Setting it aside comes first, so that a crash between the two repeats rather than loses it.
-fn mend_end(path: &Path, kept: &Path, now: &Moment) -> io::Result<Option<Torn>> {
+pub(super) fn mend_end(path: &Path, kept: &Path, now: &Moment) -> io::Result<Option<Torn>> {
     let mut file = match OpenOptions::new().read(true).write(true).open(path) {
         Ok(file) => file,
         Err(cause) if cause.kind() == ErrorKind::NotFound => return Ok(None),
