@@ -8,8 +8,10 @@ mod progress;
 use super::limits::Layout;
 use super::show::print;
 use super::simulated::Simulation;
+use super::station::Station;
 use super::test::{Keeping, arrangement};
 use super::{Exit, Failure, files};
+use crate::clock::Clock;
 use crate::instrument::bench_file::BenchFile;
 use crate::profile::Profile;
 use crate::record::{KeptStudy, LogFolder, StudyHeading, now};
@@ -127,10 +129,6 @@ impl Arguments {
     }
 
     fn ordered(&self) -> Result<Ordered<'_>, Failure> {
-        let profile = files::profile(&self.profile)?;
-        for serial_number in &self.serial_number {
-            self.keeping.board(&profile, serial_number)?;
-        }
         let bench = match arrangement(&self.bench) {
             Some(_) => None,
             None => {
@@ -143,6 +141,14 @@ impl Arguments {
             (None, Some(bench)) => bench.name.clone(),
             (None, None) => "simulated".to_owned(),
         };
+        if let Some(bench) = &bench {
+            // What an earlier run left on goes off before anybody is asked to put a board into the fixture.
+            drop(Station::open(bench, Clock::real(), &self.keeping.logs, &station)?);
+        }
+        let profile = files::profile(&self.profile)?;
+        for serial_number in &self.serial_number {
+            self.keeping.board(&profile, serial_number)?;
+        }
         let conditions = match &self.conditions {
             Some(path) => Conditions::read(&path.display().to_string(), &files::text(path)?, &profile)?,
             None => Conditions::as_ordered(&self.temperature, &self.load, &profile),

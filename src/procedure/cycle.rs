@@ -104,6 +104,8 @@ async fn measure(desk: &Desk, plan: &Plan, sweep: Sweep) -> Result<(), Stop> {
 fn expected(plan: &Plan, steps: &Steps) -> Duration {
     let count = (LEAD_IN + 2.0).max(plan.survey_step / steps.height + 2.0) as u32;
     (steps.time_of_one(plan, plan.down) + steps.time_of_one(plan, plan.up)) * count
+        + plan.down.hold
+        + plan.up.hold
         + (plan.settle + plan.read_time) * 8
 }
 
@@ -156,7 +158,7 @@ struct Leg<'s> {
 enum Reached {
     /// At this set-point.
     At(Volts),
-    /// At its first set-point, so that nothing was learned.
+    /// Before the ramp began, so that nothing was learned.
     AtOnce,
     /// Not at all.
     Never,
@@ -164,10 +166,16 @@ enum Reached {
 
 impl Leg<'_> {
     async fn walk(&self, desk: &Desk, plan: &Plan, from: Volts) -> Result<Reached, Stop> {
+        // A slow board that is beyond its threshold already would seem to have one here.
+        probe(desk, plan, from, self.pace).await?;
+        desk.wait(self.pace.hold).await?;
+        if state(plan, &desk.read().await?) == self.until {
+            return Ok(Reached::AtOnce);
+        }
         let height = if self.until == SwitchState::Off { -self.steps.height } else { self.steps.height };
         let mut due = desk.now();
         let mut undecided = 0;
-        for (index, volts) in set_points(from, self.to, height).enumerate() {
+        for volts in set_points(from, self.to, height) {
             let sample = match self.steps.period {
                 None => probe(desk, plan, volts, self.pace).await?,
                 Some(period) => {
@@ -178,7 +186,7 @@ impl Leg<'_> {
             match state(plan, &sample) {
                 // A change counts when the next reading says so too.
                 found if found == self.until && state(plan, &desk.read().await?) == self.until => {
-                    return Ok(if index == 0 { Reached::AtOnce } else { Reached::At(volts) });
+                    return Ok(Reached::At(volts));
                 }
                 SwitchState::Neither => undecided += 1,
                 _ => undecided = 0,

@@ -298,7 +298,8 @@ fn limits(plan: &Plan, measured: &[(Place, AtRest)], cells: &[Cell], question: Q
     limits
 }
 
-/// From the jitter of the only board, at the rate with the most of it; that of the hysteresis is of both thresholds.
+/// From the jitter of the only board, at the rate with the narrowest brackets, which show it best; that of the hysteresis
+/// is of both thresholds.
 fn over_cycles(only: &AtRest, cells: &[Cell], instrument: Option<f64>, wanted: Wanted) -> Option<Proposal> {
     let of = |quantity: QuantityName| {
         cells
@@ -309,8 +310,8 @@ fn over_cycles(only: &AtRest, cells: &[Cell], instrument: Option<f64>, wanted: W
                     && cell.temperature_c == only.temperature_c
                     && (cell.load_ohm - only.load_ohm).abs() < 1e-9 * only.load_ohm
             })
-            .filter_map(|cell| Some((jitter(&cell.threshold)?, cell.threshold.count)))
-            .max_by(|a, b| a.0.total_cmp(&b.0))
+            .min_by(|a, b| a.threshold.bracket_v.total_cmp(&b.threshold.bracket_v))
+            .and_then(|cell| Some((jitter(&cell.threshold)?, cell.threshold.count)))
     };
     let (jitter, count) = match only.quantity {
         QuantityName::Hysteresis => {

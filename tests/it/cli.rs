@@ -6,6 +6,7 @@ mod bad_traces;
 mod bench_check;
 mod bench_not_ready;
 mod bench_zero;
+mod characterise;
 mod decision;
 mod disk_full;
 mod fault_mid_run;

@@ -38,6 +38,7 @@ mod sim;
 #[cfg(unix)]
 mod simulated_bench;
 mod staircase;
+mod study;
 #[cfg(unix)]
 mod switching_off;
 mod virtual_run;

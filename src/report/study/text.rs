@@ -245,6 +245,8 @@ fn with_uncertainty(value: f64, uncertainty: f64, unit: Unit) -> String {
     let reference = if value.abs() >= uncertainty { value } else { uncertainty };
     let (_, spread, symbol) = with_decimals_of(reference, uncertainty, unit);
     let decimals = spread.split('.').nth(1).map_or(0, str::len);
-    let number = under_prefix_of(value, reference, unit);
-    format!("{number:.decimals$} ± {spread} {symbol}")
+    let number = format!("{:.decimals$}", under_prefix_of(value, reference, unit));
+    let is_nothing = !number.contains(|letter: char| ('1'..='9').contains(&letter));
+    let number = if is_nothing { number.trim_start_matches('-') } else { &number };
+    format!("{number} ± {spread} {symbol}")
 }

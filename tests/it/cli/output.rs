@@ -128,10 +128,11 @@ fn no_color_takes_the_colour_away_on_a_terminal() {
 #[test]
 fn the_help_of_every_command_has_an_example() {
     let folder = folder();
-    let commands: [&[&str]; 12] = [
+    let commands: [&[&str]; 13] = [
         &[],
         &["demo"],
         &["test"],
+        &["characterise"],
         &["analyse"],
         &["bench"],
         &["bench", "check"],
