@@ -27,11 +27,12 @@ pub(super) type AtTemperature = (f64, f64, f64);
 
 impl TemperatureCoefficient {
     /// Through two or more temperatures. The instrument's own error is the same at all of them and cancels in the slope,
-    /// so the uncertainties are those of the cycles alone; where the points scatter more than that, the scatter counts.
+    /// so the uncertainties are those of the cycles alone, taken together: a few cycles tell their scatter too poorly for
+    /// it to weigh one temperature against another. Where the points scatter more than that, their scatter counts.
     pub(super) fn of(points: &[AtTemperature]) -> Option<Self> {
-        let weighted =
-            points.iter().map(|&(x, y, uncertainty)| Point { x, y, weight: 1.0 / uncertainty.powi(2) });
-        let line = Line::fit(weighted)?;
+        let squares: f64 = points.iter().map(|(_, _, uncertainty)| uncertainty.powi(2)).sum();
+        let weight = points.len() as f64 / squares;
+        let line = Line::fit(points.iter().map(|&(x, y, _)| Point { x, y, weight }))?;
         let sigma = line.scatter.unwrap_or(1.0).max(1.0);
         let reference = line.at(REFERENCE);
         Some(Self {
