@@ -57,7 +57,7 @@ impl Boards {
         let number = u64::from(order.cycle) * 64 + order.rate as u64 * 8 + order.temperature as u64;
         let mut draw = ChaCha8Rng::seed_from_u64(setup.seed.wrapping_mul(0x9e37_79b9).wrapping_add(number));
         let deviation: f64 = draw.sample(StandardNormal);
-        setup.board.trip = setup.board.trip + self.jitter * deviation;
+        setup.board.trip += self.jitter * deviation;
         setup.seed = draw.random();
         let (ability, claims) = (setup.ability(), setup.claims());
         let mut bench = VirtualBench::new(&setup, ability).with_faults(faults);

@@ -123,7 +123,7 @@ impl At<'_, '_> {
             match fixture.cycle(*order, sweep, &mut bar) {
                 Ok(Ended::Kept(cycle)) => {
                     bar.ends(&cycle);
-                    kept.cycles.push(cycle);
+                    kept.cycles.push(*cycle);
                 }
                 Ok(Ended::Stopped(exit)) => {
                     bar.finish();
@@ -152,7 +152,7 @@ struct Fixture<'f, 'o, 'a> {
 /// What came of a cycle.
 enum Ended {
     /// It is on disk.
-    Kept(Cycle),
+    Kept(Box<Cycle>),
     /// It was cut short; nothing of it is kept. Why has been said.
     Stopped(Exit),
 }
@@ -194,7 +194,7 @@ impl Fixture<'_, '_, '_> {
         let Measured { temperature, load } = self.at.measured;
         let cycle = read(&trace, order, temperature, load, step, zero);
         self.study.keep(&cycle, &trace)?;
-        Ok(Ended::Kept(cycle))
+        Ok(Ended::Kept(Box::new(cycle)))
     }
 }
 
