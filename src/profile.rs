@@ -6,6 +6,7 @@
 //! revision = "C"
 //! title = "River-level logger"        # for people
 //! serial_number = "RN[0-9]{6}"        # regular expression, matched in full
+//! latched = false                     # optional: true where a board that tripped stays off until its supply has gone
 //!
 //! [supply]                            # how the supply is driven
 //! start = "7.60 V"                    # board certainly on
@@ -117,6 +118,8 @@ pub struct Profile {
     pub title: String,
     /// Pattern of serial numbers, anchored at both ends; [`Profile::matches`] applies it.
     pub serial_number: regex_lite::Regex,
+    /// Whether a board that has tripped must stay off until its supply has gone, however high the voltage.
+    pub latched: bool,
     /// How the supply is driven.
     pub supply: Supply,
     /// What the board drives during the test.

@@ -14,6 +14,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         revision: "C".into(),
         title: "test".into(),
         serial_number: regex_lite::Regex::new(".*").expect("a pattern"),
+        latched: false,
         supply: Supply {
             start: Volts(7.6),
             floor: Volts(5.2),

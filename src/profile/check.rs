@@ -119,6 +119,11 @@ fn ramp(draft: &Draft, root: &Table<'_, '_>) {
     if let Some(mode) = &draft.ramp.mode
         && mode.value == ModeWord::Search
     {
+        if draft.is_latched() {
+            let what = "a latched board trips once for every time its supply is gone, so it cannot be searched; wanted \"staircase\"";
+            root.problem(mode, what);
+            return;
+        }
         for name in [QuantityName::Trip, QuantityName::ReEnable] {
             if !draft.limits.get(&name).is_some_and(|limit| limit.min.is_some() && limit.max.is_some()) {
                 root.problem(

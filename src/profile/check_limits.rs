@@ -24,6 +24,7 @@ pub(super) fn check(draft: &Draft, root: &Table<'_, '_>) {
     off_current_is_measured_while_off(draft, root);
     on_current_can_flow(draft, root);
     delays_are_waited_for(draft, root);
+    what_latches_does_not_come_back(draft, root);
 }
 
 fn min(limit: &LimitDraft) -> &Option<At<f64>> {
@@ -126,6 +127,16 @@ fn delays_are_waited_for(draft: &Draft, root: &Table<'_, '_>) {
     }
 }
 
+fn what_latches_does_not_come_back(draft: &Draft, root: &Table<'_, '_>) {
+    let Some(latched) = draft.latched.as_ref().filter(|latched| latched.value) else { return };
+    for name in [ReEnable, Hysteresis, QuantityName::ReleaseDelay, QuantityName::ReboundMargin] {
+        if draft.limits.contains_key(&name) {
+            let key = name.key();
+            root.problem(latched, &format!("such a board has no {}; take limits.{key} out", name.title()));
+        }
+    }
+}
+
 #[cfg(test)]
 mod tests {
     use crate::profile::sample::problems;
@@ -205,6 +216,15 @@ mod tests {
     fn a_delay_that_may_pass_must_be_waited_for() {
         says!(problems(&[("[limits]", "[limits]\ndetect_delay = { max = \"6 ms\" }")]),
             @r#"p.toml:28:16: timing.detect_delay = "5 ms": shorter than limits.detect_delay.max = "6 ms"; wanted 6.000 ms or more, the slowest that may pass"#);
+    }
+
+    #[test]
+    fn a_latched_board_has_no_way_back_to_limit_and_is_not_searched() {
+        let board = ("board = \"RN-204\"", "latched = true\nboard = \"RN-204\"");
+        says!(problems(&[board]), @"");
+        let staircase = ("mode = \"search\"", "mode = \"staircase\"");
+        let gone = [board, staircase, ("re_enable   = ", "# "), ("hysteresis  = ", "# ")];
+        assert_eq!(problems(&gone), "");
     }
 
     #[test]

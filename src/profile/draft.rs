@@ -21,6 +21,7 @@ pub(super) struct Draft {
     pub(super) revision: Option<At<String>>,
     pub(super) title: Option<At<String>>,
     pub(super) serial_number: Option<Regex>,
+    pub(super) latched: Option<At<bool>>,
     pub(super) supply: SupplyDraft,
     pub(super) load: LoadDraft,
     pub(super) timing: TimingDraft,
@@ -85,6 +86,7 @@ impl Draft {
             revision: root.text("revision"),
             title: root.text("title"),
             serial_number: root.text("serial_number").and_then(|text| serial_number::pattern(&text, root)),
+            latched: root.optional_boolean("latched"),
             supply: root.table("supply").map(read_supply).unwrap_or_default(),
             load: root.table("load").map(read_load).unwrap_or_default(),
             timing: root.table("timing").map(read_timing).unwrap_or_default(),
@@ -111,6 +113,7 @@ impl Draft {
             revision: self.revision?.value,
             title: self.title?.value,
             serial_number: self.serial_number?,
+            latched: self.latched.is_some_and(|latched| latched.value),
             supply: Supply {
                 start: self.supply.start?.value,
                 floor: self.supply.floor?.value,
@@ -137,6 +140,11 @@ impl Draft {
             bench: self.bench,
             hash,
         })
+    }
+
+    /// True of a board that stays off once it has tripped.
+    pub(super) fn is_latched(&self) -> bool {
+        self.latched.as_ref().is_some_and(|latched| latched.value)
     }
 
     /// A limit on a voltage, as volts.
