@@ -20,6 +20,7 @@ mod finding;
 pub(crate) mod fixture;
 mod hysteresis;
 mod in_band;
+mod load_stopped;
 mod meter_fuse;
 mod noise;
 mod off_budget;
@@ -29,15 +30,19 @@ mod off_limits;
 mod off_noise;
 mod on_current;
 mod on_resistance;
+mod outside;
 mod plateau;
 mod quantity;
+pub(crate) mod ranking;
 mod rates;
 mod rebound;
 mod residuals;
+mod restless;
 mod settled;
 mod slow;
 mod stop;
 mod storage;
+mod stuck_on;
 mod switching_time;
 mod terminals;
 mod threshold;
@@ -102,7 +107,9 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(stop::stop_findings(&trace.ending));
     let diagnosis = diagnosis::diagnose(&course, &found);
     findings.extend(diagnosis.filter(|new| findings.iter().all(|old| old.code != new.code)));
-    findings.extend(diagnosis::bounces(&course, &found));
+    findings.extend(restless::bounces(&course, &found));
+    findings.extend(load_stopped::load_stopped(&course));
+    findings.extend(outside::outside(&quantities, profile));
     findings.extend(fuse);
     findings.extend(off_findings);
     findings.extend(paths);
@@ -124,7 +131,7 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
         // A run that was stopped before it came to the small ranges says nothing about them.
         findings.retain(|finding| finding.code != FindingCode::RangeNotAdequate);
     }
-    Analysis { quantities, findings }
+    Analysis { quantities, findings: ranking::rank(findings) }
 }
 
 /// Trip, re-enable, hysteresis and on current, as far as they were found.

@@ -5,7 +5,7 @@
 //! board was on, and above zero.
 
 use super::finding::{About, Finding, FindingCode};
-use super::plateau::{Course, SAME_SET};
+use super::plateau::{Course, SAME_SET, pulled_down};
 use super::quantity::{Contribution, Quantity};
 use crate::profile::QuantityName;
 use crate::trace::SwitchState;
@@ -35,12 +35,15 @@ impl Reading {
 
 /// The deep current, where the sweep got down to the deep floor, and what is to be said about it.
 pub(super) fn deep(course: &Course<'_>) -> (Option<Quantity>, Vec<Finding>) {
-    let Some(deep_floor) = course.profile.measure.deep_floor else { return (None, Vec::new()) };
-    let swept = swept(course);
-    let Some(lowest) = swept.iter().map(|reading| reading.volts).min_by(|a, b| a.0.total_cmp(&b.0)) else {
-        return (None, Vec::new());
+    let Some(deep_floor) = course.profile.measure.deep_floor else {
+        return (None, conducts(course, &pulled(course)).into_iter().collect());
     };
-    let mut findings: Vec<Finding> = conducts(course, &swept).into_iter().collect();
+    let swept = swept(course);
+    let mut findings: Vec<Finding> =
+        conducts(course, &swept).or_else(|| conducts(course, &pulled(course))).into_iter().collect();
+    let Some(lowest) = swept.iter().map(|reading| reading.volts).min_by(|a, b| a.0.total_cmp(&b.0)) else {
+        return (None, findings);
+    };
     if lowest > deep_floor * (1.0 + REACHED.1) + Volts(REACHED.0) {
         findings.push(Finding {
             code: FindingCode::DeepFloorNotReached,
@@ -63,16 +66,24 @@ fn swept(course: &Course<'_>) -> Vec<Reading> {
     let plateaus = course.plateaus.iter().filter(|plateau| {
         plateau.samples.start >= armed && plateau.set.0 > SAME_SET && plateau.set.0 < floor
     });
-    let reading = |index: usize| {
-        let sample = &course.trace.samples[index];
-        let volts = course.terminals(sample);
-        let amps = match sample.current.amps() {
-            Some(amps) => amps - course.voltmeter_current(volts),
-            None => sample.range?,
-        };
-        Some(Reading { set: sample.set, volts, amps, range: sample.range, state: course.states[index] })
+    plateaus.flat_map(|plateau| plateau.samples.clone()).filter_map(|at| reading(course, at)).collect()
+}
+
+/// Readings where a small range of the ammeter took the terminals of an open board down there, and it held on.
+fn pulled(course: &Course<'_>) -> Vec<Reading> {
+    let samples = course.in_scope().flat_map(|plateau| plateau.samples.clone());
+    let down = |at: &usize| pulled_down(&course.trace.samples[*at], &course.trace.claims, course.profile);
+    samples.filter(down).filter_map(|at| reading(course, at)).collect()
+}
+
+fn reading(course: &Course<'_>, index: usize) -> Option<Reading> {
+    let sample = &course.trace.samples[index];
+    let volts = course.terminals(sample);
+    let amps = match sample.current.amps() {
+        Some(amps) => amps - course.voltmeter_current(volts),
+        None => sample.range?,
     };
-    plateaus.flat_map(|plateau| plateau.samples.clone()).filter_map(reading).collect()
+    Some(Reading { set: sample.set, volts, amps, range: sample.range, state: course.states[index] })
 }
 
 /// The switch conducts again.

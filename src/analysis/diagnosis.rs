@@ -1,8 +1,10 @@
 //! What the course of the state says about the board: never on, never trips, never comes back, cannot rest.
 
-use super::edges::{Bounce, Direction, Edges};
+use super::edges::{Direction, Edges};
 use super::finding::{About, Finding, FindingCode};
 use super::plateau::{Course, Plateau, REACHED};
+use super::restless::chatter;
+use super::stuck_on::never_trips;
 use crate::trace::{Sample, Stop, SwitchState};
 use crate::units::{Amps, Ohms, Volts};
 
@@ -21,6 +23,9 @@ pub(super) fn diagnose(course: &Course<'_>, found: &Edges) -> Option<Finding> {
     }
     if !ever(Direction::Down) {
         return never_trips(course).or_else(|| neither(course));
+    }
+    if course.profile.latched {
+        return latched(course, found).or_else(|| neither(course));
     }
     if !ever(Direction::Up) {
         return never_re_enables(course, found).or_else(|| neither(course));
@@ -57,44 +62,6 @@ pub(super) fn current_limit(course: &Course<'_>) -> Option<Finding> {
             first.set, course.profile.supply.current_limit
         ),
     ))
-}
-
-fn chatter(course: &Course<'_>, found: &Edges) -> Finding {
-    let sets = || found.reversals.iter().map(|plateau| course.plateaus[*plateau].set);
-    let lowest = sets().fold(Volts(f64::INFINITY), Volts::min);
-    let highest = sets().fold(Volts(f64::NEG_INFINITY), Volts::max);
-    board(
-        FindingCode::Chatter,
-        format!(
-            "the board switched by itself {} times, at set-points from {lowest} to {highest}, so no threshold is stated. Look \
-             first at the resistance of source and leads against the hysteresis, then at the detector's hysteresis and \
-             delay parts.",
-            found.reversals.len()
-        ),
-    )
-}
-
-/// A change of state took several goes and then held: one finding for each threshold.
-pub(super) fn bounces(course: &Course<'_>, found: &Edges) -> Vec<Finding> {
-    [(Direction::Down, "trip"), (Direction::Up, "re-enable")]
-        .into_iter()
-        .filter_map(|(direction, edge)| {
-            let of = || found.bounces.iter().filter(move |bounce| bounce.direction == direction);
-            let worst: &Bounce = of().max_by_key(|bounce| bounce.changes)?;
-            let passes = found.edges.iter().filter(|seen| seen.direction == direction).count();
-            let set = course.plateaus[worst.plateau].set;
-            Some(board(
-                FindingCode::Chatter,
-                format!(
-                    "at the {edge} the switch did not change once: up to {} changes of state were seen before it rested, at a \
-                     set-point of {set}, and more than one in {} of {passes} passes. Look first at the delay capacitor, then at \
-                     current limit against the capacitors behind the switch.",
-                    worst.changes,
-                    of().count()
-                ),
-            ))
-        })
-        .collect()
 }
 
 fn never_on(course: &Course<'_>) -> Option<Finding> {
@@ -139,29 +106,41 @@ fn never_on(course: &Course<'_>) -> Option<Finding> {
     })
 }
 
-fn never_trips(course: &Course<'_>) -> Option<Finding> {
-    let floor = course.profile.supply.floor;
-    let lowest = lowest_on(course).filter(|plateau| plateau.set <= floor * (1.0 + REACHED))?;
-    let sample = last_sample(course, lowest);
-    let at = course.terminals(sample);
-    let current = sample.current.amps().map_or_else(|| "an overload".to_owned(), |amps| amps.to_string());
-    Some(board(
-        FindingCode::NeverTrips,
-        format!(
-            "the board is still on at {at}, the end of the ramp: {current} flows, the load alone draws {}. Look first for a \
-             shorted switch, then at its gate drive and the detector's part number.",
-            at / course.profile.load.resistance
-        ),
-    ))
-}
-
-fn never_re_enables(course: &Course<'_>, found: &Edges) -> Option<Finding> {
+/// The voltage at the start set-point at which a board that has tripped was still off.
+fn off_at_the_start(course: &Course<'_>, found: &Edges) -> Option<Volts> {
     let tripped = found.edges.iter().find(|edge| edge.direction == Direction::Down)?.plateau;
     let start = course.profile.supply.start;
     let off_again = course.plateaus[tripped..]
         .iter()
         .find(|plateau| plateau.settled == SwitchState::Off && plateau.set >= start * (1.0 - REACHED))?;
-    let at = course.terminals(last_sample(course, off_again));
+    Some(course.terminals(last_sample(course, off_again)))
+}
+
+/// A board that is to stay off once tripped: did it come back, or was it not tried?
+fn latched(course: &Course<'_>, found: &Edges) -> Option<Finding> {
+    if let Some(back) = found.edges.iter().find(|edge| edge.direction == Direction::Up) {
+        let at = course.terminals(&course.trace.samples[back.seen]);
+        return Some(board(
+            FindingCode::NotLatched,
+            format!(
+                "the board tripped and came back by {at}, where the profile wants it to stay off until its supply has gone. Look \
+                 first at the parts that hold the gate off."
+            ),
+        ));
+    }
+    off_at_the_start(course, found).is_none().then(|| {
+        bench(
+            FindingCode::LatchNotTried,
+            format!(
+                "the board tripped, but no reading at {} or above shows that it stays off.",
+                course.profile.supply.start
+            ),
+        )
+    })
+}
+
+fn never_re_enables(course: &Course<'_>, found: &Edges) -> Option<Finding> {
+    let at = off_at_the_start(course, found)?;
     Some(board(
         FindingCode::NeverReEnables,
         format!(
@@ -199,18 +178,11 @@ fn nothing(course: &Course<'_>) -> Option<Finding> {
     })
 }
 
-fn lowest_on<'c>(course: &'c Course<'_>) -> Option<&'c Plateau> {
-    course
-        .in_scope()
-        .filter(|plateau| plateau.settled == SwitchState::On)
-        .min_by(|a, b| a.set.0.total_cmp(&b.set.0))
-}
-
-fn last_sample<'t>(course: &Course<'t>, plateau: &Plateau) -> &'t Sample {
+pub(super) fn last_sample<'t>(course: &Course<'t>, plateau: &Plateau) -> &'t Sample {
     &course.trace.samples[plateau.samples.end - 1]
 }
 
-fn board(code: FindingCode, text: String) -> Finding {
+pub(super) fn board(code: FindingCode, text: String) -> Finding {
     Finding { code, about: About::Board, text }
 }
 
@@ -220,10 +192,8 @@ fn bench(code: FindingCode, text: String) -> Finding {
 
 #[cfg(test)]
 mod tests {
-    use super::super::analyse;
     use super::super::fixture::{off, on, profile, staircase};
     use super::*;
-    use crate::profile::QuantityName;
     use crate::trace::Trace;
 
     fn code(trace: &Trace) -> Option<FindingCode> {
@@ -251,6 +221,20 @@ mod tests {
     fn off_at_the_start_after_a_trip_never_re_enables() {
         assert_eq!(of(&[on(7.6), off(5.9), off(6.5), off(7.6)]), Some(FindingCode::NeverReEnables));
         assert_eq!(of(&[on(7.6), off(5.9), off(6.5)]), None);
+    }
+
+    #[test]
+    fn a_board_that_latches_is_off_at_the_start_and_nothing_is_said() {
+        let mut profile = profile();
+        profile.latched = true;
+        let told = |readings: &[(f64, f64)]| {
+            let trace = staircase(readings);
+            let course = Course::new(&trace, &profile);
+            diagnose(&course, &Edges::find(&course)).map(|finding| finding.code)
+        };
+        assert_eq!(told(&[on(7.6), off(5.9), off(6.5), off(7.6)]), None);
+        assert_eq!(told(&[on(7.6), off(5.9), off(6.5)]), Some(FindingCode::LatchNotTried));
+        assert_eq!(told(&[on(7.6), off(5.9), off(6.5), on(6.6)]), Some(FindingCode::NotLatched));
     }
 
     #[test]
@@ -289,20 +273,5 @@ mod tests {
     fn a_swing_of_more_than_half_the_hysteresis_is_the_source() {
         let found = |ohms| source_resistance(Ohms(ohms), Amps(0.1), Volts(0.4)).is_some();
         assert!(found(2.1) && !found(1.9));
-    }
-
-    #[test]
-    fn a_change_in_several_goes_is_named_with_count_and_place_and_its_threshold_still_stated() {
-        let ramp = [on(7.6), on(6.01), off(5.99), off(5.2), off(6.39)];
-        let bouncing = [on(6.41), off(6.41), on(6.41), off(6.41), on(6.41), on(6.41), on(6.41), on(6.41)];
-        let analysis = analyse(&staircase(&[&ramp[..], &bouncing].concat()), &profile());
-        let re_enable = analysis.quantities.iter().find(|quantity| quantity.name == QuantityName::ReEnable);
-        assert!((re_enable.expect("stated").value - 6.40).abs() < 1e-3);
-        let finding = analysis.findings.iter().find(|finding| finding.code == FindingCode::Chatter);
-        let text = &finding.expect("named").text;
-        assert!(
-            text.contains("re-enable") && text.contains("up to 5 changes") && text.contains("6.410 V"),
-            "{text}"
-        );
     }
 }

@@ -114,6 +114,7 @@ impl Edges {
         if let (Some(direction), Some(last)) = (walk.state, course.plateaus.last()) {
             walk.end_run(direction, course.plateaus.len(), last.ended);
         }
+        walk.keep_stays_of_the_drop_before_the_trip();
         walk.found
     }
 }
@@ -190,7 +191,8 @@ impl Walk<'_, '_> {
         let mut flips =
             Flips { count: 0, returns: 0, last_before: None, seen: None, direction: now, held: 0 };
         let mut left = false;
-        let mut any = false;
+        // A reading half way at once is no change when the next one shows the state of the set-point before.
+        let mut any = self.state.is_some();
         for sample in samples {
             let Some(direction) = Direction::from(self.course.states[sample]) else {
                 left |= any && self.course.is_between(sample);
@@ -224,6 +226,18 @@ impl Walk<'_, '_> {
     fn advance(&self, direction: Direction, index: usize) -> Option<f64> {
         let before = self.course.plateaus.get(index.checked_sub(1)?)?;
         Some(direction.along(self.course.plateaus[index].set) - direction.along(before.set))
+    }
+
+    /// With its load stopped a board draws nothing and its leads drop nothing. Only stays that were like the one before
+    /// the trip say what stood at the terminals there.
+    fn keep_stays_of_the_drop_before_the_trip(&mut self) {
+        let course = self.course;
+        let trip = self.found.edges.iter().rfind(|edge| edge.direction == Direction::Down);
+        let Some(before) = trip.and_then(|edge| edge.seen.checked_sub(1)) else { return };
+        let like = |stay: &Stay| {
+            course.stopped[course.plateaus[stay.plateau].samples.end - 1] == course.stopped[before]
+        };
+        self.found.stays.retain(|stay| stay.direction == Direction::Up || like(stay));
     }
 
     fn begin_run(&mut self, plateau: usize, at: Duration) {

@@ -33,6 +33,28 @@ pub enum FindingCode {
     NeverOn,
     /// The board does not come back on the way up.
     NeverReEnables,
+    /// The board stays on down to the floor, and off where the switch's gate has too little: nothing opens the switch.
+    DetectorStuckOn,
+    /// A board that must stay off once tripped came back.
+    NotLatched,
+    /// A board that must stay off once tripped was not brought back up to show it.
+    LatchNotTried,
+    /// The load stopped by itself while the switch was closed.
+    LoadStopped,
+    /// Trip and re-enable voltage are off by the same factor, farther than tolerances go.
+    WrongDetectorOption,
+    /// Trip voltage above its limit.
+    TripHigh,
+    /// Trip voltage below its limit.
+    TripLow,
+    /// Re-enable voltage above its limit.
+    ReEnableHigh,
+    /// Re-enable voltage below its limit.
+    ReEnableLow,
+    /// Hysteresis below its limit.
+    HysteresisNarrow,
+    /// Hysteresis above its limit.
+    HysteresisWide,
     /// The load is not connected.
     NoLoad,
     /// Too little to tell an open switch from a missing load.

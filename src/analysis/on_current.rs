@@ -14,7 +14,12 @@ use crate::profile::QuantityName;
 
 /// The current at `trip`, from the settled readings next to it.
 pub(super) fn on_current(course: &Course<'_>, trip: &Threshold) -> Option<Quantity> {
-    let settled = Settled::of(course, course.ranges(trip.stayed).last()?)?;
+    let samples = course.ranges(trip.stayed).last()?;
+    // What a board draws whose load has stopped is not its on current.
+    if course.stopped[samples.end - 1] {
+        return None;
+    }
+    let settled = Settled::of(course, samples)?;
     let half_way = settled.amps.0 * ((trip.value - settled.volts) / settled.volts) / 2.0;
     let mut lines = vec![Contribution::rectangular("distance to the trip", half_way)];
     if let Some(scatter) = settled.scatter() {

@@ -1,6 +1,6 @@
 //! A trace cut into plateaus: consecutive samples at one set-point, of which the last is the settled one.
 
-use crate::profile::Profile;
+use crate::profile::{Profile, QuantityName};
 use crate::trace::{Claims, Current, Sample, SwitchState, Trace};
 use crate::units::{Amps, Ohms, Volts};
 use std::ops::Range;
@@ -37,14 +37,18 @@ pub(super) struct Course<'t> {
     pub(super) trace: &'t Trace,
     pub(super) profile: &'t Profile,
     pub(super) states: Vec<SwitchState>,
+    /// Samples at which the switch is closed, as the load's voltage tells, and the load draws nothing.
+    pub(super) stopped: Vec<bool>,
     pub(super) plateaus: Vec<Plateau>,
 }
 
 impl<'t> Course<'t> {
     /// Cuts `trace` into plateaus.
     pub(super) fn new(trace: &'t Trace, profile: &'t Profile) -> Self {
-        let states: Vec<SwitchState> =
+        let drawn: Vec<SwitchState> =
             trace.samples.iter().map(|sample| state_of(sample, &trace.claims, profile)).collect();
+        let states = with_load(trace, &drawn, profile);
+        let stopped = drawn.iter().zip(&states).map(|(drawn, state)| drawn != state).collect();
         let supply = &profile.supply;
         // Before the board was armed at the start voltage, the pre-check may have stood as high as the floor.
         let (mut scope, armed) = (supply.floor * (1.0 + REACHED), supply.start * (1.0 - REACHED));
@@ -72,7 +76,7 @@ impl<'t> Course<'t> {
                 }
             }
         }
-        Self { trace, profile, states, plateaus }
+        Self { trace, profile, states, stopped, plateaus }
     }
 
     /// The settled sample of a plateau.
@@ -140,8 +144,30 @@ impl<'t> Course<'t> {
     }
 }
 
+/// The states that the current tells, and the load's voltage once the load has drawn its current.
+fn with_load(trace: &Trace, drawn: &[SwitchState], profile: &Profile) -> Vec<SwitchState> {
+    let mut has_drawn = false;
+    let state = |(sample, drawn): (&Sample, &SwitchState)| {
+        has_drawn |= *drawn == SwitchState::On && sample.set >= profile.supply.floor;
+        if has_drawn { drawn.with_load(sample.load, terminals(sample, &trace.claims)) } else { *drawn }
+    };
+    trace.samples.iter().zip(drawn).map(state).collect()
+}
+
+/// A small range of the ammeter drops so much that the terminals of an open board fall far below what it works at.
+/// What it does down there says nothing about its thresholds.
+pub(super) fn pulled_down(sample: &Sample, claims: &Claims, profile: &Profile) -> bool {
+    let lowest_trip = profile.limits.get(&QuantityName::Trip).and_then(|limit| limit.min).map(Volts);
+    sample.current.amps().is_none()
+        && sample.set < lowest_trip.unwrap_or(profile.supply.floor)
+        && terminals(sample, claims) < profile.supply.floor.min(sample.set) * IN_SCOPE
+}
+
 fn state_of(sample: &Sample, claims: &Claims, profile: &Profile) -> SwitchState {
     let (volts, load) = (terminals(sample, claims), profile.load.resistance);
+    if pulled_down(sample, claims, profile) {
+        return SwitchState::Neither;
+    }
     let Some(reading) = sample.current.amps() else {
         // An overload on a range too small to show an open switch with a leak says nothing about the load.
         let least = Current::Value(sample.range.unwrap_or(volts / load));

@@ -55,7 +55,8 @@ impl<'c, 't> Burst<'c, 't> {
         let sample = &course.trace.samples[closed];
         let volts = course.terminals(sample);
         let on = sample.current.amps()?.0 / volts.0;
-        (course.states[closed] == SwitchState::On && volts.0 > 0.0).then(|| Self {
+        let draws = course.states[closed] == SwitchState::On && !course.stopped[closed];
+        (draws && volts.0 > 0.0).then(|| Self {
             course,
             direction: edge.direction,
             before,

@@ -50,8 +50,13 @@ const LONGEST_ARRIVAL: f64 = 120.0;
 /// A voltage that falls more slowly than this will not arrive, in volts a second.
 const SLOWEST_FALL: f64 = 2e-3;
 
-/// The state of the switch at this reading.
+/// The state of the switch at this reading, on a board that has been on.
 pub(super) fn state(plan: &Plan, sample: &Sample) -> SwitchState {
+    drawn(plan, sample).with_load(sample.load, sample.terminals())
+}
+
+/// The state as the current alone tells it: a load must have drawn before its voltage says anything.
+fn drawn(plan: &Plan, sample: &Sample) -> SwitchState {
     SwitchState::of(sample.current, sample.terminals(), plan.load.resistance, plan.on_uncertainty)
 }
 
@@ -59,14 +64,14 @@ pub(super) fn state(plan: &Plan, sample: &Sample) -> SwitchState {
 pub(super) async fn arm_on(desk: &Desk, plan: &Plan) -> Result<Sample, Stop> {
     let mut sample = probe(desk, plan, plan.start, plan.up).await?;
     let patience = desk.now() + PATIENCE + plan.up.hold;
-    let armed = |sample: &Sample| state(plan, sample) == SwitchState::On && sample.limited != Some(true);
+    let armed = |sample: &Sample| drawn(plan, sample) == SwitchState::On && sample.limited != Some(true);
     while !armed(&sample) && desk.now() < patience {
         desk.wait(ARM_POLL).await?;
         sample = desk.read().await?;
     }
     let at = sample.terminals();
     let current = sample.current.amps().unwrap_or(plan.on_range);
-    match state(plan, &sample) {
+    match drawn(plan, &sample) {
         _ if sample.limited == Some(true) => Err(Stop::CurrentLimited { at, current }),
         SwitchState::On => Ok(sample),
         // The supply has cut its own output, as by its over-voltage protection: no board does that.

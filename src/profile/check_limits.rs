@@ -221,7 +221,11 @@ mod tests {
     #[test]
     fn a_latched_board_has_no_way_back_to_limit_and_is_not_searched() {
         let board = ("board = \"RN-204\"", "latched = true\nboard = \"RN-204\"");
-        says!(problems(&[board]), @"");
+        says!(problems(&[board]), @r#"
+        p.toml:8:11: latched = true: such a board has no re-enable voltage; take limits.re_enable out
+        p.toml:8:11: latched = true: such a board has no hysteresis; take limits.hysteresis out
+        p.toml:34:8: ramp.mode = "search": a latched board trips once for every time its supply is gone, so it cannot be searched; wanted "staircase"
+        "#);
         let staircase = ("mode = \"search\"", "mode = \"staircase\"");
         let gone = [board, staircase, ("re_enable   = ", "# "), ("hysteresis  = ", "# ")];
         assert_eq!(problems(&gone), "");

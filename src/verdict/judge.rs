@@ -33,7 +33,7 @@ pub fn judge(analysis: &Analysis, profile: &Profile, ending: &Ending) -> Verdict
         Outcome::Fail
     } else if ending.stop == Stop::Aborted {
         stopped(worst)
-    } else if let Some(worst) = worst.filter(|_| missing.is_empty() && !half_on(&findings)) {
+    } else if let Some(worst) = worst.filter(|_| missing.is_empty() && !half_seen(&findings)) {
         Outcome::from(worst)
     } else {
         Outcome::Invalid
@@ -63,9 +63,11 @@ fn readings_in_doubt(findings: &[Finding]) -> bool {
     })
 }
 
-/// True when the board rested in neither state somewhere: it may not pass on what it did elsewhere.
-fn half_on(findings: &[Finding]) -> bool {
-    findings.iter().any(|finding| finding.code == FindingCode::NeitherOnNorOff)
+/// True when the board rested in neither state somewhere, or did not get to show that it latches: it may not pass on
+/// what it did elsewhere.
+fn half_seen(findings: &[Finding]) -> bool {
+    let half = [FindingCode::NeitherOnNorOff, FindingCode::LatchNotTried];
+    findings.iter().any(|finding| half.contains(&finding.code))
 }
 
 /// True for what no board may do, limits or not.
@@ -76,6 +78,8 @@ fn fails_the_board(finding: &Finding) -> bool {
             FindingCode::NeverTrips
                 | FindingCode::NeverOn
                 | FindingCode::NeverReEnables
+                | FindingCode::DetectorStuckOn
+                | FindingCode::NotLatched
                 | FindingCode::Chatter
                 | FindingCode::ShortCircuit
                 | FindingCode::ConductsWhenDeep
@@ -214,6 +218,27 @@ mod tests {
             Analysis { quantities: Vec::new(), findings: with(About::Board, &[FindingCode::Chatter]) };
         assert_eq!(outcome(&analysis), Outcome::Fail);
         analysis.findings.extend(with(About::Bench, &[FindingCode::SourceResistance]));
+        assert_eq!(outcome(&analysis), Outcome::Invalid);
+    }
+
+    /// What is dropped beside its cause must not make the difference between a failed board and a passed one.
+    #[test]
+    fn a_cause_stops_a_pass_wherever_what_it_explains_would() {
+        for (cause, consequences, _) in crate::analysis::ranking::EXPLAINS {
+            let of = |code| {
+                let about = [About::Board, About::Bench];
+                about.map(|about| outcome(&Analysis { findings: with(about, &[code]), ..good() }))
+            };
+            for consequence in *consequences {
+                let passes = |code| of(code) == [Outcome::Pass, Outcome::Pass];
+                assert!(passes(*consequence) || !passes(*cause), "{cause:?} hides {consequence:?}");
+            }
+        }
+    }
+
+    #[test]
+    fn a_latch_that_was_not_tried_is_not_passed() {
+        let analysis = Analysis { findings: with(About::Bench, &[FindingCode::LatchNotTried]), ..good() };
         assert_eq!(outcome(&analysis), Outcome::Invalid);
     }
 

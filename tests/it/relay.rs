@@ -41,9 +41,11 @@ pub(crate) fn in_order(seed: u64) -> Setup {
 }
 
 /// The relay node's profile with `limits` instead of its own of the same name, or besides them; an empty text takes one
-/// away.
+/// away. `latched` among them is the profile's key of that name.
 pub(crate) fn profile(limits: &[(&str, &str)]) -> Profile {
     let (head, own) = PROFILE.split_once("[limits]\n").unwrap_or((PROFILE, ""));
+    let (keys, limits): (Vec<_>, Vec<_>) = limits.iter().partition(|(name, _)| *name == "latched");
+    let keys: String = keys.iter().map(|(name, value)| format!("{name} = {value}\n")).collect();
     let replaced = |line: &&str| limits.iter().any(|(name, _)| line.starts_with(name));
     let mut lines: Vec<String> = own.lines().filter(|line| !replaced(line)).map(str::to_owned).collect();
     let others = limits.iter().filter(|(_, limit)| !limit.is_empty());
@@ -51,6 +53,6 @@ pub(crate) fn profile(limits: &[(&str, &str)]) -> Profile {
     // A search needs both windows to look between.
     let searches = lines.iter().any(|line| line.starts_with("re_enable"));
     let head = if searches { head.to_owned() } else { head.replace("\"search\"", "\"staircase\"") };
-    let text = format!("{head}[limits]\n{}\n", lines.join("\n"));
+    let text = format!("{keys}{head}[limits]\n{}\n", lines.join("\n"));
     Profile::read("relay-node.toml", &text).unwrap_or_else(|problems| panic!("{problems}"))
 }

@@ -203,7 +203,9 @@ fn a_board_far_outside_its_limits_never_passes_whatever_the_noise() {
 
 #[test]
 fn pre_check_jumps_and_discharge_leave_no_finding() {
-    let profile = river::profile();
+    let mut profile = river::profile();
+    // The thresholds of these boards lie anywhere.
+    profile.limits.retain(|name, _| *name == QuantityName::OffCurrent);
     for seed in 0..100 {
         let mut model = Model::new(seed);
         model.off_amps = 2.5e-6;

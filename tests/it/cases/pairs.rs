@@ -21,7 +21,7 @@ pub(super) const PAIRS: &[Case] = &[
         INVALID,
         First("source_resistance"),
     ),
-    Case::new("P5", "trips high, flux film", &[FluxFilm, HighTrip], FAIL, Nothing),
+    Case::new("P5", "trips high, flux film", &[FluxFilm, HighTrip], FAIL, First("trip_high")),
     Case::new(
         "P6",
         "trips high, current limit low",

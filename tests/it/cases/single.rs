@@ -17,8 +17,8 @@ const RELEASE: &[(&str, &str)] = &[("release_delay", r#"{ min = "85 ms" }"#)];
 /// A limit on what flows below the trip.
 const DEEP: &[(&str, &str)] = &[("deep_current", r#"{ max = "1 mA" }"#)];
 
-/// No limits on the way back on.
-const ONE_WAY: &[(&str, &str)] = &[("re_enable", ""), ("hysteresis", "")];
+/// No limits on the way back on, because there is none.
+const ONE_WAY: &[(&str, &str)] = &[("latched", "true"), ("re_enable", ""), ("hysteresis", "")];
 
 pub(super) const CASES: &[Case] = &[
     Case::new("1", "good board", &[Good], PASS, Nothing),
@@ -88,11 +88,18 @@ pub(super) const CASES: &[Case] = &[
     Case::new("32b", "open sense lead, low", &[OpenSenseLow], INVALID, First("supply_disagrees")),
     Case::new("33a", "latched", &[Latched], FAIL, First("never_re_enables")),
     Case::new("33b", "latched, as its profile says", &[Latched], PASS, Nothing).limits(ONE_WAY),
-    Case::new("34", "trip at 3.06 V, release at 3.10 V", &[OverlappingThresholds], FAIL, Nothing).figures(
-        |setup| {
-            setup.board.trip = Volts(3.06);
-            setup.board.hysteresis = Volts(0.04);
-        },
-    ),
+    Case::new("33c", "comes back, though its profile says it latches", &[Good], FAIL, First("not_latched"))
+        .limits(ONE_WAY),
+    Case::new(
+        "34",
+        "trip at 3.06 V, release at 3.10 V",
+        &[OverlappingThresholds],
+        FAIL,
+        First("hysteresis_narrow"),
+    )
+    .figures(|setup| {
+        setup.board.trip = Volts(3.06);
+        setup.board.hysteresis = Volts(0.04);
+    }),
     Case::new("35", "voltmeter that no file states", &[UnstatedVoltmeter], PASS, Nothing),
 ];
