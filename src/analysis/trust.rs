@@ -45,12 +45,12 @@ pub(super) fn delays(course: &Course<'_>, searches: [(Direction, &Search); 2]) -
     findings
 }
 
-/// Noise worth a word, as a share of the start voltage: 1.5 mV on 7.6 V. A quiet detector is now and then taken for half of it.
-const NOISY: f64 = 2e-4;
+/// Noise worth a word, as a share of the start voltage: 0.4 mV on 7.6 V.
+const NOISY: f64 = 5e-5;
 
 /// Thresholds that noise moves from pass to pass hold for the pace of this run only.
 pub(super) fn noise(course: &Course<'_>, noise: &Noise) -> Option<Finding> {
-    if !noise.evident || noise.deviation < NOISY * course.profile.supply.start.0 {
+    if noise.at_least < NOISY * course.profile.supply.start.0 {
         return None;
     }
     let dwells = course.in_scope().map(|plateau| plateau.ended.saturating_sub(plateau.began));

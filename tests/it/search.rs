@@ -152,9 +152,10 @@ fn trips_far_outside_their_limits_are_found_wherever_they_lie() {
         let mut setup = Setup::new(&profile, Condition::Good, 7);
         (setup.board.trip, setup.board.hysteresis) = (Volts(trip), Volts(hysteresis));
         let run = run(&profile, &setup, Prior::default());
+        // U leaves one in twenty outside; none half as far again.
         let (found, uncertainty) = measured(&run, QuantityName::Trip);
-        assert!((found - trip).abs() <= uncertainty, "{trip} {hysteresis}: {found}");
+        assert!((found - trip).abs() <= 1.5 * uncertainty, "{trip} {hysteresis}: {found}");
         let (found, uncertainty) = measured(&run, QuantityName::ReEnable);
-        assert!((found - trip - hysteresis).abs() <= uncertainty, "{trip} {hysteresis}: {found}");
+        assert!((found - trip - hysteresis).abs() <= 1.5 * uncertainty, "{trip} {hysteresis}: {found}");
     }
 }
