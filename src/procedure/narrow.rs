@@ -110,6 +110,13 @@ impl Hunt<'_> {
         let was_on = self.search.is_on();
         let sample = self.approach(set_point).await?;
         let Some(on) = self.decided(sample).await? else { return Ok(false) };
+        if on == was_on && self.search.contradicts_again(set_point) {
+            // Once may be noise at a border. After that the board is slow, or a reading was wrong: that takes a wait to tell.
+            self.watch(set_point, sample).await?;
+            if self.search.is_on() != was_on {
+                return Ok(true);
+            }
+        }
         self.search.note(set_point, on);
         if was_on && !self.search.is_on() && self.search.trip_is_settled() && !self.been_below {
             self.look_below().await?;
@@ -130,6 +137,8 @@ impl Hunt<'_> {
         descend_to_floor(self.desk, self.plan, self.at).await?;
         measure_off_current(self.desk, self.plan).await?;
         self.at = self.plan.off_points.last().copied().unwrap_or(self.plan.floor);
+        // A last reading here: the ammeter's change of range is no time that the next set-point stood.
+        self.desk.read().await?;
         Ok(())
     }
 
@@ -170,18 +179,27 @@ impl Hunt<'_> {
         match self.decided(sample).await? {
             None => return Ok(false),
             Some(on) if on != was_on => self.search.note(set_point, on),
-            Some(_) => match self.wait(sample, was_on).await? {
-                Confirmed::Stands => self.search.stood(),
-                Confirmed::Moved { after } => {
-                    let slow = self.search.moved(set_point);
-                    self.look_longer(was_on, after);
-                    if slow {
-                        self.slow_down(was_on, after);
-                    }
+            Some(_) => {
+                self.watch(set_point, sample).await?;
+                if self.search.is_on() == was_on {
+                    self.search.stood();
                 }
-            },
+            }
         }
         Ok(true)
+    }
+
+    /// Looks whether the board changes at rest, and notes it if it does.
+    async fn watch(&mut self, set_point: usize, sample: Sample) -> Result<(), Stop> {
+        let was_on = self.search.is_on();
+        if let Confirmed::Moved { after } = self.wait(sample, was_on).await? {
+            let slow = self.search.moved(set_point);
+            self.look_longer(was_on, after);
+            if slow {
+                self.slow_down(was_on, after);
+            }
+        }
+        Ok(())
     }
 
     async fn wait(&self, sample: Sample, on: bool) -> Result<Confirmed, Stop> {

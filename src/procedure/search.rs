@@ -211,6 +211,17 @@ impl Search {
         })
     }
 
+    /// True for a set-point at which the board in its present state has been seen to change, when such a one has proved
+    /// false before.
+    pub(super) fn contradicts_again(&self, set_point: usize) -> bool {
+        let split = set_point + 1;
+        if self.on {
+            split <= self.trip.low() && self.trip.contradicted > 0
+        } else {
+            split >= self.re_enable.high() && self.re_enable.contradicted > 0
+        }
+    }
+
     /// The board is on, or off, at `set_point`.
     pub(super) fn note(&mut self, set_point: usize, on: bool) {
         let split = set_point + 1;

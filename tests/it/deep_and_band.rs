@@ -120,7 +120,8 @@ fn a_board_switched_on_inside_the_band_is_recorded_and_judged_only_when_asked() 
             let run = run_setup(&profile, &Setup::new(&profile, Condition::Good, seed));
             assert_safe(&run, &profile, &format!("seed {seed}"));
             assert_eq!((run.verdict.outcome, codes(&run)), (outcome, vec![code]), "seed {seed} {wanted:?}");
-            let text = &run.verdict.findings[0].text;
+            let found = run.verdict.findings.iter().find(|finding| finding.code == code);
+            let text = &found.expect("as just seen").text;
             assert!(text.contains("on 0 times of 3 and stayed off 3 times"), "{text}");
         }
     }
