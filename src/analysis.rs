@@ -6,6 +6,7 @@
 mod accuracy;
 mod allowance;
 mod cause;
+mod contact;
 mod contribution;
 mod deep;
 mod delay;
@@ -18,10 +19,14 @@ mod expected;
 mod finding;
 #[cfg(test)]
 pub(crate) mod fixture;
+mod hiccup;
+mod hum;
 mod hysteresis;
 mod in_band;
 mod load_stopped;
 mod meter_fuse;
+mod meter_range;
+mod meter_reversed;
 mod noise;
 mod off_budget;
 mod off_current;
@@ -40,10 +45,13 @@ mod residuals;
 mod restless;
 mod settled;
 mod slow;
+mod spoilt;
 mod stop;
 mod storage;
 mod stuck_on;
+mod supply_agrees;
 mod switching_time;
+mod temperature;
 mod terminals;
 mod threshold;
 mod trust;
@@ -83,13 +91,12 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     let off_fit = off_fit::off_fit(&course);
     let paths = off_fit.as_ref().map(|fit| off_budget::off_budget(fit, profile)).unwrap_or_default();
     let (off_current, off_findings) = off_current::off_current(&course, !paths.is_empty());
-    let fuse = meter_fuse::meter_fuse(&course);
-
     let restless = source_resistance(&course, &down, &up);
+    let spoilt = spoilt::spoilt(&course, restless.is_some());
 
     let mut quantities = Vec::new();
     // What a board seems to do that cannot rest on this source is not its own.
-    if restless.is_none() {
+    if restless.is_none() && !spoilt.thresholds() {
         quantities.extend(thresholds(&course, &down, &up));
     }
     let derived = derived::derived(&course, &found, &down, &quantities);
@@ -110,7 +117,6 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(restless::bounces(&course, &found));
     findings.extend(load_stopped::load_stopped(&course));
     findings.extend(outside::outside(&quantities, profile));
-    findings.extend(fuse);
     findings.extend(off_findings);
     findings.extend(paths);
     findings.extend(delay_findings);
@@ -127,6 +133,7 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(discharge::still_charged(trace));
     findings.extend(note);
     findings.extend(derived.remarks);
+    let mut findings = spoilt.explain(findings);
     if trace.ending.stop == Stop::Aborted {
         // A run that was stopped before it came to the small ranges says nothing about them.
         findings.retain(|finding| finding.code != FindingCode::RangeNotAdequate);

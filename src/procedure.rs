@@ -15,6 +15,7 @@ mod delay;
 mod descent;
 mod desk;
 mod fit;
+mod hum;
 mod in_band;
 mod narrow;
 mod off_current;

@@ -3,6 +3,7 @@
 //! The trace is the only thing the analysis sees, so the same trace gives the same answer whether it came from a
 //! bench a second ago, from a record of last year or from a CSV file.
 
+mod burst;
 pub mod csv;
 mod doubt;
 mod drift;
@@ -10,6 +11,7 @@ mod ending;
 mod switch_state;
 mod zero;
 
+pub use burst::Burst;
 pub use doubt::Doubt;
 pub use drift::{Drift, WHOLE_LINE_PERIODS};
 pub use ending::{BenchFault, Ending, FaultKind, OutputState, Stop};
@@ -57,6 +59,10 @@ pub struct Sample {
     /// True while the supply limits the current; `None` when the supply cannot tell.
     #[serde(rename = "limit", default, skip_serializing_if = "Option::is_none")]
     pub limited: Option<bool>,
+    /// True when the supply limited the current at any time since the reading before, however briefly; `None` when
+    /// nothing remembers that.
+    #[serde(rename = "was_limit", default, skip_serializing_if = "Option::is_none")]
+    pub was_limited: Option<bool>,
 }
 
 impl Sample {
@@ -133,6 +139,12 @@ pub struct Claims {
     /// Temperature of the room, where it is known; what it adds is in the claims already.
     #[serde(rename = "room_degc", default, skip_serializing_if = "Option::is_none")]
     pub room: Option<Celsius>,
+    /// Temperature at the board, where a thermometer in the fixture shows it.
+    #[serde(rename = "fixture_degc", default, skip_serializing_if = "Option::is_none")]
+    pub fixture: Option<Celsius>,
+    /// What short readings of the voltage at the board showed, where they were taken.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub burst: Option<Burst>,
     /// Why these claims may not hold.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub doubts: Vec<Doubt>,
@@ -227,6 +239,7 @@ mod tests {
             load: Some(Volts(5.9)),
             range: Some(Amps(0.1)),
             limited: Some(false),
+            was_limited: None,
         };
         let text = serde_json::to_string(&sample).expect("a sample is plain data");
         assert_eq!(

@@ -71,6 +71,16 @@ pub enum FindingCode {
     Reversed,
     /// Current flows out of the board.
     BackFeed,
+    /// The resistance between supply and board jumps: a contact that comes and goes.
+    Contact,
+    /// The ammeter's leads are swapped.
+    MeterReversed,
+    /// The supply puts out another voltage than it was set to, without current too.
+    SupplyDisagrees,
+    /// Hum of the mains on the voltage at the board.
+    Ripple,
+    /// The board or the room is not as warm as the profile wants for a test.
+    Temperature,
     /// Voltage on the board before the output was on.
     LiveBoard,
     /// Noise at the detector moves the thresholds from pass to pass.

@@ -20,6 +20,7 @@ pub(crate) fn staircase(readings: &[(f64, f64)]) -> Trace {
         load: None,
         range: None,
         limited: None,
+        was_limited: None,
     });
     Trace {
         samples: samples.collect(),

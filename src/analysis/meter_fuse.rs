@@ -3,7 +3,7 @@
 //! Two signs, each on a range smaller than the one that carried the load: readings of exactly zero where something must
 //! flow (the budget, the least the limit allows, the voltmeter's own input) and the last digit would show it; and
 //! terminals that fall away from the set-point while nothing flows, for behind an open fuse the board lives on its
-//! capacitors.
+//! capacitors. Where the fuse of every range is blown nothing reaches the board: zeros throughout, and no voltage.
 
 use super::finding::{About, Finding, FindingCode};
 use super::plateau::{Course, SAME_SET};
@@ -18,8 +18,14 @@ const STEPS: f64 = 3.0;
 /// Terminals this much below the set-point have fallen away, in volts and as a share of it.
 const FALLEN: (f64, f64) = (0.05, 0.02);
 
+/// Below this nothing is at the terminals.
+const NOTHING: Volts = Volts(0.1);
+
 /// The suspicion, where there is cause for it.
 pub(super) fn meter_fuse(course: &Course<'_>) -> Option<Finding> {
+    if let Some(finding) = nothing_passes(course) {
+        return Some(finding);
+    }
     let on = course.trace.samples.iter().zip(&course.states).filter(|(_, state)| **state == SwitchState::On);
     let carried = on.filter_map(|(sample, _)| sample.range).max_by(|a, b| a.0.total_cmp(&b.0))?;
     let mut ranges: Vec<Amps> = Vec::new();
@@ -29,6 +35,30 @@ pub(super) fn meter_fuse(course: &Course<'_>) -> Option<Finding> {
         }
     }
     ranges.into_iter().filter(|range| *range < carried).find_map(|range| on_range(course, range))
+}
+
+/// Every reading is exactly zero, and nothing arrives at the board whatever is set.
+fn nothing_passes(course: &Course<'_>) -> Option<Finding> {
+    let samples = &course.trace.samples;
+    let zero = |sample: &Sample| sample.current.amps() == Some(Amps::ZERO);
+    let supplied: Vec<&Sample> =
+        samples.iter().filter(|sample| sample.set >= course.profile.supply.floor).collect();
+    let dead = |sample: &&Sample| sample.sense.is_some_and(|at| at.abs() < NOTHING);
+    if supplied.len() < FEWEST || !samples.iter().all(zero) || !supplied.iter().all(dead) {
+        return None;
+    }
+    let highest = supplied.iter().max_by(|a, b| a.set.0.total_cmp(&b.set.0))?;
+    Some(Finding {
+        code: FindingCode::MeterFuse,
+        about: About::Bench,
+        text: format!(
+            "all {} readings of the current are exactly zero, without any noise, and only {} stands at the terminals with {} set: \
+             nothing passes the ammeter. Look first at its fuse, then at its jacks and leads; check it with a known resistor.",
+            samples.len(),
+            highest.terminals(),
+            highest.set
+        ),
+    })
 }
 
 fn on_range(course: &Course<'_>, range: Amps) -> Option<Finding> {
@@ -102,6 +132,18 @@ mod tests {
         let mut noisy = run(0.0, 1e-10);
         noisy.samples[3].current = Current::Value(Amps(1e-10));
         assert!(!suspected(&noisy, &profile()), "noise shows that the meter lives");
+    }
+
+    #[test]
+    fn zeros_throughout_and_no_voltage_at_the_board_are_a_blown_fuse() {
+        let mut trace = staircase(&[(0.3, 0.0), (1.0, 0.0), (7.6, 0.0), (7.6, 0.0), (7.6, 0.0), (7.6, 0.0)]);
+        assert!(!suspected(&trace, &profile()), "the voltage arrives");
+        for sample in &mut trace.samples {
+            sample.sense = Some(Volts(3e-5));
+        }
+        assert!(suspected(&trace, &profile()));
+        trace.samples[3].current = Current::Value(Amps(1e-6));
+        assert!(!suspected(&trace, &profile()), "noise shows that the meter lives");
     }
 
     #[test]

@@ -54,8 +54,9 @@ fn place(code: FindingCode) -> Place {
     match code {
         OutputMayBeOn => Place::Danger,
         BenchFault | Incomplete | Aborted | ShortCircuit | Reversed | LiveBoard => Place::Ended,
-        BackFeed | NoLoad | MeterFuse => Place::Path,
-        SupplyNotArrived | CurrentLimit | SourceResistance => Place::Source,
+        BackFeed | NoLoad | MeterFuse | MeterReversed => Place::Path,
+        SupplyDisagrees | Contact | SupplyNotArrived | CurrentLimit | SourceResistance | Ripple
+        | Temperature => Place::Source,
         NeverOn | NoCurrent | DetectorStuckOn | NeverTrips | NeverReEnables | NotLatched => Place::Switch,
         ConductsWhenDeep => Place::Deep,
         Chatter => Place::Restless,

@@ -24,7 +24,7 @@ impl Watch for () {
 pub async fn drive<B: Bench>(
     mut procedure: Procedure,
     bench: &mut B,
-    claims: Claims,
+    mut claims: Claims,
     watch: &mut impl Watch,
     abort: impl Future<Output = ()>,
 ) -> Trace {
@@ -53,6 +53,9 @@ pub async fn drive<B: Bench>(
         if let Event::Reading(sample) = &event {
             samples.push(*sample);
         }
+        if let Event::Burst(burst) = &event {
+            claims.burst = Some(*burst);
+        }
         watch.saw(bench.now(), procedure.progress(), &action, &event);
     }
 }
@@ -68,6 +71,6 @@ fn described(action: &Action) -> Option<String> {
         Action::OutputOn => Some("output on".to_owned()),
         Action::OutputOff => Some("output off".to_owned()),
         Action::Range(range) => Some(format!("ammeter range for {range}")),
-        Action::Read | Action::WaitUntil(_) | Action::Finish(_) => None,
+        Action::Read | Action::Burst | Action::WaitUntil(_) | Action::Finish(_) => None,
     }
 }

@@ -3,6 +3,7 @@
 //! It obeys and reports; what to do next, and what a reading means, is decided elsewhere. Instruments on different
 //! ports are asked together, the roles of one instrument one after the other.
 
+mod burst;
 mod check;
 mod connect;
 mod make_safe;
@@ -15,7 +16,7 @@ pub use make_safe::make_safe;
 
 use crate::bench::Bench;
 use crate::clock::Clock;
-use crate::instrument::definition::{Ammeter, Source, Timing};
+use crate::instrument::definition::{Ammeter, Source, Timing, Voltmeter};
 use crate::instrument::error::InstrumentError;
 use crate::instrument::port::{Answer, Instrument};
 use crate::instrument::scpi::Identity;
@@ -35,6 +36,8 @@ const TIMER_SLACK: Duration = Duration::from_millis(2);
 pub struct SerialBench {
     source: Playing<Source>,
     ammeter: Playing<Ammeter>,
+    /// The voltmeter at the board's terminals, where there is one.
+    voltmeter: Option<Playing<Voltmeter>>,
     /// Every instrument once, with what it is asked for at each reading.
     instruments: Vec<Asked>,
     clock: Clock,
@@ -77,6 +80,10 @@ impl Bench for SerialBench {
             Action::Range(current) => self.put_on_range_for(*current).await,
             Action::Read => match self.read().await {
                 Ok(sample) => return Event::Reading(sample),
+                Err(error) => Err(error),
+            },
+            Action::Burst => match self.burst().await {
+                Ok(burst) => return Event::Burst(burst),
                 Err(error) => Err(error),
             },
             Action::WaitUntil(until) => {

@@ -5,7 +5,7 @@ use crate::procedure::{Ability, Action, Event};
 use crate::sim::device::Kind;
 use crate::sim::link_faults::LinkFaults;
 use crate::sim::{Faults, Mishap, Setup, World};
-use crate::trace::{BenchFault, FaultKind, Sample};
+use crate::trace::{BenchFault, Burst, FaultKind, Sample};
 use crate::units::{Quantity, Volts};
 use std::pin::pin;
 use std::task::{Context, Poll, Waker};
@@ -16,6 +16,9 @@ const RESPONSE: Duration = Duration::from_millis(2);
 
 /// Time after which a missing reply is given up.
 const REPLY_TIMEOUT: Duration = Duration::from_secs(1);
+
+/// Short readings of a burst, how long each takes, and the pause between two: six periods of 50 Hz mains.
+const BURST: (u32, Duration, Duration) = (40, Duration::from_millis(1), Duration::from_millis(2));
 
 /// A simulated bench whose clock jumps.
 #[derive(Clone, Debug)]
@@ -94,6 +97,7 @@ impl VirtualBench {
     fn befalls(&mut self, action: &Action) -> Option<Mishap> {
         let (instrument, text) = match action {
             Action::Read => (Kind::Ammeter, "READ?"),
+            Action::Burst => (Kind::Voltmeter, "READ?"),
             Action::SetVolts(_) => (Kind::Supply, "VOLT "),
             Action::OutputOn | Action::OutputOff => (Kind::Supply, "OUTP "),
             Action::Range(_) => (Kind::Ammeter, "CURR:RANG "),
@@ -109,6 +113,7 @@ impl VirtualBench {
         match action {
             Action::WaitUntil(until) => *until,
             Action::Read => self.now() + self.integration,
+            Action::Burst => self.now() + (BURST.1 + BURST.2) * BURST.0,
             Action::Finish(_) => self.now(),
             _ => self.now() + RESPONSE,
         }
@@ -145,6 +150,7 @@ impl VirtualBench {
                 Ok(())
             }
             Action::Read => return Event::Reading(self.read(end)),
+            Action::Burst => return self.burst(),
             Action::WaitUntil(_) | Action::Finish(_) => Ok(()),
         };
         world.advance_to(end);
@@ -164,7 +170,21 @@ impl VirtualBench {
             load: self.ability.load_voltmeter.then(|| world.read_load(&mark)),
             range: Some(world.range()),
             limited: Some(world.limited()),
+            was_limited: Some(world.take_was_limited()),
         }
+    }
+
+    fn burst(&mut self) -> Event {
+        let (count, aperture, pause) = BURST;
+        let world = &mut self.world;
+        let mut readings = Vec::new();
+        for _ in 0..count {
+            let mark = world.mark();
+            world.advance_to(world.now() + aperture);
+            readings.push(world.read_sense(&mark));
+            world.advance_to(world.now() + pause);
+        }
+        Burst::of(aperture, &readings).map_or_else(|| self.fail(FaultKind::BadReply), Event::Burst)
     }
 
     fn fail(&mut self, kind: FaultKind) -> Event {

@@ -12,6 +12,7 @@ use crate::profile::Profile;
 use crate::record::{BenchUsed, BoardUnderTest, Finished, ProfileUsed, Run, Simulated, Subject, now};
 use crate::report::OUTPUT_MAY_BE_ON;
 use crate::trace::{OutputState, Stop};
+use crate::units::Celsius;
 use std::path::PathBuf;
 
 /// What is to be tested.
@@ -21,6 +22,8 @@ pub(super) struct Order<'o> {
     pub(super) simulated: Option<Simulated>,
     pub(super) board: BoardUnderTest,
     pub(super) operator: Option<String>,
+    /// Temperature at the board, where a thermometer in the fixture tells it.
+    pub(super) fixture: Option<Celsius>,
     /// A reference board shows whether the bench is in order, so it is measured whatever is overdue.
     pub(super) is_reference: bool,
 }
@@ -57,6 +60,7 @@ impl Order<'_> {
         let plan = Plan::new(self.profile, &station.bench.ability(maximum)).with_prior(prior);
         let mut claims = station.bench.claims(&self.profile.supply);
         claims.zero = state.zeros();
+        claims.fixture = self.fixture;
         claims.doubts = station.bench.doubts(now().date());
         let mut live = Live::new(self.profile.load.resistance);
         let procedure = Procedure::new(plan);

@@ -98,6 +98,7 @@ impl Arguments {
             simulated: None,
             board,
             operator: self.keeping.operator.clone(),
+            fixture: None,
             is_reference: false,
         }
         .carry_out(station)
@@ -131,7 +132,9 @@ pub(super) fn on_simulation(
     let station = Station::open(&bench, simulation.clock(), &keeping.logs, name)?;
     let operator = keeping.operator.clone();
     let simulated = Some(simulated);
-    Order { profile, profile_path, simulated, board, operator, is_reference: false }.carry_out(station)
+    let fixture = Some(instruments.world().with(|world| world.temperature()));
+    Order { profile, profile_path, simulated, board, operator, fixture, is_reference: false }
+        .carry_out(station)
 }
 
 impl Keeping {

@@ -15,7 +15,7 @@ mod validity;
 
 pub use builtin::{builtin, builtin_names};
 pub use command::Template;
-pub use meter::{Ammeter, Meter, Range, RangeCommands, Voltmeter};
+pub use meter::{Ammeter, Meter, Range, RangeCommands, ShortReadings, Voltmeter};
 pub(super) use read::read_roles;
 pub use serial::{DataBits, FlowControl, Parity, SerialSettings, StopBits, Terminator};
 pub use source::{LimitedQuery, Source, SourceCommands, Span};

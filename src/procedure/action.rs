@@ -1,6 +1,6 @@
 //! The vocabulary between a procedure and the bench that carries it out.
 
-use crate::trace::{BenchFault, Ending, Sample};
+use crate::trace::{BenchFault, Burst, Ending, Sample};
 use crate::units::{Amps, Volts};
 use std::time::Duration;
 
@@ -26,6 +26,9 @@ pub enum Action {
     Range(Amps),
     /// Read all roles together.
     Read,
+    /// Read the voltage at the board a number of times in quick succession, each over a short time. Only where
+    /// [`Ability::short_readings`](super::Ability::short_readings) says so.
+    Burst,
     /// Do nothing until this time since the start of the run.
     WaitUntil(Duration),
     /// The run is over.
@@ -41,6 +44,8 @@ pub enum Event {
     Done,
     /// The readings asked for.
     Reading(Sample),
+    /// What a burst showed.
+    Burst(Burst),
     /// It failed.
     Failed(BenchFault),
     /// The operator, or a signal, wants the run stopped.

@@ -217,6 +217,7 @@ mod tests {
         Ability {
             voltmeter: true,
             load_voltmeter: false,
+            short_readings: false,
             ranges: [1e-4, 1e-3, 1e-2, 1.0].map(Amps).to_vec(),
             range_settle: Duration::from_millis(20),
             max_voltage: Volts(32.0),
@@ -269,6 +270,7 @@ mod tests {
                     load: None,
                     range,
                     limited: Some(false),
+                    was_limited: None,
                 }),
                 _ => Event::Done,
             };

@@ -107,6 +107,14 @@ impl Desk {
         }
     }
 
+    /// Has the voltage at the board read in quick succession; what that shows goes into the trace.
+    pub(super) async fn burst(&self) -> Result<(), Stop> {
+        match self.perform(Action::Burst).await {
+            Event::Burst(_) => Ok(()),
+            other => Err(refusal(other)),
+        }
+    }
+
     async fn answer(&self) -> Event {
         poll_fn(|_| match self.event.take() {
             Some(event) => Poll::Ready(event),

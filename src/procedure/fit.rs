@@ -162,6 +162,7 @@ mod tests {
         Ability {
             voltmeter: true,
             load_voltmeter: false,
+            short_readings: false,
             ranges: vec![Amps(1e-4), Amps(1.0)],
             range_settle: Duration::from_millis(60),
             max_voltage: Volts(32.0),

@@ -44,6 +44,8 @@ pub struct Plan {
     pub arrival_tolerance: Volts,
     /// Whether arrival can be measured.
     pub voltmeter: bool,
+    /// Whether the voltage at the board can be read over times far shorter than a mains period.
+    pub short_readings: bool,
     /// Voltages at which the off current is read, lowest first, all below the lowest trip.
     pub off_points: Vec<Volts>,
     /// How far the off current may still move once it counts as settled.
@@ -104,6 +106,7 @@ impl Plan {
             range_settle: ability.range_settle,
             arrival_tolerance: ability.arrival_tolerance,
             voltmeter: ability.voltmeter,
+            short_readings: ability.short_readings,
             off_points: off_line::points(profile),
             off_drift: profile.off_drift().max(zero_uncertainty(ability, first_off)),
             rebound: rebound::trial(profile.pack.rebound).filter(|_| ability.voltmeter),

@@ -6,6 +6,7 @@ use super::deep::sweep_deep;
 use super::delay::measure_delays;
 use super::descent::descend_to_floor;
 use super::desk::Desk;
+use super::hum::listen_for_hum;
 use super::in_band::switch_on_in_band;
 use super::narrow::{Narrowed, narrow};
 use super::off_current::measure_off_current;
@@ -38,6 +39,7 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     enter(Stage::Arm);
     desk.order(Action::LimitCurrent(plan.current_limit)).await?;
     let armed = arm_on(desk, plan).await?;
+    listen_for_hum(desk, plan).await?;
 
     if let Some(search) = &plan.search {
         match narrow(desk, plan, search, armed).await? {

@@ -76,6 +76,7 @@ mod tests {
                 load: None,
                 range: None,
                 limited: None,
+                was_limited: None,
             };
             settling.take(&sample, Amps(current(t)));
             if settling.stands(&plan) {

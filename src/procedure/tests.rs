@@ -37,6 +37,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
     let ability = Ability {
         voltmeter: true,
         load_voltmeter: false,
+        short_readings: false,
         ranges: vec![Amps(1e-4), Amps(1e-3), Amps(1.0)],
         range_settle: Duration::from_millis(20),
         max_voltage: Volts(32.0),
@@ -82,6 +83,7 @@ fn event(answer: Answer, action: &Action, now: Duration, set: Volts) -> Event {
         load: None,
         range: None,
         limited: Some(false),
+        was_limited: None,
     };
     match (answer, action) {
         (Answer::Failed, _) => {

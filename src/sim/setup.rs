@@ -127,6 +127,7 @@ impl Setup {
         Ability {
             voltmeter: true,
             load_voltmeter: true,
+            short_readings: true,
             ranges: self.ammeter.ranges.iter().map(|range| Amps(range.meter.full_scale)).collect(),
             range_settle: self.ammeter.range_settle,
             max_voltage: supply.max_voltage,
@@ -159,6 +160,7 @@ impl Setup {
             current: self.ammeter.ranges.iter().map(line).collect(),
             lead_resistance: None,
             sense_resistance: self.voltmeter.input_resistance,
+            fixture: Some(self.temperature),
             times: Some(Times {
                 integration: self.ammeter.integration,
                 settle: self.supply.time_constant * SETTLE_CONSTANTS,

@@ -232,6 +232,7 @@ mod tests {
             load: None,
             range: None,
             limited: None,
+            was_limited: None,
         };
         let setting = |index| Setting { at: at(index) - Duration::from_millis(60), what: String::new() };
         Trace {

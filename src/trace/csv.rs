@@ -1,7 +1,8 @@
 //! A trace as CSV: what somebody else's instrument recorded, read in full with every problem at its place, and the
 //! same columns written for export.
 //!
-//! Columns: `time_s`, `set_v`, `sense_v`, `current_a`, and if wanted `load_v`, `range_a`, `limit`, in any order. An empty
+//! Columns: `time_s`, `set_v`, `sense_v`, `current_a`, and if wanted `load_v`, `range_a`, `limit`, `was_limit`, in any
+//! order. An empty
 //! cell of an optional reading means it was not taken; `overload` in `current_a` means the meter was above its range.
 
 mod problems;
@@ -25,11 +26,20 @@ enum Column {
     Load,
     Range,
     Limit,
+    WasLimit,
 }
 
 impl Column {
-    const ALL: [Self; 7] =
-        [Self::Time, Self::Set, Self::Sense, Self::Current, Self::Load, Self::Range, Self::Limit];
+    const ALL: [Self; 8] = [
+        Self::Time,
+        Self::Set,
+        Self::Sense,
+        Self::Current,
+        Self::Load,
+        Self::Range,
+        Self::Limit,
+        Self::WasLimit,
+    ];
 
     fn name(self) -> &'static str {
         match self {
@@ -40,6 +50,7 @@ impl Column {
             Self::Load => "load_v",
             Self::Range => "range_a",
             Self::Limit => "limit",
+            Self::WasLimit => "was_limit",
         }
     }
 
@@ -153,7 +164,8 @@ impl Row<'_> {
         let current = self.current();
         let load = self.reading(Column::Load);
         let range = self.reading(Column::Range);
-        let limited = self.limited();
+        let limited = self.flag(Column::Limit);
+        let was_limited = self.flag(Column::WasLimit);
         Some(Sample {
             at: at?,
             set: Volts(set?),
@@ -162,6 +174,7 @@ impl Row<'_> {
             load: load.ok()?.map(Volts),
             range: range.ok()?.map(Amps),
             limited: limited.ok()?,
+            was_limited: was_limited.ok()?,
         })
     }
 
@@ -187,12 +200,12 @@ impl Row<'_> {
         self.number(Column::Current).ok().map(|amps| Current::Value(Amps(amps)))
     }
 
-    fn limited(&mut self) -> Result<Option<bool>, Noted> {
-        match self.cell(Column::Limit) {
+    fn flag(&mut self, column: Column) -> Result<Option<bool>, Noted> {
+        match self.cell(column) {
             None | Some("") => Ok(None),
             Some("0") => Ok(Some(false)),
             Some("1") => Ok(Some(true)),
-            Some(_) => Err(self.flaw(Column::Limit, "0 or 1")),
+            Some(_) => Err(self.flaw(column, "0 or 1")),
         }
     }
 
@@ -234,15 +247,16 @@ pub fn write(trace: &Trace) -> String {
     for sample in &trace.samples {
         let optional = |value: Option<f64>| value.map_or_else(String::new, |value| value.to_string());
         let current = sample.current.amps().map_or_else(|| "overload".to_owned(), |amps| amps.0.to_string());
-        let limit = match sample.limited {
+        let flag = |flag: Option<bool>| match flag {
             None => "",
             Some(false) => "0",
             Some(true) => "1",
         };
+        let (limit, was_limit) = (flag(sample.limited), flag(sample.was_limited));
         // Writing to a text cannot fail.
         let _ = writeln!(
             text,
-            "{},{},{},{current},{},{},{limit}",
+            "{},{},{},{current},{},{},{limit},{was_limit}",
             seconds_text(sample.at),
             sample.set.0,
             optional(sample.sense.map(|volts| volts.0)),
@@ -333,9 +347,9 @@ mod tests {
         let number = -1e3..1e3_f64;
         let optional = || proptest::option::of(-1e3..1e3_f64);
         let current = proptest::option::weighted(0.9, -1.0..1.0_f64);
-        let flag = proptest::option::of(any::<bool>());
-        (0..1_000_000_000_000_u64, number, optional(), current, optional(), optional(), flag).prop_map(
-            |(nanos, set, sense, current, load, range, limited)| Sample {
+        let flag = || proptest::option::of(any::<bool>());
+        (0..1_000_000_000_000_u64, number, optional(), current, optional(), optional(), (flag(), flag()))
+            .prop_map(|(nanos, set, sense, current, load, range, (limited, was_limited))| Sample {
                 at: Duration::from_nanos(nanos),
                 set: Volts(set),
                 sense: sense.map(Volts),
@@ -343,8 +357,8 @@ mod tests {
                 load: load.map(Volts),
                 range: range.map(Amps),
                 limited,
-            },
-        )
+                was_limited,
+            })
     }
 
     proptest! {

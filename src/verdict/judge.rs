@@ -59,6 +59,11 @@ fn readings_in_doubt(findings: &[Finding]) -> bool {
                 | FindingCode::CurrentLimit
                 | FindingCode::SourceResistance
                 | FindingCode::MeterFuse
+                | FindingCode::Contact
+                | FindingCode::MeterReversed
+                | FindingCode::SupplyDisagrees
+                | FindingCode::Ripple
+                | FindingCode::Temperature
         )
     })
 }

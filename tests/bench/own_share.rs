@@ -269,6 +269,7 @@ fn described(action: &Action) -> &'static str {
         Action::Range(_) => "range",
         Action::Read => "read",
         Action::WaitUntil(_) => "wait",
+        Action::Burst => "burst",
         Action::Finish(_) => "finish",
     }
 }

@@ -44,6 +44,7 @@ fn source_lines(source: &Source) -> Vec<Line> {
     }
     lines.extend([(commands.output_on.clone(), None), (commands.ask_output.clone(), Some(1.0))]);
     lines.extend(commands.ask_limited.iter().map(|limited| (limited.query.clone(), None)));
+    lines.extend(commands.ask_limited.iter().filter_map(|limited| Some((limited.since.clone()?, None))));
     lines.extend([(commands.output_off.clone(), None), (commands.ask_output.clone(), Some(0.0))]);
     lines
 }
@@ -55,6 +56,8 @@ fn meter_lines<Q: Quantity>(meter: &Meter<Q>) -> Vec<Line> {
             lines.extend([(commands.set.with(range), None), (commands.ask.clone(), Some(range))]);
         }
     }
+    let short = meter.short.iter().flat_map(|short| [short.begin.clone(), short.end.clone()]);
+    lines.extend(short.map(|line| (line, None)));
     lines.push((meter.read.clone(), None));
     lines
 }

@@ -69,12 +69,14 @@ fn source_commands(source: &Source) -> Vec<String> {
         commands.ask_output.clone(),
     ]);
     all.extend(commands.ask_limited.iter().map(|limited| limited.query.clone()));
+    all.extend(commands.ask_limited.iter().filter_map(|limited| limited.since.clone()));
     all
 }
 
 fn meter_commands<Q: ebbmark::units::Quantity>(meter: &Meter<Q>) -> Vec<String> {
     let mut all = meter.setup.clone();
     all.push(meter.read.clone());
+    all.extend(meter.short.iter().flat_map(|short| [short.begin.clone(), short.end.clone()]));
     for range in meter.range.iter() {
         all.extend(meter.ranges.iter().map(|one| range.set.with(one.full_scale.si())));
         all.push(range.ask.clone());
@@ -140,6 +142,7 @@ fn its_replies_and_errors_are_read() {
         ("READ?", Number::Overload),
         ("OUTP?", Number::Value(0.0)),
         ("STAT:QUES:COND?", Number::Value(1.0)),
+        ("STAT:QUES?", Number::Value(1.0)),
     ] {
         assert_eq!(session.query_number(question), Ok(number), "{question}");
     }

@@ -143,7 +143,7 @@ impl Bench {
             }
             Action::Read => return self.read(),
             Action::WaitUntil(until) => self.advance(*until),
-            Action::Protect { .. } | Action::LimitCurrent(_) | Action::Finish(_) => {}
+            Action::Burst | Action::Protect { .. } | Action::LimitCurrent(_) | Action::Finish(_) => {}
         }
         self.pass(Duration::from_millis(1));
         Event::Done
@@ -165,6 +165,7 @@ impl Bench {
             load: self.load_voltmeter.then_some(Volts(if self.closed { volts } else { 0.0 })),
             range: Some(Amps(self.range)),
             limited: Some(false),
+            was_limited: None,
         };
         self.pass(READ / 2);
         self.samples.push(sample);
@@ -197,6 +198,7 @@ fn ability() -> Ability {
     Ability {
         voltmeter: true,
         load_voltmeter: false,
+        short_readings: false,
         ranges: RANGES.map(Amps).to_vec(),
         range_settle: Duration::from_millis(20),
         max_voltage: Volts(32.0),

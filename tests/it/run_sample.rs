@@ -99,6 +99,7 @@ pub(crate) fn trace() -> Trace {
         load: None,
         range: Some(Amps(0.5)),
         limited: Some(false),
+        was_limited: None,
     };
     Trace {
         samples: (0..6).map(sample).collect(),

@@ -74,6 +74,7 @@ impl Default for Device {
                 ("MEAS:CURR", "+1.250000E-01"),
                 ("MEAS:VOLT", "+5.960000E+00"),
                 ("STAT:QUES:COND", "0"),
+                ("STAT:QUES", "0"),
                 ("*STB", "0"),
             ]),
             errors: Vec::new(),

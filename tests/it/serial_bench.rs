@@ -144,6 +144,8 @@ fn an_overloaded_ammeter_is_a_reading_and_an_overloaded_voltmeter_a_fault() {
 fn the_current_limit_is_read_from_the_register() {
     assert_eq!(last_sample(&answering("STAT:QUES:COND?", "3"), &[Action::Read]).limited, Some(true));
     assert_eq!(last_sample(&answering("STAT:QUES:COND?", "2"), &[Action::Read]).limited, Some(false));
+    let since = last_sample(&answering("STAT:QUES?", "1"), &[Action::Read]);
+    assert_eq!((since.limited, since.was_limited), (Some(false), Some(true)), "it came and went");
 }
 
 #[test]

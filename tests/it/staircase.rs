@@ -84,6 +84,7 @@ impl Model {
             load: None,
             range: Some(Amps(range)),
             limited: Some(false),
+            was_limited: None,
         });
     }
 
@@ -265,6 +266,7 @@ fn any_sample() -> impl Strategy<Value = Sample> {
             load: range.map(Volts),
             range: range.map(Amps),
             limited: Some(limited),
+            was_limited: None,
         })
 }
 

@@ -142,6 +142,7 @@ type Ready<'b> = (&'b BenchInstrument, Arc<Instrument>, scpi::Identity);
 fn seated(ready: Vec<Ready<'_>>, clock: Clock) -> Result<SerialBench, ConnectError> {
     let source = playing(&ready, Role::Source, |definition| definition.source.clone())?;
     let ammeter = playing(&ready, Role::Ammeter, |definition| definition.ammeter.clone())?;
+    let voltmeter = playing(&ready, Role::Voltmeter, |definition| definition.voltmeter.clone()).ok();
     let instruments = ready
         .into_iter()
         .map(|(seat, instrument, identity)| Asked {
@@ -151,7 +152,16 @@ fn seated(ready: Vec<Ready<'_>>, clock: Clock) -> Result<SerialBench, ConnectErr
         })
         .collect();
     let range = ammeter.part.ranges.last().map(|range| range.full_scale);
-    Ok(SerialBench { source, ammeter, instruments, clock, set: Volts::ZERO, range, watched: Duration::ZERO })
+    Ok(SerialBench {
+        source,
+        ammeter,
+        voltmeter,
+        instruments,
+        clock,
+        set: Volts::ZERO,
+        range,
+        watched: Duration::ZERO,
+    })
 }
 
 fn playing<Part>(

@@ -33,6 +33,10 @@ enum What {
     Limited {
         mask: u32,
     },
+    /// The same for any time since it was last read.
+    WasLimited {
+        mask: u32,
+    },
 }
 
 /// The answers of one instrument, and when it was asked.
@@ -62,6 +66,8 @@ pub(super) fn readings(definition: &Definition, roles: &BTreeSet<Role>) -> Arc<[
         && let Some(limited) = &source.commands.ask_limited
     {
         readings.push(reading(What::Limited { mask: limited.mask }, &limited.query));
+        let since = limited.since.iter();
+        readings.extend(since.map(|since| reading(What::WasLimited { mask: limited.mask }, since)));
     }
     readings.into()
 }
@@ -111,6 +117,7 @@ impl SerialBench {
             load: None,
             range: self.range,
             limited: None,
+            was_limited: None,
         };
         for (what, number) in asked().flat_map(|answers| &answers.values) {
             match what {
@@ -122,6 +129,9 @@ impl SerialBench {
                 What::Load => sample.load = number.value().map(Volts),
                 What::Limited { mask } => {
                     sample.limited = number.value().map(|register| register as u32 & mask != 0);
+                }
+                What::WasLimited { mask } => {
+                    sample.was_limited = number.value().map(|register| register as u32 & mask != 0);
                 }
             }
         }

@@ -41,6 +41,7 @@ pub(super) fn measure(
         simulated: found.simulated.clone(),
         board,
         operator: place.operator.clone(),
+        fixture: None,
         is_reference: true,
     };
     let run = order.carry_out(station)?.run;

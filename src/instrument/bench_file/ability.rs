@@ -22,6 +22,7 @@ impl BenchFile {
         Ability {
             voltmeter: self.parts.voltmeter.is_some(),
             load_voltmeter: self.parts.load_voltmeter.is_some(),
+            short_readings: self.parts.voltmeter.as_ref().is_some_and(|meter| meter.short.is_some()),
             ranges: self.parts.ammeter.ranges.iter().map(|range| range.full_scale).collect(),
             range_settle: self
                 .parts

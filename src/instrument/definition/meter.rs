@@ -5,7 +5,7 @@ use super::command::{self, Template};
 use super::validity::{PerDegree, Validity};
 use crate::document::{At, Table};
 use crate::trace::{Accuracy, RangeAccuracy};
-use crate::units::{Amps, Ohms, Quantity, Volts};
+use crate::units::{Amps, Ohms, Quantity, Unit, Volts};
 use std::time::Duration;
 
 /// A meter that reads current.
@@ -27,9 +27,39 @@ pub struct Meter<Q> {
     pub read: String,
     /// Changes the range; `None` only for a meter of one range.
     pub range: Option<RangeCommands>,
+    /// How a voltmeter takes readings far shorter than a mains period; `None` when it cannot.
+    pub short: Option<ShortReadings>,
     /// When the claims of its ranges hold.
     pub valid: Validity,
 }
+
+/// Readings that average over so little that hum of the mains shows in them.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct ShortReadings {
+    /// Time over which one is averaged.
+    pub integration: Duration,
+    /// Makes readings short.
+    pub begin: String,
+    /// Makes them as long again as they are otherwise.
+    pub end: String,
+}
+
+impl ShortReadings {
+    fn read(mut table: Table<'_, '_>) -> Option<Self> {
+        let integration = table.duration("integration");
+        if let Some(time) = &integration
+            && (time.value.is_zero() || time.value > LONGEST_SHORT)
+        {
+            table.problem(time, "not short; wanted a fraction of a mains period, at most \"5 ms\"");
+        }
+        let begin = command::command(&mut table, "begin");
+        let end = command::command(&mut table, "end");
+        Some(Self { integration: integration?.value, begin: begin?, end: end? })
+    }
+}
+
+/// A quarter of a period of 50 Hz: nine tenths of a hum are left of it.
+const LONGEST_SHORT: Duration = Duration::from_millis(5);
 
 /// One range of a meter.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -67,10 +97,20 @@ impl<Q: Quantity> Meter<Q> {
         {
             table.problem_here("what a degree adds needs the temperatures it counts from; wanted a table \"valid\" with \"from\" and \"to\"".to_owned());
         }
+        let short =
+            if Q::UNIT == Unit::Volt { table.optional_table("short").map(ShortReadings::read) } else { None };
         let commands = table.table("commands");
         let several = ranges.as_ref().is_some_and(|ranges| ranges.len() > 1);
         let (read, range) = commands.and_then(|commands| read_commands(commands, several))?;
-        Some(Self { ranges: ranges?, integration: integration?.value, setup: setup?, read, range, valid })
+        Some(Self {
+            ranges: ranges?,
+            integration: integration?.value,
+            setup: setup?,
+            read,
+            range,
+            short: short.map_or(Some(None), |short| short.map(Some))?,
+            valid,
+        })
     }
 
     /// The smallest range that holds `value`, if any does.

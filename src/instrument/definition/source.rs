@@ -176,23 +176,35 @@ pub struct LimitedQuery {
     pub query: String,
     /// The current limit is active when any of these bits is set. Never zero.
     pub mask: u32,
+    /// Asks for the register that keeps the same bits from the moment they are set until it is read; `None` when the
+    /// supply has none.
+    pub since: Option<String>,
 }
 
 impl LimitedQuery {
     /// `Some(None)` when the supply cannot tell, `None` when a problem was noted.
     fn read(table: &mut Table<'_, '_>) -> Option<Option<Self>> {
-        if !table.has("ask_limited") && !table.has("limited_mask") {
+        let keys = ["ask_limited", "limited_mask", "ask_was_limited"];
+        if !keys.iter().any(|key| table.has(key)) {
             table.optional_text("ask_limited");
             table.optional_integer("limited_mask");
+            table.optional_text("ask_was_limited");
             return Some(None);
         }
         let query = command::question(table, "ask_limited");
+        let since = if table.has("ask_was_limited") {
+            Some(command::question(table, "ask_was_limited"))
+        } else {
+            table.optional_text("ask_was_limited");
+            None
+        };
         let mask = table.integer("limited_mask")?;
         let bits = u32::try_from(mask.value).ok().filter(|bits| (1..=0x7FFF).contains(bits));
         if bits.is_none() {
             table.problem(&mask, "wanted the bits of a status register, 1 to 32767");
         }
-        Some(Some(Self { query: query?, mask: bits? }))
+        let since = since.map_or(Some(None), |since| since.map(Some));
+        Some(Some(Self { query: query?, mask: bits?, since: since? }))
     }
 
     /// Whether the register read says that the current limit is active.

@@ -36,6 +36,7 @@ fn armed() -> Sample {
         load: None,
         range: None,
         limited: Some(false),
+        was_limited: None,
     }
 }
 

@@ -42,7 +42,7 @@ pub(super) const PAIRS: &[Case] = &[
         "shorted switch behind a blown fuse",
         &[BlownFuse, NeverTrips],
         INVALID,
-        First("blown_fuse"),
+        First("meter_fuse"),
     ),
     Case::new(
         "P10",

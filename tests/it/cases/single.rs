@@ -69,7 +69,7 @@ pub(super) const CASES: &[Case] = &[
         INVALID,
         First("range_not_adequate"),
     ),
-    Case::new("21", "blown fuse in the ammeter", &[BlownFuse], INVALID, First("blown_fuse")),
+    Case::new("21", "blown fuse in the ammeter", &[BlownFuse], INVALID, First("meter_fuse")),
     Case::new("22", "20 mV of hum", &[MainsRipple], INVALID, First("ripple")),
     Case::new("23a", "source of 0.6 Ω", &[Chatter], INVALID, First("source_resistance"))
         .figures(|setup| setup.wiring.lead_resistance = Ohms(0.5)),

@@ -122,10 +122,10 @@ impl Workplace {
     pub(super) fn test_under_way(&self, more: &[&str]) -> Running {
         let mut running = Running::start(self.folder(), &[&arguments(BOARD)[..], more].concat());
         running.until("the output is on", || self.bench.output());
-        self.bench.take_exchanges(Kind::Voltmeter);
+        self.bench.take_exchanges(Kind::Ammeter);
         let mut readings = 0;
         running.until("the board is read", || {
-            readings += self.bench.take_exchanges(Kind::Voltmeter).len();
+            readings += self.bench.take_exchanges(Kind::Ammeter).len();
             readings > 10
         });
         running

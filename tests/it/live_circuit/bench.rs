@@ -134,6 +134,7 @@ impl CircuitBench {
         Ability {
             voltmeter: true,
             load_voltmeter: true,
+            short_readings: false,
             ranges: ranges.map(Amps).to_vec(),
             range_settle: Duration::from_millis(5),
             max_voltage: Volts(32.0),
@@ -225,6 +226,7 @@ impl CircuitBench {
             load: Some(Volts(out)),
             range: Some(self.range),
             limited: Some(false),
+            was_limited: None,
         }
     }
 }
@@ -248,7 +250,7 @@ impl Bench for CircuitBench {
                 self.advance_to(*until);
                 return Event::Done;
             }
-            Action::Protect { .. } | Action::LimitCurrent(_) | Action::Finish(_) => {}
+            Action::Burst | Action::Protect { .. } | Action::LimitCurrent(_) | Action::Finish(_) => {}
         }
         self.drive_source();
         self.advance_to(self.now + SETTING);

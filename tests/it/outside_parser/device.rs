@@ -151,7 +151,10 @@ pub(super) const TREE: Node<'static, Supply> = Root![
     Leaf!(b"*ESE" => &Value { name: "*ESE", largest: 255.0 }),
     Branch![b"SYSTem"; Branch![b"ERRor"; Leaf!(default b"NEXT" => &NextError)]],
     Branch![b"OUTPut"; Leaf!(default b"STATe" => &Switch("OUTP"))],
-    Branch![b"STATus"; Branch![b"QUEStionable"; Leaf!(b"CONDition" => &Register(|_| 1))]],
+    Branch![b"STATus"; Branch![b"QUEStionable";
+        Leaf!(default b"EVENt" => &Register(|_| 1)),
+        Leaf!(b"CONDition" => &Register(|_| 1))
+    ]],
     Branch![b"MEASure";
         Branch![b"CURRent"; Leaf!(default b"DC" => &Reading(2.4e-6))],
         Branch![b"VOLTage"; Leaf!(default b"DC" => &Reading(5.96))]

@@ -1,0 +1,90 @@
+//! What on the bench spoilt the readings, and what else in the trace that explains.
+
+use super::finding::{Finding, FindingCode};
+use super::plateau::Course;
+use super::{contact, hiccup, hum, meter_fuse, meter_range, meter_reversed, supply_agrees, temperature};
+
+/// Faults of the bench that show in the readings, the most telling first.
+pub(super) struct Spoilt {
+    found: Vec<Finding>,
+}
+
+/// Looks for each of them. A board that is `restless` behind a high resistance switches again and again, and what that
+/// does to supply and voltage has its cause in the resistance.
+pub(super) fn spoilt(course: &Course<'_>, restless: bool) -> Spoilt {
+    let fuse = meter_fuse::meter_fuse(course);
+    // Behind an open fuse nothing agrees with the supply.
+    let disagrees = if fuse.is_none() { supply_agrees::supply_disagrees(course) } else { None };
+    let found = [
+        fuse,
+        meter_reversed::meter_reversed(course),
+        meter_range::stuck_range(course),
+        disagrees,
+        if restless { None } else { hiccup::hiccup(course) },
+        contact::contact(course, restless),
+        hum::ripple(course),
+        temperature::temperature(course),
+    ];
+    Spoilt { found: found.into_iter().flatten().collect() }
+}
+
+impl Spoilt {
+    /// True when no threshold of the board can be read from this trace.
+    pub(super) fn thresholds(&self) -> bool {
+        self.found.iter().any(|finding| {
+            matches!(
+                finding.code,
+                FindingCode::Contact | FindingCode::RangeNotAdequate | FindingCode::CurrentLimit
+            )
+        })
+    }
+
+    /// These findings first, then what else was found and is not explained by them.
+    pub(super) fn explain(self, others: Vec<Finding>) -> Vec<Finding> {
+        let explained = |other: &Finding| {
+            self.found
+                .iter()
+                .any(|found| found.code == other.code || explains(found.code).contains(&other.code))
+        };
+        let rest: Vec<Finding> = others.into_iter().filter(|other| !explained(other)).collect();
+        self.found.into_iter().chain(rest).collect()
+    }
+}
+
+/// What looks like something else, and is no more than what the bench did.
+fn explains(code: FindingCode) -> &'static [FindingCode] {
+    use FindingCode::{
+        BackFeed, Chatter, DwellShorterThanDelay, NeitherOnNorOff, NeverOn, NeverReEnables, NeverTrips,
+        NoCurrent, NoLoad, SourceResistance, SupplyNotArrived,
+    };
+    match code {
+        FindingCode::MeterFuse => &[SupplyNotArrived, NeverOn, NoLoad, NoCurrent],
+        FindingCode::MeterReversed => &[BackFeed, NeitherOnNorOff],
+        FindingCode::SupplyDisagrees => &[SupplyNotArrived, SourceResistance],
+        FindingCode::CurrentLimit => &[NeverOn, Chatter, NeitherOnNorOff, NoCurrent],
+        FindingCode::Contact => &[Chatter, NeitherOnNorOff, DwellShorterThanDelay, SourceResistance],
+        FindingCode::RangeNotAdequate => {
+            &[Chatter, NeitherOnNorOff, NeverOn, NeverTrips, NeverReEnables, DwellShorterThanDelay]
+        }
+        _ => &[],
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::finding::About;
+    use super::*;
+
+    fn finding(code: FindingCode) -> Finding {
+        Finding { code, about: About::Bench, text: "seen".to_owned() }
+    }
+
+    #[test]
+    fn a_fault_of_the_bench_comes_first_and_takes_its_effects_with_it() {
+        let spoilt = Spoilt { found: vec![finding(FindingCode::Contact)] };
+        assert!(spoilt.thresholds());
+        let others = [FindingCode::Chatter, FindingCode::OffCurrentHigh].map(finding).to_vec();
+        let codes: Vec<FindingCode> = spoilt.explain(others).iter().map(|finding| finding.code).collect();
+        assert_eq!(codes, [FindingCode::Contact, FindingCode::OffCurrentHigh]);
+    }
+}
