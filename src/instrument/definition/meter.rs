@@ -238,8 +238,8 @@ mod tests {
         d.toml:41:10: ammeter.range[1].burden = "-1 ohm": below zero
         "#);
         says!(problems("source-measure-unit", &[("[[voltmeter.range]]", "[voltmeter.rnge]")]), @r#"
-        d.toml:93:1: [voltmeter] has no key "range"; wanted at least one [[voltmeter.range]]
-        d.toml:97:12: unknown key "rnge" in [voltmeter]; did you mean "range"?
+        d.toml:94:1: [voltmeter] has no key "range"; wanted at least one [[voltmeter.range]]
+        d.toml:98:12: unknown key "rnge" in [voltmeter]; did you mean "range"?
         "#);
     }
 }
