@@ -7,5 +7,11 @@ use crate::trace::Stop;
 /// One burst of short readings of the voltage at the board, where the voltmeter can take them. The board is on, so that
 /// the hum is seen with the load's current.
 pub(super) async fn listen_for_hum(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
-    if plan.short_readings { desk.burst().await } else { Ok(()) }
+    if !plan.short_readings {
+        return Ok(());
+    }
+    desk.burst().await?;
+    // A last reading here: the burst is no time that the next set-point stood.
+    desk.read().await?;
+    Ok(())
 }

@@ -2,7 +2,7 @@
 //! instruments' errors are drawn from what their makers claim.
 //!
 //! Prints, for every quantity, the share of boards whose true value lies inside U, and the mean error in U. The first
-//! argument is the number of boards a condition; 10,000 without one.
+//! argument is the number of boards a condition, 10,000 without one; the second a profile, the river node without one.
 
 #![expect(clippy::print_stdout, reason = "a study prints its table")]
 
@@ -12,10 +12,12 @@ use ebbmark::analysis::analyse;
 use ebbmark::bench::{VirtualBench, drive, run_ready};
 use ebbmark::procedure::{Plan, Procedure};
 use ebbmark::profile::{Profile, QuantityName};
-use ebbmark::sim::{Condition, Setup};
+use ebbmark::sim::{Condition, Setup, Truth};
 use ebbmark::units::{Ohms, Volts, prefixed};
 use ebbmark::verdict::judge;
 use figures::{conclude, quantile};
+use rand::{RngExt, SeedableRng};
+use rand_chacha::ChaCha8Rng;
 use std::collections::BTreeMap;
 use std::error::Error;
 use std::process::ExitCode;
@@ -89,8 +91,10 @@ impl Seen {
 type Table = BTreeMap<QuantityName, Seen>;
 
 fn main() -> Result<ExitCode, Box<dyn Error>> {
-    let boards = std::env::args().filter_map(|argument| argument.parse().ok()).next().unwrap_or(BOARDS);
-    let path = concat!(env!("CARGO_MANIFEST_DIR"), "/profiles/river-node.toml");
+    let arguments: Vec<String> = std::env::args().skip(1).filter(|argument| argument != "--bench").collect();
+    let boards = arguments.first().map_or(Ok(BOARDS), |count| count.parse())?;
+    let river = concat!(env!("CARGO_MANIFEST_DIR"), "/profiles/river-node.toml").to_owned();
+    let path = arguments.get(1).unwrap_or(&river);
     let profile = std::fs::read_to_string(path)?;
     Profile::read(path, &profile)?;
     println!("{boards} boards a condition; share with the truth inside U of 95 %, and mean error in U\n");
@@ -163,7 +167,12 @@ fn board(profile: &Profile, vary: fn(&mut Setup, &Profile), seed: u64, table: &m
     let truth = bench.world().truth();
     for judged in judge(&analyse(&trace, profile), profile, &trace.ending).judged {
         let name = judged.quantity.name;
-        let Some(truth) = truth.value(name, profile) else { continue };
+        let truth = if name == QuantityName::StorageTime {
+            stored(&truth, profile, seed)
+        } else {
+            truth.value(name, profile)
+        };
+        let Some(truth) = truth else { continue };
         let (error, expanded) = (judged.quantity.value - truth, judged.expanded_uncertainty());
         let inside = u64::from(error.abs() <= expanded);
         table.entry(name).or_default().add(Seen {
@@ -172,4 +181,17 @@ fn board(profile: &Profile, vary: fn(&mut Setup, &Profile), seed: u64, table: &m
             expanded: vec![expanded],
         });
     }
+}
+
+/// How long the battery of this board truly lasts: what it holds and loses by itself is anywhere within the tolerance that
+/// the profile states.
+fn stored(truth: &Truth, profile: &Profile, seed: u64) -> Option<f64> {
+    let mut battery = ChaCha8Rng::seed_from_u64(seed);
+    let mut battery_of =
+        |stated: f64, tolerance: f64| stated * (1.0 + tolerance * battery.random_range(-1.0..=1.0));
+    let storage = profile.pack.storage?;
+    let at = storage.at.or(profile.limits.get(&QuantityName::OffCurrent)?.at)?;
+    let remaining = battery_of(storage.remaining.0, storage.tolerance);
+    let self_discharge = battery_of(storage.self_discharge.0, storage.tolerance);
+    Some(remaining / (truth.off_current(at).0 + self_discharge))
 }

@@ -82,8 +82,8 @@ fn thresholds_are_the_same_with_and_without_the_steps_across_them() {
         let (without, with) = (run_setup(&plain, &setup), run_setup(&asked, &setup));
         for name in [QuantityName::Trip, QuantityName::ReEnable, QuantityName::OffCurrent] {
             let (a, b) = (without.measured(name).expect("found"), with.measured(name).expect("found"));
-            // The steps are evidence of the noise at the detector too, and move what is allowed for it.
-            assert!((a.0 - b.0).abs() <= 0.4 * a.1, "seed {seed}: {name:?} {a:?} and {b:?}");
+            // Two runs of one board, and the steps are evidence of the noise at the detector too.
+            assert!((a.0 - b.0).abs() <= a.1.hypot(b.1), "seed {seed}: {name:?} {a:?} and {b:?}");
             assert!((a.1 / b.1 - 1.0).abs() < 0.5, "seed {seed}: {name:?} {a:?} and {b:?}");
         }
     }
