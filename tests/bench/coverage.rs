@@ -38,7 +38,7 @@ const SEEDS_APART: u64 = 1_000_000;
 /// What a study varies: the name, and what it does to a good board on a good bench.
 type Variation = (&'static str, fn(&mut Setup, &Profile));
 
-const VARIATIONS: [Variation; 7] = [
+const VARIATIONS: [Variation; 8] = [
     ("as drawn", |_, _| {}),
     ("noisy meters", |setup, _| {
         for range in &mut setup.voltmeter.ranges {
@@ -48,7 +48,8 @@ const VARIATIONS: [Variation; 7] = [
             range.meter.noise *= 10.0;
         }
     }),
-    ("noise at the board", |setup, _| setup.board.noise = Volts(0.1e-3)),
+    ("no noise at the detector", |setup, _| setup.board.noise = Volts::ZERO),
+    ("noise of 0.3 mV at the detector", |setup, _| setup.board.noise = Volts(0.3e-3)),
     ("long leads", |setup, _| setup.wiring.lead_resistance = Ohms(0.6)),
     ("slowest board", |setup, profile| {
         setup.board.detect_delay = profile.timing.detect_delay;

@@ -88,8 +88,10 @@ fn whatever_fails_the_output_is_off_and_no_set_point_above_the_maximum() {
 fn faulty_boards_and_benches_keep_their_outcome() {
     for named in PROFILES {
         let (plain, asked) = (Profile::read(named.0, named.1).expect("a shipped profile"), asking(named));
-        // Conduction far below the trip is what only the deep sweep finds.
-        for condition in Condition::ALL.into_iter().filter(|it| *it != Condition::DeepConduction) {
+        // Conduction far below the trip is what only the deep sweep finds, and a current limit that holds the load's
+        // capacitor back shows in some of the runs: more of them in those that switch the board more often.
+        let told_by_more = [Condition::DeepConduction, Condition::LargeLoadCapacitor];
+        for condition in Condition::ALL.into_iter().filter(|it| !told_by_more.contains(it)) {
             for seed in 0..8 {
                 let (without, with) = (run(&plain, condition, seed), run(&asked, condition, seed));
                 let what = format!("{} {condition} seed {seed}: {:?}", named.0, with.verdict.findings);

@@ -25,8 +25,10 @@ use std::path::PathBuf;
 
 #[derive(Debug, Args)]
 #[command(after_help = "\
-Examples:
+Example:
   ebbmark bench check instruments/benches/first-bench.toml
+
+With a resistor or a reference board in the fixture:
   ebbmark bench check my-bench.toml --energise --load \"55 ohm\" --profile profiles/river-node.toml --test-voltage \"7.6 V\"
   ebbmark bench check my-bench.toml --profile profiles/river-node.toml --reference my-reference.toml
 
