@@ -54,18 +54,26 @@ impl Spoilt {
 /// What looks like something else, and is no more than what the bench did.
 fn explains(code: FindingCode) -> &'static [FindingCode] {
     use FindingCode::{
-        BackFeed, Chatter, DwellShorterThanDelay, NeitherOnNorOff, NeverOn, NeverReEnables, NeverTrips,
-        NoCurrent, NoLoad, SourceResistance, SupplyNotArrived,
+        BackFeed, Chatter, DetectorNoise, DwellShorterThanDelay, NeitherOnNorOff, NeverOn, NeverReEnables,
+        NeverTrips, NoCurrent, NoLoad, SourceResistance, SupplyNotArrived,
     };
     match code {
         FindingCode::MeterFuse => &[SupplyNotArrived, NeverOn, NoLoad, NoCurrent],
         FindingCode::MeterReversed => &[BackFeed, NeitherOnNorOff],
         FindingCode::SupplyDisagrees => &[SupplyNotArrived, SourceResistance],
-        FindingCode::CurrentLimit => &[NeverOn, Chatter, NeitherOnNorOff, NoCurrent],
-        FindingCode::Contact => &[Chatter, NeitherOnNorOff, DwellShorterThanDelay, SourceResistance],
-        FindingCode::RangeNotAdequate => {
-            &[Chatter, NeitherOnNorOff, NeverOn, NeverTrips, NeverReEnables, DwellShorterThanDelay]
+        FindingCode::CurrentLimit => &[NeverOn, Chatter, NeitherOnNorOff, NoCurrent, DetectorNoise],
+        FindingCode::Contact => {
+            &[Chatter, NeitherOnNorOff, DwellShorterThanDelay, DetectorNoise, SourceResistance]
         }
+        FindingCode::RangeNotAdequate => &[
+            Chatter,
+            NeitherOnNorOff,
+            NeverOn,
+            NeverTrips,
+            NeverReEnables,
+            DwellShorterThanDelay,
+            DetectorNoise,
+        ],
         _ => &[],
     }
 }

@@ -88,18 +88,23 @@ fn whatever_fails_the_output_is_off_and_no_set_point_above_the_maximum() {
 fn faulty_boards_and_benches_keep_their_outcome() {
     for named in PROFILES {
         let (plain, asked) = (Profile::read(named.0, named.1).expect("a shipped profile"), asking(named));
-        // Conduction far below the trip is what only the deep sweep finds, and a current limit that holds the load's
-        // capacitor back shows in some of the runs: more of them in those that switch the board more often.
-        let told_by_more = [Condition::DeepConduction, Condition::LargeLoadCapacitor];
+        // Conduction far below the trip is what only the deep sweep finds. A contact that comes and goes, and a limit that
+        // holds the load's capacitor back, strike by chance: a run that switches the board more often sees more of them.
+        let told_by_more =
+            [Condition::DeepConduction, Condition::LargeLoadCapacitor, Condition::IntermittentContact];
         for condition in Condition::ALL.into_iter().filter(|it| !told_by_more.contains(it)) {
             for seed in 0..8 {
                 let (without, with) = (run(&plain, condition, seed), run(&asked, condition, seed));
-                let what = format!("{} {condition} seed {seed}: {:?}", named.0, with.verdict.findings);
+                let what = format!(
+                    "{} {condition} seed {seed}: {:?}, without {:?}",
+                    named.0, with.verdict.findings, without.verdict.findings
+                );
                 assert_eq!(with.verdict.outcome, without.verdict.outcome, "{what}");
                 assert_eq!(with.trace.ending.output, OutputState::Off, "{what}");
-                // Down to 0.3 V there is no charge left to warn of.
+                // Down to 0.3 V there is no charge left to warn of, and notes come in any order.
                 let first = without.verdict.findings.first().map(|finding| finding.code);
-                let first = first.filter(|code| *code != FindingCode::StillCharged);
+                let first = first
+                    .filter(|code| !matches!(code, FindingCode::StillCharged | FindingCode::StorageDrain));
                 // A hysteresis too narrow for the battery is worked out in both; in the band it shows first.
                 let told = |code| with.verdict.findings.iter().position(|finding| finding.code == code);
                 let last = first.map(|code| if code == FindingCode::Rebound { 1 } else { 0 });
