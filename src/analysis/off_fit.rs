@@ -62,8 +62,9 @@ pub(super) fn off_fit(course: &Course<'_>) -> Option<OffFit> {
     for (contribution, errors) in common_errors(course, &readings, &line) {
         let point = |(point, error): (&Point, &f64)| Point { y: *error, ..*point };
         let Some(error) = Line::fit(points.iter().zip(&errors).map(point)) else { continue };
-        conductance.push(contribution(error.slope));
-        constant.push(contribution(error.at(0.0)));
+        let counts = |error: f64, value: f64| (error.abs() > ARITHMETIC * value.abs()).then_some(error);
+        conductance.extend(counts(error.slope, line.slope).map(contribution));
+        constant.extend(counts(error.at(0.0), line.at(0.0)).map(contribution));
     }
     Some(OffFit {
         conductance: Quantity::new(QuantityName::OffConductance, line.slope, conductance),
@@ -72,6 +73,9 @@ pub(super) fn off_fit(course: &Course<'_>) -> Option<OffFit> {
         span: span(&readings)?,
     })
 }
+
+/// An error below this share of the value is what the arithmetic leaves of one that cancels.
+const ARITHMETIC: f64 = 1e-12;
 
 /// Name of the readings' own scatter in the budget.
 const SCATTER: &str = "scatter of the readings";
