@@ -215,20 +215,9 @@ mod tests {
 
     fn ability() -> Ability {
         Ability {
-            voltmeter: true,
-            load_voltmeter: false,
-            short_readings: false,
             ranges: [1e-4, 1e-3, 1e-2, 1.0].map(Amps).to_vec(),
-            range_settle: Duration::from_millis(20),
-            max_voltage: Volts(32.0),
-            max_current: Amps(3.0),
-            min_current: Amps(1e-3),
-            set_step: Volts(1e-3),
-            settle: Duration::from_millis(15),
-            overshoot: 0.0,
-            read_time: Duration::from_millis(22),
-            arrival_tolerance: Volts(0.02),
             zero_uncertainties: [2e-8, 1e-7, 1e-6, 6e-5].map(Amps).to_vec(),
+            ..super::super::tests::ability()
         }
     }
 

@@ -160,20 +160,12 @@ mod tests {
 
     fn ability() -> Ability {
         Ability {
-            voltmeter: true,
-            load_voltmeter: false,
-            short_readings: false,
             ranges: vec![Amps(1e-4), Amps(1.0)],
             range_settle: Duration::from_millis(60),
-            max_voltage: Volts(32.0),
-            max_current: Amps(3.0),
-            min_current: Amps(0.001),
-            set_step: Volts(0.001),
-            settle: Duration::from_millis(15),
-            overshoot: 0.0,
             read_time: Duration::from_millis(25),
             arrival_tolerance: Volts(0.01),
             zero_uncertainties: vec![Amps(15e-9), Amps(6e-5)],
+            ..super::super::tests::ability()
         }
     }
 

@@ -34,7 +34,12 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         bench: Default::default(),
         hash: String::new(),
     };
-    let ability = Ability {
+    Plan::new(&profile, &ability())
+}
+
+/// A bench as the simulated one, without a voltmeter at the load.
+pub(super) fn ability() -> Ability {
+    Ability {
         voltmeter: true,
         load_voltmeter: false,
         short_readings: false,
@@ -49,8 +54,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
         read_time: Duration::from_millis(22),
         arrival_tolerance: Volts(0.02),
         zero_uncertainties: vec![Amps(2e-8), Amps(1e-7), Amps(6e-5)],
-    };
-    Plan::new(&profile, &ability)
+    }
 }
 
 /// A bench made of random answers: some fitting, some not.
