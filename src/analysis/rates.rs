@@ -13,7 +13,7 @@ use super::hysteresis::hysteresis;
 use super::plateau::Course;
 use super::quantity::Quantity;
 use super::terminals::Rail;
-use super::{Analysis, trust};
+use super::{Analysis, analyse, trust};
 use crate::profile::{Profile, QuantityName};
 use crate::statistics::line::{Line, Point};
 use crate::trace::Trace;
@@ -22,7 +22,8 @@ use crate::units::Volts;
 /// Steps before a change over which the rate is taken.
 const RATE_STEPS: usize = 10;
 
-/// Reads the thresholds at rest, the hysteresis and the delays from ramps of one board at two or more rates.
+/// Reads the thresholds at rest, the hysteresis and the delays from ramps of one board at two or more rates; what the board
+/// draws while it is off, from the longest of them. A single trace has no rates to compare: thresholds and delays are absent.
 ///
 /// The findings are those of the single ramps that concern the switch or the trust in the numbers.
 pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
@@ -50,6 +51,8 @@ pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
     analysis.quantities.extend([trip, re_enable, difference].into_iter().flatten());
     analysis.quantities.extend(down.as_ref().map(|down| delay(QuantityName::DetectDelay, down)));
     analysis.quantities.extend(up.as_ref().map(|up| delay(QuantityName::ReleaseDelay, up)));
+    analysis.quantities.extend(at_leisure(traces, profile));
+    analysis.quantities.sort_by_key(|quantity| quantity.name);
     for (course, found) in courses.iter().zip(&found) {
         note(&mut analysis.findings, diagnosis::diagnose(course, found));
         for finding in trust::accuracy(course) {
@@ -58,6 +61,23 @@ pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
     }
     analysis
 }
+
+/// What does not depend on a rate, from the ramp that gave it the most time.
+fn at_leisure(traces: &[Trace], profile: &Profile) -> Vec<Quantity> {
+    let longest = traces.iter().max_by_key(|trace| trace.samples.last().map(|sample| sample.at));
+    let mut quantities = longest.map(|trace| analyse(trace, profile).quantities).unwrap_or_default();
+    quantities.retain(|quantity| RATELESS.contains(&quantity.name));
+    quantities
+}
+
+/// Quantities into which neither threshold enters.
+const RATELESS: [QuantityName; 5] = [
+    QuantityName::OffCurrent,
+    QuantityName::OffConductance,
+    QuantityName::OffConstantCurrent,
+    QuantityName::DeepCurrent,
+    QuantityName::StorageTime,
+];
 
 /// Keeps one finding of a sort, however many ramps show it.
 fn note(findings: &mut Vec<Finding>, finding: Option<Finding>) {
@@ -159,7 +179,21 @@ mod tests {
 
     #[test]
     fn one_rate_gives_neither() {
-        assert!(from_rates(&[ramp(0.1, 0.5)], &profile()).quantities.is_empty());
-        assert!(from_rates(&[], &profile()).quantities.is_empty());
+        let rateless = |traces: &[Trace]| {
+            let quantities = from_rates(traces, &profile()).quantities;
+            quantities.iter().all(|quantity| RATELESS.contains(&quantity.name))
+        };
+        assert!(rateless(&[ramp(0.1, 0.5)]));
+        assert!(rateless(&[]));
+    }
+
+    #[test]
+    fn the_off_current_is_that_of_the_longest_ramp() {
+        let (slow, fast) = (ramp(0.013, 0.5), ramp(0.11, 0.5));
+        let off = |analysis: Analysis| {
+            analysis.quantities.into_iter().find(|quantity| quantity.name == QuantityName::OffCurrent)
+        };
+        assert!(off(analyse(&slow, &profile())).is_some());
+        assert_eq!(off(from_rates(&[fast, slow.clone()], &profile())), off(analyse(&slow, &profile())));
     }
 }
