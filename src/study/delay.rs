@@ -14,6 +14,9 @@ use serde::Serialize;
 /// Coverage factor of what is stated here.
 const COVERAGE_FACTOR: f64 = 2.0;
 
+/// Rates that differ by less than this are one rate: the scatter of a bench's pace would pass for a delay.
+const LEAST_RATIO: f64 = 1.2;
+
 /// A threshold at rest and its delay.
 #[derive(Clone, Copy, Debug, PartialEq, Serialize)]
 pub struct Delay {
@@ -36,10 +39,15 @@ struct AtRate {
 }
 
 impl Delay {
-    /// From the cycles at each rate; `None` with fewer than two different rates.
+    /// From the cycles at each rate; `None` where they do not differ enough to tell, as when the bench was too slow for them.
     pub(super) fn of(by_rate: &[(Vec<&Cycle>, &Threshold)], edge: Edge) -> Option<Self> {
         let at_rates: Vec<AtRate> =
             by_rate.iter().filter_map(|(cycles, threshold)| AtRate::of(cycles, threshold, edge)).collect();
+        let slowest = at_rates.iter().map(|at| at.rate).fold(f64::INFINITY, f64::min);
+        let fastest = at_rates.iter().map(|at| at.rate).fold(0.0, f64::max);
+        if fastest <= slowest * LEAST_RATIO {
+            return None;
+        }
         let point = |at: &AtRate| {
             let variance = at.statistical.powi(2) + at.height.powi(2) / 12.0;
             Point { x: at.rate, y: at.along, weight: 1.0 / variance }
@@ -116,6 +124,21 @@ mod tests {
                 Crossing { rate, period: PERIOD, seen_after: SEEN_AFTER, set: Volts(6.0), ..trip.clone() };
         }
         cycles
+    }
+
+    #[test]
+    fn rates_that_came_out_alike_tell_no_delay() {
+        let rates = [0.2, 0.21].map(|rate| staircase(rate, 0.1));
+        let found: Vec<(Vec<&Cycle>, Threshold)> = rates
+            .iter()
+            .map(|cycles| {
+                let cycles: Vec<&Cycle> = cycles.iter().collect();
+                let threshold = Threshold::of(&cycles, Edge::Trip, 0.95).expect("found");
+                (cycles, threshold)
+            })
+            .collect();
+        let by_rate: Vec<_> = found.iter().map(|(cycles, it)| (cycles.clone(), it)).collect();
+        assert_eq!(Delay::of(&by_rate, Edge::Trip), None);
     }
 
     #[test]

@@ -1,6 +1,7 @@
 //! A study as tables.
 
 use super::{StudySheet, rate_text};
+use crate::profile::QuantityName;
 use crate::report::columns::{aligned, wrapped};
 use crate::study::{AtRest, Basis, Cell, Drift, Estimates, Jitter, Limits, Line, Proposal};
 use crate::units::{Unit, prefixed, under_prefix_of, with_decimals_of};
@@ -120,9 +121,10 @@ fn at_rest(boards: &[AtRest]) -> Vec<Vec<String>> {
             prefixed(board.load_ohm, Unit::Ohm),
             board.quantity.title().to_owned(),
             if board.delay_included { format!("{value}, delay included") } else { value },
-            board.delay.map_or(String::new(), |delay| {
-                with_uncertainty(delay.delay_s, delay.expanded_uncertainty_s, Unit::Second)
-            }),
+            board.delay.map_or_else(
+                || "not told".to_owned(),
+                |delay| with_uncertainty(delay.delay_s, delay.expanded_uncertainty_s, Unit::Second),
+            ),
         ]
     }));
     rows
@@ -200,6 +202,16 @@ fn notes(estimates: &Estimates) -> Vec<String> {
     if estimates.cells.iter().any(|cell| cell.threshold.instrument_v.is_none()) {
         notes.push(
             "note: nothing is claimed of the instrument that read the voltages; U leaves it out.".to_owned(),
+        );
+    }
+    if estimates
+        .at_rest
+        .iter()
+        .any(|board| board.quantity != QuantityName::Hysteresis && board.delay.is_none())
+    {
+        notes.push(
+            "A delay needs ramps at two rates at least (--rate), which the bench must be fast enough to tell apart."
+                .to_owned(),
         );
     }
     if estimates.at_rest.iter().any(|board| board.delay.is_some()) {
