@@ -76,6 +76,13 @@ fn place(code: FindingCode) -> Place {
     }
 }
 
+impl FindingCode {
+    /// Worth knowing and nothing to look into.
+    pub fn is_note(self) -> bool {
+        place(self) == Place::Note
+    }
+}
+
 /// A cause, what is dropped beside it, and why.
 pub(crate) const EXPLAINS: &[(FindingCode, &[FindingCode], &str)] = &[
     (NoLoad, &[NeverOn, NoCurrent], "without a load a closed switch draws as little as an open one"),

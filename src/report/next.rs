@@ -25,7 +25,12 @@ const STILL_CHARGED: &str = "WAIT: the board still held a charge when the run en
 
 fn usual(sheet: &Sheet<'_>) -> String {
     match sheet.outcome {
-        Outcome::Pass => "Take the board off and scan the next one.".to_owned(),
+        Outcome::Pass => match remarks(sheet) {
+            none if none.is_empty() => "Take the board off and scan the next one.".to_owned(),
+            remarks => {
+                format!("Take the board off and scan the next one. It passes with a remark: {remarks}.")
+            }
+        },
         Outcome::ConditionalPass => format!(
             "Take the board off and scan the next one. It passes with a note: {}.",
             reasons(sheet, Decision::ConditionalPass, About::Board)
@@ -59,13 +64,23 @@ fn reasons(sheet: &Sheet<'_>, decision: Decision, about: About) -> String {
         .filter(|judged| about == About::Board && judged.decision == Some(decision))
         .map(quantities::complaint)
         .collect();
-    let spoken = |finding: &Finding| words::spoken(&words::code(finding.code));
-    let mut diagnoses: Vec<String> =
-        sheet.findings.iter().filter(|finding| finding.about == about).map(spoken).collect();
-    diagnoses.dedup();
+    let diagnoses = spoken(sheet.findings.iter().filter(|finding| finding.about == about));
     match (complaints.is_empty(), diagnoses.is_empty()) {
         (false, _) => complaints.join("; "),
-        (true, false) => diagnoses.join("; "),
+        (true, false) => diagnoses,
         (true, true) => "the reason is in the table above".to_owned(),
     }
+}
+
+/// What was found about a board that passed, mere notes aside.
+fn remarks(sheet: &Sheet<'_>) -> String {
+    let about_board = |finding: &&Finding| finding.about == About::Board && !finding.code.is_note();
+    spoken(sheet.findings.iter().filter(about_board))
+}
+
+/// Codes as people say them, each once where two of a kind follow each other.
+fn spoken<'f>(findings: impl Iterator<Item = &'f Finding>) -> String {
+    let mut words: Vec<String> = findings.map(|finding| words::spoken(&words::code(finding.code))).collect();
+    words.dedup();
+    words.join("; ")
 }
