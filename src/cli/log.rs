@@ -53,7 +53,7 @@ enum Layout {
     /// For people.
     #[default]
     Text,
-    /// For programs: one JSON object a run.
+    /// For programs: one JSON object a line, one line a run.
     Json,
     /// For spreadsheets: a line a run.
     Csv,
@@ -104,7 +104,11 @@ impl Show {
             .into()),
             several => {
                 let names: Vec<&str> = several.iter().map(|(run, _)| run.identity.run.as_str()).collect();
-                Err(anyhow::anyhow!("several runs end in \"{name}\": {}", names.join(", ")).into())
+                Err(anyhow::anyhow!(
+                    "several runs end in \"{name}\": {}; give more of the name, or `--station`",
+                    names.join(", ")
+                )
+                .into())
             }
         }
     }
@@ -114,8 +118,10 @@ impl Show {
         if let Some(station) = &self.station {
             return Ok(vec![station.clone()]);
         }
-        let entries = std::fs::read_dir(&self.logs)
-            .with_context(|| format!("cannot read the folder of logs {}", self.logs.display()))?;
+        let entries = std::fs::read_dir(&self.logs).with_context(|| {
+            let logs = self.logs.display();
+            format!("cannot read the folder of logs {logs}; test a board first, or name it with `--logs`")
+        })?;
         let mut stations: Vec<String> = entries
             .filter_map(|entry| entry.ok().filter(|entry| entry.path().is_dir()))
             .map(|entry| entry.file_name().to_string_lossy().into_owned())
@@ -137,7 +143,7 @@ fn readable(folder: &LogFolder) -> Result<impl Iterator<Item = Run>, Failure> {
 fn write(runs: &[Run], layout: Layout, text: impl Fn(&Run) -> String) -> Result<Exit, Failure> {
     let written = match layout {
         Layout::Text => runs.iter().map(text).collect(),
-        Layout::Json => report::runs_json(runs) + "\n",
+        Layout::Json => report::runs_json(runs),
         Layout::Csv => {
             let mut bytes = Vec::new();
             report::runs_csv(runs, &mut bytes)?;

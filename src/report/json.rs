@@ -12,10 +12,9 @@ pub fn run_json(run: &Run) -> String {
     json(&Sheet::of(run))
 }
 
-/// Several runs as a JSON array, a run a line.
+/// Several runs, a line of JSON each.
 pub fn runs_json(runs: &[Run]) -> String {
-    let lines: Vec<String> = runs.iter().map(run_json).collect();
-    if lines.is_empty() { "[]".to_owned() } else { format!("[\n{}\n]", lines.join(",\n")) }
+    runs.iter().map(|run| run_json(run) + "\n").collect()
 }
 
 /// One run as one line of JSON, without a newline. A key whose value is not known is absent.

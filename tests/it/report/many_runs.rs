@@ -60,13 +60,13 @@ fn a_filter_keeps_the_latest_of_one_serial_number() {
 }
 
 #[test]
-fn the_json_of_many_is_an_array_of_the_json_of_one() {
+fn the_json_of_many_is_that_of_one_a_line() {
     let runs = runs();
-    let array: Vec<serde_json::Value> = serde_json::from_str(&runs_json(&runs)).expect("an array");
-    let each: Vec<serde_json::Value> =
-        runs.iter().map(|run| serde_json::from_str(&run_json(run)).expect("JSON")).collect();
-    assert_eq!(array, each);
-    assert_eq!(runs_json(&[]), "[]");
+    let of = |line: &str| serde_json::from_str::<serde_json::Value>(line).expect("JSON");
+    let lines: Vec<serde_json::Value> = runs_json(&runs).lines().map(of).collect();
+    let each: Vec<serde_json::Value> = runs.iter().map(|run| of(&run_json(run))).collect();
+    assert_eq!(lines, each);
+    assert_eq!(runs_json(&[]), "");
 }
 
 #[test]
