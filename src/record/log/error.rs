@@ -40,7 +40,7 @@ pub enum LogError {
     /// Another program has the log open.
     #[error(
         "{path} is in use by {holder}: a second program on the same bench would disturb its measurement; \
-         close the other one, or give this bench a station name of its own",
+         close the other one, or give this bench a station of its own with `--station`",
         path = .path.display()
     )]
     Taken {

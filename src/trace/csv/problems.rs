@@ -7,12 +7,23 @@ pub(super) const FEWEST_ROWS: usize = 2;
 
 /// All that is wrong in one file, in the order of its text. Never empty.
 #[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
-#[error("{}", .problems.iter().map(|problem| format!("{file}:{problem}")).collect::<Vec<_>>().join("\n"))]
+#[error("{}", first_of(.file, .problems))]
 pub struct CsvProblems {
     /// The file's name.
     pub file: String,
     /// Its problems.
     pub problems: Vec<CsvProblem>,
+}
+
+/// The problems one a line, as many as anybody reads.
+fn first_of(file: &str, problems: &[CsvProblem]) -> String {
+    const SHOWN: usize = 10;
+    let mut lines: Vec<String> =
+        problems.iter().take(SHOWN).map(|problem| format!("{file}:{problem}")).collect();
+    if let Some(more) = problems.len().checked_sub(SHOWN).filter(|more| *more > 0) {
+        lines.push(format!("{file}: {more} more problems of this file are not shown"));
+    }
+    lines.join("\n")
 }
 
 /// One thing that is wrong, and the line where.
@@ -34,6 +45,9 @@ pub enum CsvFlaw {
         /// What the reader of the format says.
         reason: String,
     },
+    /// Nothing stands in the file.
+    #[error("the file is empty; wanted a header time_s,set_v,sense_v,current_a and rows of readings")]
+    Empty,
     /// The header lacks a column.
     #[error("the header has no column \"{column}\"; wanted time_s, set_v, sense_v and current_a")]
     MissingColumn {
