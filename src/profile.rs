@@ -46,7 +46,7 @@
 //!
 //! [[off_path]]                        # optional, one block a path: the off-state budget
 //! name = "pull-up"
-//! resistance = "3.9 Mohm"             # or current = "0.9 uA"
+//! resistance = "6.8 Mohm"             # or current = "0.4 uA"
 //! tolerance = "5 %"
 //! conducts = "off"                    # "off", "on" or "always"
 //!

@@ -147,9 +147,10 @@ fn read_one(mut table: Table<'_, '_>) -> Option<OffPath> {
 /// Tolerance beyond which a resistance tells nothing any more.
 const LARGEST_OF_A_RESISTANCE: f64 = 0.5;
 
-/// Notes a budget that the limit of the off current contradicts.
+/// Notes a budget that the limit of the off current contradicts, or that leaves the divider out.
 pub(super) fn check(draft: &Draft, root: &Table<'_, '_>) {
     let Some(budget) = draft.off_paths.as_deref().and_then(OffBudget::of) else { return };
+    divider_is_in(draft, root);
     let Some(LimitDraft { at: Some(at), min, max }) = draft.limits.get(&QuantityName::OffCurrent) else {
         return;
     };
@@ -160,6 +161,36 @@ pub(super) fn check(draft: &Draft, root: &Table<'_, '_>) {
     }
     if let Some(min) = min.as_ref().filter(|min| nominal.0 < min.value) {
         root.problem(min, &format!("{what}, so that no board of this design passes"));
+    }
+}
+
+/// Notes a divider in front of the detector that no path stands for: it draws while the board is off, or the board would
+/// never come back. A path stands for it by its resistance, or by its name where several are put together.
+fn divider_is_in(draft: &Draft, root: &Table<'_, '_>) {
+    let (Some(paths), Some(parts)) = (&draft.off_paths, &draft.parts) else { return };
+    let Some(divider) = parts.parts.divider else { return };
+    let across = divider.across();
+    if divider.top <= Ohms::ZERO || divider.bottom <= Ohms::ZERO {
+        return;
+    }
+    let stands_for_it = |path: &OffPath| {
+        let (named, least) = (path.name.to_lowercase().contains("divider"), 1.0 - divider.tolerance);
+        match path.draws {
+            Draws::Resistance(ohms) if named => ohms.0 * (1.0 - path.tolerance) <= across.0 / least,
+            Draws::Resistance(ohms) => {
+                (ohms.0 / across.0 - 1.0).abs() <= path.tolerance.max(divider.tolerance)
+            }
+            Draws::Current(_) => named,
+        }
+    };
+    if !paths.iter().any(|path| path.conducts != Conducts::On && stands_for_it(path)) {
+        root.problem(
+            &parts.trip,
+            &format!(
+                "[divider] in front of it is {across} across the supply and draws while the board is off, but no [[off_path]] \
+                 stands for it; wanted one with \"divider\" in its name and at most that resistance"
+            ),
+        );
     }
 }
 
@@ -199,9 +230,23 @@ mod tests {
 
     #[test]
     fn a_path_is_a_resistance_or_a_current_and_says_when_it_conducts() {
-        says!(problems(&[("resistance = \"3.9 Mohm\"", "resistance = \"3.9 Mohm\"\ncurrent = \"1 uA\"")]), @r#"p.toml:75:1: a path has either "resistance" or "current""#);
-        says!(problems(&[("resistance = \"3.9 Mohm\"", "resistance = \"0 Mohm\"")]), @r#"p.toml:77:14: off_path[1].resistance = "0 Mohm": not above zero"#);
-        says!(problems(&[("resistance = \"3.9 Mohm\"", "resistance = \"390 kohm\"")]), @r#"p.toml:42:54: limits.off_current.max = "4.0 uA": the paths of [[off_path]] draw 15.77 µA at 5.800 V, so that no board of this design passes"#);
+        says!(problems(&[("resistance = \"6.8 Mohm\"", "resistance = \"6.8 Mohm\"\ncurrent = \"1 uA\"")]), @r#"p.toml:75:1: a path has either "resistance" or "current""#);
+        says!(problems(&[("resistance = \"6.8 Mohm\"", "resistance = \"0 Mohm\"")]), @r#"p.toml:77:14: off_path[1].resistance = "0 Mohm": not above zero"#);
+        says!(problems(&[("resistance = \"6.8 Mohm\"", "resistance = \"390 kohm\"")]), @r#"p.toml:42:54: limits.off_current.max = "4.0 uA": the paths of [[off_path]] draw 16.59 µA at 5.800 V, so that no board of this design passes"#);
         says!(problems(&[("conducts = \"off\"", "conducts = \"perhaps\"")]), @r#"p.toml:79:12: off_path[1].conducts = "perhaps": wanted "off" or "on" or "always""#);
+    }
+
+    /// 2 x 2.2 Mohm across the pack are 4.4 Mohm.
+    #[test]
+    fn a_divider_that_the_budget_leaves_out_is_told() {
+        let named = "name = \"divider\"  ";
+        let left_out = [(named, "name = \"indicator\""), ("\"4.4 Mohm\"", "\"10 Mohm\"")];
+        says!(problems(&left_out), @r#"p.toml:46:8: detector.trip = "3.00 V": [divider] in front of it is 4.400 MΩ across the supply and draws while the board is off, but no [[off_path]] stands for it; wanted one with "divider" in its name and at most that resistance"#);
+        assert!(problems(&left_out[1..]).contains("at most that resistance"), "its name alone does not");
+        assert_eq!(problems(&[(named, "name = \"indicator\"")]), "", "its resistance tells");
+        let together = [(named, "name = \"Divider and LED\""), ("\"4.4 Mohm\"", "\"4.0 Mohm\"")];
+        assert_eq!(problems(&together), "", "its name tells");
+        let as_current = [("resistance = \"4.4 Mohm\"", "current = \"1.3 uA\"")];
+        assert_eq!(problems(&as_current), "", "its name tells");
     }
 }

@@ -210,11 +210,11 @@ mod tests {
 
     #[test]
     fn what_belongs_together_is_wanted_together() {
-        says!(problems(&[("resistance = \"150 mohm\"", "")]), @"p.toml:88:1: pack.recovery says nothing without pack.resistance");
-        says!(problems(&[("remaining_capacity = \"200 mAh\"", "remaining_capacity = \"3 Ah\"")]), @r#"p.toml:92:22: pack.remaining_capacity = "3 Ah": more than pack.capacity = "2.6 Ah""#);
+        says!(problems(&[("resistance = \"150 mohm\"", "")]), @"p.toml:94:1: pack.recovery says nothing without pack.resistance");
+        says!(problems(&[("remaining_capacity = \"200 mAh\"", "remaining_capacity = \"3 Ah\"")]), @r#"p.toml:98:22: pack.remaining_capacity = "3 Ah": more than pack.capacity = "2.6 Ah""#);
         says!(problems(&[("[pack]", "[pack]\nchemistry = \"li-ion\"\ncells = 3")]), @r#"p.toml:39:23: limits.trip.min = "5.88 V": pack.cells = 3 of pack.chemistry = "li-ion" are harmed below 7.500 V"#);
         says!(problems(&[("[pack]", "[pack]\nchemistry = \"li-ion\"\ncells = 1")]), @r#"p.toml:17:11: supply.maximum = "8.40 V": pack.cells = 1 of pack.chemistry = "li-ion" reach 4.400 V at most"#);
-        says!(problems(&[("recovery = \"200 mV\"", "recovery = \"3 V\"\nrebound_hold = \"2 s\"")]), @r#"p.toml:92:16: pack.rebound_hold = "2 s": the voltage rises to 9.137 V, above supply.maximum = "8.40 V""#);
+        says!(problems(&[("recovery = \"200 mV\"", "recovery = \"3 V\"\nrebound_hold = \"2 s\"")]), @r#"p.toml:98:16: pack.rebound_hold = "2 s": the voltage rises to 9.137 V, above supply.maximum = "8.40 V""#);
     }
 
     #[test]

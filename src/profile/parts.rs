@@ -94,6 +94,11 @@ impl Divider {
     pub fn ratio(&self) -> f64 {
         1.0 + self.top / self.bottom
     }
+
+    /// Resistance across the battery, with nominal resistors.
+    pub fn across(&self) -> Ohms {
+        self.top + self.bottom
+    }
 }
 
 /// Ends of what a data sheet allows, with the typical value where it gives one.

@@ -232,6 +232,7 @@ impl InFixture {
             on_resistance: Ohms::ZERO,
             pull_up: CLEAN_FIXTURE,
             pull_up_conducts: PullUp::Always,
+            divider: Siemens::ZERO,
             detector_current: Amps::ZERO,
             leakage: Amps::ZERO,
             leakage_conductance: Siemens::ZERO,

@@ -26,6 +26,8 @@ pub struct BoardModel {
     pub pull_up: Ohms,
     /// The state in which it conducts.
     pub pull_up_conducts: PullUp,
+    /// Conductance of what lies across the terminals in either state, as a divider in front of the detector.
+    pub divider: Siemens,
     /// Supply current of the detector, independent of voltage.
     pub detector_current: Amps,
     /// Leakage through the open switch and the load, independent of voltage.
@@ -147,7 +149,7 @@ impl BoardModel {
             (leak, leak * load)
         };
         Branches {
-            beside: pull_up + self.detector_current.0 * awake + wiring.stray.0 * volts - wiring.fed(volts),
+            beside: pull_up + self.divider.0 * volts + self.detector_current.0 * awake + wiring.stray.0 * volts - wiring.fed(volts),
             load_current,
             load_volts,
         }

@@ -66,6 +66,7 @@ pub(super) fn good_board(profile: &Profile, draw: &mut Draw) -> BoardModel {
         minimum_operating: Volts(draw.between(0.7, 1.0)),
         pull_up: Ohms(off_at / (off_current - detector_current - 2.0 * leakage)),
         pull_up_conducts: PullUp::WhenOff,
+        divider: Siemens::ZERO,
         detector_current: Amps(detector_current),
         leakage: Amps(leakage),
         leakage_conductance: Siemens(leakage / off_at),
@@ -81,25 +82,30 @@ pub(super) fn good_board(profile: &Profile, draw: &mut Draw) -> BoardModel {
 }
 
 /// Puts parts inside the tolerances of the profile's off-state budget in place of what was drawn from the limit of the
-/// off current. What conducts while the board is on as well is the detector.
+/// off current: what conducts in one state only is the pull-up, what always does the divider, a current the detector.
 pub(super) fn fit_off_paths(board: &mut BoardModel, paths: &[OffPath], draw: &mut Draw) {
     let off = || paths.iter().filter(|path| path.conducts != Conducts::On);
     if off().next().is_none() {
         return;
     }
-    let (mut conductance, mut current) = (0.0, 0.0);
+    let (mut pull_up, mut divider, mut current) = (0.0, 0.0, 0.0);
     for path in off() {
         let error = draw.within(path.tolerance * CENTRAL);
-        match path.draws {
-            Draws::Resistance(ohms) => conductance += 1.0 / (ohms.0 * (1.0 + error)),
-            Draws::Current(amps) => current += amps.0 * (1.0 + error),
+        match (path.draws, path.conducts) {
+            (Draws::Resistance(ohms), Conducts::Always) => divider += 1.0 / (ohms.0 * (1.0 + error)),
+            (Draws::Resistance(ohms), _) => pull_up += 1.0 / (ohms.0 * (1.0 + error)),
+            (Draws::Current(amps), _) => current += amps.0 * (1.0 + error),
         }
     }
-    board.pull_up = Ohms(1.0 / conductance);
+    board.pull_up = Ohms(1.0 / f64::max(pull_up, NO_PULL_UP));
+    board.divider = Siemens(divider);
     board.detector_current = Amps(current);
     board.leakage = Amps(current * SMALL_LEAK);
     board.leakage_conductance = Siemens(0.0);
 }
+
+/// Conductance of a pull-up that is as good as none, S.
+const NO_PULL_UP: f64 = 1e-12;
 
 /// What a good switch leaks, as a share of the detector's current.
 const SMALL_LEAK: f64 = 0.01;

@@ -45,6 +45,7 @@ pub(crate) fn board(other: BoardModel) -> BoardModel {
         hysteresis: Volts(0.9),
         pull_up: Ohms(4.7e6),
         pull_up_conducts: PullUp::WhenOff,
+        divider: Siemens(0.0),
         detector_current: Amps(0.6e-6),
         leakage: Amps(0.3e-6),
         leakage_conductance: Siemens(0.0),

@@ -228,8 +228,8 @@ fn every_new_quantity_takes_a_limit_and_is_judged_by_it() {
     let mut profile = profile(0);
     let between = |min, max| Limit { at: None, min: Some(min), max: Some(max) };
     profile.limits.extend([
-        (QuantityName::OffConductance, between(0.2e-6, 0.3e-6)),
-        (QuantityName::OffConstantCurrent, between(0.5e-6, 1.3e-6)),
+        (QuantityName::OffConductance, between(0.3e-6, 0.45e-6)),
+        (QuantityName::OffConstantCurrent, between(0.2e-6, 0.6e-6)),
         (QuantityName::OnResistance, between(0.02, 0.1)),
         (QuantityName::ReboundMargin, Limit { at: None, min: Some(0.02), max: None }),
         (QuantityName::StorageTime, Limit { at: None, min: Some(86_400.0 * 30.0), max: None }),

@@ -18,6 +18,7 @@ pub(crate) const BOARD: BoardModel = BoardModel {
     minimum_operating: Volts(0.95),
     pull_up: Ohms(1e6),
     pull_up_conducts: PullUp::WhenOff,
+    divider: Siemens(0.0),
     detector_current: Amps(1.0e-6),
     leakage: Amps(0.05e-6),
     leakage_conductance: Siemens(0.0),

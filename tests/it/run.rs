@@ -46,7 +46,7 @@ impl Board {
             detect: Duration::from_micros(rng.random_range(100..5000)),
             release: Duration::from_micros(rng.random_range(1000..20_000)),
             lead: rng.random_range(0.02..0.6),
-            off_amps: rng.random_range(2.2e-6..2.6e-6),
+            off_amps: rng.random_range(2.5e-6..2.65e-6),
             stuck: None,
             load_connected: true,
         }
@@ -153,8 +153,8 @@ impl Bench {
         self.pass(READ / 2);
         let volts = self.terminals();
         let loaded = self.closed && self.board.load_connected;
-        // The pull-up of the profile, and the rest constant but for what it cannot draw at no voltage.
-        let open = (self.board.off_amps + (volts - 5.8) / 3.9e6).max(0.0);
+        // Pull-up and divider of the profile, and the rest constant but for what it cannot draw at no voltage.
+        let open = (self.board.off_amps + (volts - 5.8) * (1.0 / 6.8e6 + 1.0 / 4.4e6)).max(0.0);
         let amps = if loaded { volts / LOAD } else { open };
         let noise = self.rng.random_range(-2e-4..2e-4);
         let sample = Sample {

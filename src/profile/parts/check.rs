@@ -65,7 +65,10 @@ mod tests {
         says!(problems(&[("trip = \"3.00 V\"", "trip = \"2.00 V\"")]),
             @r#"p.toml:46:8: detector.trip = "2.00 V": gives a trip of 4.000 V with its divider, which is not between supply.floor = "5.20 V" and supply.start = "7.60 V""#);
         says!(problems(&[("top = \"2.2 Mohm\"", "top = \"220 kohm\"")]),
-            @r#"p.toml:46:8: detector.trip = "3.00 V": gives a trip of 3.300 V with its divider, which is not between supply.floor = "5.20 V" and supply.start = "7.60 V""#);
+            @r#"
+        p.toml:46:8: detector.trip = "3.00 V": gives a trip of 3.300 V with its divider, which is not between supply.floor = "5.20 V" and supply.start = "7.60 V"
+        p.toml:46:8: detector.trip = "3.00 V": [divider] in front of it is 2.420 MΩ across the supply and draws while the board is off, but no [[off_path]] stands for it; wanted one with "divider" in its name and at most that resistance
+        "#);
     }
 
     #[test]

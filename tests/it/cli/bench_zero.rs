@@ -85,7 +85,7 @@ fn a_test_waits_for_the_zero_takes_it_off_and_comes_nearer_to_the_truth() {
 
     let model = setup().board;
     let leak = model.leakage_conductance.0 * OFF_AT + model.leakage.0;
-    let truth = OFF_AT / model.pull_up.0 + model.detector_current.0 + leak;
+    let truth = OFF_AT * (1.0 / model.pull_up.0 + model.divider.0) + model.detector_current.0 + leak;
     assert!((off.value - truth).abs() < 2.0 * off.standard_uncertainty, "{} of {truth}: {off:?}", off.value);
     assert!(off.standard_uncertainty < 5e-9, "the claim alone is 14 nA: {off:?}");
 }

@@ -67,6 +67,7 @@ fn setup(case: &Case) -> Setup {
         noise: Volts(0.0),
         minimum_operating: Volts(0.8),
         pull_up: Ohms(case.pu),
+        divider: Siemens(0.0),
         detector_current: Amps(case.iq),
         leakage: Amps(0.0),
         leakage_conductance: Siemens(1.0 / case.leak),

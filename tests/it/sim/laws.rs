@@ -44,7 +44,7 @@ fn current_times_resistance_is_voltage_all_around_the_loop() {
             let voltmeters = sense * setup.voltmeter.input_conductance().0
                 + load * setup.load_voltmeter.input_conductance().0;
             assert!(
-                (current - through - voltmeters).abs() < 2e-6,
+                (current - through - voltmeters - sense * setup.board.divider.0).abs() < 2e-6,
                 "seed {seed}: {current} A in, {through} A through the load"
             );
         }
@@ -55,6 +55,7 @@ fn current_times_resistance_is_voltage_all_around_the_loop() {
         let (sense, current, _) = read(&mut world);
         let board = &setup.board;
         let sum = sense / board.pull_up.0
+            + sense * board.divider.0
             + board.detector_current.0
             + board.leakage.0
             + sense * board.leakage_conductance.0
