@@ -17,6 +17,7 @@ mod desk;
 mod fit;
 mod hum;
 mod in_band;
+mod inrush;
 mod narrow;
 mod off_current;
 mod off_line;
@@ -28,6 +29,7 @@ mod rebound;
 mod script;
 mod search;
 mod settling;
+mod swing;
 mod switch_off;
 mod walk;
 
@@ -36,10 +38,12 @@ pub use action::{Action, Event};
 pub use bench_work::{BenchWork, Task};
 pub use cycle::{Steps, Sweep, Window, shortest_period};
 pub use fit::{Misfit, fits};
+pub use inrush::{Inrush, inrush};
 pub use plan::Plan;
 pub use progress::{Progress, Stage};
 pub use rebound::Trial;
 pub use search::{Prior, Spread};
+pub use swing::swing;
 
 use crate::trace::Ending;
 use desk::Desk;

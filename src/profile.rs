@@ -18,6 +18,7 @@
 //! resistance = "55 ohm"
 //! tolerance = "1 %"
 //! rating = "3 W"                      # at least maximum^2 / resistance
+//! capacitance = "10 uF"               # optional: across it; can the supply charge it before the board trips again?
 //!
 //! [timing]                            # slowest the design allows
 //! detect_delay = "5 ms"               # crossing the trip to open switch
@@ -101,7 +102,7 @@ pub use parts::{Detector, Divider, Environment, Parts, Spread, Temperatures};
 pub use rewrite::{NewLimit, RewriteError, with_limits};
 
 use crate::document::{Document, Problems};
-use crate::units::{Amps, Ohms, Volts, Watts};
+use crate::units::{Amps, Farads, Ohms, Volts, Watts};
 use draft::Draft;
 use sha2::{Digest, Sha256};
 use std::collections::BTreeMap;
@@ -170,6 +171,8 @@ pub struct Load {
     pub tolerance: f64,
     /// Power it may take for as long as a run lasts.
     pub rating: Watts,
+    /// Capacitance across it, charged when the switch closes; `None` where nothing is said.
+    pub capacitance: Option<Farads>,
 }
 
 impl Load {
@@ -264,7 +267,7 @@ mod tests {
             profile.supply,
             Supply { start: Volts(7.6), floor: Volts(5.2), maximum: Volts(8.4), current_limit: Amps(0.35) }
         );
-        assert_eq!(profile.load, Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0) });
+        assert_eq!(profile.load, Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0), capacitance: None });
         assert_eq!(profile.timing.release_delay, Duration::from_millis(20));
         assert_eq!(profile.ramp, Ramp::Search { resolution: Volts(0.002) });
         assert_eq!(profile.limits.len(), 4);

@@ -6,6 +6,7 @@ use crate::instrument::bench_file::BenchFile;
 use crate::profile::{BenchRules, Profile, WhenOverdue};
 use crate::record::{BenchEntry, BenchFound, Instrument, now};
 use crate::trace::{Doubt, Zero};
+use crate::units::Ohms;
 use jiff::Timestamp;
 use std::collections::BTreeMap;
 use std::time::Duration;
@@ -29,6 +30,14 @@ impl BenchState {
         self.last(|found| matches!(found, BenchFound::Zero { .. }))
             .map(|entry| entry.zeros(self.now))
             .unwrap_or_default()
+    }
+
+    /// What lies between supply and board, leads and ammeter, by the last check that measured it.
+    pub(super) fn source_resistance(&self) -> Option<Ohms> {
+        self.entries.iter().rev().find_map(|entry| match &entry.found {
+            BenchFound::Check(check) => check.leads.as_ref().map(|leads| Ohms(leads.series_ohm)),
+            _ => None,
+        })
     }
 
     /// A simulated bench is made anew for every run: there is nothing to verify between two of them.
@@ -147,7 +156,7 @@ pub(super) fn named(profile: &Profile) -> String {
 }
 
 /// `35 min`, `8.2 h`, `3.0 d`.
-fn spoken(time: Duration) -> String {
+pub(super) fn spoken(time: Duration) -> String {
     let minutes = time.as_secs_f64() / 60.0;
     match minutes {
         ..90.0 => format!("{minutes:.0} min"),

@@ -3,6 +3,7 @@
 use super::Failure;
 use crate::instrument::bench_file::BenchFile;
 use crate::instrument::library;
+use crate::procedure::Misfit;
 use crate::profile::Profile;
 use anyhow::Context;
 use std::path::Path;
@@ -33,7 +34,12 @@ pub(super) fn bench(path: &Path) -> Result<BenchFile, Failure> {
 
 /// Makes sure that profile and bench fit each other, before anything is opened.
 pub(super) fn fit(profile: &Profile, bench: &BenchFile) -> Result<(), Failure> {
-    let misfits: Vec<String> = bench.misfits(profile).iter().map(|misfit| format!("\n  {misfit}")).collect();
+    refuse(profile, bench, &bench.misfits(profile))
+}
+
+/// Refuses a board for what its profile asks for and `bench` cannot do.
+pub(super) fn refuse(profile: &Profile, bench: &BenchFile, misfits: &[Misfit]) -> Result<(), Failure> {
+    let misfits: Vec<String> = misfits.iter().map(|misfit| format!("\n  {misfit}")).collect();
     if misfits.is_empty() {
         return Ok(());
     }

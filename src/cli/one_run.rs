@@ -7,7 +7,7 @@ use super::stop::listen;
 use super::{Failure, earlier, files, guard, ratio, who};
 use crate::bench::Bench;
 use crate::bench::serial::SerialBench;
-use crate::procedure::{Plan, Procedure};
+use crate::procedure::{Plan, Procedure, inrush, swing};
 use crate::profile::Profile;
 use crate::record::{BenchUsed, BoardUnderTest, Finished, ProfileUsed, Run, Simulated, Subject, now};
 use crate::report::OUTPUT_MAY_BE_ON;
@@ -40,6 +40,9 @@ impl Order<'_> {
     pub(super) fn carry_out(&self, mut station: Station<'_>) -> Result<Kept, Failure> {
         files::fit(self.profile, station.bench)?;
         ratio::check(self.profile, station.bench)?;
+        if let Some(inrush) = inrush(self.profile) {
+            anstream::eprintln!("note: {inrush}");
+        }
         station.note_calibration();
         if !self.is_reference {
             due::refuse_overdue_calibration(self.profile, station.bench)?;
@@ -49,6 +52,9 @@ impl Order<'_> {
 
         let asked_to_stop = listen(&station.runtime)?;
         let state = BenchState::of(&station, &who::instruments(station.bench, &bench))?;
+        let source = state.source_resistance().filter(|_| self.simulated.is_none());
+        let swing = source.and_then(|source| swing(self.profile, source));
+        files::refuse(self.profile, station.bench, swing.as_slice())?;
         match self.simulated {
             Some(_) => state.note_exempt(&self.profile.bench),
             None if self.is_reference => {}

@@ -2,7 +2,7 @@
 
 use super::Ability;
 use crate::profile::{Profile, QuantityName, Ramp};
-use crate::units::{Amps, Volts};
+use crate::units::{Amps, Ohms, Volts};
 
 /// Largest share of the off current's limit that the meter's standard uncertainty may take: with k = 2 the limit is
 /// then twice the expanded uncertainty, the least at which a judgement means anything. Common practice asks for more.
@@ -67,6 +67,24 @@ pub enum Misfit {
          remove the hold"
     )]
     ReboundHold,
+    /// Leads and ammeter move the board's terminals too far when it switches.
+    #[error(
+        "{between} of leads and ammeter move the terminals by {swing} when a board switches {current}, and one of {hysteresis} hysteresis \
+         rests only while that is less than half of it; wanted {most} or less: shorten the leads, clean the contacts, or take a load \
+         that draws less"
+    )]
+    Swing {
+        /// Between supply and board.
+        between: Ohms,
+        /// What the board switches.
+        current: Amps,
+        /// How far its terminals move.
+        swing: Volts,
+        /// Least hysteresis its limits allow.
+        hysteresis: Volts,
+        /// The resistance that would do.
+        most: Ohms,
+    },
     /// The profile's step is finer than the supply's.
     #[error("ramp.{key} is {step}, the supply sets steps of {finest}; wanted at least that")]
     Step {

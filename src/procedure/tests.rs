@@ -21,7 +21,7 @@ pub(super) fn plan(ramp: Ramp) -> Plan {
             maximum: Volts(8.4),
             current_limit: Amps(0.35),
         },
-        load: Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0) },
+        load: Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0), capacitance: None },
         timing: Timing { detect_delay: Duration::from_millis(5), release_delay: Duration::from_millis(20) },
         ramp,
         limits: BTreeMap::from([(QuantityName::OffCurrent, off)]),

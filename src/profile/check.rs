@@ -60,6 +60,7 @@ fn supply(draft: &Draft, root: &Table<'_, '_>) {
 fn load(draft: &Draft, root: &Table<'_, '_>) {
     above_zero(&draft.load.resistance, root);
     above_zero(&draft.load.rating, root);
+    above_zero(&draft.load.capacitance, root);
     if let Some(tolerance) = &draft.load.tolerance
         && !(0.0..=LARGEST_TOLERANCE).contains(&tolerance.value)
     {
@@ -71,7 +72,12 @@ fn load(draft: &Draft, root: &Table<'_, '_>) {
     else {
         return;
     };
-    let load = Load { resistance: resistance.value, tolerance: tolerance.value, rating: rating.value };
+    let load = Load {
+        resistance: resistance.value,
+        tolerance: tolerance.value,
+        rating: rating.value,
+        capacitance: None,
+    };
     let most = load.most_current(maximum.value);
     let power = maximum.value * most;
     if power > rating.value {

@@ -9,7 +9,7 @@ use super::parts::{self, PartsDraft};
 use super::{BenchRules, Limit, Load, Profile, QuantityName, Ramp, Supply, Timing};
 use super::{bench, serial_number};
 use crate::document::{At, Table};
-use crate::units::{Amps, Ohms, Volts, Watts};
+use crate::units::{Amps, Farads, Ohms, Volts, Watts};
 use regex_lite::Regex;
 use std::collections::BTreeMap;
 use std::time::Duration;
@@ -49,6 +49,7 @@ pub(super) struct LoadDraft {
     pub(super) resistance: Option<At<Ohms>>,
     pub(super) tolerance: Option<At<f64>>,
     pub(super) rating: Option<At<Watts>>,
+    pub(super) capacitance: Option<At<Farads>>,
 }
 
 #[derive(Default)]
@@ -124,6 +125,7 @@ impl Draft {
                 resistance: self.load.resistance?.value,
                 tolerance: self.load.tolerance?.value,
                 rating: self.load.rating?.value,
+                capacitance: self.load.capacitance.map(|at| at.value),
             },
             timing: Timing {
                 detect_delay: self.timing.detect_delay?.value,
@@ -182,6 +184,7 @@ fn read_load(mut table: Table<'_, '_>) -> LoadDraft {
         resistance: table.quantity("resistance"),
         tolerance: table.fraction("tolerance"),
         rating: table.quantity("rating"),
+        capacitance: table.optional_quantity("capacitance"),
     }
 }
 

@@ -72,7 +72,7 @@ pub(super) fn good_board(profile: &Profile, draw: &mut Draw) -> BoardModel {
         leakage_conductance: Siemens(leakage / off_at),
         input_capacitance: Farads(1e-6),
         load: profile.load.resistance * (1.0 + draw.within(profile.load.tolerance * CENTRAL)),
-        load_capacitance: Farads(chargeable.min(10e-6)),
+        load_capacitance: profile.load.capacitance.unwrap_or(Farads(chargeable.min(10e-6))),
         gate_capacitance: Farads(0.0),
         latches: false,
         switch: Switch::Working,

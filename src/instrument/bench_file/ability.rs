@@ -2,7 +2,7 @@
 
 use super::{BenchFile, BenchInstrument, VoltmeterPlace};
 use crate::instrument::definition::{Range, Role, Voltmeter};
-use crate::procedure::{Ability, Misfit, fits};
+use crate::procedure::{Ability, Misfit, fits, swing};
 use crate::profile::{Profile, Supply};
 use crate::trace::{Claims, Times};
 use crate::units::{Amps, Ohms, Volts};
@@ -96,6 +96,11 @@ impl BenchFile {
         if self.voltmeter_at_board() {
             return None;
         }
+        self.source_resistance(current)
+    }
+
+    /// The same wherever the voltmeter sits; `None` where the bench file does not state the leads.
+    fn source_resistance(&self, current: Amps) -> Option<Ohms> {
         Some(self.fixture.lead_resistance? + self.parts.ammeter.range_for(current)?.resistance)
     }
 
@@ -103,6 +108,8 @@ impl BenchFile {
     pub fn misfits(&self, profile: &Profile) -> Vec<Misfit> {
         let maximum = profile.supply.maximum;
         let mut misfits = fits(profile, &self.ability(maximum));
+        let source = self.source_resistance(profile.supply.current_limit);
+        misfits.extend(source.and_then(|source| swing(profile, source)));
         for (role, meter) in
             [(Role::Voltmeter, &self.parts.voltmeter), (Role::LoadVoltmeter, &self.parts.load_voltmeter)]
         {
