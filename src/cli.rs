@@ -1,6 +1,8 @@
 //! The command line: one file a command, each arguments and the glue to the rooms.
 
+mod again;
 mod analyse;
+mod ask;
 mod bench;
 mod characterise;
 mod demo;

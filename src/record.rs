@@ -8,6 +8,7 @@ mod bench_entry;
 mod identity;
 mod log;
 mod moment;
+mod occasion;
 mod run;
 mod stamp;
 
@@ -20,5 +21,6 @@ pub use log::{
     Unreadable,
 };
 pub use moment::Moment;
+pub use occasion::Occasion;
 pub use run::{Run, SCHEMA, TraceReference};
 pub use stamp::now;

@@ -1,5 +1,6 @@
 //! `demo`: two simulated boards, one good and one not, tested over real serial ports.
 
+use super::again::Again;
 use super::show::{print, print_result};
 use super::simulated::{Simulation, speed};
 use super::test::{Keeping, on_simulation};
@@ -53,7 +54,15 @@ impl Arguments {
             let simulation = Simulation { condition: vec![condition], seed: None, speed: self.speed };
             let board = keeping.board(&profile, serial_number)?;
             let path = files::RIVER_NODE.0.to_owned();
-            let kept = on_simulation(&simulation, &profile, path, Arrangement::Separate, board, &keeping)?;
+            let kept = on_simulation(
+                &simulation,
+                &profile,
+                path,
+                Arrangement::Separate,
+                board,
+                &keeping,
+                Again::Shown,
+            )?;
             let outcome = print_result(&kept, Format::Text, false)?;
             if matches!(outcome, Exit::Aborted | Exit::OutputMayBeOn) {
                 return Ok(outcome);

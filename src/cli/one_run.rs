@@ -1,5 +1,6 @@
 //! One board, from the mark in the log to the kept record.
 
+use super::again::{self, Again};
 use super::due::{self, BenchState};
 use super::live::Live;
 use super::station::Station;
@@ -9,7 +10,9 @@ use crate::bench::Bench;
 use crate::bench::serial::SerialBench;
 use crate::procedure::{Plan, Procedure, inrush, swing};
 use crate::profile::Profile;
-use crate::record::{BenchUsed, BoardUnderTest, Finished, ProfileUsed, Run, Simulated, Subject, now};
+use crate::record::{
+    BenchUsed, BoardUnderTest, Finished, Occasion, ProfileUsed, Run, Simulated, Subject, now,
+};
 use crate::report::OUTPUT_MAY_BE_ON;
 use crate::trace::{OutputState, Stop};
 use crate::units::Celsius;
@@ -24,6 +27,8 @@ pub(super) struct Order<'o> {
     pub(super) operator: Option<String>,
     /// Temperature at the board, where a thermometer in the fixture tells it.
     pub(super) fixture: Option<Celsius>,
+    /// What becomes of a board that has passed already.
+    pub(super) again: Again,
     /// A reference board shows whether the bench is in order, so it is measured whatever is overdue.
     pub(super) is_reference: bool,
 }
@@ -47,6 +52,7 @@ impl Order<'_> {
         if !self.is_reference {
             due::refuse_overdue_calibration(self.profile, station.bench)?;
         }
+        let occasion = if self.is_reference { Occasion::Reference } else { again::occasion(self, &station)? };
         let maximum = self.profile.supply.maximum;
         let mut bench = station.connect(maximum)?;
 
@@ -60,7 +66,7 @@ impl Order<'_> {
             None if self.is_reference => {}
             None => state.refuse_overdue(self.profile)?,
         }
-        let subject = self.subject(&station, &bench);
+        let subject = self.subject(&station, &bench, occasion);
         let prior = earlier::prior(station.log.folder(), &subject.profile, self.simulated.is_some());
         station.log.start(subject, now())?;
         let plan = Plan::new(self.profile, &station.bench.ability(maximum)).with_prior(prior);
@@ -94,7 +100,7 @@ impl Order<'_> {
         Ok(Kept { run, folder: station.log.folder().path().to_owned() })
     }
 
-    fn subject(&self, station: &Station<'_>, bench: &SerialBench) -> Subject {
+    fn subject(&self, station: &Station<'_>, bench: &SerialBench, occasion: Occasion) -> Subject {
         Subject {
             board: self.board.clone(),
             profile: ProfileUsed {
@@ -108,6 +114,7 @@ impl Order<'_> {
                 simulated: self.simulated.clone(),
             },
             operator: self.operator.clone(),
+            occasion,
         }
     }
 }

@@ -1,5 +1,6 @@
 //! `test`: one board on a bench, from scan to kept record.
 
+use super::again::Again;
 use super::one_run::{Kept, Order};
 use super::show::print_result;
 use super::simulated::{Simulation, bench_file};
@@ -43,6 +44,9 @@ pub(super) struct Arguments {
     /// Add the uncertainty budget of every quantity to the text; JSON always has it.
     #[arg(long)]
     budget: bool,
+    /// Test a board that has passed already, without asking; the record names the run in which it did.
+    #[arg(long)]
+    again: bool,
     #[command(flatten)]
     keeping: Keeping,
     #[command(flatten)]
@@ -99,9 +103,14 @@ impl Arguments {
             board,
             operator: self.keeping.operator.clone(),
             fixture: None,
+            again: self.again(),
             is_reference: false,
         }
         .carry_out(station)
+    }
+
+    fn again(&self) -> Again {
+        if self.again { Again::Wanted } else { Again::Ask }
     }
 
     fn on_simulation(&self, arrangement: Arrangement) -> Result<Kept, Failure> {
@@ -112,7 +121,7 @@ impl Arguments {
         let profile = files::profile(&self.profile)?;
         let path = self.profile.display().to_string();
         let board = self.keeping.board(&profile, &self.serial_number)?;
-        on_simulation(&self.simulation, &profile, path, arrangement, board, &self.keeping)
+        on_simulation(&self.simulation, &profile, path, arrangement, board, &self.keeping, self.again())
     }
 }
 
@@ -124,6 +133,7 @@ pub(super) fn on_simulation(
     arrangement: Arrangement,
     board: BoardUnderTest,
     keeping: &Keeping,
+    again: Again,
 ) -> Result<Kept, Failure> {
     let simulated = simulation.of_board(&board.serial_number);
     let instruments = simulation.start(profile, &simulated, arrangement)?;
@@ -133,7 +143,7 @@ pub(super) fn on_simulation(
     let operator = keeping.operator.clone();
     let simulated = Some(simulated);
     let fixture = Some(instruments.world().with(|world| world.temperature()));
-    Order { profile, profile_path, simulated, board, operator, fixture, is_reference: false }
+    Order { profile, profile_path, simulated, board, operator, fixture, again, is_reference: false }
         .carry_out(station)
 }
 

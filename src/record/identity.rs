@@ -1,6 +1,6 @@
 //! All that is known of a run before the output goes on: which board, against which profile, on which bench.
 
-use super::Moment;
+use super::{Moment, Occasion};
 use crate::profile::{Limit, QuantityName};
 use jiff::Timestamp;
 use jiff::civil::Date;
@@ -41,6 +41,8 @@ pub struct Subject {
     pub bench: BenchUsed,
     /// Who does it, where that is known.
     pub operator: Option<String>,
+    /// Why it is done.
+    pub occasion: Occasion,
 }
 
 /// A run's name and all that is known before it begins; kept with the trace and with the run.
@@ -63,6 +65,9 @@ pub struct Identity {
     /// Who did it, where that is known.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub operator: Option<String>,
+    /// Why it was done; absent where the board was to be judged for the first time.
+    #[serde(default, skip_serializing_if = "Occasion::is_usual")]
+    pub occasion: Occasion,
     /// The program.
     pub software: Software,
 }

@@ -12,6 +12,7 @@ mod history;
 mod lines;
 mod lock;
 mod mark;
+mod passed;
 mod read;
 mod recovery;
 mod rescue;
@@ -143,6 +144,7 @@ impl Log {
             profile: subject.profile,
             bench: subject.bench,
             operator: subject.operator,
+            occasion: subject.occasion,
             software: Software::this(),
         };
         mark::write(&self.folder, &identity)?;

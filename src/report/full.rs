@@ -2,7 +2,7 @@
 
 use super::budget::budgets;
 use super::columns::{aligned, wrapped};
-use super::{Paint, Sheet, quantities, text};
+use super::{Paint, Sheet, quantities, text, words};
 use crate::record::{Instrument, Run};
 use std::path::Path;
 
@@ -29,6 +29,7 @@ fn facts(run: &Run) -> String {
     fact("batch", identity.board.batch.clone());
     fact("work order", identity.board.work_order.clone());
     fact("attempt", Some(identity.attempt.to_string()));
+    fact("occasion", words::occasion(&identity.occasion));
     fact("started", Some(format!("{} ({})", identity.started.local, identity.started.utc)));
     fact("ended", run.ended.as_ref().map(|ended| format!("{} ({})", ended.local, ended.utc)));
     fact("duration", run.duration_s.map(|seconds| format!("{seconds:.3} s")));

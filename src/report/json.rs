@@ -2,7 +2,7 @@
 
 use super::Sheet;
 use crate::analysis::Finding;
-use crate::record::{Moment, Run, RunId, SCHEMA, Simulated};
+use crate::record::{Moment, Occasion, Run, RunId, SCHEMA, Simulated};
 use crate::trace::OutputState;
 use crate::verdict::{Outcome, QuantityLine};
 use serde::Serialize;
@@ -35,6 +35,9 @@ pub fn json(sheet: &Sheet<'_>) -> String {
         started: identity.map(|identity| &identity.started),
         ended: sheet.run.and_then(|run| run.ended.as_ref()),
         simulated: identity.and_then(|identity| identity.bench.simulated.as_ref()),
+        occasion: identity
+            .map(|identity| &identity.occasion)
+            .filter(|occasion| **occasion != Occasion::Production),
     };
     // Only a map whose keys are no texts can fail here, and there is none.
     serde_json::to_string(&line).unwrap_or_else(|cause| format!("{{\"error\":\"{cause}\"}}"))
@@ -64,4 +67,6 @@ struct RunLine<'r> {
     ended: Option<&'r Moment>,
     #[serde(skip_serializing_if = "Option::is_none")]
     simulated: Option<&'r Simulated>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    occasion: Option<&'r Occasion>,
 }

@@ -57,6 +57,7 @@ fn heading(sheet: &Sheet<'_>, paint: Paint) -> String {
             .filter(|run| run.identity.attempt > 1)
             .map(|run| format!("attempt {}", run.identity.attempt)),
     );
+    facts.extend(sheet.run.and_then(|run| words::occasion(&run.identity.occasion)));
     lines.push(facts.join("   "));
     if let Some(simulated) = sheet.run.and_then(|run| run.identity.bench.simulated.as_ref()) {
         lines.push(format!(

@@ -1,6 +1,7 @@
 //! The words of the other rooms as text: a decision, the code of a finding.
 
 use crate::analysis::{FindingCode, Shape};
+use crate::record::Occasion;
 use crate::verdict::Decision;
 use serde::Serialize;
 
@@ -17,6 +18,15 @@ pub(super) fn code(code: FindingCode) -> String {
 /// `rectangular`
 pub(super) fn shape(shape: Shape) -> String {
     in_files(&shape)
+}
+
+/// Why a run was made, where that was not to judge a board for the first time.
+pub(super) fn occasion(occasion: &Occasion) -> Option<String> {
+    match occasion {
+        Occasion::Production => None,
+        Occasion::Again(run) => Some(format!("again, passed in {run}")),
+        Occasion::Reference => Some("reference board".to_owned()),
+    }
 }
 
 /// A coverage factor: `1.68`, `2`.

@@ -215,6 +215,7 @@ fn subject(profile: &Profile, file: &BenchFile) -> Subject {
         },
         bench: BenchUsed { name: file.name.clone(), instruments: Vec::new(), simulated: None },
         operator: None,
+        occasion: ebbmark::record::Occasion::Production,
     }
 }
 

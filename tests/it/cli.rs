@@ -1,6 +1,7 @@
 //! The program as its users meet it: a command in, standard output, standard error and an exit code out.
 #![expect(clippy::expect_used, reason = "a test fails by panicking")]
 
+mod again;
 mod bad_files;
 mod bad_traces;
 mod bench_check;
@@ -14,8 +15,10 @@ mod leftover;
 mod limits;
 mod output;
 mod panics;
+mod prior;
 mod second_program;
 mod stopped;
+mod terminal;
 mod truth;
 mod workplace;
 

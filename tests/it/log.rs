@@ -6,7 +6,8 @@ mod leftover;
 mod torn_line;
 
 use crate::run_sample::{finished, moment, passing, subject, trace};
-use ebbmark::record::{Log, LogError, Moment, Opened, Run};
+use ebbmark::record::{Log, LogError, Moment, Occasion, Opened, Run, Subject};
+use ebbmark::verdict::{Outcome, Verdict};
 use std::fs;
 use std::io::Write;
 use std::path::Path;
@@ -155,4 +156,40 @@ fn earlier_passes_are_the_newest_of_the_same_profile_in_the_two_newest_months() 
     let earlier = |most| log.folder().earlier_passes(&old.identity.profile, most).expect("readable");
     assert_eq!(earlier(50), runs, "nothing from July, nothing that failed, nothing of another profile");
     assert_eq!(earlier(2), runs[1..]);
+}
+
+/// A reference board says nothing of the boards made, and one tested twice is still one.
+#[test]
+fn of_earlier_passes_each_board_counts_once_and_no_reference_board() {
+    let root = tempfile::tempdir().expect("a temporary folder");
+    let mut log = open(root.path()).log;
+    let first = run(&mut log, "RN000123", moment(MORNING));
+    for occasion in [Occasion::Again(first.identity.run.clone()), Occasion::Reference] {
+        log.start(Subject { occasion, ..subject("RN000123") }, moment(MORNING)).expect("ready");
+        log.finish(&finished(passing()), &trace()).expect("space left");
+    }
+    let passes = log.folder().earlier_passes(&first.identity.profile, 10).expect("readable");
+    assert_eq!(passes, [first]);
+}
+
+#[test]
+fn a_board_has_passed_unless_it_failed_since() {
+    let root = tempfile::tempdir().expect("a temporary folder");
+    let mut log = open(root.path()).log;
+    let board = subject("RN000123").board;
+    let passed = |log: &Log, simulated| log.folder().passed(&board, simulated).expect("readable");
+    assert_eq!(passed(&log, true), None);
+    let first = run(&mut log, "RN000123", moment(MORNING));
+    run(&mut log, "RN000124", moment(MORNING));
+    assert_eq!(passed(&log, true), Some(first.clone()));
+    assert_eq!(passed(&log, false), None, "a simulated board is none of the real ones");
+    let mut ended = |outcome, occasion| {
+        log.start(Subject { occasion, ..subject("RN000123") }, moment(MORNING)).expect("ready");
+        log.finish(&finished(Verdict { outcome, ..passing() }), &trace()).expect("space left");
+        passed(&log, true)
+    };
+    assert_eq!(ended(Outcome::Aborted, Occasion::Production), Some(first.clone()), "that said nothing of it");
+    assert_eq!(ended(Outcome::Fail, Occasion::Reference), Some(first));
+    assert_eq!(ended(Outcome::Fail, Occasion::Production), None);
+    assert!(ended(Outcome::ConditionalPass, Occasion::Production).is_some());
 }

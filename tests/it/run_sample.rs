@@ -4,7 +4,7 @@
 use ebbmark::analysis::{About, Contribution, Finding, FindingCode, Quantity};
 use ebbmark::profile::{Limit, QuantityName};
 use ebbmark::record::{
-    BenchUsed, BoardUnderTest, Finished, Instrument, Moment, ProfileUsed, Simulated, Subject,
+    BenchUsed, BoardUnderTest, Finished, Instrument, Moment, Occasion, ProfileUsed, Simulated, Subject,
 };
 use ebbmark::trace::{Claims, Current, Ending, OutputState, Sample, Setting, Stop, Trace};
 use ebbmark::units::{Amps, Volts};
@@ -43,6 +43,7 @@ pub(crate) fn subject(serial_number: &str) -> Subject {
             simulated: Some(Simulated { condition: "good".to_owned(), seed: 7 }),
         },
         operator: Some("Ada".to_owned()),
+        occasion: Occasion::Production,
     }
 }
 

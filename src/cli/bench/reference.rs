@@ -1,6 +1,7 @@
 //! A reference board through a normal run, and what that says of the bench.
 
 use super::place::{Found, Place};
+use crate::cli::again::Again;
 use crate::cli::one_run::Order;
 use crate::cli::station::Station;
 use crate::cli::test::Keeping;
@@ -10,9 +11,6 @@ use crate::record::{BenchEntry, BenchFound, Log, now};
 use crate::trace::OutputState;
 use crate::verification::{Reference, compare};
 use std::path::Path;
-
-/// The batch under which runs of reference boards stand in the log.
-const BATCH: &str = "reference";
 
 /// Reads the file of a reference board.
 pub(super) fn read(path: &Path) -> Result<Reference, Failure> {
@@ -30,7 +28,7 @@ pub(super) fn measure(
         logs: place.logs.clone(),
         station: Some(found.station.clone()),
         operator: place.operator.clone(),
-        batch: Some(BATCH.to_owned()),
+        batch: None,
         work_order: None,
     };
     let board = keeping.board(profile, &reference.serial_number)?;
@@ -42,6 +40,7 @@ pub(super) fn measure(
         board,
         operator: place.operator.clone(),
         fixture: None,
+        again: Again::Shown,
         is_reference: true,
     };
     let run = order.carry_out(station)?.run;

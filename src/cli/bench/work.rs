@@ -7,7 +7,7 @@ use crate::cli::stop::listen;
 use crate::cli::{Exit, Failure, guard, who};
 use crate::procedure::{BenchWork, Procedure};
 use crate::profile::Supply;
-use crate::record::{BenchUsed, BoardUnderTest, ProfileUsed, Subject, now};
+use crate::record::{BenchUsed, BoardUnderTest, Occasion, ProfileUsed, Subject, now};
 use crate::report::OUTPUT_MAY_BE_ON;
 use crate::trace::{OutputState, Stop, Trace};
 use crate::units::Volts;
@@ -71,6 +71,7 @@ fn subject(what: &str, bench: BenchUsed) -> Subject {
         profile: ProfileUsed { path: String::new(), sha256: String::new(), limits: BTreeMap::new() },
         bench,
         operator: None,
+        occasion: Occasion::Production,
     }
 }
 

@@ -14,7 +14,7 @@ use crate::clock::Clock;
 use crate::instrument::bench_file::BenchFile;
 use crate::procedure::{self, Procedure, Steps, Sweep};
 use crate::profile::{Measure, Pack, Profile};
-use crate::record::{BenchUsed, KeptStudy, ProfileUsed, Simulated, Study, Subject, now};
+use crate::record::{BenchUsed, KeptStudy, Occasion, ProfileUsed, Simulated, Study, Subject, now};
 use crate::report::OUTPUT_MAY_BE_ON;
 use crate::sim::bench::InFixture;
 use crate::study::{Cycle, Order, Place, read, window};
@@ -211,6 +211,7 @@ impl At<'_, '_> {
             },
             bench,
             operator: keeping.operator.clone(),
+            occasion: Occasion::Production,
         })
     }
 

@@ -1,12 +1,11 @@
 //! What is done by hand between cycles: boards, temperatures and loads are brought about, and told as measured.
 
 use super::Ordered;
-use crate::cli::stop::listen;
-use crate::cli::{Exit, Failure};
+use crate::cli::{Exit, Failure, ask};
 use crate::study::{Cycle, Place};
 use crate::units::{Celsius, Ohms, Quantity, parse_quantity};
 use std::collections::BTreeSet;
-use std::io::{IsTerminal, Write};
+use std::io::IsTerminal;
 use tokio::runtime::Runtime;
 
 /// Whoever stands at the bench.
@@ -81,18 +80,18 @@ impl<'o, 'a> Operator<'o, 'a> {
         if let Some(degrees) =
             degrees.filter(|_| conditions.measured_temperature(place.temperature).is_none())
         {
-            match ask(&runtime, "temperature of the board as measured", degrees)? {
+            match value(&runtime, "temperature of the board as measured", degrees)? {
                 Some(found) => measured.temperature = Some(found),
                 None => return Ok(Answer::Stop),
             }
         }
         if conditions.measured_load(place.load).is_none() {
-            match ask(&runtime, "load as measured", load)? {
+            match value(&runtime, "load as measured", load)? {
                 Some(found) => measured.load = found,
                 None => return Ok(Answer::Stop),
             }
         }
-        if line(&runtime, "press Enter when it is so: ")?.is_none() {
+        if ask::line(&runtime, "press Enter when it is so: ")?.is_none() {
             return Ok(Answer::Stop);
         }
         Ok(Answer::Ready(measured))
@@ -103,13 +102,13 @@ impl<'o, 'a> Operator<'o, 'a> {
 pub(super) const STOPPED: Exit = Exit::Aborted;
 
 /// Asks for a value until one is understood; nothing means as ordered. `None` when the operator stops.
-fn ask<Q: Quantity + std::fmt::Display>(
+fn value<Q: Quantity + std::fmt::Display>(
     runtime: &Runtime,
     what: &str,
     ordered: Q,
 ) -> Result<Option<Q>, Failure> {
     loop {
-        let Some(answer) = line(runtime, &format!("{what} (Enter for {ordered}): "))? else {
+        let Some(answer) = ask::line(runtime, &format!("{what} (Enter for {ordered}): "))? else {
             return Ok(None);
         };
         if answer.trim().is_empty() {
@@ -120,26 +119,4 @@ fn ask<Q: Quantity + std::fmt::Display>(
             Err(error) => anstream::eprintln!("{error}"),
         }
     }
-}
-
-/// A line from the terminal; `None` at its end, and when the operator asks to stop. Reading cannot be called off, so a
-/// thread of its own does it; after a stop the program ends, and the thread with it.
-fn line(runtime: &Runtime, question: &str) -> Result<Option<String>, Failure> {
-    let stop = listen(runtime)?;
-    let mut err = anstream::stderr();
-    write!(err, "{question}").and_then(|()| err.flush())?;
-    let (sender, receiver) = tokio::sync::oneshot::channel();
-    std::thread::spawn(move || {
-        let mut text = String::new();
-        let read = std::io::stdin().read_line(&mut text);
-        // Nobody waits for the answer any more once the operator has asked to stop.
-        let _ = sender.send(read.map(|count| (count > 0).then_some(text)));
-    });
-    runtime.block_on(async move {
-        tokio::select! {
-            biased;
-            () = stop => Ok(None),
-            answer = receiver => Ok(answer.ok().transpose()?.flatten()),
-        }
-    })
 }

@@ -55,7 +55,7 @@ impl LogFolder {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::record::{BenchFound, BenchUsed, BoardUnderTest, Moment, ProfileUsed, Subject};
+    use crate::record::{BenchFound, BenchUsed, BoardUnderTest, Moment, Occasion, ProfileUsed, Subject};
     use crate::trace::OutputState;
     use jiff::tz::TimeZone;
     use std::collections::BTreeMap;
@@ -109,6 +109,7 @@ mod tests {
             profile: profile.clone(),
             bench: entry(0).bench,
             operator: None,
+            occasion: Occasion::Production,
         };
         let mut log = opened(root.path()).log;
         log.start(subject(), entry(1).taken).expect("begun");

@@ -2,16 +2,20 @@
 
 use super::folder::Kind;
 use super::{LogError, LogFolder, lines, read};
-use crate::record::{ProfileUsed, Run};
+use crate::record::{Occasion, ProfileUsed, Run};
 use crate::verdict::Outcome;
 use std::collections::VecDeque;
 
 /// Months looked through, the newest that have runs: what a board showed long ago says little of today's.
 const MONTHS: usize = 2;
 
+/// The key of a line that only an unusual run has; within a text its quotes would be escaped.
+const OCCASION: &str = "\"occasion\":";
+
 impl LogFolder {
     /// The newest runs, at most `most`, that passed against the same profile to the letter, so of the same board and
-    /// revision. Newest last. Reads the short lines of the two newest months; a line that cannot be read is left out.
+    /// revision. Reference boards are left out, and boards that were tested again after a pass: each counts once. Newest
+    /// last. Reads the short lines of the two newest months; a line that cannot be read is left out.
     ///
     /// # Errors
     /// The folder cannot be listed or a file not be read.
@@ -23,7 +27,8 @@ impl LogFolder {
         for month in months.iter().skip(months.len().saturating_sub(MONTHS)) {
             let path = self.file(month, Kind::Runs);
             lines::each(&path, |line| {
-                if line.contains(&profile.sha256) && line.contains(&pass) {
+                let is_usual = !line.contains(OCCASION);
+                if is_usual && line.contains(&profile.sha256) && line.contains(&pass) {
                     if newest.len() >= most {
                         newest.pop_front();
                     }
@@ -33,8 +38,12 @@ impl LogFolder {
             .map_err(LogError::disk("read the runs in", &path))?;
         }
         let runs = newest.iter().filter_map(|line| read::run_of(line.as_bytes()).ok());
-        Ok(runs
-            .filter(|run| run.outcome == Outcome::Pass && run.identity.profile.sha256 == profile.sha256)
-            .collect())
+        let is_one = |run: &Run| {
+            let identity = &run.identity;
+            run.outcome == Outcome::Pass
+                && identity.profile.sha256 == profile.sha256
+                && identity.occasion == Occasion::Production
+        };
+        Ok(runs.filter(is_one).collect())
     }
 }

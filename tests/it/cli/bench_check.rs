@@ -3,7 +3,7 @@
 use super::workplace::{BOARD, Workplace, always, at, quick_profile};
 use super::{Said, ebbmark};
 use crate::simulated_bench::setup;
-use ebbmark::record::{BenchEntry, BenchFound};
+use ebbmark::record::{BenchEntry, BenchFound, Occasion};
 use ebbmark::sim::bench::InFixture;
 use ebbmark::sim::device::Kind;
 use ebbmark::sim::link_faults::Effect;
@@ -114,7 +114,7 @@ fn a_test_waits_for_a_check_that_is_young_enough() {
     rules("check_every = \"24 h\"");
     place.test(&[]).ended(0);
     rules("check_every = \"1 ms\"\nwhen_overdue = \"warn\"");
-    let said = place.test(&[]);
+    let said = place.test(&["--again"]);
     said.ended(0);
     said.warns(&["note: check: done"]);
 }
@@ -142,7 +142,7 @@ fn a_reference_board_must_come_out_as_what_it_is_known_to_be() {
     let BenchFound::Reference { result, run, .. } = &entry.found else { panic!("{said}") };
     assert!(result.compared.iter().all(|found| found.normalised_error <= 1.0), "{result:?}");
     assert_eq!(place.runs()[0].identity.run, *run);
-    assert_eq!(place.runs()[0].identity.board.batch.as_deref(), Some("reference"));
+    assert_eq!(place.runs()[0].identity.occasion, Occasion::Reference);
     place.test(&[]).ended(0);
 
     // Known to be bad, and passed.
@@ -150,7 +150,7 @@ fn a_reference_board_must_come_out_as_what_it_is_known_to_be() {
     let said = measure("bad.toml");
     said.ended(3);
     assert!(last(&place, &said).problems[0].contains("would let bad boards through"), "{said}");
-    place.test(&[]).refuses(2, &["reference board RN900002: 0 min ago it found", "must FAIL"]);
+    place.test(&["--again"]).refuses(2, &["reference board RN900002: 0 min ago it found", "must FAIL"]);
 
     // Known to be elsewhere: 0.2 V over the root of 40 mV squared and what the bench adds is more than 1.
     place.put("moved.toml", &reference("pass", trip + 0.2));

@@ -1,5 +1,6 @@
 //! `characterise` over pseudo-terminals: a short study, its interruption, and what is refused.
 
+use super::terminal::typed;
 use super::workplace::{Running, SPEED, Workplace, quick_profile};
 use super::{Said, ebbmark};
 use std::fs;
@@ -109,5 +110,43 @@ fn a_real_bench_is_cycled_and_ends_with_its_output_off() {
     let said = ebbmark(place.folder(), &arguments);
     said.ended(0);
     assert!(said.out.contains("2 of 2 cycles") && said.out.contains("trip voltage"), "{said}");
+    assert!(!place.bench.output());
+}
+
+/// The temperature measured, not the one ordered, stands in the result.
+#[test]
+fn measured_temperatures_come_from_a_file() {
+    let folder = folder();
+    let conditions = "schema = 1\n[[temperature]]\nnominal = \"-20 degC\"\nmeasured = \"-19.7 degC\"\n\
+                      [[temperature]]\nnominal = \"60 degC\"\n";
+    fs::write(folder.path().join("conditions.toml"), conditions).expect("writable");
+    let said =
+        study(folder.path(), &["--cycles", "1", "--conditions", "conditions.toml", "--format", "json"]);
+    said.ended(0);
+    let json = said.json();
+    let cells = json["cells"].as_array().expect("an array");
+    let temperatures: Vec<f64> = cells.iter().filter_map(|cell| cell["temperature_c"].as_f64()).collect();
+    assert!(temperatures.contains(&-19.7) && temperatures.contains(&60.0), "{said}");
+
+    fs::write(folder.path().join("wrong.toml"), "schema = 1\n[[temperature]]\nnominal = \"20 V\"\n")
+        .expect("ours");
+    study(folder.path(), &["--conditions", "wrong.toml"])
+        .refuses(2, &["wrong.toml:3:", "which is a voltage"]);
+}
+
+#[test]
+fn at_a_terminal_the_operator_says_what_was_measured() {
+    let place = Workplace::new();
+    let arguments = ["characterise", "profile.toml", "--bench", "bench.toml", "--serial-number", "RN000123"];
+    let more = ["--cycles", "1", "--rate", "0.5 V/s", "--temperature", "-20 degC", "--format", "json"];
+    let arguments = [&arguments[..], &more].concat();
+    let said = typed(place.folder(), &arguments, &["cold", "-19.5 degC", ""]);
+    said.ended(0);
+    said.warns(&[
+        "put board RN000123 into the fixture, at -20.00 °C",
+        "temperature of the board as measured (Enter for -20.00 °C)",
+        "press Enter when it is so",
+    ]);
+    assert_eq!(said.json()["cells"][0]["temperature_c"], -19.5, "{said}");
     assert!(!place.bench.output());
 }
