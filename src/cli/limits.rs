@@ -101,7 +101,7 @@ impl Arguments {
         };
         print(&self.formatted(&sheet)?)?;
         if self.write {
-            write::into_profile(&self.profile, &text, &proposal)?;
+            write::into_profile(&self.profile, &text, &proposal, &profile.decision, self.guard_band)?;
         }
         Ok(Exit::Pass)
     }

@@ -35,7 +35,12 @@ impl LimitSets {
 
     /// The test limits in plain decimals, rounded inward: whole millivolts, tenths where the window is small.
     pub fn written(&self) -> Option<Window> {
-        let test = self.test?;
+        self.written_with(self.guard_band)
+    }
+
+    /// The same with another guard band.
+    pub fn written_with(&self, guard_band: f64) -> Option<Window> {
+        let test = self.at_test?.narrowed(guard_band, guard_band)?;
         let steps = if test.width() < COARSE { 1e4 } else { 1e3 };
         // Dust of binary fractions must not cost a whole step.
         let rounded = Window {

@@ -2,16 +2,32 @@
 
 use crate::cli::Failure;
 use crate::limits::Proposal;
-use crate::profile::{NewLimit, with_limits};
+use crate::profile::{Acceptance, DecisionRule, NewLimit, with_limits};
 use crate::units::Volts;
 use anyhow::Context;
 use std::io::Write;
 use std::path::Path;
 
 /// Writes the test limits of `proposal` into the profile at `path`, which holds `text`, and says what changed.
-pub(super) fn into_profile(path: &Path, text: &str, proposal: &Proposal) -> Result<(), Failure> {
+///
+/// `guard_band`, in expanded uncertainties, is asked for in all: what the profile's `rule` keeps from the limits at every run
+/// is not taken off a second time here.
+pub(super) fn into_profile(
+    path: &Path,
+    text: &str,
+    proposal: &Proposal,
+    rule: &DecisionRule,
+    guard_band: f64,
+) -> Result<(), Failure> {
     let name = path.display().to_string();
-    let new = with_limits(&name, text, &limits(proposal)?)?;
+    let kept_at_run = kept_at_run(rule, guard_band);
+    let new = with_limits(&name, text, &limits(proposal, guard_band - kept_at_run)?)?;
+    if kept_at_run > 0.0 {
+        anstream::eprintln!(
+            "note: the decision rule of {name} keeps {kept_at_run} x U from the limits at every run, so the limits are written \
+             without that; with rule = \"simple\" in [decision] they would hold it themselves"
+        );
+    }
     if new == text {
         anstream::eprintln!("{name} has these limits already");
         return Ok(());
@@ -21,15 +37,27 @@ pub(super) fn into_profile(path: &Path, text: &str, proposal: &Proposal) -> Resu
     Ok(())
 }
 
-fn limits(proposal: &Proposal) -> Result<Vec<NewLimit>, Failure> {
+/// What of a guard band of `asked` expanded uncertainties the rule keeps by itself. A bound on the risk of a wrong acceptance
+/// is a guard band of its own width, with nothing left to add.
+fn kept_at_run(rule: &DecisionRule, asked: f64) -> f64 {
+    match rule.acceptance {
+        Acceptance::Simple => 0.0,
+        Acceptance::GuardBand { of_expanded } => of_expanded.min(asked),
+        Acceptance::WrongAcceptance { .. } => asked,
+    }
+}
+
+/// The limits with a guard band of so many expanded uncertainties.
+fn limits(proposal: &Proposal, guard_band: f64) -> Result<Vec<NewLimit>, Failure> {
     let of = |quantity: &crate::limits::Quantity| {
         let name = quantity.name;
-        let window = quantity.sets.written().ok_or_else(|| {
-            anyhow::anyhow!(
-                "nothing is left between the test limits of the {}; nothing was written",
-                name.title()
-            )
-        })?;
+        let window =
+            quantity.sets.written_with(guard_band * quantity.expanded_uncertainty).ok_or_else(|| {
+                anyhow::anyhow!(
+                    "nothing is left between the test limits of the {}; nothing was written",
+                    name.title()
+                )
+            })?;
         Ok(NewLimit { name, min: Volts(window.min), max: Volts(window.max) })
     };
     proposal.quantities.iter().map(of).collect()

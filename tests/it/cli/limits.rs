@@ -283,6 +283,29 @@ fn writing_changes_the_limits_and_nothing_else_and_says_what() {
     assert_eq!(desk.text(), new);
 }
 
+/// A rule without a guard band leaves it to the limits; the usual one keeps it by itself, and it is not taken off twice.
+#[test]
+fn the_guard_band_is_written_only_where_the_rule_does_not_keep_it() {
+    let written = |rule: &str| {
+        let desk = Desk::with(&format!("{RIVER_NODE}\n[decision]\n{rule}\n"));
+        let said = desk.limits(&["--write", "--uncertainty", "20 mV"]);
+        said.ended(0);
+        let profile = ebbmark::profile::Profile::read("profile.toml", &desk.text()).expect("a good profile");
+        let trip = profile.limits[&ebbmark::profile::QuantityName::Trip];
+        (trip.min.expect("both ends"), trip.max.expect("both ends"), said.err.contains("x U from the limits"))
+    };
+    let (simple, guarded) = (written("rule = \"simple\""), written("rule = \"guard_band\""));
+    assert_eq!((simple.2, guarded.2), (false, true));
+    for (low, high) in [(guarded.0, simple.0), (simple.1, guarded.1)] {
+        // Both rounded to whole millivolts.
+        assert!((high - low - 20e-3).abs() < 1.1e-3, "{simple:?} {guarded:?}");
+    }
+    let half = written("rule = \"guard_band\"\nguard_band = \"50 %\"");
+    assert!((half.0 - guarded.0 - 10e-3).abs() < 1.1e-3, "{half:?} {guarded:?}");
+    let bounded = written("rule = \"wrong_acceptance\"");
+    assert_eq!((bounded.0, bounded.1), (guarded.0, guarded.1));
+}
+
 #[test]
 fn a_link_to_a_profile_stays_a_link() {
     let desk = Desk::new();
