@@ -6,25 +6,38 @@ use super::accuracy;
 use super::contribution::Contribution;
 use super::hysteresis::hysteresis;
 use super::quantity::Quantity;
+use super::switching_time::SHARE;
 use super::threshold::{BRACKET, lead_drop};
 use super::zero::meter_loading;
 use crate::profile::{Limit, Profile, QuantityName, Ramp};
 use crate::trace::Claims;
-use crate::units::{Amps, Unit, Volts};
+use crate::units::{Amps, Unit, Volts, prefixed};
+use std::time::Duration;
 
-/// What `profile` limits and a bench with these `claims` will measure, each at the middle of its limits.
-pub fn expected(profile: &Profile, claims: &Claims) -> Vec<Quantity> {
-    let bench = Foreseen { profile, claims };
+/// What `profile` limits and a bench with these `claims` will measure, each at the middle of its limits. `reading` is the time
+/// one reading of all roles takes, wire included.
+pub fn expected(profile: &Profile, claims: &Claims, reading: Duration) -> Vec<Quantity> {
+    let bench = Foreseen { profile, claims, reading };
     let trip = bench.threshold(QuantityName::Trip);
     let re_enable = bench.threshold(QuantityName::ReEnable);
     let hysteresis = hysteresis(&trip, &re_enable);
-    let found = [Some(trip), Some(re_enable), Some(hysteresis), bench.on_current(), bench.off_current()];
+    let delay = |name| bench.delay(name);
+    let found = [
+        Some(trip),
+        Some(re_enable),
+        Some(hysteresis),
+        bench.on_current(),
+        bench.off_current(),
+        delay(QuantityName::DetectDelay),
+        delay(QuantityName::ReleaseDelay),
+    ];
     found.into_iter().flatten().filter(|quantity| profile.limits.contains_key(&quantity.name)).collect()
 }
 
 struct Foreseen<'f> {
     profile: &'f Profile,
     claims: &'f Claims,
+    reading: Duration,
 }
 
 impl Foreseen<'_> {
@@ -68,6 +81,21 @@ impl Foreseen<'_> {
         Some(Quantity::new(QuantityName::OffCurrent, current.0, lines))
     }
 
+    /// Readings follow each other without a pause. Of each the middle is known; where in the time it takes it integrates is
+    /// not, and that leaves open when the set-point moved (once as much) and when the switch changed (twice as much).
+    fn delay(&self, name: QuantityName) -> Option<Quantity> {
+        let integration = self.claims.times?.integration;
+        let open = self.reading.saturating_sub(integration).as_secs_f64();
+        let source = format!(
+            "a reading of {} takes {}",
+            spoken(integration.as_secs_f64()),
+            spoken(self.reading.as_secs_f64())
+        );
+        let part =
+            Contribution::rectangular(&source, (3.0 * open + 2.0 * SHARE * integration.as_secs_f64()) / 2.0);
+        Some(Quantity::new(name, self.middle(name)?, vec![part]))
+    }
+
     fn middle(&self, name: QuantityName) -> Option<f64> {
         middle(self.profile.limits.get(&name)?)
     }
@@ -75,6 +103,10 @@ impl Foreseen<'_> {
     fn range_for(&self, current: Amps) -> Option<Amps> {
         self.claims.current.iter().map(|line| line.full_scale).find(|full_scale| *full_scale >= current)
     }
+}
+
+fn spoken(seconds: f64) -> String {
+    prefixed(seconds, Unit::Second)
 }
 
 /// The middle of a pair of limits, or the only one there is.

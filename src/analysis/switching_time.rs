@@ -11,7 +11,7 @@ use crate::units::Amps;
 use std::ops::Range;
 
 /// How far a share may be off: the voltage moved within the reading, the load warmed up, small capacitors.
-const SHARE: f64 = 0.03;
+pub(super) const SHARE: f64 = 0.03;
 
 /// A span of time since the start of the run, s.
 #[derive(Clone, Copy, Debug, PartialEq)]

@@ -7,7 +7,8 @@ use crate::verdict::doubts;
 
 /// Says which limits are too narrow for what `bench` will know of a board, or refuses the run, as the profile has it.
 pub(super) fn check(profile: &Profile, bench: &BenchFile) -> Result<(), Failure> {
-    let doubts = doubts(profile, &bench.claims(&profile.supply));
+    let reading = bench.ability(profile.supply.maximum).read_time;
+    let doubts = doubts(profile, &bench.claims(&profile.supply), reading);
     if doubts.is_empty() {
         return Ok(());
     }

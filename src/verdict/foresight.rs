@@ -7,6 +7,7 @@ use crate::profile::{Limit, Profile};
 use crate::trace::Claims;
 use crate::units::prefixed;
 use std::fmt;
+use std::time::Duration;
 
 /// A limited quantity whose uncertainty will be too large for its limits.
 #[derive(Clone, Debug, PartialEq)]
@@ -22,8 +23,8 @@ pub struct Doubt {
 }
 
 /// All quantities limited in `profile` whose width of the limits, over twice the U that a bench with these `claims` will
-/// have, is below the ratio of the profile's decision rule.
-pub fn doubts(profile: &Profile, claims: &Claims) -> Vec<Doubt> {
+/// have, is below the ratio of the profile's decision rule. `reading` is the time one reading of all roles takes.
+pub fn doubts(profile: &Profile, claims: &Claims, reading: Duration) -> Vec<Doubt> {
     let rule = &profile.decision;
     let doubt = |quantity: Quantity| {
         let width = width(profile.limits.get(&quantity.name)?)?;
@@ -32,7 +33,7 @@ pub fn doubts(profile: &Profile, claims: &Claims) -> Vec<Doubt> {
         let doubt = Doubt { quantity, expanded_uncertainty, width, wanted: rule.least_ratio };
         (doubt.ratio() < doubt.wanted).then_some(doubt)
     };
-    expected(profile, claims).into_iter().filter_map(doubt).collect()
+    expected(profile, claims, reading).into_iter().filter_map(doubt).collect()
 }
 
 fn width(limit: &Limit) -> Option<f64> {
@@ -74,7 +75,7 @@ mod tests {
     use super::*;
     use crate::analysis::fixture::profile;
     use crate::profile::{QuantityName, Ramp};
-    use crate::trace::{Accuracy, RangeAccuracy};
+    use crate::trace::{Accuracy, RangeAccuracy, Times};
     use crate::units::{Amps, Volts};
     use insta::assert_snapshot as says;
 
@@ -88,13 +89,16 @@ mod tests {
         }
     }
 
+    /// 2 ms until it begins, 20 ms of integration, 2 ms on the wire.
+    const READING: Duration = Duration::from_millis(24);
+
     fn told(profile: &Profile, claims: &Claims) -> String {
-        doubts(profile, claims).iter().map(ToString::to_string).collect::<Vec<_>>().join("\n")
+        doubts(profile, claims, READING).iter().map(ToString::to_string).collect::<Vec<_>>().join("\n")
     }
 
     #[test]
     fn a_good_bench_leaves_no_doubt() {
-        assert_eq!(doubts(&profile(), &claims()), []);
+        assert_eq!(doubts(&profile(), &claims(), READING), []);
     }
 
     #[test]
@@ -119,8 +123,27 @@ mod tests {
         profile.limits.retain(|name, _| *name == QuantityName::Trip);
         let set = Accuracy { relative: 0.5e-3, absolute: 5e-3, resolution: 1e-3 };
         let claims = Claims { sense: None, set: Some(set), ..claims() };
-        assert_eq!(doubts(&profile, &claims), []);
+        assert_eq!(doubts(&profile, &claims, READING), []);
         profile.decision.least_ratio = 20.0;
         says!(told(&profile, &claims), @r#"the limits of the trip voltage are 240.0 mV wide and its U will be 6.393 mV: 18.8 : 1, wanted 20 : 1 or more; improve first: set-point of the supply offset, 71 % of the variance"#);
+    }
+
+    /// Of 24 ms a reading of 20 ms leaves 4 ms open: three times that and twice 0.6 ms are 13.2 ms, and 95 % of half of it
+    /// 6.27 ms. Two instruments that take turns leave 28 ms open: 85.2 ms, and U is 40.5 ms.
+    #[test]
+    fn a_delay_that_the_readings_cannot_tell_is_named_before_the_run() {
+        let mut profile = profile();
+        profile.limits.clear();
+        let limit = Limit { at: None, min: None, max: Some(20e-3) };
+        profile.limits.insert(QuantityName::DetectDelay, limit);
+        let mut claims = claims();
+        assert_eq!(doubts(&profile, &claims, READING), [], "nothing is known of its readings");
+        let settle = Duration::from_millis(15);
+        claims.times = Some(Times { integration: Duration::from_millis(20), settle });
+        says!(told(&profile, &claims), @"the limits of the detect delay are 20.00 ms wide and its U will be 6.270 ms: 1.6 : 1, wanted 4 : 1 or more; improve first: a reading of 20.00 ms takes 24.00 ms, 100 % of the variance");
+        let turns = doubts(&profile, &claims, READING * 2);
+        assert!((turns[0].expanded_uncertainty - 40.47e-3).abs() < 1e-5, "{turns:?}");
+        profile.limits.insert(QuantityName::DetectDelay, Limit { max: Some(85e-3), ..limit });
+        assert_eq!(doubts(&profile, &claims, READING), []);
     }
 }
