@@ -267,7 +267,10 @@ mod tests {
             profile.supply,
             Supply { start: Volts(7.6), floor: Volts(5.2), maximum: Volts(8.4), current_limit: Amps(0.35) }
         );
-        assert_eq!(profile.load, Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0), capacitance: None });
+        assert_eq!(
+            profile.load,
+            Load { resistance: Ohms(55.0), tolerance: 0.01, rating: Watts(3.0), capacitance: None }
+        );
         assert_eq!(profile.timing.release_delay, Duration::from_millis(20));
         assert_eq!(profile.ramp, Ramp::Search { resolution: Volts(0.002) });
         assert_eq!(profile.limits.len(), 4);

@@ -149,7 +149,11 @@ impl BoardModel {
             (leak, leak * load)
         };
         Branches {
-            beside: pull_up + self.divider.0 * volts + self.detector_current.0 * awake + wiring.stray.0 * volts - wiring.fed(volts),
+            beside: pull_up
+                + self.divider.0 * volts
+                + self.detector_current.0 * awake
+                + wiring.stray.0 * volts
+                - wiring.fed(volts),
             load_current,
             load_volts,
         }
