@@ -4,6 +4,7 @@
 mod again;
 mod bad_files;
 mod bad_traces;
+mod beforehand;
 mod bench_check;
 mod bench_not_ready;
 mod bench_zero;

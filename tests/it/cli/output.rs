@@ -21,8 +21,17 @@ fn folder() -> TempDir {
 
 /// Tests a simulated board many times faster than real.
 fn simulated(folder: &TempDir, condition: &str, more: &[&str]) -> Said {
-    let arguments =
-        ["test", "profile.toml", "--bench", "sim", "--serial-number", "RN000123", "--speed", SPEED];
+    let arguments = [
+        "test",
+        "profile.toml",
+        "--bench",
+        "sim",
+        "--serial-number",
+        "RN000123",
+        "--speed",
+        SPEED,
+        "--again",
+    ];
     ebbmark(folder.path(), &[&arguments[..], &["--condition", condition], more].concat())
 }
 
