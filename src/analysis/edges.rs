@@ -106,8 +106,14 @@ pub(super) struct Bounce {
 impl Edges {
     /// Walks through `course` once.
     pub(super) fn find(course: &Course<'_>) -> Self {
-        let mut walk =
-            Walk { course, found: Self::default(), state: None, run: 0, run_began: Duration::ZERO };
+        let mut walk = Walk {
+            course,
+            found: Self::default(),
+            state: None,
+            been_on: false,
+            run: 0,
+            run_began: Duration::ZERO,
+        };
         for plateau in 0..course.plateaus.len() {
             walk.step(plateau);
         }
@@ -124,6 +130,8 @@ struct Walk<'c, 't> {
     course: &'c Course<'t>,
     found: Edges,
     state: Option<Direction>,
+    /// The board has been on before.
+    been_on: bool,
     run: usize,
     run_began: Duration,
 }
@@ -142,6 +150,8 @@ impl Walk<'_, '_> {
         if flips.restless() && !bounced {
             self.found.reversals.push(index);
         }
+        let been_on = self.been_on;
+        self.been_on |= flips.been_on;
         let Some(direction) = self.state else {
             self.state = Direction::from(plateau.settled);
             self.begin_run(index, plateau.began);
@@ -166,12 +176,23 @@ impl Walk<'_, '_> {
             self.found.bounces.push(Bounce { direction, plateau: index, changes });
         }
         if flips.count == 1 && self.moved_back(direction, index) {
-            self.found.reversals.push(index);
+            if been_on {
+                self.found.reversals.push(index);
+            } else {
+                self.forget_stays_from(plateau.set);
+            }
         } else if flips.count == 1 || bounced {
             self.found.edges.push(Edge { direction, plateau: index, last_before: flips.last_before, seen });
         }
         self.state = Some(flips.direction);
         self.begin_run(index, self.time_of(Some(seen)).unwrap_or(plateau.ended));
+    }
+
+    /// A board just connected comes on when its release delay is over. Until then it was off at voltages at which it
+    /// rests on.
+    fn forget_stays_from(&mut self, set: Volts) {
+        let course = self.course;
+        self.found.stays.retain(|stay| course.plateaus[stay.plateau].set < set);
     }
 
     /// A set-point rested, and the last reading caught the board in the middle of its change.
@@ -188,8 +209,15 @@ impl Walk<'_, '_> {
         let samples = self.course.plateaus[index].samples.clone();
         let first = samples.clone().find_map(|sample| Direction::from(self.course.states[sample]));
         let now = self.state.or(first).unwrap_or(Direction::Down);
-        let mut flips =
-            Flips { count: 0, returns: 0, last_before: None, seen: None, direction: now, held: 0 };
+        let mut flips = Flips {
+            count: 0,
+            returns: 0,
+            last_before: None,
+            seen: None,
+            direction: now,
+            held: 0,
+            been_on: false,
+        };
         let mut left = false;
         // A reading half way at once is no change when the next one shows the state of the set-point before.
         let mut any = self.state.is_some();
@@ -199,6 +227,7 @@ impl Walk<'_, '_> {
                 flips.held = 0;
                 continue;
             };
+            flips.been_on |= direction == Direction::Down;
             flips.held = if direction == flips.direction { flips.held + 1 } else { 1 };
             if direction != flips.direction {
                 flips.direction = direction;
@@ -274,6 +303,8 @@ struct Flips {
     direction: Direction,
     /// Readings at the end that all show it.
     held: usize,
+    /// A reading showed the board on.
+    been_on: bool,
 }
 
 impl Flips {
@@ -323,6 +354,16 @@ mod tests {
     fn coming_back_on_the_way_down_is_a_reversal() {
         let found = edges(&[on(7.6), on(6.1), off(6.0), on(5.9), off(5.8)]);
         assert_eq!(found.reversals, [3]);
+    }
+
+    #[test]
+    fn coming_on_late_when_just_connected_is_neither_a_reversal_nor_an_edge() {
+        let found = edges(&[off(7.6), off(7.5), on(7.4), on(6.1), off(6.0), off(5.9), on(6.5)]);
+        assert!(found.reversals.is_empty(), "{found:?}");
+        assert_eq!(found.edges.len(), 2);
+        let up = |stay: &&Stay| stay.direction == Direction::Up;
+        assert!(found.stays.iter().filter(up).all(|stay| stay.plateau > 3), "{found:?}");
+        assert_eq!(edges(&[off(7.6), on(7.5), off(7.4), on(7.3)]).reversals, [3], "once is enough");
     }
 
     #[test]
