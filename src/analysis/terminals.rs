@@ -8,6 +8,7 @@ use super::contribution::Contribution;
 use super::edges::{Direction, Stay};
 use super::plateau::Course;
 use crate::statistics::line::{Line, Point};
+use crate::trace::Sample;
 use crate::units::{Ohms, Volts};
 
 /// Plateaus within this share of the voltage count as near; farther ones only where there are too few.
@@ -153,7 +154,9 @@ pub(super) fn source_resistance(course: &Course<'_>) -> Option<Ohms> {
         return course.trace.claims.lead_resistance;
     }
     let samples = course.in_scope().flat_map(|plateau| &course.trace.samples[plateau.samples.clone()]);
-    let drops = samples.filter_map(|sample| {
+    // A supply that limits the current gives way by more than its resistance.
+    let regulates = |sample: &&Sample| sample.limited != Some(true) && sample.was_limited != Some(true);
+    let drops = samples.filter(regulates).filter_map(|sample| {
         let (amps, terminals) = (sample.current.amps()?, sample.sense.map(|_| course.terminals(sample))?);
         let drop = (sample.set - terminals).0;
         // Terminals far above the set-point are a supply that has not come down.
@@ -203,6 +206,20 @@ mod tests {
         assert!((off.at(Volts(6.0)).0 - 6.0).abs() < 1e-4);
         let resistance = source_resistance(&course).expect("both states");
         assert!((resistance.0 - 2.0).abs() < 1e-6, "{resistance}");
+    }
+
+    #[test]
+    fn a_supply_that_limits_the_current_says_nothing_of_its_resistance() {
+        let readings = [on(6.4), on(6.3), on(6.2), on(6.1), off(6.0), off(6.1), off(6.2), off(6.3)];
+        for at_rest in [true, false] {
+            let mut trace = with_leads(&readings, 2.0);
+            let sample = &mut trace.samples[1];
+            sample.sense = Some(Volts(3.0));
+            (sample.limited, sample.was_limited) = (Some(at_rest), Some(!at_rest));
+            let profile = profile();
+            let found = source_resistance(&Course::new(&trace, &profile)).expect("both states");
+            assert!((found.0 - 2.0).abs() < 1e-6, "{found}");
+        }
     }
 
     #[test]
