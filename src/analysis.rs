@@ -41,8 +41,10 @@ mod quantity;
 pub(crate) mod ranking;
 mod rates;
 mod rebound;
+mod regulating_load;
 mod residuals;
 mod restless;
+mod rests_off;
 mod settled;
 mod slow;
 mod spoilt;
@@ -88,9 +90,10 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     let mut down = Search::run(&course, &found, Direction::Down);
     let mut up = Search::run(&course, &found, Direction::Up);
     let noise = Search::allow_for_noise([&mut down, &mut up]);
-    let off_fit = off_fit::off_fit(&course);
+    let below = rests_off::rests_off_below(&course, &found, down.slow);
+    let off_fit = off_fit::off_fit(&course, below);
     let paths = off_fit.as_ref().map(|fit| off_budget::off_budget(fit, profile)).unwrap_or_default();
-    let (off_current, off_findings) = off_current::off_current(&course, !paths.is_empty());
+    let (off_current, off_findings) = off_current::off_current(&course, below, !paths.is_empty());
     let restless = source_resistance(&course, &down, &up);
     let spoilt = spoilt::spoilt(&course, restless.is_some());
 
@@ -99,7 +102,7 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     if restless.is_none() && !spoilt.thresholds() {
         quantities.extend(thresholds(&course, &down, &up));
     }
-    let derived = derived::derived(&course, &found, &down, &quantities);
+    let derived = derived::derived(&course, &found, &down, below, &quantities);
     quantities.extend(off_current);
     let (delays, delay_findings) = delay::delays(&course, &found, &quantities);
     quantities.extend(delays);
@@ -133,6 +136,11 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     findings.extend(discharge::still_charged(trace));
     findings.extend(note);
     findings.extend(derived.remarks);
+    if spoilt.switch() {
+        // What passed for the board's doing is not known to be that.
+        quantities.clear();
+        findings.retain(|finding| finding.about == About::Bench);
+    }
     let mut findings = spoilt.explain(findings);
     if trace.ending.stop == Stop::Aborted {
         // A run that was stopped before it came to the small ranges says nothing about them.

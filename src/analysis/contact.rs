@@ -5,7 +5,7 @@
 //! it happens to strike.
 
 use super::finding::{About, Finding, FindingCode};
-use super::plateau::Course;
+use super::plateau::{Course, REACHED};
 use crate::profile::QuantityName;
 use crate::trace::{Sample, SwitchState};
 use crate::units::{Ohms, Volts};
@@ -25,11 +25,12 @@ const STEADY: f64 = 0.01;
 const NEAR: f64 = 0.03;
 
 /// Readings between which the resistance of the supply line jumped, or a burst of short ones in which the voltage did.
-/// The burst proves nothing about a board that is `restless`: it may have switched in it.
+/// Of a board that is `restless` the burst proves something only where no board of this profile switches by itself.
 pub(super) fn contact(course: &Course<'_>, restless: bool) -> Option<Finding> {
     let tolerance = tolerance(course);
-    let text = between_readings(course, tolerance)
-        .or_else(|| if restless { None } else { within_burst(course, tolerance) })?;
+    let text = between_readings(course, tolerance).or_else(|| {
+        if restless && !rests_at_start(course) { None } else { within_burst(course, tolerance) }
+    })?;
     Some(Finding {
         code: FindingCode::Contact,
         about: About::Bench,
@@ -105,6 +106,17 @@ fn lost(sample: &Sample) -> Volts {
 
 fn resistance(sample: &Sample) -> Ohms {
     sample.current.amps().map_or(Ohms::ZERO, |current| lost(sample) / current)
+}
+
+/// True when the board, on at the start set-point where bursts are taken, has all of its leads' drop and still more
+/// than any re-enable voltage its limits allow.
+fn rests_at_start(course: &Course<'_>) -> bool {
+    let highest = course.profile.limits.get(&QuantityName::ReEnable).and_then(|limit| limit.max);
+    let start = course.profile.supply.start * (1.0 - REACHED);
+    let samples = course.trace.samples.iter().zip(&course.states);
+    let on = samples.filter(|(sample, state)| **state == SwitchState::On && sample.set >= start);
+    let usual = median(on.map(|(sample, _)| course.terminals(sample).0).collect());
+    usual.zip(highest).is_some_and(|(usual, highest)| usual > highest)
 }
 
 fn within_burst(course: &Course<'_>, tolerance: Volts) -> Option<String> {
@@ -186,5 +198,22 @@ mod tests {
         assert!(found(&trace));
         trace.claims.burst = Some(burst(0.02, 0.06));
         assert!(!found(&trace), "hum");
+    }
+
+    /// The highest re-enable is 6.56 V; through 5 ohm 6.97 V are left of 7.6 V, through 20 ohm 5.57 V.
+    #[test]
+    fn behind_a_high_resistance_a_burst_counts_only_where_no_board_switches() {
+        let profile = profile();
+        let found = |ohms| {
+            let mut trace = behind(&[ohms; 4]);
+            trace.claims.burst = Some(Burst {
+                aperture: Duration::from_millis(1),
+                readings: 40,
+                median_deviation: Volts(1e-4),
+                peak_to_peak: Volts(0.4),
+            });
+            contact(&Course::new(&trace, &profile), true).is_some()
+        };
+        assert!(found(5.0) && !found(20.0));
     }
 }

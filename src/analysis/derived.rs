@@ -11,6 +11,7 @@ use super::rebound::{negative_margin, rebound_margin, restart};
 use super::storage::{drains, storage_time};
 use super::threshold::Search;
 use crate::profile::QuantityName;
+use crate::units::Volts;
 
 /// What can be worked out, and what is to be said about it.
 #[derive(Default)]
@@ -22,8 +23,14 @@ pub(super) struct Derived {
     pub(super) remarks: Vec<Finding>,
 }
 
-/// Works it out. `thresholds` holds what was read of the thresholds so far.
-pub(super) fn derived(course: &Course<'_>, found: &Edges, down: &Search, thresholds: &[Quantity]) -> Derived {
+/// Works it out. The board rests off `below` this; `thresholds` holds what was read of the thresholds so far.
+pub(super) fn derived(
+    course: &Course<'_>,
+    found: &Edges,
+    down: &Search,
+    below: Volts,
+    thresholds: &[Quantity],
+) -> Derived {
     let Derived { mut quantities, mut findings, mut remarks } = Derived::default();
     let pack = &course.profile.pack;
     let known = |name| thresholds.iter().find(|quantity| quantity.name == name);
@@ -42,7 +49,7 @@ pub(super) fn derived(course: &Course<'_>, found: &Edges, down: &Search, thresho
     if let Some(storage) = &pack.storage {
         let limited = course.profile.limits.get(&QuantityName::OffCurrent).and_then(|limit| limit.at);
         let at = storage.at.or(limited).unwrap_or(course.profile.supply.floor);
-        if let Some(off) = off_current_at(course, at) {
+        if let Some(off) = off_current_at(course, below, at) {
             let time = storage_time(&off, storage);
             let is_limited = course.profile.limits.contains_key(&QuantityName::StorageTime);
             remarks.extend(is_limited.then(|| drains(&time, &off, storage)));

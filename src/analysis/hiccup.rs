@@ -8,7 +8,7 @@
 use super::finding::{About, Finding, FindingCode};
 use super::plateau::{Course, Plateau, REACHED};
 use crate::profile::QuantityName;
-use crate::trace::Sample;
+use crate::trace::SwitchState;
 use crate::units::Volts;
 
 /// How often the supply may limit at one set-point: once while a capacitor charges, and that may fall into two readings.
@@ -18,9 +18,8 @@ const MOST: usize = 2;
 pub(super) fn hiccup(course: &Course<'_>) -> Option<Finding> {
     let surely_on = surely_on(course);
     let limited = |plateau: &Plateau| {
-        let samples = &course.trace.samples[plateau.samples.clone()];
         // The first reading also tells of the way here.
-        samples.iter().skip(1).filter(|sample| was_limited(sample)).count()
+        plateau.samples.clone().skip(1).filter(|at| gave_way(course, *at)).count()
     };
     let (plateau, count) = course
         .in_scope()
@@ -53,8 +52,11 @@ pub(super) fn hiccup(course: &Course<'_>) -> Option<Finding> {
     })
 }
 
-fn was_limited(sample: &Sample) -> bool {
-    sample.was_limited == Some(true) || sample.limited == Some(true)
+/// A board that drew the load's current all the same was on: a contact that closed again has charged its capacitor.
+fn gave_way(course: &Course<'_>, at: usize) -> bool {
+    let sample = &course.trace.samples[at];
+    let briefly = sample.was_limited == Some(true) && course.states[at] != SwitchState::On;
+    sample.limited == Some(true) || briefly
 }
 
 /// From here up every board of the profile is on: above the highest re-enable, else at the start.
@@ -84,6 +86,7 @@ mod tests {
         assert!(found(&arming, &[1, 3, 6]));
         assert!(!found(&arming, &[]), "an open switch");
         assert!(!found(&[off(7.6), on(7.6), on(7.6), on(7.6)], &[0, 1, 2]), "a capacitor that charges once");
+        assert!(!found(&[on(7.6); 8], &[1, 3, 6]), "on all the same");
     }
 
     /// The highest re-enable is 6.56 V.

@@ -24,9 +24,14 @@ const SPAN: f64 = 0.002;
 /// Terminals this near to the set-point, in volts and as a share of it, have arrived.
 const ARRIVED: (f64, f64) = (0.02, 0.01);
 
-/// The off current, and what is to be said about it; `attributed` when its path has been told already.
-pub(super) fn off_current(course: &Course<'_>, attributed: bool) -> (Option<Quantity>, Vec<Finding>) {
-    let readings = Readings::find(course);
+/// The off current where the board rests off, `below` this, and what is to be said about it; `attributed` when its path
+/// has been told already.
+pub(super) fn off_current(
+    course: &Course<'_>,
+    below: Volts,
+    attributed: bool,
+) -> (Option<Quantity>, Vec<Finding>) {
+    let readings = Readings::find(course, below);
     let limit = course.profile.limits.get(&QuantityName::OffCurrent).copied().unwrap_or_default();
     let Some(at) = limit.at.or_else(|| readings.highest()) else {
         return (None, readings.moves().or_else(|| readings.overload_finding()).into_iter().collect());
@@ -46,13 +51,13 @@ pub(super) fn off_current(course: &Course<'_>, attributed: bool) -> (Option<Quan
 }
 
 /// All settled readings of the off current that count, on whatever range.
-pub(super) fn off_readings(course: &Course<'_>) -> Vec<Settled> {
-    Readings::find(course).settled
+pub(super) fn off_readings(course: &Course<'_>, below: Volts) -> Vec<Settled> {
+    Readings::find(course, below).settled
 }
 
 /// The off current at `at`, as the smallest range saw it.
-pub(super) fn off_current_at(course: &Course<'_>, at: Volts) -> Option<Quantity> {
-    let readings = Readings::find(course);
+pub(super) fn off_current_at(course: &Course<'_>, below: Volts, at: Volts) -> Option<Quantity> {
+    let readings = Readings::find(course, below);
     readings.ranges().into_iter().find_map(|range| {
         let on_range: Vec<Settled> =
             readings.settled.iter().filter(|settled| same(settled.range, range)).copied().collect();
@@ -69,20 +74,17 @@ struct Readings {
 }
 
 impl Readings {
-    fn find(course: &Course<'_>) -> Self {
+    fn find(course: &Course<'_>, below: Volts) -> Self {
         let mut found = Self { settled: Vec::new(), overloaded: None, moving: None };
-        // A board on its way off was on for its delay at voltages at which it rests off.
-        let was_on = |plateau: &&Plateau| plateau.in_scope && plateau.settled == SwitchState::On;
-        let Some(armed) = course.plateaus.iter().position(|plateau| was_on(&plateau)) else {
+        let was_on = |plateau: &Plateau| plateau.in_scope && plateau.settled == SwitchState::On;
+        let Some(armed) = course.plateaus.iter().position(was_on) else {
             return found;
         };
-        let lowest_on = course.plateaus.iter().filter(was_on).map(|plateau| plateau.set.0);
-        let below = lowest_on.fold(f64::INFINITY, f64::min) - SAME_SET;
         // Far below the floor the detector may be asleep, unless the profile says how far down it works.
         let awake = course.profile.off_line().map_or(f64::INFINITY, |line| line.from.0 - SAME_SET);
         for (index, plateau) in course.plateaus.iter().enumerate().skip(armed) {
             let counts = plateau.in_scope || plateau.set.0 >= awake;
-            if !counts || plateau.set.0 <= SAME_SET || plateau.set.0 > below {
+            if !counts || plateau.set.0 <= SAME_SET || plateau.set > below {
                 continue;
             }
             for samples in course.ranges(index) {
@@ -268,7 +270,7 @@ mod tests {
 
     fn found(trace: &Trace) -> (Option<Quantity>, Vec<FindingCode>) {
         let profile = profile();
-        let (quantity, findings) = off_current(&Course::new(trace, &profile), false);
+        let (quantity, findings) = off_current(&Course::new(trace, &profile), Volts(6.0), false);
         (quantity, findings.iter().map(|finding| finding.code).collect())
     }
 
@@ -319,7 +321,7 @@ mod tests {
         let mut trace = run(&[(5.2, 26.52e-6), (5.8, 29.58e-6)], 1e-4);
         trace.claims.sense_resistance = Some(Ohms(10e6));
         let profile = profile();
-        let (_, findings) = off_current(&Course::new(&trace, &profile), false);
+        let (_, findings) = off_current(&Course::new(&trace, &profile), Volts(6.0), false);
         let text = &findings.first().expect("too high").text;
         assert!(text.contains("29.00 µA") && text.contains("about 200.0 kΩ"), "{text}");
     }

@@ -39,10 +39,10 @@ pub(super) struct OffFit {
     pub(super) span: (Volts, Volts),
 }
 
-/// Fits the line, where the profile asks for it and the trace holds enough; neither conductance nor constant part is
+/// Fits the line through readings `below` which the board rests off, where the profile asks for it and the trace holds enough; neither conductance nor constant part is
 /// stated otherwise.
-pub(super) fn off_fit(course: &Course<'_>) -> Option<OffFit> {
-    let readings = chosen(course)?;
+pub(super) fn off_fit(course: &Course<'_>, below: Volts) -> Option<OffFit> {
+    let readings = chosen(course, below)?;
     let noise = Noise::of(course, &readings);
     let points: Vec<Point> = readings.iter().map(|settled| noise.point(settled)).collect();
     let line = Line::fit(points.iter().copied())?;
@@ -81,11 +81,11 @@ const ARITHMETIC: f64 = 1e-12;
 const SCATTER: &str = "scatter of the readings";
 
 /// The readings of the line: inside its span, and on as few of the smallest ranges as show enough of it.
-fn chosen(course: &Course<'_>) -> Option<Vec<Settled>> {
+fn chosen(course: &Course<'_>, below: Volts) -> Option<Vec<Settled>> {
     let wanted = course.profile.off_line()?;
     let (lowest, highest) = (wanted.from * (1.0 - BESIDE), wanted.to * (1.0 + BESIDE));
     let inside = |settled: &Settled| settled.volts >= lowest && settled.volts <= highest;
-    let readings: Vec<Settled> = off_readings(course).into_iter().filter(inside).collect();
+    let readings: Vec<Settled> = off_readings(course, below).into_iter().filter(inside).collect();
     let mut scales: Vec<f64> = readings.iter().map(scale).collect();
     scales.sort_by(f64::total_cmp);
     scales.dedup();
@@ -197,7 +197,7 @@ mod tests {
     fn fit(trace: &Trace) -> OffFit {
         let mut profile = profile();
         profile.off_line = Some(crate::profile::OffLine { from: Volts(1.0), to: Volts(2.8), points: 4 });
-        off_fit(&Course::new(trace, &profile)).expect("a line")
+        off_fit(&Course::new(trace, &profile), Volts(f64::INFINITY)).expect("a line")
     }
 
     fn share(quantity: &Quantity, source: &str) -> f64 {
@@ -252,7 +252,7 @@ mod tests {
         profile.off_line = Some(crate::profile::OffLine { from: Volts(1.0), to: Volts(2.8), points: 4 });
         let found = |volts: &[f64]| {
             let trace = run(volts, 1e-9, |volts| 1e-6 + 1e-6 * volts);
-            off_fit(&Course::new(&trace, &profile)).is_some()
+            off_fit(&Course::new(&trace, &profile), Volts(f64::INFINITY)).is_some()
         };
         assert!(found(&VOLTS));
         assert!(!found(&[2.80, 2.81, 2.82, 2.83]));

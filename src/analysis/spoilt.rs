@@ -2,7 +2,10 @@
 
 use super::finding::{Finding, FindingCode};
 use super::plateau::Course;
-use super::{contact, hiccup, hum, meter_fuse, meter_range, meter_reversed, supply_agrees, temperature};
+use super::{
+    contact, hiccup, hum, meter_fuse, meter_range, meter_reversed, regulating_load, supply_agrees,
+    temperature,
+};
 
 /// Faults of the bench that show in the readings, the most telling first.
 pub(super) struct Spoilt {
@@ -15,15 +18,21 @@ pub(super) fn spoilt(course: &Course<'_>, restless: bool) -> Spoilt {
     let fuse = meter_fuse::meter_fuse(course);
     // Behind an open fuse nothing agrees with the supply.
     let disagrees = if fuse.is_none() { supply_agrees::supply_disagrees(course) } else { None };
+    let stuck = meter_range::stuck_range(course);
+    let gives_way = if restless { None } else { hiccup::hiccup(course) };
+    // A small range or a supply that gives way has the board switch again and again, and its terminals jump.
+    let jumps = stuck.is_some() || gives_way.is_some();
+    let contact = if jumps { None } else { contact::contact(course, restless) };
     let found = [
         fuse,
         meter_reversed::meter_reversed(course),
-        meter_range::stuck_range(course),
+        stuck,
         disagrees,
-        if restless { None } else { hiccup::hiccup(course) },
-        contact::contact(course, restless),
+        gives_way,
+        contact,
         hum::ripple(course),
         temperature::temperature(course),
+        regulating_load::may_have_stopped(course),
     ];
     Spoilt { found: found.into_iter().flatten().collect() }
 }
@@ -34,9 +43,17 @@ impl Spoilt {
         self.found.iter().any(|finding| {
             matches!(
                 finding.code,
-                FindingCode::Contact | FindingCode::RangeNotAdequate | FindingCode::CurrentLimit
+                FindingCode::Contact
+                    | FindingCode::RangeNotAdequate
+                    | FindingCode::CurrentLimit
+                    | FindingCode::LoadStopped
             )
         })
+    }
+
+    /// True when no reading without the load's current shows that the switch was open.
+    pub(super) fn switch(&self) -> bool {
+        self.found.iter().any(|finding| finding.code == FindingCode::LoadStopped)
     }
 
     /// These findings first, then what else was found and is not explained by them.

@@ -23,6 +23,8 @@ pub(super) enum Narrowed {
         trip: Edge,
         /// The same of the re-enable voltage.
         re_enable: Edge,
+        /// On the way there it did what it had been seen not to do.
+        contradicted: bool,
     },
     /// The board never trips, or never comes back.
     OneMissing,
@@ -155,7 +157,9 @@ impl Hunt<'_> {
         };
         let (trip, re_enable) = (self.search.trip_edge().map(edge), self.search.re_enable_edge().map(edge));
         match (found, trip, re_enable) {
-            (Found::Both, Some(trip), Some(re_enable)) => Narrowed::Both { trip, re_enable },
+            (Found::Both, Some(trip), Some(re_enable)) => {
+                Narrowed::Both { trip, re_enable, contradicted: self.search.contradictions() > 0 }
+            }
             _ => Narrowed::OneMissing,
         }
     }

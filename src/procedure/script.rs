@@ -6,7 +6,7 @@ use super::deep::sweep_deep;
 use super::delay::measure_delays;
 use super::descent::descend_to_floor;
 use super::desk::Desk;
-use super::hum::listen_for_hum;
+use super::hum::{listen_for_contact, listen_for_hum};
 use super::in_band::switch_on_in_band;
 use super::narrow::{Narrowed, narrow};
 use super::off_current::measure_off_current;
@@ -43,10 +43,19 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
 
     if let Some(search) = &plan.search {
         match narrow(desk, plan, search, armed).await? {
-            Narrowed::Both { trip, re_enable } => return measure_more(desk, plan, trip, re_enable).await,
+            Narrowed::Both { trip, re_enable, contradicted } => {
+                if contradicted {
+                    arm_on(desk, plan).await?;
+                    listen_for_contact(desk, plan).await?;
+                }
+                return measure_more(desk, plan, trip, re_enable).await;
+            }
             Narrowed::OneMissing => return Ok(()),
             // Every step of the whole range shows what the board does.
-            Narrowed::Odd => arm_on(desk, plan).await?,
+            Narrowed::Odd => {
+                arm_on(desk, plan).await?;
+                listen_for_contact(desk, plan).await?;
+            }
         };
     }
     staircase(desk, plan).await

@@ -141,7 +141,7 @@ impl BoardModel {
         };
         let pull_up = if pull_up_conducts { volts / self.pull_up.0 } else { 0.0 };
         let (load_current, load_volts) = if self.closed(on) {
-            self.through_closed(load, state.load_runs, volts)
+            self.through_closed(wiring, load, state.load_runs, volts)
         } else if wiring.load == LoadWiring::Lifted {
             (0.0, 0.0)
         } else {
@@ -160,8 +160,12 @@ impl BoardModel {
     }
 
     /// Current through a closed switch and the voltage behind it.
-    fn through_closed(&self, load: f64, running: bool, volts: f64) -> (f64, f64) {
+    fn through_closed(&self, wiring: &Wiring, load: f64, running: bool, volts: f64) -> (f64, f64) {
         let tied = if self.switch == Switch::GateTied { gate::share(volts) } else { 1.0 };
+        if let Some(lockout) = wiring.lockout().filter(|_| running) {
+            let current = lockout.current(volts, self.load) * tied;
+            return (current, volts * tied - current * self.on_resistance.0);
+        }
         // A load that has stopped leaves the whole voltage standing.
         let current = if running { volts / (load + self.on_resistance.0) * tied } else { 0.0 };
         (current, if running { current * load } else { volts * tied })

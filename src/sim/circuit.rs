@@ -5,13 +5,13 @@
 //! instant exact without small steps.
 
 use super::board::State;
-use super::{BoardModel, Feed, Polarity, Switch, Wiring, gate};
+use super::{BoardModel, Feed, Lockout, Polarity, Switch, Wiring, gate};
 
 /// Forward voltage of the body diode, V; 0.8 V to 0.9 V is common practice for a power transistor.
 pub(super) const BODY_DIODE: f64 = 0.8;
 
 /// The most knots a board and its wiring have.
-const MOST_KNOTS: usize = 7;
+const MOST_KNOTS: usize = 7 + Lockout::KNOTS;
 
 /// The most pieces a circuit has: one up to each knot, the open end, and the current limit.
 const MOST_PIECES: usize = MOST_KNOTS + 2;
@@ -168,6 +168,9 @@ fn knots(board: &BoardModel, wiring: &Wiring) -> [f64; MOST_KNOTS] {
         }
         if board.switch == Switch::GateTied {
             knots[5..7].copy_from_slice(&gate::TIED);
+        }
+        if let Some(lockout) = wiring.lockout() {
+            knots[7..].copy_from_slice(&lockout.knots());
         }
     }
     // The usual board has one knot, and it stands first.

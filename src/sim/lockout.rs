@@ -1,14 +1,50 @@
-//! A load that stops by itself when its voltage falls too low, and starts again when it has recovered.
+//! A load that stops by itself when its voltage falls too low, and starts again when it has recovered. While it runs, it
+//! draws the same power at any voltage, as a converter does.
 
-use crate::units::Volts;
+use crate::units::{Ohms, Volts};
 
-/// The undervoltage lockout of a load.
+/// A load with an undervoltage lockout.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Lockout {
     /// The voltage below which the load stops.
     pub stops: Volts,
     /// The voltage above which it starts again.
     pub starts: Volts,
+    /// The voltage at which it draws what the board's resistor would.
+    pub rated: Volts,
+}
+
+/// Voltages between which its current is taken as straight, as shares of that at which it stops: within 1 % of a constant
+/// power up to the last, and the same current above.
+const STRAIGHT: [f64; Lockout::KNOTS] = [1.0, 1.1, 1.25, 1.5];
+
+impl Lockout {
+    /// How many of them there are.
+    pub(super) const KNOTS: usize = 4;
+
+    /// The voltages at which its characteristic bends, V.
+    pub(super) fn knots(self) -> [f64; Self::KNOTS] {
+        STRAIGHT.map(|share| self.stops.0 * share)
+    }
+
+    /// What it draws at `volts` while it runs, A, in place of a resistor of `rated`. Below the voltage at which it stops, in
+    /// proportion to it.
+    pub(super) fn current(self, volts: f64, rated: Ohms) -> f64 {
+        let power = self.rated.0 * self.rated.0 / rated.0;
+        let knots = self.knots();
+        let [first, .., last] = knots;
+        if volts <= first {
+            return power / first * (volts / first);
+        }
+        let between = knots.windows(2).find_map(|pair| match pair {
+            [from, to] if volts <= *to => {
+                let share = (volts - from) / (to - from);
+                Some(power / from + (power / to - power / from) * share)
+            }
+            _ => None,
+        });
+        between.unwrap_or(power / last)
+    }
 }
 
 /// A load that has stopped or started does nothing else for so long, s; common practice for a soft start.
@@ -60,9 +96,21 @@ impl LoadState {
 mod tests {
     use super::*;
 
+    /// P = V I.
+    #[test]
+    fn while_it_runs_its_power_is_the_same_at_any_voltage() {
+        let lockout = Lockout { stops: Volts(3.10), starts: Volts(3.16), rated: Volts(3.5) };
+        for step in 0..=100 {
+            let volts = 3.10 + 0.015 * f64::from(step);
+            let power = lockout.current(volts, Ohms(10.0)) * volts;
+            assert!((power / 1.225 - 1.0).abs() < 0.01, "{power} W at {volts} V");
+        }
+    }
+
     #[test]
     fn between_its_voltages_a_load_does_what_it_did_before() {
-        let mut load = LoadState::new(Some(Lockout { stops: Volts(3.10), starts: Volts(3.16) }));
+        let mut load =
+            LoadState::new(Some(Lockout { stops: Volts(3.10), starts: Volts(3.16), rated: Volts(3.5) }));
         let mut now = 0.0;
         let states = [3.12, 3.17, 3.12, 3.09, 3.12].map(|volts| {
             now += 0.01;

@@ -15,42 +15,14 @@ use single::CASES;
 /// Boards and benches drawn for each case.
 const SEEDS: std::ops::Range<u64> = 0..10;
 
-/// Cases that do not come out as they should yet, and why.
-///
-/// What is missing is a finding of this name, unless the reason says otherwise.
-const NOT_YET: &[(&str, &str)] = &[
-    (
-        "15",
-        "on some seeds no reading falls into a burst of the contact while the board is on, and what is left looks like chatter",
-    ),
-    (
-        "28b",
-        "every reading is that of a board that trips where the load stops; only a voltmeter at the load tells",
-    ),
-    ("P10", "as 15"),
-    (
-        "P1",
-        "on one seed in ten the off current is read but not stated: the slow board was seen on below the voltage it is read at",
-    ),
-];
-
-/// The list names cases there are.
-#[test]
-fn what_is_not_right_yet_is_a_case() {
-    for (number, reason) in NOT_YET {
-        let known = CASES.iter().chain(PAIRS).any(|case| case.number == *number);
-        assert!(known, "{number}, {reason}: no such case");
-    }
-}
-
 #[test]
 fn every_case_has_its_outcome_and_its_name() {
-    table::check(CASES, NOT_YET, SEEDS);
+    table::check(CASES, SEEDS);
 }
 
 #[test]
 fn every_pair_has_its_outcome_and_its_name() {
-    table::check(PAIRS, NOT_YET, SEEDS);
+    table::check(PAIRS, SEEDS);
 }
 
 /// Share of boards of a case, with this noise at their detectors, whose true value lies within the expanded

@@ -30,6 +30,9 @@ const DRIFT: f64 = 5e-3 / 3.0;
 /// leads drop.
 const LOCKOUT: [f64; 2] = [2.0 / 3.0, 4.0 / 3.0];
 
+/// Where such a load draws what the board's resistor would, as a multiple of where it starts.
+const RATED: f64 = 1.1;
+
 /// What an open sense lead adds to the output of one class of supplies.
 const SENSE_HIGH: f64 = 0.05;
 
@@ -73,7 +76,7 @@ pub(super) fn apply(condition: Condition, setup: &mut Setup, draw: &mut Draw) {
         }
         Condition::LoadLockout => {
             let [stops, starts] = LOCKOUT.map(|share| board.trip + board.hysteresis * share);
-            setup.wiring.load = LoadWiring::LocksOut(Lockout { stops, starts });
+            setup.wiring.load = LoadWiring::LocksOut(Lockout { stops, starts, rated: starts * RATED });
         }
         Condition::BackFeed => setup.wiring.feed = Some(CHARGER),
         Condition::UnstatedVoltmeter => setup.wiring.stray = SECOND_VOLTMETER,
