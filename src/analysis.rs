@@ -48,6 +48,7 @@ mod rests_off;
 mod settled;
 mod slow;
 mod spoilt;
+mod spread;
 mod stop;
 mod storage;
 mod stuck_on;
@@ -65,6 +66,7 @@ pub use expected::expected;
 pub use finding::{About, Finding, FindingCode};
 pub use quantity::{Quantity, Term};
 pub use rates::from_rates;
+pub(crate) use spread::Spread;
 
 use crate::profile::{Profile, QuantityName};
 use crate::trace::{Stop, Trace};

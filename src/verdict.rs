@@ -6,7 +6,6 @@ mod foresight;
 mod judge;
 mod line;
 mod outcome;
-mod spread;
 
 pub use budget::{BudgetLine, budget};
 pub use decision::{COVERAGE_FACTOR, Decision, Judged};

@@ -9,8 +9,6 @@ use super::residuals::Shape;
 use crate::profile::{Conducts, Draws, OffBudget, OffPath, Profile};
 use crate::units::{Amps, Ohms, Siemens, prefixed};
 
-/// Coverage factor of the expanded uncertainty (JCGM 100:2008, 6.3.3).
-const COVERAGE: f64 = 2.0;
 /// What is missing or too much fits a cause when it agrees with it to this share.
 const FITS: f64 = 0.15;
 /// A resistance beside the design's from here on may be dirt.
@@ -22,7 +20,7 @@ pub(super) fn off_budget(fit: &OffFit, profile: &Profile) -> Vec<Finding> {
         return vec![bend];
     }
     let Some(budget) = profile.off_budget() else { return Vec::new() };
-    resistive(fit, &budget, profile).into_iter().chain(constant(fit, &budget)).collect()
+    resistive(fit, &budget, profile).into_iter().chain(constant(fit, &budget, profile)).collect()
 }
 
 /// A current that does not go with the voltage in a straight line.
@@ -53,7 +51,8 @@ fn bend(fit: &OffFit) -> Option<Finding> {
 }
 
 fn resistive(fit: &OffFit, budget: &OffBudget, profile: &Profile) -> Option<Finding> {
-    let (slope, expanded) = (fit.conductance.value, COVERAGE * fit.conductance.standard_uncertainty);
+    let slope = fit.conductance.value;
+    let expanded = fit.conductance.expanded_uncertainty(profile.decision.coverage);
     let allowed = budget.conductance;
     let beyond = Beyond::of(slope, expanded, (allowed.least.0, allowed.most.0))?;
     let excess = slope - allowed.nominal.0;
@@ -85,8 +84,9 @@ fn resistive(fit: &OffFit, budget: &OffBudget, profile: &Profile) -> Option<Find
     Some(Finding { code: FindingCode::OffPathResistive, about: About::Board, text })
 }
 
-fn constant(fit: &OffFit, budget: &OffBudget) -> Option<Finding> {
-    let (value, expanded) = (fit.constant.value, COVERAGE * fit.constant.standard_uncertainty);
+fn constant(fit: &OffFit, budget: &OffBudget, profile: &Profile) -> Option<Finding> {
+    let (value, expanded) =
+        (fit.constant.value, fit.constant.expanded_uncertainty(profile.decision.coverage));
     let allowed = budget.current;
     let (least, most) = (allowed.least, allowed.most);
     let value_text = Amps(value);

@@ -41,11 +41,12 @@ pub(super) fn off_current(
         let on_range: Vec<Settled> =
             readings.settled.iter().filter(|settled| same(settled.range, range)).copied().collect();
         let Some(quantity) = estimate(course, &on_range, at) else { continue };
-        if adequate(&quantity, &limit) {
+        let expanded = quantity.expanded_uncertainty(course.profile.decision.coverage);
+        if adequate(&quantity, expanded, &limit) {
             let finding = outside_finding(&quantity, &limit, at, (!attributed).then_some(&on_range));
             return (Some(quantity), finding.into_iter().collect());
         }
-        coarse = coarse.or_else(|| Some(coarse_finding(&quantity, range)));
+        coarse = coarse.or_else(|| Some(coarse_finding(&quantity, expanded, range)));
     }
     (None, readings.moves().or(coarse).or_else(|| readings.overload_finding()).into_iter().collect())
 }

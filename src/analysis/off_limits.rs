@@ -10,14 +10,11 @@ use crate::units::{Amps, Ohms, Volts};
 
 /// The expanded uncertainty may fill this share of the limits' width.
 const ADEQUATE: f64 = 0.5;
-/// Coverage factor of the expanded uncertainty (JCGM 100:2008, 6.3.3).
-const COVERAGE: f64 = 2.0;
 /// The voltages must lie apart by this share before the path is guessed from them.
 const APART: f64 = 0.02;
 
-/// False when the uncertainty hides the limits, unless the value lies outside them all the same.
-pub(super) fn adequate(quantity: &Quantity, limit: &Limit) -> bool {
-    let expanded = COVERAGE * quantity.standard_uncertainty;
+/// False when the `expanded` uncertainty hides the limits, unless the value lies outside them all the same.
+pub(super) fn adequate(quantity: &Quantity, expanded: f64, limit: &Limit) -> bool {
     let width = match (limit.min, limit.max) {
         (Some(min), Some(max)) => max - min,
         (Some(only), None) | (None, Some(only)) => only.abs(),
@@ -29,9 +26,9 @@ pub(super) fn adequate(quantity: &Quantity, limit: &Limit) -> bool {
 }
 
 /// The range hides the limits.
-pub(super) fn coarse_finding(quantity: &Quantity, range: Option<Amps>) -> Finding {
+pub(super) fn coarse_finding(quantity: &Quantity, expanded: f64, range: Option<Amps>) -> Finding {
     let range = range.map_or_else(|| "its range".to_owned(), |range| format!("the {range} range"));
-    let expanded = Amps(COVERAGE * quantity.standard_uncertainty);
+    let expanded = Amps(expanded);
     Finding {
         code: FindingCode::RangeNotAdequate,
         about: About::Bench,
@@ -128,9 +125,9 @@ mod tests {
 
     #[test]
     fn a_range_is_adequate_when_the_limits_show_through_its_uncertainty() {
-        assert!(adequate(&quantity(2.5e-6, 0.3e-6), &LIMIT));
-        assert!(!adequate(&quantity(2.5e-6, 0.8e-6), &LIMIT));
-        assert!(adequate(&quantity(9e-6, 0.8e-6), &LIMIT));
-        assert!(adequate(&quantity(9e-6, 1.0), &Limit::default()));
+        assert!(adequate(&quantity(2.5e-6, 0.3e-6), 0.6e-6, &LIMIT));
+        assert!(!adequate(&quantity(2.5e-6, 0.8e-6), 1.6e-6, &LIMIT));
+        assert!(adequate(&quantity(9e-6, 0.8e-6), 1.6e-6, &LIMIT));
+        assert!(adequate(&quantity(9e-6, 1.0), 2.0, &Limit::default()));
     }
 }

@@ -5,6 +5,7 @@
 //! share cancels, a gain counts for the difference only, and nothing has to be known of the terms.
 
 pub(super) use super::contribution::Contribution;
+use super::spread::Spread;
 use crate::profile::QuantityName;
 use crate::statistics::influence::{Influence, welch_satterthwaite};
 use crate::units::Unit;
@@ -99,6 +100,12 @@ impl Quantity {
             return vec![Influence::normal(self.standard_uncertainty)];
         }
         self.contributions.iter().map(Contribution::influence).collect()
+    }
+
+    /// Half the width of the symmetric interval that holds the true value with `probability`, from how the error is
+    /// spread (JCGM 100:2008, 6.2.1).
+    pub fn expanded_uncertainty(&self, probability: f64) -> f64 {
+        Spread::of(self).coverage_factor(probability) * self.standard_uncertainty
     }
 
     /// Effective degrees of freedom of the combined standard uncertainty (Welch-Satterthwaite, JCGM 100:2008, G.4.1);

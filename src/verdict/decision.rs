@@ -4,8 +4,7 @@
 //! (4.2.3); so there are where the probability of a wrong acceptance is bounded (JCGM 106:2012), which makes the guard band
 //! as wide as the spread of the error asks for. Every decision tells its specific risk.
 
-use super::spread::Spread;
-use crate::analysis::Quantity;
+use crate::analysis::{Quantity, Spread};
 use crate::profile::{Acceptance, DecisionRule, Limit};
 use serde::{Deserialize, Serialize};
 

@@ -1,7 +1,7 @@
 //! Whether a run can tell good boards from bad ones, before it begins: the width of each limit against twice the U to be
 //! expected, and what to improve where that is too little.
 
-use super::spread::Spread;
+use crate::analysis::Spread;
 use crate::analysis::{Quantity, expected};
 use crate::profile::{Limit, Profile};
 use crate::trace::Claims;

@@ -1,22 +1,22 @@
 //! Where the truth may lie about a measured value, from the shapes of all influences together.
 
-use crate::analysis::Quantity;
+use super::quantity::Quantity;
 use crate::profile::Limit;
 use crate::statistics::coverage;
 use crate::statistics::distribution::{Distribution, Normal};
 use crate::statistics::risk::{Interval, nonconformance};
 
 /// The distribution of a quantity's error; `None` inside where nothing is uncertain.
-pub(super) struct Spread(Option<coverage::Spread>);
+pub(crate) struct Spread(Option<coverage::Spread>);
 
 impl Spread {
-    pub(super) fn of(quantity: &Quantity) -> Self {
+    pub(crate) fn of(quantity: &Quantity) -> Self {
         Self(coverage::Spread::new(&quantity.influences()))
     }
 
     /// How many standard uncertainties cover the truth with `probability`: from the shapes that are there and their
     /// degrees of freedom, and that of a normal distribution where nothing is uncertain.
-    pub(super) fn coverage_factor(&self, probability: f64) -> f64 {
+    pub(crate) fn coverage_factor(&self, probability: f64) -> f64 {
         let exact = self
             .0
             .as_ref()
@@ -26,7 +26,7 @@ impl Spread {
 
     /// Probability that the truth lies on the other side of `limit` than `value`: the specific risk of the decision (JCGM
     /// 106:2012, 9.3.2, with nothing taken as known of the board beforehand); `None` for a value that is no number.
-    pub(super) fn risk(&self, value: f64, limit: &Limit) -> Option<f64> {
+    pub(crate) fn risk(&self, value: f64, limit: &Limit) -> Option<f64> {
         if !value.is_finite() {
             return None;
         }
