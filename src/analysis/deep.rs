@@ -6,7 +6,8 @@
 
 use super::finding::{About, Finding, FindingCode};
 use super::plateau::{Course, SAME_SET, pulled_down};
-use super::quantity::{Contribution, Quantity};
+use super::quantity::Quantity;
+use super::zero;
 use crate::profile::QuantityName;
 use crate::trace::SwitchState;
 use crate::units::{Amps, Volts};
@@ -121,13 +122,9 @@ fn most(course: &Course<'_>, swept: &[Reading]) -> Option<Quantity> {
         .fold(0.0, f64::max);
     let counts = |reading: &&Reading| reading.state != SwitchState::Off || scale(reading) <= used;
     let most = swept.iter().filter(counts).max_by(|a, b| a.amps.0.total_cmp(&b.amps.0))?;
-    let mut parts = Vec::new();
-    let reading = most.amps + course.voltmeter_current(most.volts);
-    if let Some(accuracy) = course.trace.claims.current_accuracy(most.range, reading) {
-        let source = format!("ammeter, at {}", most.volts);
-        parts.push(Contribution::normal(&source, accuracy.standard_uncertainty(reading.0)));
-    }
-    Some(Quantity::new(QuantityName::DeepCurrent, most.amps.0, parts))
+    let passing = course.voltmeter_current(most.volts);
+    let (amps, parts) = zero::without_zero(course, most.range, most.volts, most.amps.0, passing);
+    Some(Quantity::new(QuantityName::DeepCurrent, amps, parts))
 }
 
 #[cfg(test)]
