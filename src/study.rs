@@ -8,6 +8,10 @@ mod cycle;
 mod delay;
 mod drift;
 mod estimates;
+#[cfg(test)]
+mod fixture;
+mod here;
+mod limits;
 mod plan;
 mod proposal;
 mod tempco;

@@ -100,7 +100,7 @@ fn worst_slope(at_rates: &[AtRate], point: impl Fn(&AtRate) -> Point) -> f64 {
 
 #[cfg(test)]
 mod tests {
-    use super::super::estimates::fixture::cycles;
+    use super::super::fixture::cycles;
     use super::*;
     use crate::units::Volts;
 

@@ -43,7 +43,7 @@ impl Drift {
 
 #[cfg(test)]
 mod tests {
-    use super::super::estimates::fixture::cycles;
+    use super::super::fixture::cycles;
     use super::*;
 
     fn drift(values: &[f64], width: f64) -> Option<Drift> {

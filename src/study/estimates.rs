@@ -1,8 +1,9 @@
 //! All that the cycles of a study say, condition by condition.
 
-use super::proposal::Wanted;
+use super::here::Here;
+use super::limits::limits;
 use super::tempco::AtTemperature;
-use super::{Cycle, Delay, Drift, Edge, Jitter, Place, Plan, Proposal, TemperatureCoefficient, Threshold};
+use super::{Cycle, Delay, Drift, Edge, Place, Plan, Proposal, TemperatureCoefficient, Threshold};
 use crate::profile::QuantityName;
 use serde::Serialize;
 
@@ -103,7 +104,8 @@ pub struct Limits {
 }
 
 /// The quantities a study is about.
-const QUANTITIES: [QuantityName; 3] = [QuantityName::Trip, QuantityName::ReEnable, QuantityName::Hysteresis];
+pub(super) const QUANTITIES: [QuantityName; 3] =
+    [QuantityName::Trip, QuantityName::ReEnable, QuantityName::Hysteresis];
 
 impl Edge {
     /// The threshold of this direction.
@@ -142,110 +144,6 @@ impl Estimates {
     }
 }
 
-/// The cycles of one board at one temperature and load, by rate.
-struct Here<'c> {
-    board: &'c str,
-    temperature_c: Option<f64>,
-    load_ohm: f64,
-    rates: Vec<(Option<f64>, Vec<&'c Cycle>)>,
-    confidence: f64,
-}
-
-impl<'c> Here<'c> {
-    fn new(plan: &'c Plan, cycles: &[&'c Cycle], place: Place, confidence: f64) -> Self {
-        let here: Vec<&Cycle> = cycles.iter().copied().filter(|it| it.order.place() == place).collect();
-        let temperatures: Vec<f64> = here.iter().filter_map(|it| it.temperature).map(|it| it.0).collect();
-        let loads: Vec<f64> = here.iter().map(|cycle| cycle.load.0).collect();
-        let at = |rate: usize| here.iter().copied().filter(|it| it.order.rate == rate).collect();
-        Self {
-            board: &plan.boards[place.board],
-            temperature_c: mean(&temperatures),
-            load_ohm: mean(&loads).unwrap_or(plan.loads[place.load].0),
-            rates: plan.rates.iter().enumerate().map(|(index, rate)| (*rate, at(index))).collect(),
-            confidence,
-        }
-    }
-
-    fn threshold(&self, cycles: &[&Cycle], edge: Edge) -> Option<Threshold> {
-        Threshold::of(cycles, edge, self.confidence)
-    }
-
-    fn cells(&self) -> Vec<Cell> {
-        let mut cells = Vec::new();
-        for (rate, cycles) in &self.rates {
-            for edge in Edge::ALL {
-                cells.extend(self.threshold(cycles, edge).map(|threshold| Cell {
-                    board: self.board.to_owned(),
-                    temperature_c: self.temperature_c,
-                    load_ohm: self.load_ohm,
-                    rate_v_per_s: *rate,
-                    quantity: edge.quantity(),
-                    threshold,
-                    drift: Drift::of(cycles, edge, self.confidence),
-                }));
-            }
-        }
-        cells
-    }
-
-    fn at_rest(&self) -> Vec<AtRest> {
-        let [trip, re_enable] = Edge::ALL.map(|edge| self.edge_at_rest(edge));
-        let hysteresis = trip.as_ref().zip(re_enable.as_ref()).map(|(trip, re_enable)| {
-            let value_v = re_enable.value_v - trip.value_v;
-            let claim = self.rates.iter().flat_map(|(_, cycles)| cycles).find_map(|cycle| cycle.claim);
-            AtRest {
-                quantity: QuantityName::Hysteresis,
-                value_v,
-                delay_included: trip.delay_included,
-                statistical_v: trip.statistical_v.hypot(re_enable.statistical_v),
-                // What the instrument errs in common at both thresholds cancels (JCGM 100:2008, 5.2.2).
-                instrument_v: claim.map(|claim| claim.standard_uncertainty(value_v)),
-                delay: None,
-                ..trip.clone()
-            }
-        });
-        trip.into_iter().chain(re_enable).chain(hysteresis).collect()
-    }
-
-    fn edge_at_rest(&self, edge: Edge) -> Option<AtRest> {
-        let found: Vec<(Option<f64>, &Vec<&Cycle>, Threshold)> = self
-            .rates
-            .iter()
-            .filter_map(|(rate, cycles)| Some((*rate, cycles, self.threshold(cycles, edge)?)))
-            .collect();
-        let ramps: Vec<(Vec<&Cycle>, &Threshold)> = found
-            .iter()
-            .filter(|(rate, ..)| rate.is_some())
-            .map(|(_, cycles, threshold)| ((*cycles).clone(), threshold))
-            .collect();
-        let delay = Delay::of(&ramps, edge);
-        let slowest = || {
-            let speed = |rate: Option<f64>| rate.unwrap_or(0.0);
-            found.iter().min_by(|a, b| speed(a.0).total_cmp(&speed(b.0)))
-        };
-        let (rate, _, threshold) = slowest()?;
-        let (value_v, statistical_v) = match (rate, &delay) {
-            (Some(_), Some(delay)) => (delay.at_rest_v, delay.statistical_v),
-            _ => (threshold.mean_v, threshold.statistical_v),
-        };
-        Some(AtRest {
-            board: self.board.to_owned(),
-            temperature_c: self.temperature_c,
-            load_ohm: self.load_ohm,
-            quantity: edge.quantity(),
-            value_v,
-            delay_included: rate.is_some() && delay.is_none(),
-            statistical_v,
-            instrument_v: threshold.instrument_v,
-            delay,
-        })
-    }
-}
-
-fn mean(values: &[f64]) -> Option<f64> {
-    (!values.is_empty()).then(|| values.iter().sum::<f64>() / values.len() as f64)
-}
-
 /// A line over temperature for each board, load and quantity.
 fn lines(plan: &Plan, measured: &[(Place, AtRest)]) -> Vec<Line> {
     let mut lines = Vec::new();
@@ -271,99 +169,9 @@ fn lines(plan: &Plan, measured: &[(Place, AtRest)]) -> Vec<Line> {
     lines
 }
 
-/// Limits at each temperature and load: over the boards, or over the cycles of the only one.
-fn limits(plan: &Plan, measured: &[(Place, AtRest)], cells: &[Cell], question: Question) -> Vec<Limits> {
-    let wanted = Wanted { content: question.content, confidence: question.confidence };
-    let mut limits = Vec::new();
-    for (temperature, degrees) in plan.temperatures.iter().enumerate() {
-        for (load, ohms) in plan.loads.iter().enumerate() {
-            for quantity in QUANTITIES {
-                let here: Vec<&AtRest> = measured
-                    .iter()
-                    .filter(|(place, _)| (place.temperature, place.load) == (temperature, load))
-                    .map(|(_, at_rest)| at_rest)
-                    .filter(|at_rest| at_rest.quantity == quantity)
-                    .collect();
-                let values: Vec<f64> = here.iter().map(|at_rest| at_rest.value_v).collect();
-                let instrument = here.iter().filter_map(|at_rest| at_rest.instrument_v).reduce(f64::max);
-                let proposal = match &here[..] {
-                    [only] => over_cycles(only, cells, instrument, wanted),
-                    _ => Proposal::over_boards(&values, instrument, wanted),
-                };
-                let temperature_c = degrees.map(|degrees| degrees.0);
-                limits.push(Limits { temperature_c, load_ohm: ohms.0, quantity, proposal });
-            }
-        }
-    }
-    limits
-}
-
-/// From the jitter of the only board, at the rate with the narrowest brackets, which show it best; that of the hysteresis
-/// is of both thresholds.
-fn over_cycles(only: &AtRest, cells: &[Cell], instrument: Option<f64>, wanted: Wanted) -> Option<Proposal> {
-    let of = |quantity: QuantityName| {
-        cells
-            .iter()
-            .filter(|cell| {
-                cell.quantity == quantity
-                    && cell.board == only.board
-                    && cell.temperature_c == only.temperature_c
-                    && (cell.load_ohm - only.load_ohm).abs() < 1e-9 * only.load_ohm
-            })
-            .min_by(|a, b| a.threshold.bracket_v.total_cmp(&b.threshold.bracket_v))
-            .and_then(|cell| Some((jitter(&cell.threshold)?, cell.threshold.count)))
-    };
-    let (jitter, count) = match only.quantity {
-        QuantityName::Hysteresis => {
-            let ((down, n), (up, m)) = (of(QuantityName::Trip)?, of(QuantityName::ReEnable)?);
-            (down.hypot(up), n.min(m))
-        }
-        quantity => of(quantity)?,
-    };
-    Proposal::over_cycles(only.value_v, jitter, count, instrument, wanted)
-}
-
-/// The standard deviation to reckon with: where none was seen, the largest there may be.
-fn jitter(threshold: &Threshold) -> Option<f64> {
-    match threshold.jitter {
-        Jitter::Found { standard_deviation_v, .. } => Some(standard_deviation_v),
-        Jitter::NoneSeen { at_most_v } => at_most_v,
-    }
-}
-
-#[cfg(test)]
-pub(super) mod fixture {
-    use super::super::{Crossing, Cycle, Order};
-    use crate::units::{Ohms, Volts};
-
-    /// Cycles that tripped in brackets about these middles.
-    pub(in crate::study) fn cycles(middles: &[f64], width: f64) -> Vec<Cycle> {
-        let crossing = |middle: f64| Crossing {
-            low: Volts(middle - width / 2.0),
-            high: Volts(middle + width / 2.0),
-            set: Volts(middle),
-            rate: 0.0,
-            period: 0.0,
-            seen_after: 0.0,
-        };
-        let cycle = |(number, &middle): (usize, &f64)| Cycle {
-            order: Order { board: 0, temperature: 0, load: 0, cycle: number as u32, rate: 0 },
-            temperature: None,
-            load: Ohms(55.0),
-            trip: Some(crossing(middle)),
-            re_enable: None,
-            claim: None,
-            settle: 0.0,
-            integration: 0.0,
-            duration: 1.0,
-        };
-        middles.iter().enumerate().map(cycle).collect()
-    }
-}
-
 #[cfg(test)]
 mod tests {
-    use super::fixture::cycles;
+    use super::super::fixture::cycles;
     use super::*;
     use crate::trace::Accuracy;
     use crate::units::{Celsius, Ohms};

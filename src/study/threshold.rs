@@ -116,7 +116,7 @@ fn for_few(count: usize) -> Option<f64> {
 
 #[cfg(test)]
 mod tests {
-    use super::super::estimates::fixture::cycles;
+    use super::super::fixture::cycles;
     use super::*;
 
     /// JCGM 100:2008, table G.2, for 95.45 %: t of 1, 5 and 19 degrees of freedom is 13.97, 2.65 and 2.14.
