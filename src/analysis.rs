@@ -61,7 +61,7 @@ mod trust;
 mod zero;
 
 pub use cause::Cause;
-pub use contribution::{Contribution, Input, Shape};
+pub use contribution::{Contribution, Input, Role, Shape};
 pub use expected::expected;
 pub use finding::{About, Finding, FindingCode};
 pub use quantity::{Quantity, Term};

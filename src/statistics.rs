@@ -7,6 +7,7 @@ pub mod influence;
 pub mod line;
 pub mod monte_carlo;
 mod quadrature;
+pub mod quotient;
 pub mod risk;
 mod root;
 pub mod sample;

@@ -28,6 +28,29 @@ pub struct Contribution {
     /// What it shares with other quantities; `None` where it is independent of all else.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub cause: Option<Cause>,
+    /// How it enters the quantity.
+    #[serde(default, skip_serializing_if = "Role::is_addend")]
+    pub role: Role,
+}
+
+/// How an influence enters a quantity.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "snake_case")]
+pub enum Role {
+    /// In proportion, whatever its size.
+    #[default]
+    Addend,
+    /// Through what the quantity is divided by: in proportion only where it is small.
+    Divisor,
+    /// What the divisors add by not being in proportion (JCGM 100:2008, 5.1.2, note): part of the standard uncertainty, but
+    /// no influence of its own.
+    Curvature,
+}
+
+impl Role {
+    fn is_addend(&self) -> bool {
+        *self == Self::Addend
+    }
 }
 
 /// An influence in its own unit.
@@ -54,6 +77,7 @@ impl Contribution {
             degrees_of_freedom: None,
             input: None,
             cause: None,
+            role: Role::Addend,
         }
     }
 
@@ -90,6 +114,12 @@ impl Contribution {
     #[must_use]
     pub fn due_to(self, cause: Cause) -> Self {
         Self { cause: Some(cause), ..self }
+    }
+
+    /// The same influence, entering the quantity as `role`.
+    #[must_use]
+    pub fn entering(self, role: Role) -> Self {
+        Self { role, ..self }
     }
 
     /// c: signed; one where the influence is the quantity's own.

@@ -5,9 +5,11 @@
 //! share cancels, a gain counts for the difference only, and nothing has to be known of the terms.
 
 pub(super) use super::contribution::Contribution;
+use super::contribution::Role;
 use super::spread::Spread;
 use crate::profile::QuantityName;
 use crate::statistics::influence::{Influence, welch_satterthwaite};
+use crate::statistics::quotient::Quotient;
 use crate::units::Unit;
 use serde::{Deserialize, Serialize};
 
@@ -35,6 +37,9 @@ pub struct Term<'q> {
     pub quantity: &'q Quantity,
 }
 
+/// A line below this part of the rest moves the standard uncertainty by less than a thousandth.
+const NEGLIGIBLE: f64 = 0.04;
+
 impl Quantity {
     /// Combines contributions: those of one cause by their signed sum, independent ones by the root of the sum of
     /// squares (JCGM 100:2008, 5.2.2 and 5.1.2).
@@ -48,6 +53,21 @@ impl Quantity {
         }
         let variance: f64 = lines.iter().map(|line| line.standard_uncertainty.powi(2)).sum();
         Self { name, value, standard_uncertainty: variance.sqrt(), contributions: lines }
+    }
+
+    /// A quotient, whose lines say which of them are the divisor's. What those do beyond proportion is a line of its own.
+    pub fn quotient(name: QuantityName, value: f64, contributions: Vec<Contribution>) -> Self {
+        let mut quantity = Self::new(name, value, contributions);
+        let whole =
+            quantity.as_quotient().map_or(quantity.standard_uncertainty, |it| it.standard_uncertainty());
+        let linear = quantity.standard_uncertainty;
+        let curved = (whole.powi(2) - linear.powi(2)).max(0.0).sqrt();
+        if curved > NEGLIGIBLE * linear {
+            let line = Contribution::normal("what is not in proportion", curved);
+            quantity.contributions.push(line.entering(Role::Curvature));
+            quantity.standard_uncertainty = whole;
+        }
+        quantity
     }
 
     /// The sum of `terms`, correlation kept. Lines without a cause keep the title of their term.
@@ -106,6 +126,16 @@ impl Quantity {
     /// spread (JCGM 100:2008, 6.2.1).
     pub fn expanded_uncertainty(&self, probability: f64) -> f64 {
         Spread::of(self).coverage_factor(probability) * self.standard_uncertainty
+    }
+
+    /// The quotient it is; `None` where nothing divides.
+    pub(super) fn as_quotient(&self) -> Option<Quotient> {
+        let of = |role: Role| -> Vec<Influence> {
+            let lines = self.contributions.iter().filter(|line| line.role == role);
+            lines.map(Contribution::influence).collect()
+        };
+        let divisor = of(Role::Divisor);
+        (!divisor.is_empty()).then(|| Quotient::new(self.value, of(Role::Addend), divisor))
     }
 
     /// Effective degrees of freedom of the combined standard uncertainty (Welch-Satterthwaite, JCGM 100:2008, G.4.1);

@@ -4,23 +4,37 @@ use super::quantity::Quantity;
 use crate::profile::Limit;
 use crate::statistics::coverage;
 use crate::statistics::distribution::{Distribution, Normal};
+use crate::statistics::quotient::Quotient;
 use crate::statistics::risk::{Interval, nonconformance};
 
-/// The distribution of a quantity's error; `None` inside where nothing is uncertain.
-pub(crate) struct Spread(Option<coverage::Spread>);
+/// The distribution of a quantity's error.
+pub(crate) enum Spread {
+    /// Nothing is uncertain.
+    Certain,
+    /// A sum of influences.
+    Sum(coverage::Spread),
+    /// A quotient, and its standard uncertainty.
+    Quotient(Quotient, f64),
+}
 
 impl Spread {
     pub(crate) fn of(quantity: &Quantity) -> Self {
-        Self(coverage::Spread::new(&quantity.influences()))
+        if let Some(quotient) = quantity.as_quotient() {
+            return Self::Quotient(quotient, quantity.standard_uncertainty);
+        }
+        coverage::Spread::new(&quantity.influences()).map_or(Self::Certain, Self::Sum)
     }
 
     /// How many standard uncertainties cover the truth with `probability`: from the shapes that are there and their
     /// degrees of freedom, and that of a normal distribution where nothing is uncertain.
     pub(crate) fn coverage_factor(&self, probability: f64) -> f64 {
-        let exact = self
-            .0
-            .as_ref()
-            .and_then(|spread| Some(spread.half_width(probability)? / spread.standard_uncertainty()));
+        let exact = match self {
+            Self::Certain => None,
+            Self::Sum(spread) => spread.half_width(probability).map(|it| it / spread.standard_uncertainty()),
+            Self::Quotient(quotient, uncertainty) => {
+                quotient.half_width(probability).map(|it| it / uncertainty)
+            }
+        };
         exact.or_else(|| Normal.upper_quantile((1.0 - probability) / 2.0)).unwrap_or(f64::NAN)
     }
 
@@ -30,8 +44,14 @@ impl Spread {
         if !value.is_finite() {
             return None;
         }
-        let Some(spread) = &self.0 else { return Some(0.0) };
-        let outside = nonconformance(value, spread, Interval { min: limit.min, max: limit.max });
+        let outside = match self {
+            Self::Certain => return Some(0.0),
+            Self::Sum(spread) => nonconformance(value, spread, Interval { min: limit.min, max: limit.max }),
+            Self::Quotient(quotient, _) => {
+                let below = limit.min.map_or(0.0, |min| quotient.below(min));
+                below + limit.max.map_or(0.0, |max| 1.0 - quotient.below(max))
+            }
+        };
         let is_inside = limit.min.is_none_or(|min| value >= min) && limit.max.is_none_or(|max| value <= max);
         let risk = if is_inside { outside } else { 1.0 - outside };
         risk.is_finite().then_some(risk)

@@ -1,5 +1,6 @@
 //! How long a battery lasts in store with the switch open: the charge left at the cut-off over what drains it.
 
+use super::contribution::Role;
 use super::finding::{About, Finding, FindingCode};
 use super::quantity::{Contribution, Quantity, Term};
 use crate::profile::{QuantityName, Storage};
@@ -7,18 +8,25 @@ use crate::units::{Amps, Unit, prefixed};
 
 /// Remaining charge over off current and self-discharge, from the off current at the stored battery's voltage.
 ///
-/// Charge and self-discharge are the profile's, with its tolerance taken as the limits of a rectangle.
+/// Charge and self-discharge are the profile's, with its tolerance taken as the limits of a rectangle. The value is the
+/// plain quotient, as anybody would check it; U reaches as far to either side as it must to cover the truth, though that
+/// lies farther above than below.
 pub(super) fn storage_time(off_current: &Quantity, storage: &Storage) -> Quantity {
     let drain = total(off_current, storage);
     let time = storage.remaining / drain;
     let term = Term { factor: -(time / drain.0), title: "off current", quantity: off_current };
-    let mut parts = Quantity::sum(QuantityName::StorageTime, &[term]).contributions;
+    let of_board = Quantity::sum(QuantityName::StorageTime, &[term]).contributions;
+    let mut parts: Vec<Contribution> =
+        of_board.into_iter().map(|line| line.entering(Role::Divisor)).collect();
     if storage.tolerance > 0.0 {
         let share = storage.self_discharge / drain;
         parts.push(Contribution::rectangular("remaining capacity, as stated", storage.tolerance * time));
-        parts.push(Contribution::rectangular("self-discharge, as stated", storage.tolerance * share * time));
+        let self_discharge = storage.tolerance * share * time;
+        parts.push(
+            Contribution::rectangular("self-discharge, as stated", self_discharge).entering(Role::Divisor),
+        );
     }
-    Quantity::new(QuantityName::StorageTime, time, parts)
+    Quantity::quotient(QuantityName::StorageTime, time, parts)
 }
 
 /// What drains the battery, and which of the two more.
@@ -46,6 +54,7 @@ fn total(off_current: &Quantity, storage: &Storage) -> Amps {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::statistics::monte_carlo::{Draws, propagate};
     use crate::units::{Coulombs, YEAR};
 
     fn off(amps: f64) -> Quantity {
@@ -79,6 +88,30 @@ mod tests {
         assert!(text.contains("self-discharge is the larger drain by 14.2 to 1"), "{text}");
         let text = drains(&time, &off(200e-6), &drained).text;
         assert!(text.contains("the board's own is the larger drain"), "{text}");
+    }
+
+    /// 200 mAh and 2 % a month of 2 Ah, both to 30 %: against trials of the quotient itself (JCGM 101:2008, 7).
+    #[test]
+    fn the_expanded_uncertainty_covers_trials_of_the_quotient() {
+        const SEED: u64 = 5;
+        for amps in [3.85e-6, 54.757e-6, 500e-6] {
+            let drained = Storage { tolerance: 0.3, ..storage(54.757e-6) };
+            let time = storage_time(&off(amps), &drained);
+            let lasts = |draws: &mut Draws| {
+                let charge = 720.0 * (1.0 + 0.3 * draws.rectangular());
+                let board = amps * (1.0 + 0.01 * draws.normal());
+                charge / (board + 54.757e-6 * (1.0 + 0.3 * draws.rectangular()))
+            };
+            let mean = |of: &dyn Fn(f64) -> f64| {
+                propagate(SEED, 100_000, |draws| of(lasts(draws))).expect("an outcome").sample
+            };
+            let u = mean(&|lasts| lasts).standard_deviation.expect("many values");
+            assert!((time.standard_uncertainty / u - 1.0).abs() < 0.012, "seed {SEED}: {amps} A, {u} s");
+            let expanded = time.expanded_uncertainty(0.95);
+            let inside = mean(&|lasts| f64::from(u8::from((lasts - time.value).abs() <= expanded))).mean;
+            // Four standard deviations of a share of 100 000.
+            assert!((inside - 0.95).abs() < 2.8e-3, "seed {SEED}: {amps} A, {inside} inside");
+        }
     }
 
     #[test]
