@@ -142,7 +142,7 @@ mod tests {
         assert!(margin(&analysis).value < 0.0);
         assert_eq!(codes(&analysis), [FindingCode::Rebound]);
         let text = &analysis.findings.iter().find(|f| f.code == FindingCode::Rebound).expect("told").text;
-        assert!(text.contains("466.4 mV") && text.contains("66.17 mV more"), "{text}");
+        assert!(text.contains("466.4 mV") && text.contains("66.16 mV more"), "{text}");
     }
 
     #[test]
