@@ -1,5 +1,6 @@
 //! What makes two uncertainties move together.
 
+use crate::profile::QuantityName;
 use crate::units::Amps;
 use serde::{Deserialize, Serialize};
 
@@ -34,4 +35,6 @@ pub enum Cause {
     Delay,
     /// Noise at the detector's input, which moves both thresholds inwards.
     DetectorNoise,
+    /// Scatter of the line whose slope is this quantity; what is read off the line far from its middle moves along.
+    Slope(QuantityName),
 }

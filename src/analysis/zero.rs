@@ -28,15 +28,12 @@ const NO_VOLTAGE: Volts = Volts(0.1);
 /// within 1 % (common practice); the definitions do not say.
 pub(super) const INPUT_RESISTANCE: f64 = 0.01;
 
-/// What the bench adds to a current at one voltage.
-#[derive(Clone, Copy, Debug, PartialEq)]
-struct Baseline {
-    current: f64,
-    standard_uncertainty: f64,
-    degrees_of_freedom: f64,
-    age: Duration,
+/// What the bench adds to a current at one voltage: the mean of zeros, each with its share.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Baseline<'z> {
+    parts: Vec<(&'z Zero, f64)>,
     /// Taken at this voltage, so that leakage and the voltmeter are in it; else the ammeter's offset only.
-    at_voltage: bool,
+    pub(super) at_voltage: bool,
 }
 
 /// The board's current at `at` out of `value`, which the ammeter read on `range` besides the `passing` current of the
@@ -51,8 +48,8 @@ pub(super) fn without_zero(
     let claims = &course.trace.claims;
     let baseline = Baseline::of(&claims.zero, range, at);
     let mut parts = Vec::new();
-    let board = value - baseline.map_or(0.0, |zero| zero.current);
-    match baseline {
+    let board = value - baseline.as_ref().map_or(0.0, Baseline::current);
+    match &baseline {
         None => parts.extend(accuracy::of_current(claims, range, Amps(value) + passing)),
         Some(zero) => {
             let shared = if zero.at_voltage { 0.0 } else { passing.0 };
@@ -63,7 +60,7 @@ pub(super) fn without_zero(
             parts.extend(claim.map(|claim| zero.drift(claim.absolute)));
         }
     }
-    parts.extend(baseline.map(|zero| zero.own()));
+    parts.extend(baseline.as_ref().map(Baseline::own));
     if !baseline.is_some_and(|zero| zero.at_voltage) {
         parts.extend(claims.sense_resistance.and_then(|input| meter_loading(input, at)));
     }
@@ -79,64 +76,77 @@ pub(super) fn meter_loading(input: Ohms, at: Volts) -> Option<Contribution> {
     (input > Ohms::ZERO).then(|| line.due_to(Cause::VoltmeterInput))
 }
 
-impl Baseline {
+impl<'z> Baseline<'z> {
     /// On the line between the zeros around `at`, or the nearest to it; else that at no voltage. `None` where there is
     /// neither.
-    fn of(zeros: &[Zero], range: Option<Amps>, at: Volts) -> Option<Self> {
+    pub(super) fn of(zeros: &'z [Zero], range: Option<Amps>, at: Volts) -> Option<Self> {
         let range = range?;
         let mut zeros: Vec<&Zero> =
             zeros.iter().filter(|zero| (zero.full_scale / range - 1.0).abs() < 1e-3).collect();
         zeros.sort_by(|a, b| a.at.0.total_cmp(&b.at.0));
-        let distance = |zero: &&&Zero| (zero.at - at).abs();
-        let nearest = zeros.iter().min_by(|a, b| distance(a).0.total_cmp(&distance(b).0))?;
-        if distance(&nearest) <= at.abs() * NEAR {
-            return Some(Self::at_one(nearest, true));
+        let distance = |zero: &Zero| (zero.at - at).abs();
+        let nearest = *zeros.iter().min_by(|a, b| distance(a).0.total_cmp(&distance(b).0))?;
+        if distance(nearest) <= at.abs() * NEAR {
+            return Some(Self { parts: vec![(nearest, 1.0)], at_voltage: true });
         }
         let around = zeros.windows(2).find_map(|pair| match pair {
             [below, above] if below.at < at && at < above.at => Some((*below, *above)),
             _ => None,
         });
-        match around {
-            Some((below, above)) => Some(Self::between(below, above, at)),
-            None => {
-                zeros.first().filter(|zero| zero.at.abs() <= NO_VOLTAGE).map(|zero| Self::at_one(zero, false))
-            }
+        if let Some((below, above)) = around {
+            let share = (at - below.at) / (above.at - below.at);
+            return Some(Self { parts: vec![(below, 1.0 - share), (above, share)], at_voltage: true });
         }
+        let zero = *zeros.first().filter(|zero| zero.at.abs() <= NO_VOLTAGE)?;
+        Some(Self { parts: vec![(zero, 1.0)], at_voltage: false })
     }
 
-    fn at_one(zero: &Zero, at_voltage: bool) -> Self {
-        Self {
-            current: zero.current.0,
-            standard_uncertainty: zero.standard_uncertainty.0,
-            degrees_of_freedom: f64::from(zero.readings.saturating_sub(1).max(1)),
-            age: zero.age,
-            at_voltage,
-        }
+    /// What is taken off, in amperes.
+    pub(super) fn current(&self) -> f64 {
+        self.parts.iter().map(|(zero, share)| share * zero.current.0).sum()
     }
 
-    fn between(below: &Zero, above: &Zero, at: Volts) -> Self {
-        let share = (at - below.at) / (above.at - below.at);
-        Self {
-            current: (1.0 - share) * below.current.0 + share * above.current.0,
-            standard_uncertainty: ((1.0 - share) * below.standard_uncertainty.0)
-                .hypot(share * above.standard_uncertainty.0),
-            degrees_of_freedom: f64::from(below.readings.min(above.readings).saturating_sub(1).max(1)),
-            age: below.age.max(above.age),
-            at_voltage: true,
-        }
+    /// How much of it is `zero`.
+    pub(super) fn share_of(&self, zero: &Zero) -> f64 {
+        let of_it = self.parts.iter().filter(|(part, _)| std::ptr::eq(*part, zero));
+        of_it.map(|(_, share)| share).sum()
+    }
+
+    /// Share of the claim's fixed part that the offset may have moved by since.
+    pub(super) fn moved(&self) -> f64 {
+        (self.age().as_secs_f64() / AS_GOOD_AS_NONE.as_secs_f64()).min(1.0)
+    }
+
+    fn age(&self) -> Duration {
+        self.parts.iter().map(|(zero, _)| zero.age).max().unwrap_or(AS_GOOD_AS_NONE)
     }
 
     /// How well the zero is known.
     fn own(&self) -> Contribution {
-        Contribution::scatter("zero of the bench", self.standard_uncertainty, self.degrees_of_freedom)
+        let squares: f64 =
+            self.parts.iter().map(|(zero, share)| (share * zero.standard_uncertainty.0).powi(2)).sum();
+        let degrees =
+            self.parts.iter().map(|(zero, _)| degrees_of_freedom(zero)).fold(f64::INFINITY, f64::min);
+        Contribution::scatter(OWN, squares.sqrt(), degrees)
     }
 
     /// What the offset may have moved by since, out of the `fixed` part of the claim.
     fn drift(&self, fixed: f64) -> Contribution {
-        let share = (self.age.as_secs_f64() / AS_GOOD_AS_NONE.as_secs_f64()).min(1.0);
-        let hours = self.age.as_secs_f64() / 3600.0;
-        Contribution::rectangular(&format!("drift since the zero, {hours:.1} h"), share * fixed)
+        let hours = self.age().as_secs_f64() / 3600.0;
+        Contribution::rectangular(&format!("drift since the zero, {hours:.1} h"), self.moved() * fixed)
     }
+}
+
+/// Name of the zero's own scatter in a budget.
+const OWN: &str = "zero of the bench";
+
+/// How well one zero is known, as a line of a budget.
+pub(super) fn scatter(zero: &Zero) -> Contribution {
+    Contribution::scatter(OWN, zero.standard_uncertainty.0, degrees_of_freedom(zero))
+}
+
+fn degrees_of_freedom(zero: &Zero) -> f64 {
+    f64::from(zero.readings.saturating_sub(1).max(1))
 }
 
 #[cfg(test)]

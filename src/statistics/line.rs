@@ -73,6 +73,11 @@ impl Line {
         Self { mean_x: x, mean_y: y, slope, scatter: None, spare: 0, weights: 1.0, spread: f64::INFINITY }
     }
 
+    /// Weighted mean of x: there the value is independent of the slope.
+    pub fn middle(&self) -> f64 {
+        self.mean_x
+    }
+
     /// Value at `x`.
     pub fn at(&self, x: f64) -> f64 {
         self.mean_y + self.slope * (x - self.mean_x)
