@@ -2,14 +2,20 @@
 //!
 //! While the set-point keeps moving, a board with delay `d` changes when the voltage has gone `rate * d` past the
 //! threshold. So the voltage at the change against the rate is a straight line: its intercept is the threshold at
-//! rest, its slope the delay, with whatever the readings themselves lag behind.
+//! rest, its slope the delay, with whatever the readings themselves lag behind. The two are correlated (JCGM 100:2008,
+//! H.3): a threshold found too high goes with a delay found too long.
+//!
+//! Noise at the detector makes each change come early, more so on a slow ramp. Each ramp's change is put where it lies in
+//! the light of that noise, whose level is common to all of them.
 
 use super::accuracy;
+use super::cause::Cause;
 use super::contribution::Contribution;
 use super::diagnosis;
 use super::edges::{Direction, Edge, Edges};
 use super::finding::Finding;
 use super::hysteresis::hysteresis;
+use super::noise::{Evidence, Noise};
 use super::plateau::Course;
 use super::quantity::Quantity;
 use super::terminals::Rail;
@@ -17,7 +23,7 @@ use super::{Analysis, analyse, trust};
 use crate::profile::{Profile, QuantityName};
 use crate::statistics::line::{Line, Point};
 use crate::trace::Trace;
-use crate::units::Volts;
+use crate::units::{Unit, Volts};
 
 /// Steps before a change over which the rate is taken.
 const RATE_STEPS: usize = 10;
@@ -33,17 +39,16 @@ pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
     let [down, up] = [Direction::Down, Direction::Up].map(|direction| {
         let ramps =
             courses.iter().zip(&found).filter_map(|(course, found)| Ramp::of(course, found, direction));
-        AtRest::fit(&ramps.collect::<Vec<_>>(), direction)
+        let mut ramps: Vec<Ramp> = ramps.collect();
+        allow_for_noise(&mut ramps, direction);
+        AtRest::fit(&ramps, direction)
     });
     let threshold = |name, at_rest: &AtRest| {
         let claimed = courses.first().map(|course| accuracy::of_voltage(course, Volts(at_rest.value)));
-        let parts = std::iter::once(at_rest.contribution()).chain(claimed.into_iter().flatten());
+        let parts = at_rest.threshold_lines().into_iter().chain(claimed.into_iter().flatten());
         Quantity::new(name, at_rest.value, parts.collect())
     };
-    let delay = |name, at_rest: &AtRest| {
-        let part = Contribution::normal("line through the rates", at_rest.delay_uncertainty);
-        Quantity::new(name, at_rest.delay, vec![part])
-    };
+    let delay = |name, at_rest: &AtRest| Quantity::new(name, at_rest.delay, at_rest.delay_lines());
     let trip = down.as_ref().map(|down| threshold(QuantityName::Trip, down));
     let re_enable = up.as_ref().map(|up| threshold(QuantityName::ReEnable, up));
     let difference =
@@ -87,7 +92,7 @@ fn note(findings: &mut Vec<Finding>, finding: Option<Finding>) {
 }
 
 /// The change of one ramp.
-#[derive(Clone, Copy, Debug)]
+#[derive(Clone, Debug)]
 struct Ramp {
     /// Rate at the terminals, V/s, positive in the direction of the change.
     rate: f64,
@@ -95,6 +100,12 @@ struct Ramp {
     volts: f64,
     /// Its standard uncertainty: the step as a rectangle (JCGM 100:2008, 4.3.7), and the readings' scatter.
     uncertainty: f64,
+    /// What the level of the noise does to it, one standard uncertainty of it, V.
+    noise: f64,
+    /// How long the board stayed at each step, and when it changed.
+    evidence: Evidence,
+    /// Standard uncertainty of the voltage at the terminals, the step aside.
+    rail: f64,
 }
 
 impl Ramp {
@@ -113,42 +124,110 @@ impl Ramp {
         let set = direction.volts((along(before) + along(edge.seen)) / 2.0);
         let width = (along(edge.seen) - along(before)).abs() * rail.slope();
         let uncertainty = (width.powi(2) / 12.0 + rail.uncertainty(set).powi(2)).sqrt();
+        let timing = &course.profile.timing;
+        let mut evidence = Evidence::new(timing.detect_delay.min(timing.release_delay));
+        let stood = |at: usize| {
+            let volts = direction.along(rail.at(samples[at].set));
+            (volts, (samples[at].at.saturating_sub(samples[at - 1].at)).as_secs_f64())
+        };
+        evidence.stays = (edge.seen.saturating_sub(STAYS).max(1)..edge.seen).map(stood).collect();
+        evidence.changes.push(stood(edge.seen));
+        evidence.sort();
         (rate.is_finite() && rate > 0.0 && uncertainty > 0.0).then(|| Self {
             rate,
             volts: rail.at(set).0,
             uncertainty,
+            noise: 0.0,
+            evidence,
+            rail: rail.uncertainty(set),
         })
     }
 }
+
+/// Steps before a change at which noise may have made it.
+const STAYS: usize = 200;
+
+/// Puts the changes of all ramps of one direction where they lie in the light of noise; they share its level.
+fn allow_for_noise(ramps: &mut [Ramp], direction: Direction) {
+    let Some(volts) = ramps.first().map(|ramp| Volts(ramp.volts)) else { return };
+    let evidence: Vec<&Evidence> = ramps.iter().map(|ramp| &ramp.evidence).collect();
+    let Some(noise) = Noise::find(&evidence, volts) else { return };
+    for (ramp, located) in ramps.iter_mut().zip(noise.located) {
+        ramp.volts = direction.volts(located.along).0;
+        ramp.uncertainty = located.own.hypot(ramp.rail);
+        ramp.noise = direction.volts(located.level).0;
+    }
+}
+
+/// Rates closer than this share are one.
+const SAME_RATE: f64 = 1e-6;
 
 /// A threshold and its delay, from a line through several rates.
 #[derive(Clone, Copy, Debug)]
 struct AtRest {
     value: f64,
-    uncertainty: f64,
     delay: f64,
+    /// The quantity that the slope is.
+    name: QuantityName,
+    /// What the threshold changes by for a second more of the delay: to the middle of the rates, V/s.
+    per_second: f64,
+    /// Standard uncertainty where the line is independent of its slope, V.
+    at_middle: f64,
     delay_uncertainty: f64,
+    /// One standard uncertainty of the level of the noise, as the ramp sees it that it moves most, V.
+    level: f64,
+    /// What that does to threshold and delay.
+    noise: (f64, f64),
 }
 
 impl AtRest {
     fn fit(ramps: &[Ramp], direction: Direction) -> Option<Self> {
-        let points =
-            ramps.iter().map(|ramp| Point { x: ramp.rate, y: ramp.volts, weight: ramp.uncertainty.powi(-2) });
-        let line = Line::fit(points)?;
-        let towards = match direction {
-            Direction::Down => -1.0,
-            Direction::Up => 1.0,
+        let through = |y: fn(&Ramp) -> f64| {
+            let point =
+                move |ramp: &Ramp| Point { x: ramp.rate, y: y(ramp), weight: ramp.uncertainty.powi(-2) };
+            Line::fit(ramps.iter().map(point))
+        };
+        let first = ramps.first()?.rate;
+        ramps.iter().find(|ramp| (ramp.rate - first).abs() > SAME_RATE * first.abs())?;
+        let line = through(|ramp| ramp.volts)?;
+        let noise = through(|ramp| ramp.noise)?;
+        let (towards, name) = match direction {
+            Direction::Down => (-1.0, QuantityName::DetectDelay),
+            Direction::Up => (1.0, QuantityName::ReleaseDelay),
         };
         Some(Self {
             value: line.at(0.0),
-            uncertainty: line.uncertainty_at(0.0, 1.0),
             delay: towards * line.slope,
+            name,
+            per_second: -towards * line.middle(),
+            at_middle: line.uncertainty_at(line.middle(), 1.0),
             delay_uncertainty: line.slope_uncertainty(1.0),
+            level: ramps.iter().map(|ramp| ramp.noise.abs()).fold(0.0, f64::max),
+            noise: (noise.at(0.0), towards * noise.slope),
         })
     }
 
-    fn contribution(&self) -> Contribution {
-        Contribution::normal("line through the rates", self.uncertainty)
+    fn threshold_lines(&self) -> Vec<Contribution> {
+        let level = Contribution::normal("line through the rates, at their middle", self.at_middle);
+        [level, self.slope(self.per_second)].into_iter().chain(self.level_of_noise(self.noise.0)).collect()
+    }
+
+    fn delay_lines(&self) -> Vec<Contribution> {
+        std::iter::once(self.slope(1.0)).chain(self.level_of_noise(self.noise.1)).collect()
+    }
+
+    /// The slope of the line, which threshold and delay share.
+    fn slope(&self, sensitivity: f64) -> Contribution {
+        Contribution::normal("slope of the line through the rates", self.delay_uncertainty)
+            .through(sensitivity, Unit::Second)
+            .due_to(Cause::Slope(self.name))
+            .estimated(self.delay)
+    }
+
+    /// One standard uncertainty of the level of the noise moves the quantity by `moved`.
+    fn level_of_noise(&self, moved: f64) -> Option<Contribution> {
+        let line = Contribution::normal("level of the noise at the detector", self.level);
+        (self.level > 0.0).then(|| line.through(moved / self.level, Unit::Volt).due_to(Cause::DetectorNoise))
     }
 }
 
@@ -174,6 +253,50 @@ mod tests {
             let quantity = analysis.quantities.iter().find(|quantity| quantity.name == name).expect("found");
             let error = (quantity.value - truth).abs();
             assert!(error <= 2.0 * quantity.standard_uncertainty, "{quantity:?}");
+        }
+    }
+
+    /// The ramps' changes at the readings and corrections of JCGM 100:2008, H.3, about 20 degrees, all as good as any
+    /// other: intercept and slope have the covariance printed there.
+    #[test]
+    fn threshold_and_delay_are_correlated_as_intercept_and_slope_of_the_gum() {
+        let text = include_str!("../../tests/data/statistics/gum_h3_thermometer.json");
+        let file: serde_json::Value = serde_json::from_str(text).expect("reference data");
+        let list =
+            |key: &str| -> Vec<f64> { serde_json::from_value(file["data"][key].clone()).expect("a list") };
+        // The printed scatter, 3.5 mK, stands for the uncertainty of each point.
+        let ramp = |(t, b): (&f64, &f64)| Ramp {
+            rate: t - 20.0,
+            volts: *b,
+            uncertainty: 0.0035,
+            noise: 0.0,
+            evidence: Evidence::default(),
+            rail: 0.0,
+        };
+        let ramps: Vec<Ramp> = list("t_degC").iter().zip(&list("b_degC")).map(ramp).collect();
+        let at_rest = AtRest::fit(&ramps, Direction::Up).expect("a line");
+        let threshold = Quantity::new(QuantityName::ReEnable, at_rest.value, at_rest.threshold_lines());
+        let delay = Quantity::new(QuantityName::ReleaseDelay, at_rest.delay, at_rest.delay_lines());
+        let product = threshold.standard_uncertainty * delay.standard_uncertainty;
+        let correlation = threshold.covariance(&delay) / product;
+        assert!((correlation + 0.930).abs() < 5e-4, "{correlation}");
+        assert!((threshold.standard_uncertainty - 0.0029).abs() < 5e-5, "{threshold:?}");
+        assert!((delay.standard_uncertainty - 0.00067).abs() < 5e-6, "{delay:?}");
+        // Downwards the sign of the delay turns, and that of the correlation with it.
+        let at_rest = AtRest::fit(&ramps, Direction::Down).expect("a line");
+        let threshold = Quantity::new(QuantityName::Trip, at_rest.value, at_rest.threshold_lines());
+        let delay = Quantity::new(QuantityName::DetectDelay, at_rest.delay, at_rest.delay_lines());
+        assert!((threshold.covariance(&delay) / product - 0.930).abs() < 5e-4);
+    }
+
+    #[test]
+    fn the_level_of_the_noise_is_a_line_of_threshold_and_delay() {
+        let analysis = from_rates(&[ramp(0.013, 0.5), ramp(0.11, 0.5)], &profile());
+        for name in [QuantityName::Trip, QuantityName::DetectDelay] {
+            let quantity = analysis.quantities.iter().find(|quantity| quantity.name == name).expect("found");
+            let noise = |line: &&Contribution| line.cause == Some(Cause::DetectorNoise);
+            let line = quantity.contributions.iter().find(noise).expect("noise in the budget");
+            assert!(line.standard_uncertainty > 0.0, "{quantity:?}");
         }
     }
 
