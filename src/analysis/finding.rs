@@ -55,6 +55,18 @@ pub enum FindingCode {
     HysteresisNarrow,
     /// Hysteresis above its limit.
     HysteresisWide,
+    /// The board took longer to trip than its limit allows.
+    DetectDelayLong,
+    /// The board tripped sooner than its limit wants.
+    DetectDelayShort,
+    /// The board took longer to come back than its limit allows.
+    ReleaseDelayLong,
+    /// The board came back sooner than its limit wants.
+    ReleaseDelayShort,
+    /// Resistance of the closed switch above its limit.
+    OnResistanceHigh,
+    /// Resistance of the closed switch below its limit.
+    OnResistanceLow,
     /// The load is not connected.
     NoLoad,
     /// Too little to tell an open switch from a missing load.

@@ -37,6 +37,8 @@ enum Place {
     Figure,
     /// Slower or noisier than the design allows, which moves figures but fails none by itself.
     Slow,
+    /// How long a change took, as it was judged; a slow detector may be all there is to it.
+    Timing,
     /// What the board did in a trial of its use.
     Trial,
     /// What could not be judged, where nothing above says why.
@@ -65,8 +67,10 @@ fn place(code: FindingCode) -> Place {
         LoadStopped => Place::Load,
         OffCurrentHigh | OffCurrentLow => Place::OffCurrent,
         OffPathResistive | OffPathConstant | OffCurrentBends => Place::OffPath,
-        TripHigh | TripLow | ReEnableHigh | ReEnableLow | HysteresisNarrow | HysteresisWide => Place::Figure,
+        TripHigh | TripLow | ReEnableHigh | ReEnableLow | HysteresisNarrow | HysteresisWide
+        | OnResistanceHigh | OnResistanceLow => Place::Figure,
         DwellShorterThanDelay | DetectorNoise => Place::Slow,
+        DetectDelayLong | DetectDelayShort | ReleaseDelayLong | ReleaseDelayShort => Place::Timing,
         RestartsAfterRebound | UnwantedInBand => Place::Trial,
         RangeNotAdequate | OffCurrentMoves | DelayNotResolved | DeepFloorNotReached | InBandNotTried
         | LatchNotTried | NothingToSee | NotJudged => Place::Unjudged,
@@ -142,6 +146,11 @@ mod tests {
         assert_eq!(ranked(&[HysteresisNarrow, SourceResistance]), [SourceResistance, HysteresisNarrow]);
         assert_eq!(ranked(&[Chatter, ConductsWhenDeep]), [ConductsWhenDeep, Chatter]);
         assert_eq!(ranked(&[BenchFault, OutputMayBeOn]), [OutputMayBeOn, BenchFault]);
+        assert_eq!(
+            ranked(&[DetectDelayLong, DwellShorterThanDelay]),
+            [DwellShorterThanDelay, DetectDelayLong],
+            "that it is slow comes before by how much"
+        );
     }
 
     #[test]
