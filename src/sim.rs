@@ -42,7 +42,7 @@ pub use feed::Feed;
 pub use lockout::Lockout;
 pub use meter::{AmmeterModel, AmmeterRange, MeterRange, VoltmeterModel};
 pub use ripple::Ripple;
-pub use setup::{LeftOn, Setup};
+pub use setup::{LeftOn, Setup, ShortReadings};
 pub use shared_world::{JumpingClock, SharedWorld, SimulationClock};
 pub use supply::SupplyModel;
 pub use truth::Truth;

@@ -4,7 +4,7 @@ use super::Bench;
 use crate::procedure::{Ability, Action, Event};
 use crate::sim::device::Kind;
 use crate::sim::link_faults::LinkFaults;
-use crate::sim::{Faults, Mishap, Setup, World};
+use crate::sim::{Faults, Mishap, Setup, ShortReadings, World};
 use crate::trace::{BenchFault, Burst, FaultKind, Sample};
 use crate::units::{Quantity, Volts};
 use std::pin::pin;
@@ -16,9 +16,6 @@ const RESPONSE: Duration = Duration::from_millis(2);
 
 /// Time after which a missing reply is given up.
 const REPLY_TIMEOUT: Duration = Duration::from_secs(1);
-
-/// Short readings of a burst, how long each takes, and the pause between two: six periods of 50 Hz mains.
-const BURST: (u32, Duration, Duration) = (40, Duration::from_millis(1), Duration::from_millis(2));
 
 /// A simulated bench whose clock jumps.
 #[derive(Clone, Debug)]
@@ -113,7 +110,7 @@ impl VirtualBench {
         match action {
             Action::WaitUntil(until) => *until,
             Action::Read => self.now() + self.integration,
-            Action::Burst => self.now() + (BURST.1 + BURST.2) * BURST.0,
+            Action::Burst => self.now() + ShortReadings::time(),
             Action::Finish(_) => self.now(),
             _ => self.now() + RESPONSE,
         }
@@ -175,16 +172,16 @@ impl VirtualBench {
     }
 
     fn burst(&mut self) -> Event {
-        let (count, aperture, pause) = BURST;
         let world = &mut self.world;
         let mut readings = Vec::new();
-        for _ in 0..count {
+        for _ in 0..Burst::LENGTH {
             let mark = world.mark();
-            world.advance_to(world.now() + aperture);
+            world.advance_to(world.now() + ShortReadings::APERTURE);
             readings.push(world.read_sense(&mark));
-            world.advance_to(world.now() + pause);
+            world.advance_to(world.now() + ShortReadings::PAUSE);
         }
-        Burst::of(aperture, &readings).map_or_else(|| self.fail(FaultKind::BadReply), Event::Burst)
+        Burst::of(ShortReadings::APERTURE, &readings)
+            .map_or_else(|| self.fail(FaultKind::BadReply), Event::Burst)
     }
 
     fn fail(&mut self, kind: FaultKind) -> Event {

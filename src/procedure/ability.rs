@@ -10,8 +10,9 @@ pub struct Ability {
     pub voltmeter: bool,
     /// A voltmeter reads the load, behind the switch.
     pub load_voltmeter: bool,
-    /// The voltmeter at the terminals also takes readings far shorter than a mains period.
-    pub short_readings: bool,
+    /// Time of one burst of readings far shorter than a mains period; `None` where the voltmeter at the terminals takes
+    /// none.
+    pub short_readings: Option<Duration>,
     /// Full scales of the ammeter's ranges, smallest first; never empty.
     pub ranges: Vec<Amps>,
     /// Longest an ammeter range change needs until its readings are good.

@@ -27,7 +27,7 @@ pub enum Action {
     /// Read all roles together.
     Read,
     /// Read the voltage at the board a number of times in quick succession, each over a short time. Only where
-    /// [`Ability::short_readings`](super::Ability::short_readings) says so.
+    /// [`Ability::short_readings`](super::Ability::short_readings) has a time for it.
     Burst,
     /// Do nothing until this time since the start of the run.
     WaitUntil(Duration),

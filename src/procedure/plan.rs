@@ -44,8 +44,8 @@ pub struct Plan {
     pub arrival_tolerance: Volts,
     /// Whether arrival can be measured.
     pub voltmeter: bool,
-    /// Whether the voltage at the board can be read over times far shorter than a mains period.
-    pub short_readings: bool,
+    /// Time of one burst of readings far shorter than a mains period; `None` where the bench takes none.
+    pub short_readings: Option<Duration>,
     /// Voltages at which the off current is read, lowest first, all below the lowest trip.
     pub off_points: Vec<Volts>,
     /// How far the off current may still move once it counts as settled.

@@ -1,7 +1,7 @@
 //! How far a run has come, for the operator.
 
 use super::plan::Pace;
-use super::{Plan, deep, delay, in_band, rebound};
+use super::{Plan, deep, delay, hum, in_band, rebound};
 use crate::trace::WHOLE_LINE_PERIODS;
 use crate::units::Volts;
 use std::time::Duration;
@@ -36,7 +36,7 @@ impl Progress {
 pub enum Stage {
     /// Low voltage, little current: short? reversed?
     PreCheck,
-    /// Bringing the board into its on state.
+    /// Bringing the board into its on state, and listening for hum.
     Arm,
     /// Looking for both thresholds together.
     Search,
@@ -115,7 +115,7 @@ fn search(plan: &Plan, seconds: f64) -> Vec<(Stage, Duration)> {
     let below_trip = (plan.start - plan.floor) / 3.0;
     vec![
         pre_check(plan),
-        (Stage::Arm, up),
+        (Stage::Arm, up + hum::expected(plan)),
         (Stage::Search, Duration::from_secs_f64(seconds)),
         (Stage::ConfirmTrip, down * 2 + plan.down.hold),
         (Stage::ConfirmReEnable, up * 2 + plan.up.hold),
@@ -133,7 +133,7 @@ fn staircase(plan: &Plan) -> Vec<(Stage, Duration)> {
     };
     vec![
         pre_check(plan),
-        (Stage::Arm, up),
+        (Stage::Arm, up + hum::expected(plan)),
         (Stage::SurveyDown, down * steps(span, plan.survey_step)),
         off_current(plan),
         (Stage::SurveyUp, up * steps(span * 0.5, plan.survey_step)),

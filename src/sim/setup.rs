@@ -12,8 +12,9 @@ use super::{
 };
 use crate::procedure::Ability;
 use crate::profile::Profile;
-use crate::trace::{Claims, RangeAccuracy, Times};
+use crate::trace::{Burst, Claims, RangeAccuracy, Times};
 use crate::units::{Amps, Celsius, Ohms, Volts};
+use std::time::Duration;
 
 /// Time constants until a small step has arrived.
 const SETTLE_CONSTANTS: u32 = 5;
@@ -49,6 +50,22 @@ pub struct Setup {
     pub link_faults: Vec<LinkFault>,
     /// Seed of all noise.
     pub seed: u64,
+}
+
+/// How the voltmeter of a simulated bench reads in quick succession: six periods of 50 Hz mains.
+#[derive(Clone, Copy, Debug)]
+pub struct ShortReadings;
+
+impl ShortReadings {
+    /// Time over which one is averaged.
+    pub const APERTURE: Duration = Duration::from_millis(1);
+    /// Pause between two.
+    pub const PAUSE: Duration = Duration::from_millis(2);
+
+    /// Time of a burst.
+    pub fn time() -> Duration {
+        (Self::APERTURE + Self::PAUSE) * Burst::LENGTH
+    }
 }
 
 /// A bench that somebody left with its output on.
@@ -127,7 +144,7 @@ impl Setup {
         Ability {
             voltmeter: true,
             load_voltmeter: true,
-            short_readings: true,
+            short_readings: Some(ShortReadings::time()),
             ranges: self.ammeter.ranges.iter().map(|range| Amps(range.meter.full_scale)).collect(),
             range_settle: self.ammeter.range_settle,
             max_voltage: supply.max_voltage,

@@ -22,6 +22,9 @@ pub struct Burst {
 }
 
 impl Burst {
+    /// Readings that a bench takes for one burst.
+    pub const LENGTH: u32 = 40;
+
     /// Sums up readings of `aperture` each; `None` of fewer than three, or where one is no number.
     pub fn of(aperture: Duration, readings: &[Volts]) -> Option<Self> {
         const FEWEST: usize = 3;

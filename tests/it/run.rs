@@ -198,7 +198,7 @@ fn ability() -> Ability {
     Ability {
         voltmeter: true,
         load_voltmeter: false,
-        short_readings: false,
+        short_readings: None,
         ranges: RANGES.map(Amps).to_vec(),
         range_settle: Duration::from_millis(20),
         max_voltage: Volts(32.0),

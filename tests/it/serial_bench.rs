@@ -2,6 +2,8 @@
 
 #![expect(clippy::expect_used, reason = "helpers of tests fail as tests do")]
 
+mod burst;
+
 use crate::scripted::{Act, DEADLINE, Device, Scripted, say};
 use ebbmark::bench::Bench;
 use ebbmark::bench::serial::{ConnectError, SerialBench, check, connect};

@@ -9,9 +9,6 @@ use crate::units::Volts;
 use std::sync::Arc;
 use std::time::Duration;
 
-/// Short readings of one burst.
-const READINGS: usize = 40;
-
 impl SerialBench {
     /// Reads the voltage at the board in quick succession, each time over the short time of the voltmeter's definition.
     pub(super) async fn burst(&mut self) -> Result<Burst, InstrumentError> {
@@ -47,7 +44,7 @@ fn take(
     deadline: Duration,
 ) -> Result<Vec<Volts>, InstrumentError> {
     session.command(&short.begin)?;
-    let readings: Result<Vec<Volts>, InstrumentError> = (0..READINGS)
+    let readings: Result<Vec<Volts>, InstrumentError> = (0..Burst::LENGTH)
         .map(|_| {
             let number = session.query_number_within(read, deadline)?;
             number.value().map(Volts).ok_or_else(|| InstrumentError::Overload {

@@ -1,10 +1,10 @@
 //! What a bench can do and what its makers claim, put together from the definitions of its instruments.
 
 use super::{BenchFile, BenchInstrument, VoltmeterPlace};
-use crate::instrument::definition::{Range, Role, Voltmeter};
+use crate::instrument::definition::{Definition, Range, Role, Voltmeter};
 use crate::procedure::{Ability, Misfit, fits, swing};
 use crate::profile::{Profile, Supply};
-use crate::trace::{Claims, Times};
+use crate::trace::{Burst, Claims, Times};
 use crate::units::{Amps, Ohms, Volts};
 use std::collections::BTreeSet;
 use std::time::Duration;
@@ -22,7 +22,7 @@ impl BenchFile {
         Ability {
             voltmeter: self.parts.voltmeter.is_some(),
             load_voltmeter: self.parts.load_voltmeter.is_some(),
-            short_readings: self.parts.voltmeter.as_ref().is_some_and(|meter| meter.short.is_some()),
+            short_readings: self.player(Role::Voltmeter).and_then(burst_time),
             ranges: self.parts.ammeter.ranges.iter().map(|range| range.full_scale).collect(),
             range_settle: self
                 .parts
@@ -140,6 +140,14 @@ fn range_of(meter: Option<&Voltmeter>, maximum: Volts) -> Option<&Range<Volts>> 
     meter.range_for(maximum).or_else(|| meter.ranges.last())
 }
 
+/// Time a voltmeter takes for a burst of short readings, if it can take any: each a question of its own.
+fn burst_time(instrument: &BenchInstrument) -> Option<Duration> {
+    let definition = &instrument.definition;
+    let meter = definition.voltmeter.as_ref()?;
+    let short = meter.short.as_ref()?;
+    Some(exchange(definition, meter.read.len(), short.integration) * Burst::LENGTH)
+}
+
 /// Time one instrument takes to read all its roles, one after the other, wire included.
 fn read_time(instrument: &BenchInstrument) -> Duration {
     let definition = &instrument.definition;
@@ -153,13 +161,14 @@ fn read_time(instrument: &BenchInstrument) -> Duration {
             definition.voltmeter.as_ref().map(|meter| (meter.read.len(), meter.integration))
         }
     });
+    questions.map(|(question, integration)| exchange(definition, question, integration)).sum()
+}
+
+/// Time from a question of so many characters to the end of its answer, for which the instrument measures that long.
+fn exchange(definition: &Definition, question: usize, integration: Duration) -> Duration {
     let terminator = definition.serial.terminator.text().len();
-    questions
-        .map(|(question, integration)| {
-            let characters = u32::try_from(question + terminator + REPLY_CHARACTERS).unwrap_or(u32::MAX);
-            definition.timing.response + integration + definition.serial.wire_time(characters)
-        })
-        .sum()
+    let characters = u32::try_from(question + terminator + REPLY_CHARACTERS).unwrap_or(u32::MAX);
+    definition.timing.response + integration + definition.serial.wire_time(characters)
 }
 
 #[cfg(test)]
@@ -209,6 +218,9 @@ mod tests {
         assert_eq!(ability.range_settle, Duration::from_millis(60));
         assert_eq!((ability.max_voltage, ability.set_step), (Volts(32.0), Volts(0.001)));
         assert!((ability.read_time.as_secs_f64() - 0.023997).abs() < 1e-6, "{:?}", ability.read_time);
+        // 40 times 2 ms response, 400 us, 23 characters as above.
+        let burst = ability.short_readings.expect("the voltmeter can").as_secs_f64();
+        assert!((burst - 40.0 * 0.004397).abs() < 4e-5, "{burst}");
         assert!((ability.arrival_tolerance.0 - 0.011544).abs() < 1e-9, "{}", ability.arrival_tolerance);
         assert!(
             (ability.off_current_uncertainty().0 - 14.43e-9).abs() < 1e-11,
