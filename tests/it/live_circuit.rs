@@ -107,7 +107,7 @@ fn the_circuit_is_left_without_voltage() {
     assert!(last.is_some_and(|volts| volts.abs() < Volts(0.1)), "{last:?}");
 }
 
-/// The delay element charges a capacitor through 10 kohm and discharges it through 10 kohm and 100 kohm in series, and the
+/// The delay element discharges a capacitor through 10 kohm and charges it through 10 kohm and 100 kohm in series, and the
 /// switch follows at half the voltage: t = -R C ln(1 - Vth / VDD), with Vth / VDD = 1/2 both ways (common practice). The
 /// capacitor is chosen for the time through 10 kohm.
 #[test]
@@ -115,7 +115,7 @@ fn delays_of_a_charged_capacitor_are_those_of_its_law() {
     for delay in [0.5e-3, 4e-3] {
         let board = Board { delay, ..Board::good() };
         let mut profile = river::profile();
-        profile.timing.detect_delay = Duration::from_millis(150);
+        profile.timing.release_delay = Duration::from_millis(150);
         (profile.measure.detect_delay, profile.measure.release_delay) = (true, true);
         let ability = CircuitBench::ability();
         let times = Times { integration: ability.read_time, settle: ability.settle };
@@ -128,7 +128,7 @@ fn delays_of_a_charged_capacitor_are_those_of_its_law() {
             std::future::pending(),
         ));
         let analysis = analyse(&trace, &profile);
-        for (name, law) in [(QuantityName::DetectDelay, 11.0 * delay), (QuantityName::ReleaseDelay, delay)] {
+        for (name, law) in [(QuantityName::DetectDelay, delay), (QuantityName::ReleaseDelay, 11.0 * delay)] {
             let found = analysis.quantities.iter().find(|quantity| quantity.name == name);
             let found = found.unwrap_or_else(|| panic!("{board:?}: no {name:?}: {analysis:#?}"));
             let half_width = found.standard_uncertainty * 3.0_f64.sqrt();

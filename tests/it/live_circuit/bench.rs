@@ -18,7 +18,7 @@ pub(super) struct Board {
     pub(super) trip: f64,
     /// At the terminals, V.
     pub(super) re_enable: f64,
-    /// Of the release, s; the detection takes eleven times as long, through 110 kohm.
+    /// Of the detection, s; the release takes eleven times as long, through 110 kohm.
     pub(super) delay: f64,
     /// Resistance of the leads, ohm.
     pub(super) leads: f64,
@@ -30,7 +30,7 @@ pub(super) struct Board {
 
 impl Board {
     pub(super) fn good() -> Self {
-        Self { trip: 6.0037, re_enable: 6.4121, delay: 2e-3, leads: 0.08, pull_up: 3.3e6, detector: 0.9e-6 }
+        Self { trip: 6.0037, re_enable: 6.4121, delay: 1e-3, leads: 0.08, pull_up: 3.3e6, detector: 0.9e-6 }
     }
 
     /// The off current by Ohm's law: pull-up, detector, and the open switch of 50 Mohm in series with the load.
@@ -38,8 +38,9 @@ impl Board {
         volts / self.pull_up + self.detector + volts / (OPEN_SWITCH + LOAD)
     }
 
-    /// The net list. The delay element charges through 10 kohm towards 1 V, discharges through 10 kohm and 100 kohm in
-    /// series, and switches at half of it, after ln 2 time constants.
+    /// The net list. The detector's output is an open drain, as of most real ones: below the trip it discharges the delay's
+    /// capacitor through 10 kohm, else a pull-up charges it towards 1 V through 10 kohm and 100 kohm in series. The switch
+    /// follows at half of it, after ln 2 time constants.
     fn circuit(&self) -> String {
         let Self { trip, re_enable, leads, pull_up, detector, .. } = self;
         let capacitor = self.delay / (10e3 * std::f64::consts::LN_2);
@@ -50,15 +51,15 @@ impl Board {
              Vam meter vin 0\n\
              Cin vin 0 1u\n\
              Vref ref 0 1\n\
-             Sdet ref det vin 0 detector OFF\n\
-             Rdet det 0 100k\n\
+             Sdet det 0 0 vin detector ON\n\
+             Rdet ref det 100k\n\
              Rdel det gate 10k\n\
              Cdel gate 0 {capacitor:e}\n\
              Spass vin out gate 0 pass OFF\n\
              Rload out 0 {LOAD}\n\
              Rpu vin 0 {pull_up}\n\
              Iq vin 0 {detector:e}\n\
-             .model detector sw vt={} vh={} ron=1 roff=1e12\n\
+             .model detector sw vt=-{} vh={} ron=1 roff=1e12\n\
              .model pass sw vt=0.5 vh=0 ron=0.05 roff={OPEN_SWITCH}\n\
              .options method=gear reltol=1e-6 abstol=1e-13 vntol=1e-8\n\
              .end\n",
@@ -134,7 +135,7 @@ impl CircuitBench {
         Ability {
             voltmeter: true,
             load_voltmeter: true,
-            short_readings: false,
+            short_readings: None,
             ranges: ranges.map(Amps).to_vec(),
             range_settle: Duration::from_millis(5),
             max_voltage: Volts(32.0),
