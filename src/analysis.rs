@@ -5,6 +5,7 @@
 
 mod accuracy;
 mod allowance;
+mod at_rest;
 mod cause;
 mod contact;
 mod contribution;
@@ -40,6 +41,7 @@ mod on_resistance;
 mod outside;
 mod plateau;
 mod quantity;
+pub(crate) mod ramps;
 pub(crate) mod ranking;
 mod rates;
 mod rebound;
@@ -62,11 +64,13 @@ mod threshold;
 mod trust;
 mod zero;
 
+pub use at_rest::AtRest;
 pub use cause::Cause;
 pub use contribution::{Contribution, Input, Role, Shape};
 pub use expected::expected;
 pub use finding::{About, Finding, FindingCode};
 pub use quantity::{Quantity, Term};
+pub use ramps::RampFit;
 pub use rates::from_rates;
 pub(crate) use spread::Spread;
 
@@ -153,6 +157,15 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
         findings.retain(|finding| finding.code != FindingCode::RangeNotAdequate);
     }
     Analysis { quantities, findings: ranking::rank(findings) }
+}
+
+/// What the ramps of several rates within one run say of trip and re-enable and their delays, as far as there were any.
+pub fn from_ramps(trace: &Trace, profile: &Profile) -> Vec<RampFit> {
+    let course = Course::new(trace, profile);
+    let found = Edges::find(&course);
+    let [down, up] = [Direction::Down, Direction::Up].map(|it| Search::run(&course, &found, it));
+    let thresholds = thresholds(&course, &down, &up);
+    thresholds.iter().filter_map(|threshold| RampFit::of(&course, &found, threshold)).collect()
 }
 
 /// Trip, re-enable, hysteresis and on current, as far as they were found.

@@ -25,6 +25,7 @@ mod plan;
 mod pre_check;
 mod probe;
 mod progress;
+mod ramps;
 mod rebound;
 mod script;
 mod search;

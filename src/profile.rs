@@ -35,6 +35,7 @@
 //!
 //! [measure]                           # may be left out; a limit on a quantity measures it by itself
 //! delays = true                       # detect and release delay, by steps across the thresholds
+//! ramp_rates = 3                      # the same from ramps of so many rates as well; 3 to 6
 //! deep_floor = "0.3 V"                # sweep from the floor down to here: does the switch conduct again?
 //! in_band = "6.18 V"                  # switch on at this voltage between trip and re-enable, and note the state
 //! in_band_times = 3                   # how often; 3 if left out

@@ -12,6 +12,7 @@ use super::edges::{Direction, Edge, Edges};
 use super::finding::{About, Finding, FindingCode};
 use super::plateau::Course;
 use super::quantity::{Contribution, Quantity};
+use super::ramps;
 use super::switching_time::{Burst, Span};
 use super::terminals::{Rail, source_resistance};
 use crate::profile::QuantityName;
@@ -54,7 +55,14 @@ pub(super) fn delays(
     let (mut quantities, mut findings) = (Vec::new(), Vec::new());
     for name in wanted {
         let threshold = thresholds.iter().find(|quantity| quantity.name == name);
-        let Some(delay) = threshold.and_then(|threshold| delay(course, found, threshold)) else { continue };
+        let Some(threshold) = threshold else { continue };
+        let mut stated = delay(course, found, threshold);
+        if measure.ramp_rates.is_some() {
+            let (better, finding) = ramps::with_ramps(course, found, threshold, stated);
+            stated = better;
+            findings.extend(finding);
+        }
+        let Some(delay) = stated else { continue };
         match unresolved(course, &delay) {
             Some(finding) => findings.push(finding),
             None => quantities.push(delay),
@@ -91,11 +99,8 @@ const COARSE: f64 = 0.5;
 
 /// The delay of the change beyond `threshold`; `None` where no step leads clearly across it.
 fn delay(course: &Course<'_>, found: &Edges, threshold: &Quantity) -> Option<Quantity> {
-    let (name, direction) = match threshold.name {
-        QuantityName::Trip => (QuantityName::DetectDelay, Direction::Down),
-        QuantityName::ReEnable => (QuantityName::ReleaseDelay, Direction::Up),
-        _ => return None,
-    };
+    let direction = Direction::of(threshold.name)?;
+    let name = direction.delay_name();
     let edges = found.edges.iter().filter(|edge| edge.direction == direction);
     let mut steps: Vec<Step> = edges.filter_map(|edge| step(course, found, edge, threshold)).collect();
     steps.sort_by(|a, b| a.width().total_cmp(&b.width()));

@@ -4,7 +4,7 @@
 //! bounds it from before, but only if the board was given more time than its delay; so every stay carries its time.
 
 use super::plateau::{Course, SAME_SET};
-use crate::profile::Timing;
+use crate::profile::{QuantityName, Timing};
 use crate::trace::SwitchState;
 use crate::units::Volts;
 use std::time::Duration;
@@ -25,6 +25,23 @@ impl Direction {
             SwitchState::On => Some(Direction::Down),
             SwitchState::Off => Some(Direction::Up),
             SwitchState::Neither => None,
+        }
+    }
+
+    /// The direction in which a threshold is passed; `None` for other quantities.
+    pub(super) fn of(threshold: QuantityName) -> Option<Self> {
+        match threshold {
+            QuantityName::Trip => Some(Direction::Down),
+            QuantityName::ReEnable => Some(Direction::Up),
+            _ => None,
+        }
+    }
+
+    /// What its delay is called.
+    pub(super) fn delay_name(self) -> QuantityName {
+        match self {
+            Direction::Down => QuantityName::DetectDelay,
+            Direction::Up => QuantityName::ReleaseDelay,
         }
     }
 
@@ -122,6 +139,19 @@ impl Edges {
         }
         walk.keep_stays_of_the_drop_before_the_trip();
         walk.found
+    }
+}
+
+impl Edges {
+    /// What says where the thresholds are: all but what was read at once after a step, for a delay.
+    pub(super) fn at_rest(&self, course: &Course<'_>) -> Self {
+        let at_rest = |plateau: usize| !course.is_read_at_once(plateau);
+        Self {
+            edges: self.edges.iter().filter(|edge| at_rest(edge.plateau)).cloned().collect(),
+            stays: self.stays.iter().filter(|stay| at_rest(stay.plateau)).cloned().collect(),
+            reversals: self.reversals.clone(),
+            bounces: self.bounces.clone(),
+        }
     }
 }
 

@@ -147,6 +147,10 @@ pub enum FindingCode {
     NothingToSee,
     /// A delay is bounded only so loosely that its limit cannot be judged.
     DelayNotResolved,
+    /// What ramps of several rates say about a delay, and that it agrees with the steps; a note.
+    DelayFromRamps,
+    /// Steps and ramps do not give the same delay, or not the same threshold.
+    DelaysDiffer,
     /// Far below the trip the switch conducts again.
     ConductsWhenDeep,
     /// The terminals did not come down to the deep floor.

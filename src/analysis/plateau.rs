@@ -15,6 +15,9 @@ const IN_SCOPE: f64 = 0.75;
 /// The supply may fall short of a voltage of the profile by this share: its step, its accuracy.
 pub(super) const REACHED: f64 = 0.005;
 
+/// Less than this share of the settling time between two readings leaves none for it, whatever the clock errs.
+const SURELY_SETTLING: f64 = 0.9;
+
 /// Consecutive samples at one set-point.
 #[derive(Clone, Debug)]
 pub(super) struct Plateau {
@@ -77,6 +80,15 @@ impl<'t> Course<'t> {
             }
         }
         Self { trace, profile, states, stopped, plateaus }
+    }
+
+    /// True for a plateau that was read before its step can have settled, as steps and ramps for a delay are: a change there is
+    /// one of time, not of voltage. False where no times are claimed.
+    pub(super) fn is_read_at_once(&self, plateau: usize) -> bool {
+        let first = self.plateaus[plateau].samples.start;
+        let Some((before, times)) = first.checked_sub(1).zip(self.trace.claims.times) else { return false };
+        let at = |sample: usize| self.trace.samples[sample].at;
+        at(first).saturating_sub(at(before) + times.integration) < times.settle.mul_f64(SURELY_SETTLING)
     }
 
     /// The settled sample of a plateau.

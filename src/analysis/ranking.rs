@@ -72,11 +72,11 @@ fn place(code: FindingCode) -> Place {
         DwellShorterThanDelay | DetectorNoise => Place::Slow,
         DetectDelayLong | DetectDelayShort | ReleaseDelayLong | ReleaseDelayShort => Place::Timing,
         RestartsAfterRebound | UnwantedInBand => Place::Trial,
-        RangeNotAdequate | OffCurrentMoves | DelayNotResolved | DeepFloorNotReached | InBandNotTried
-        | LatchNotTried | NothingToSee | NotJudged => Place::Unjudged,
+        RangeNotAdequate | OffCurrentMoves | DelayNotResolved | DelaysDiffer | DeepFloorNotReached
+        | InBandNotTried | LatchNotTried | NothingToSee | NotJudged => Place::Unjudged,
         Rebound => Place::Battery,
         AccuracyNotIncluded | NoVoltmeter | CalibrationOverdue | OutsideTemperature => Place::Trust,
-        StillCharged | InBand | StorageDrain => Place::Note,
+        StillCharged | InBand | DelayFromRamps | StorageDrain => Place::Note,
     }
 }
 

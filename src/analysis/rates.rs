@@ -41,14 +41,14 @@ pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
             courses.iter().zip(&found).filter_map(|(course, found)| Ramp::of(course, found, direction));
         let mut ramps: Vec<Ramp> = ramps.collect();
         allow_for_noise(&mut ramps, direction);
-        AtRest::fit(&ramps, direction)
+        ThroughRates::fit(&ramps, direction)
     });
-    let threshold = |name, at_rest: &AtRest| {
+    let threshold = |name, at_rest: &ThroughRates| {
         let claimed = courses.first().map(|course| accuracy::of_voltage(course, Volts(at_rest.value)));
         let parts = at_rest.threshold_lines().into_iter().chain(claimed.into_iter().flatten());
         Quantity::new(name, at_rest.value, parts.collect())
     };
-    let delay = |name, at_rest: &AtRest| Quantity::new(name, at_rest.delay, at_rest.delay_lines());
+    let delay = |name, at_rest: &ThroughRates| Quantity::new(name, at_rest.delay, at_rest.delay_lines());
     let trip = down.as_ref().map(|down| threshold(QuantityName::Trip, down));
     let re_enable = up.as_ref().map(|up| threshold(QuantityName::ReEnable, up));
     let difference =
@@ -164,7 +164,7 @@ const SAME_RATE: f64 = 1e-6;
 
 /// A threshold and its delay, from a line through several rates.
 #[derive(Clone, Copy, Debug)]
-struct AtRest {
+struct ThroughRates {
     value: f64,
     delay: f64,
     /// The quantity that the slope is.
@@ -180,7 +180,7 @@ struct AtRest {
     noise: (f64, f64),
 }
 
-impl AtRest {
+impl ThroughRates {
     fn fit(ramps: &[Ramp], direction: Direction) -> Option<Self> {
         let through = |y: fn(&Ramp) -> f64| {
             let point =
@@ -274,7 +274,7 @@ mod tests {
             rail: 0.0,
         };
         let ramps: Vec<Ramp> = list("t_degC").iter().zip(&list("b_degC")).map(ramp).collect();
-        let at_rest = AtRest::fit(&ramps, Direction::Up).expect("a line");
+        let at_rest = ThroughRates::fit(&ramps, Direction::Up).expect("a line");
         let threshold = Quantity::new(QuantityName::ReEnable, at_rest.value, at_rest.threshold_lines());
         let delay = Quantity::new(QuantityName::ReleaseDelay, at_rest.delay, at_rest.delay_lines());
         let product = threshold.standard_uncertainty * delay.standard_uncertainty;
@@ -283,7 +283,7 @@ mod tests {
         assert!((threshold.standard_uncertainty - 0.0029).abs() < 5e-5, "{threshold:?}");
         assert!((delay.standard_uncertainty - 0.00067).abs() < 5e-6, "{delay:?}");
         // Downwards the sign of the delay turns, and that of the correlation with it.
-        let at_rest = AtRest::fit(&ramps, Direction::Down).expect("a line");
+        let at_rest = ThroughRates::fit(&ramps, Direction::Down).expect("a line");
         let threshold = Quantity::new(QuantityName::Trip, at_rest.value, at_rest.threshold_lines());
         let delay = Quantity::new(QuantityName::DetectDelay, at_rest.delay, at_rest.delay_lines());
         assert!((threshold.covariance(&delay) / product - 0.930).abs() < 5e-4);

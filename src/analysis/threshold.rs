@@ -97,6 +97,7 @@ impl Bracket {
 impl Search {
     /// Looks for the threshold in `direction`.
     pub(super) fn run(course: &Course<'_>, found: &Edges, direction: Direction) -> Self {
+        let (all, found) = (found, &found.at_rest(course));
         let edges: Vec<&Edge> = found.edges.iter().filter(|edge| edge.direction == direction).collect();
         let near = edges.last().map_or(course.profile.supply.floor, |edge| course.plateaus[edge.plateau].set);
         let Some(rail) = Rail::near(course, &found.stays, direction, near) else { return Self::default() };
@@ -105,7 +106,7 @@ impl Search {
             return Self::default();
         }
         let declared = direction.delay(&course.profile.timing);
-        let slow = Slow::find(course, found, direction, &rail);
+        let slow = Slow::find(course, all, direction, &rail);
         let delay = slow.map_or(declared, |slow| slow.at_most.max(declared));
         let stays = Stays::sorted(course, found, direction, &rail, delay);
         let mut threshold = stays.threshold(course, &edges, &rail);

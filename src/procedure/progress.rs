@@ -1,7 +1,7 @@
 //! How far a run has come, for the operator.
 
 use super::plan::Pace;
-use super::{Plan, deep, delay, hum, in_band, rebound};
+use super::{Plan, deep, delay, hum, in_band, ramps, rebound};
 use crate::trace::WHOLE_LINE_PERIODS;
 use crate::units::Volts;
 use std::time::Duration;
@@ -56,7 +56,7 @@ pub enum Stage {
     ConfirmTrip,
     /// Waiting just below the re-enable voltage to see that nothing moves.
     ConfirmReEnable,
-    /// Steps across the thresholds, read as fast as the bench can.
+    /// Steps and ramps across the thresholds, read as fast as the bench can.
     Delays,
     /// Off, and on again between trip and re-enable.
     InBand,
@@ -147,7 +147,7 @@ fn staircase(plan: &Plan) -> Vec<(Stage, Duration)> {
 /// What comes after the thresholds, in either mode.
 fn more(plan: &Plan) -> [(Stage, Duration); 5] {
     [
-        (Stage::Delays, delay::expected(plan)),
+        (Stage::Delays, delay::expected(plan) + ramps::expected(plan)),
         (Stage::InBand, in_band::expected(plan)),
         (Stage::DeepSweep, deep::expected(plan)),
         (Stage::Rebound, rebound::duration(plan)),

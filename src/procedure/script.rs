@@ -13,6 +13,7 @@ use super::off_current::measure_off_current;
 use super::pre_check::pre_check;
 use super::probe::{arm_off, arm_on};
 use super::progress::{Stage, left};
+use super::ramps::play_ramps;
 use super::rebound::try_rebound;
 use super::switch_off::switch_off;
 use super::walk::{Edge, walk_down, walk_up};
@@ -87,6 +88,7 @@ async fn staircase(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
 async fn measure_more(desk: &Desk, plan: &Plan, trip: Edge, re_enable: Edge) -> Result<(), Stop> {
     try_rebound(desk, plan, trip).await?;
     measure_delays(desk, plan, trip, re_enable).await?;
+    play_ramps(desk, plan, trip, Some(re_enable)).await?;
     switch_on_in_band(desk, plan).await?;
     sweep_deep(desk, plan, trip).await
 }

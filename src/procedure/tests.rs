@@ -169,6 +169,7 @@ proptest! {
         plan.measure = Measure {
             detect_delay: true,
             release_delay: true,
+            ramp_rates: Some(3),
             deep_floor: Some(Volts(0.3)),
             in_band: Some(in_band),
         };

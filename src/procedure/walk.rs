@@ -16,6 +16,13 @@ pub(super) struct Edge {
     pub(super) changed: Volts,
 }
 
+impl Edge {
+    /// Halfway between the two.
+    pub(super) fn middle(&self) -> Volts {
+        (self.unchanged + self.changed) / 2.0
+    }
+}
+
 /// Steps down from `from` to `to`; `None` when the board is still on at the end.
 pub(super) async fn walk_down(
     desk: &Desk,

@@ -16,6 +16,8 @@ pub struct Measure {
     pub detect_delay: bool,
     /// The time from crossing the re-enable voltage to the closed switch, by steps across it.
     pub release_delay: bool,
+    /// Rates of the ramps from which the delays are read as well; `None` for steps alone.
+    pub ramp_rates: Option<u32>,
     /// How far the deep sweep goes below the ramp's floor; `None` for no deep sweep.
     pub deep_floor: Option<Volts>,
     /// Switching on at a voltage between trip and re-enable.
@@ -46,6 +48,8 @@ pub enum WantedInBand {
 const DEEP_FLOOR: Volts = Volts(0.3);
 /// Lower than this a supply's own error counts.
 const LOWEST_DEEP_FLOOR: Volts = Volts(0.1);
+/// Rates a line may be drawn through and tested, and more than keep a board on the bench for long.
+const RATES: std::ops::RangeInclusive<i64> = 3..=6;
 /// How often a board is switched on inside the band where the profile does not say.
 const TIMES: u32 = 3;
 /// More would keep a board on the bench for minutes.
@@ -55,6 +59,7 @@ const MOST_TIMES: i64 = 100;
 #[derive(Default)]
 pub(super) struct MeasureDraft {
     delays: Option<At<bool>>,
+    ramp_rates: Option<At<i64>>,
     deep_floor: Option<At<Volts>>,
     in_band: Option<At<Volts>>,
     in_band_times: Option<At<i64>>,
@@ -65,6 +70,7 @@ impl MeasureDraft {
     pub(super) fn read(mut table: Table<'_, '_>) -> Self {
         Self {
             delays: table.optional_boolean("delays"),
+            ramp_rates: table.optional_integer("ramp_rates"),
             deep_floor: table.optional_quantity("deep_floor"),
             in_band: table.optional_quantity("in_band"),
             in_band_times: table.optional_integer("in_band_times"),
@@ -78,9 +84,13 @@ impl MeasureDraft {
         let limited = |name| limits.contains_key(&name);
         let delays = self.delays.as_ref().is_some_and(|delays| delays.value);
         let deep_floor = self.deep_floor.as_ref().map(|floor| floor.value);
+        let limited_delays = [DetectDelay, ReleaseDelay].map(limited);
+        // Ramps alone ask for both.
+        let delays = delays || self.ramp_rates.is_some() && limited_delays == [false; 2];
         Measure {
-            detect_delay: delays || limited(DetectDelay),
-            release_delay: delays || limited(ReleaseDelay),
+            detect_delay: delays || limited_delays[0],
+            release_delay: delays || limited_delays[1],
+            ramp_rates: self.ramp_rates.as_ref().map(|rates| rates.value as u32),
             deep_floor: deep_floor.or(limited(DeepCurrent).then_some(DEEP_FLOOR)),
             in_band: self.in_band.as_ref().map(|at| InBand {
                 at: at.value,
@@ -103,6 +113,11 @@ pub(super) fn check(draft: &Draft, root: &Table<'_, '_>) {
         {
             root.problem(deep, &format!("not below {floor}, where the ramp has ended already"));
         }
+    }
+    if let Some(rates) = &measure.ramp_rates
+        && !RATES.contains(&rates.value)
+    {
+        root.problem(rates, "wanted 3 to 6");
     }
     in_band(draft, root);
 }
@@ -173,10 +188,19 @@ mod tests {
         let wanted = Measure {
             detect_delay: true,
             release_delay: true,
+            ramp_rates: None,
             deep_floor: Some(Volts(0.5)),
             in_band: Some(in_band),
         };
         assert_eq!(asked, wanted);
+    }
+
+    #[test]
+    fn ramps_are_of_the_delays_asked_for_or_of_both() {
+        let both = measure("[measure]\nramp_rates = 4\n[limits]");
+        assert_eq!((both.detect_delay, both.release_delay, both.ramp_rates), (true, true, Some(4)));
+        let one = measure("[measure]\nramp_rates = 3\n[limits]\ndetect_delay = { max = \"5 ms\" }");
+        assert_eq!((one.detect_delay, one.release_delay, one.ramp_rates), (true, false, Some(3)));
     }
 
     #[test]
@@ -195,5 +219,6 @@ mod tests {
         p.toml:40:18: measure.wanted_in_band = "off": says nothing without measure.in_band; wanted that as well
         "#);
         says!(told("in_band = \"6.2 V\"\nin_band_times = 0"), @"p.toml:40:17: measure.in_band_times = 0: wanted 1 to 100");
+        says!(told("ramp_rates = 2"), @"p.toml:39:14: measure.ramp_rates = 2: wanted 3 to 6");
     }
 }

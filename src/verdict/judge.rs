@@ -107,7 +107,7 @@ fn not_judged(missing: &[QuantityName], profile: &Profile, findings: &[Finding])
         findings.iter().any(|finding| match finding.code {
             FindingCode::NeitherOnNorOff | FindingCode::NothingToSee => true,
             FindingCode::DeepFloorNotReached => *name == QuantityName::DeepCurrent,
-            FindingCode::DelayNotResolved => {
+            FindingCode::DelayNotResolved | FindingCode::DelaysDiffer => {
                 matches!(name, QuantityName::DetectDelay | QuantityName::ReleaseDelay)
             }
             FindingCode::RangeNotAdequate | FindingCode::OffCurrentMoves => matches!(

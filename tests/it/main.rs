@@ -19,6 +19,7 @@ mod nine_volt;
 mod off_state;
 #[cfg(unix)]
 mod outside_parser;
+mod ramps;
 mod relay;
 mod report;
 mod river;
