@@ -22,6 +22,7 @@ mod narrow;
 mod off_current;
 mod off_line;
 mod plan;
+mod power_cycle;
 mod pre_check;
 mod probe;
 mod progress;

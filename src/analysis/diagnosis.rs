@@ -1,8 +1,8 @@
 //! What the course of the state says about the board: never on, never trips, never comes back, cannot rest.
 
-use super::edges::{Direction, Edges};
+use super::edges::{Direction, Edge, Edges};
 use super::finding::{About, Finding, FindingCode};
-use super::plateau::{Course, Plateau, REACHED};
+use super::plateau::{Course, Plateau, REACHED, pulled_down};
 use super::restless::chatter;
 use super::stuck_on::never_trips;
 use crate::trace::{Sample, Stop, SwitchState};
@@ -118,7 +118,11 @@ fn off_at_the_start(course: &Course<'_>, found: &Edges) -> Option<Volts> {
 
 /// A board that is to stay off once tripped: did it come back, or was it not tried?
 fn latched(course: &Course<'_>, found: &Edges) -> Option<Finding> {
-    if let Some(back) = found.edges.iter().find(|edge| edge.direction == Direction::Up) {
+    // A board whose supply a small range of the ammeter took away may have forgotten that it tripped.
+    let gone = |sample: &Sample| pulled_down(sample, &course.trace.claims, course.profile);
+    let kept_its_supply = |edge: &&Edge| !course.trace.samples[..edge.seen].iter().any(gone);
+    let mut backs = found.edges.iter().filter(|edge| edge.direction == Direction::Up);
+    if let Some(back) = backs.find(kept_its_supply) {
         let at = course.terminals(&course.trace.samples[back.seen]);
         return Some(board(
             FindingCode::NotLatched,

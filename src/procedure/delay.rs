@@ -7,9 +7,9 @@
 use super::Plan;
 use super::desk::Desk;
 use super::plan::Pace;
-use super::probe::{arm_off, arm_on, probe, state};
+use super::probe::{arm_off, arm_on, arming, probe, state};
 use super::progress::{Stage, left};
-use super::walk::Edge;
+use super::walk::{Edge, band};
 use crate::trace::{Stop, SwitchState};
 use crate::units::Volts;
 use std::time::Duration;
@@ -30,16 +30,15 @@ pub(super) async fn measure_delays(
     desk: &Desk,
     plan: &Plan,
     trip: Edge,
-    re_enable: Edge,
+    re_enable: Option<Edge>,
 ) -> Result<(), Stop> {
     if !plan.measure.detect_delay && !plan.measure.release_delay {
         return Ok(());
     }
     desk.enter(Stage::Delays, left(plan, Stage::Delays));
     let step = plan.fine_step.unwrap_or(plan.survey_step);
-    let beyond = ((re_enable.unchanged - trip.unchanged) * BEYOND).max(step * LEAST_BEYOND);
+    let beyond = (band(trip, re_enable) * BEYOND).max(step * LEAST_BEYOND);
     let below = (trip.changed - beyond).max(plan.floor);
-    let above = (re_enable.changed + beyond).min(plan.start);
     for shift in (0..STEPS).map(|index| plan.read_time * index / STEPS) {
         if plan.measure.detect_delay {
             arm_on(desk, plan).await?;
@@ -47,9 +46,10 @@ pub(super) async fn measure_delays(
             let across = Step { from: beside, to: below, until: SwitchState::Off, pace: plan.down, shift };
             across.take(desk, plan).await?;
         }
-        if plan.measure.release_delay {
+        if let Some(re_enable) = re_enable.filter(|_| plan.measure.release_delay) {
             arm_off(desk, plan, below).await?;
             let beside = (re_enable.unchanged - step).max(below);
+            let above = (re_enable.changed + beyond).min(plan.start);
             let across = Step { from: beside, to: above, until: SwitchState::On, pace: plan.up, shift };
             across.take(desk, plan).await?;
         }
@@ -90,7 +90,8 @@ pub(super) fn expected(plan: &Plan) -> Duration {
     let probe = |pace: Pace| plan.settle + pace.dwell + plan.read_time;
     let burst = plan.read_time * (AFTERWARDS + 2);
     let one = |asked: bool, pace: Pace| if asked { probe(pace) + pace.dwell + burst } else { Duration::ZERO };
-    let both = one(plan.measure.detect_delay, plan.down) + one(plan.measure.release_delay, plan.up);
-    let arm = if both.is_zero() { Duration::ZERO } else { probe(plan.up) + probe(plan.down) };
+    let both =
+        one(plan.measure.detect_delay, plan.down) + one(plan.measure.release_delay && !plan.latched, plan.up);
+    let arm = if both.is_zero() { Duration::ZERO } else { arming(plan) + probe(plan.down) };
     (both + arm) * STEPS
 }

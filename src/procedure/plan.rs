@@ -26,6 +26,8 @@ pub struct Plan {
     pub load: Load,
     /// Smallest step of the supply's voltage.
     pub set_step: Volts,
+    /// A board that has tripped stays off until its supply has gone.
+    pub latched: bool,
     /// Step of the ramp over the whole range.
     pub survey_step: Volts,
     /// Step of the second ramp through the bracket of the first; `None` when the first is the only one.
@@ -97,6 +99,7 @@ impl Plan {
             floor: supply.floor,
             load: profile.load,
             set_step: ability.set_step,
+            latched: profile.latched,
             survey_step,
             fine_step,
             down,

@@ -3,6 +3,7 @@
 use super::Plan;
 use super::desk::Desk;
 use super::plan::Pace;
+use super::power_cycle::{self, power_cycle};
 use crate::trace::{Sample, Stop, SwitchState};
 use crate::units::Volts;
 use std::time::Duration;
@@ -60,9 +61,14 @@ fn drawn(plan: &Plan, sample: &Sample) -> SwitchState {
     SwitchState::of(sample.current, sample.terminals(), plan.load.resistance, plan.on_uncertainty)
 }
 
-/// Brings the board into its on state by the start voltage, whatever it did before, and returns a reading there.
+/// Brings the board into its on state by the start voltage, whatever it did before, and returns a reading there. One that
+/// latches has its supply taken away first, where it is off.
 pub(super) async fn arm_on(desk: &Desk, plan: &Plan) -> Result<Sample, Stop> {
     let mut sample = probe(desk, plan, plan.start, plan.up).await?;
+    if plan.latched && drawn(plan, &sample) == SwitchState::Off {
+        power_cycle(desk, plan, plan.start).await?;
+        sample = desk.read().await?;
+    }
     let patience = desk.now() + PATIENCE + plan.up.hold;
     let armed = |sample: &Sample| drawn(plan, sample) == SwitchState::On && sample.limited != Some(true);
     while !armed(&sample) && desk.now() < patience {
@@ -79,6 +85,12 @@ pub(super) async fn arm_on(desk: &Desk, plan: &Plan) -> Result<Sample, Stop> {
         SwitchState::Off => Err(Stop::NotOn { at, current }),
         SwitchState::Neither => Err(Stop::Undecided { at, current }),
     }
+}
+
+/// Time of arming: up to the start voltage, or through nothing.
+pub(super) fn arming(plan: &Plan) -> Duration {
+    let cycle = if plan.latched { power_cycle::expected(plan) } else { Duration::ZERO };
+    plan.settle + plan.up.dwell + plan.read_time + cycle
 }
 
 /// Brings the board into its off state by a voltage below its trip.

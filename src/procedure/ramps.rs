@@ -8,8 +8,8 @@
 use super::Plan;
 use super::desk::Desk;
 use super::plan::Pace;
-use super::probe::{arm_off, arm_on, probe, state};
-use super::walk::{Edge, set_points};
+use super::probe::{arm_off, arm_on, arming, probe, state};
+use super::walk::{Edge, band, set_points};
 use crate::trace::{Stop, SwitchState};
 use crate::units::Volts;
 use std::time::Duration;
@@ -60,8 +60,7 @@ pub(super) async fn play_ramps(
 /// there are phases where that is not too high.
 fn heights(plan: &Plan, trip: Edge, re_enable: Option<Edge>) -> impl Iterator<Item = Volts> {
     let rates = plan.measure.ramp_rates.unwrap_or(0);
-    let band = re_enable.map_or(trip.unchanged * LATCHED_BAND, |edge| edge.unchanged - trip.unchanged);
-    let wanted = band * HIGHEST / f64::from(1 << rates.saturating_sub(1));
+    let wanted = band(trip, re_enable) * HIGHEST / f64::from(1 << rates.saturating_sub(1));
     let parts = plan.set_step * f64::from(PHASES);
     let slowest = if wanted >= parts * MOST_OF_THEM {
         parts * (wanted / parts).round()
@@ -74,9 +73,6 @@ fn heights(plan: &Plan, trip: Edge, re_enable: Option<Edge>) -> impl Iterator<It
 
 /// Share of a digit for each phase from which on a step is rounded to whole ones for all.
 const MOST_OF_THEM: f64 = 0.75;
-
-/// What stands in for the hysteresis of a board that has none, as a share of its trip; common detectors have some 5 %.
-const LATCHED_BAND: f64 = 0.05;
 
 fn whole_digits(plan: &Plan, volts: Volts) -> Volts {
     plan.set_step * (volts / plan.set_step).round()
@@ -137,9 +133,10 @@ pub(super) fn expected(plan: &Plan) -> Duration {
     let probe = |pace: Pace| plan.settle + pace.dwell + plan.read_time;
     let ramp = |asked: bool, pace: Pace| {
         let steps = plan.read_time * readings(plan) * (LEAD_IN as u32 + 2) + plan.read_time;
-        if asked { probe(plan.down) + probe(pace) + steps + pace.dwell } else { Duration::ZERO }
+        if asked { arming(plan) + probe(pace) + steps + pace.dwell } else { Duration::ZERO }
     };
-    let both = ramp(plan.measure.detect_delay, plan.down) + ramp(plan.measure.release_delay, plan.up);
+    let both = ramp(plan.measure.detect_delay, plan.down)
+        + ramp(plan.measure.release_delay && !plan.latched, plan.up);
     both * PHASES * plan.measure.ramp_rates.unwrap_or(0)
 }
 

@@ -49,7 +49,7 @@ async fn measure(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
                     arm_on(desk, plan).await?;
                     listen_for_contact(desk, plan).await?;
                 }
-                return measure_more(desk, plan, trip, re_enable).await;
+                return measure_more(desk, plan, trip, Some(re_enable)).await;
             }
             Narrowed::OneMissing => return Ok(()),
             // Every step of the whole range shows what the board does.
@@ -75,20 +75,24 @@ async fn staircase(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
 
     enter(Stage::SurveyUp);
     let low = plan.off_points.last().copied().unwrap_or(plan.floor);
-    let Some(re_enable) = walk_up(desk, plan, low, plan.start, plan.survey_step, plan.up).await? else {
+    let re_enable = walk_up(desk, plan, low, plan.start, plan.survey_step, plan.up).await?;
+    // One that should latch and came back has failed; one that should come back and does not has as well.
+    if plan.latched == re_enable.is_some() {
         return Ok(());
-    };
-
+    }
     let trip = narrow_trip(desk, plan, trip).await?;
-    let re_enable = narrow_re_enable(desk, plan, trip, re_enable).await?;
+    let re_enable = match re_enable {
+        Some(survey) => Some(narrow_re_enable(desk, plan, trip, survey).await?),
+        None => None,
+    };
     measure_more(desk, plan, trip, re_enable).await
 }
 
-/// What the profile asks for beyond thresholds and off current.
-async fn measure_more(desk: &Desk, plan: &Plan, trip: Edge, re_enable: Edge) -> Result<(), Stop> {
+/// What the profile asks for beyond thresholds and off current. A board that latches has no re-enable.
+async fn measure_more(desk: &Desk, plan: &Plan, trip: Edge, re_enable: Option<Edge>) -> Result<(), Stop> {
     try_rebound(desk, plan, trip).await?;
     measure_delays(desk, plan, trip, re_enable).await?;
-    play_ramps(desk, plan, trip, Some(re_enable)).await?;
+    play_ramps(desk, plan, trip, re_enable).await?;
     switch_on_in_band(desk, plan).await?;
     sweep_deep(desk, plan, trip).await
 }

@@ -23,6 +23,14 @@ impl Edge {
     }
 }
 
+/// How far apart the thresholds lie. A board that latches has no way back; then it is what a common detector would have.
+pub(super) fn band(trip: Edge, re_enable: Option<Edge>) -> Volts {
+    re_enable.map_or(trip.unchanged * COMMON_BAND, |edge| edge.unchanged - trip.unchanged)
+}
+
+/// Hysteresis of common detectors, as a share of their trip (common data sheets).
+const COMMON_BAND: f64 = 0.05;
+
 /// Steps down from `from` to `to`; `None` when the board is still on at the end.
 pub(super) async fn walk_down(
     desk: &Desk,

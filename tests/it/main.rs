@@ -12,6 +12,7 @@ mod deep_and_band;
 mod definitions_on_simulation;
 mod delays;
 mod everything;
+mod latched;
 mod limits;
 mod live_circuit;
 mod log;
