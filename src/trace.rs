@@ -8,6 +8,7 @@ pub mod csv;
 mod doubt;
 mod drift;
 mod ending;
+mod slew;
 mod switch_state;
 mod zero;
 
@@ -15,6 +16,7 @@ pub use burst::Burst;
 pub use doubt::Doubt;
 pub use drift::{Drift, WHOLE_LINE_PERIODS};
 pub use ending::{BenchFault, Ending, FaultKind, OutputState, Stop};
+pub use slew::Slew;
 pub use switch_state::SwitchState;
 pub use zero::Zero;
 
@@ -133,6 +135,9 @@ pub struct Claims {
     /// How long readings and steps take; `None` when not known.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub times: Option<Times>,
+    /// How much longer a step takes the farther it goes.
+    #[serde(default, skip_serializing_if = "Slew::is_none")]
+    pub slew: Slew,
     /// What the bench showed with an empty fixture, where that was read.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub zero: Vec<Zero>,

@@ -155,7 +155,8 @@ fn step(course: &Course<'_>, found: &Edges, edge: &Edge, threshold: &Quantity) -
     let (stepped, changed) = (burst.stepped(), burst.changed()?);
     // An output moves no later than a straight line over its settling time would: the threshold's share of the way.
     let share = ((before + BEFORE * uncertainty) / (before + beyond)).min(1.0);
-    let settle = course.trace.claims.times.map(|times| times.settle.as_secs_f64());
+    let way = course.trace.claims.slew.time(course.plateaus[old].set, new.set);
+    let settle = course.trace.claims.times.map(|times| (times.settle + way).as_secs_f64());
     let remaining = (course.terminals(burst.first()) - rail.at(new.set)).abs().0;
     // The drop in the leads comes and goes with the switch.
     let drop = source_resistance(course).map_or(0.0, |leads| (burst.on_current() * leads).0);

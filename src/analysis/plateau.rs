@@ -88,7 +88,9 @@ impl<'t> Course<'t> {
         let first = self.plateaus[plateau].samples.start;
         let Some((before, times)) = first.checked_sub(1).zip(self.trace.claims.times) else { return false };
         let at = |sample: usize| self.trace.samples[sample].at;
-        at(first).saturating_sub(at(before) + times.integration) < times.settle.mul_f64(SURELY_SETTLING)
+        let way = self.trace.claims.slew.time(self.trace.samples[before].set, self.plateaus[plateau].set);
+        at(first).saturating_sub(at(before) + times.integration)
+            < (times.settle + way).mul_f64(SURELY_SETTLING)
     }
 
     /// The settled sample of a plateau.

@@ -192,7 +192,8 @@ impl Seen {
         let loose = rail.scatter + line.slope * blur;
         let reached = Span { from: line.at(changed.from) - loose, to: line.at(changed.to) + loose };
         let phase = (along(last) / height).rem_euclid(1.0);
-        let settle = times.settle.as_secs_f64();
+        let way = course.trace.claims.slew.time(course.plateaus[last - 1].set, course.plateaus[last].set);
+        let settle = (times.settle + way).as_secs_f64();
         (line.slope > 0.0 && height > 0.0).then_some(Self {
             rate: line.slope,
             height,

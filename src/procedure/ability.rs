@@ -1,5 +1,6 @@
 //! What a bench can do, as far as a procedure must know.
 
+use crate::trace::Slew;
 use crate::units::{Amps, Volts};
 use std::time::Duration;
 
@@ -25,8 +26,10 @@ pub struct Ability {
     pub min_current: Amps,
     /// Smallest step of the supply's voltage.
     pub set_step: Volts,
-    /// Time the supply needs after a step until its output has settled, board on.
+    /// Time the supply needs after a small step until its output has settled, board on.
     pub settle: Duration,
+    /// How much longer it needs the farther it goes.
+    pub slew: Slew,
     /// Share of an upward step by which the supply may overshoot its set-point; 0 where it does not.
     pub overshoot: f64,
     /// Time one reading of all roles takes, wire included.

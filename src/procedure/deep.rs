@@ -60,7 +60,7 @@ fn points(floor: Volts, deep_floor: Volts) -> impl Iterator<Item = Volts> {
 /// Sets `volts` and reads until the terminals have come down to it; `None` when time is up before.
 async fn descend(desk: &Desk, plan: &Plan, volts: Volts, deadline: Duration) -> Result<Option<Sample>, Stop> {
     desk.set(volts).await?;
-    desk.wait(plan.settle + plan.down.dwell).await?;
+    desk.settle(plan, plan.down.dwell).await?;
     loop {
         let sample = desk.read().await?;
         if !above_set_point(plan, &sample) {

@@ -13,6 +13,8 @@ pub(super) struct Desk {
     maximum: Volts,
     back_feed: Amps,
     now: Cell<Duration>,
+    /// The set-point before the present one, and that.
+    step: Cell<(Volts, Volts)>,
     event: RefCell<Option<Event>>,
     action: RefCell<Option<Action>>,
     progress: Cell<Progress>,
@@ -29,6 +31,7 @@ impl Desk {
             maximum,
             back_feed: -zero.max(LEAST_BACK_FEED),
             now: Cell::new(Duration::ZERO),
+            step: Cell::new((Volts::ZERO, Volts::ZERO)),
             event: RefCell::new(None),
             action: RefCell::new(None),
             progress: Cell::new(Progress::at_start()),
@@ -74,8 +77,18 @@ impl Desk {
 
     /// Does something that answers [`Event::Done`].
     pub(super) async fn order(&self, action: Action) -> Result<(), Stop> {
+        let sets = match action {
+            Action::SetVolts(volts) => Some(volts),
+            Action::OutputOff => Some(Volts::ZERO),
+            _ => None,
+        };
         match self.perform(action).await {
-            Event::Done => Ok(()),
+            Event::Done => {
+                if let Some(volts) = sets {
+                    self.step.set((self.step.get().1, volts));
+                }
+                Ok(())
+            }
             other => Err(refusal(other)),
         }
     }
@@ -87,6 +100,12 @@ impl Desk {
         }
         let text = format!("the procedure asked for {volts}, above the profile's maximum {}", self.maximum);
         Err(Stop::Fault(BenchFault { kind: FaultKind::Internal, text }))
+    }
+
+    /// Lets the last step settle, and `more` time pass.
+    pub(super) async fn settle(&self, plan: &Plan, more: Duration) -> Result<(), Stop> {
+        let (from, to) = self.step.get();
+        self.wait(plan.settle + plan.slew.time(from, to) + more).await
     }
 
     /// Lets time pass.

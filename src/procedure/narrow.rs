@@ -251,7 +251,7 @@ impl Hunt<'_> {
             let near = self.at + (target - self.at) / (1.0 + share);
             self.at = near;
             self.desk.set(near).await?;
-            self.desk.wait(self.plan.settle).await?;
+            self.desk.settle(self.plan, Duration::ZERO).await?;
         }
         Ok(())
     }

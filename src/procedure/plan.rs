@@ -4,6 +4,7 @@ use super::rebound::{self, Trial};
 use super::search::{Belief, Costs, Grid, SearchPlan};
 use super::{Ability, Prior, off_line};
 use crate::profile::{Load, Measure, Profile, QuantityName, Ramp};
+use crate::trace::Slew;
 use crate::units::{Amps, Volts};
 use std::time::Duration;
 
@@ -36,8 +37,10 @@ pub struct Plan {
     pub down: Pace,
     /// Pace while the voltage rises.
     pub up: Pace,
-    /// Settling time of the supply after a step.
+    /// Settling time of the supply after a small step.
     pub settle: Duration,
+    /// How much longer it takes the farther a step goes.
+    pub slew: Slew,
     /// Time one reading takes.
     pub read_time: Duration,
     /// Settling time after a change of the ammeter's range.
@@ -105,6 +108,7 @@ impl Plan {
             down,
             up,
             settle: ability.settle,
+            slew: ability.slew,
             read_time: ability.read_time,
             range_settle: ability.range_settle,
             arrival_tolerance: ability.arrival_tolerance,

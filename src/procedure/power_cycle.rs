@@ -22,7 +22,7 @@ pub(super) async fn power_cycle(desk: &Desk, plan: &Plan, volts: Volts) -> Resul
     }
     desk.set(volts).await?;
     desk.order(Action::OutputOn).await?;
-    desk.wait(plan.settle + plan.up.dwell).await?;
+    desk.settle(plan, plan.up.dwell).await?;
     Ok(true)
 }
 

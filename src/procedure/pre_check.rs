@@ -77,7 +77,7 @@ fn load_current(plan: &Plan, volts: Volts) -> Amps {
 }
 
 async fn settled(desk: &Desk, plan: &Plan) -> Result<Sample, Stop> {
-    desk.wait(plan.settle).await?;
+    desk.settle(plan, Duration::ZERO).await?;
     desk.read().await
 }
 

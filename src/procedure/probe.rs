@@ -11,7 +11,7 @@ use std::time::Duration;
 /// Sets `volts` and returns the first reading that counts: arrived, and a dwell after arrival.
 pub(super) async fn probe(desk: &Desk, plan: &Plan, volts: Volts, pace: Pace) -> Result<Sample, Stop> {
     desk.set(volts).await?;
-    desk.wait(plan.settle + pace.dwell).await?;
+    desk.settle(plan, pace.dwell).await?;
     let sample = desk.read().await?;
     if above_set_point(plan, &sample) {
         wait_for_arrival(desk, plan, sample).await?;

@@ -43,6 +43,7 @@ pub(super) fn ability() -> Ability {
         voltmeter: true,
         load_voltmeter: false,
         short_readings: None,
+        slew: crate::trace::Slew::default(),
         ranges: vec![Amps(1e-4), Amps(1e-3), Amps(1.0)],
         range_settle: Duration::from_millis(20),
         max_voltage: Volts(32.0),

@@ -12,12 +12,15 @@ use super::{
 };
 use crate::procedure::Ability;
 use crate::profile::Profile;
-use crate::trace::{Burst, Claims, RangeAccuracy, Times};
+use crate::trace::{Burst, Claims, RangeAccuracy, Slew, Times};
 use crate::units::{Amps, Celsius, Ohms, Volts};
 use std::time::Duration;
 
 /// Time constants until a small step has arrived.
 const SETTLE_CONSTANTS: u32 = 5;
+
+/// A slew of less for each volt is hidden in the time to settle.
+const LEAST_STATED: Duration = Duration::from_millis(1);
 
 /// How close to its final value the output then is.
 const SETTLED_WITHIN: Volts = Volts(2e-3);
@@ -152,6 +155,7 @@ impl Setup {
             min_current: supply.min_current,
             set_step: supply.set_step,
             settle: supply.time_constant * SETTLE_CONSTANTS,
+            slew: self.slew(),
             overshoot: supply.overshoot,
             read_time: self.ammeter.integration.max(self.voltmeter.integration),
             arrival_tolerance: SETTLED_WITHIN + Volts(supply.claim.limit(highest) + sense_limit),
@@ -162,6 +166,14 @@ impl Setup {
                 .map(|range| Amps(range.meter.claim.standard_uncertainty(0.0)))
                 .collect(),
         }
+    }
+
+    /// What a maker of the supply would state of far steps: where it slews so slowly that it takes longer than the digits
+    /// of a definition show.
+    fn slew(&self) -> Slew {
+        let per_volt = Duration::from_secs_f64((1.0 / self.supply.slew).clamp(0.0, 10.0));
+        let per_volt = if per_volt < LEAST_STATED { Duration::ZERO } else { per_volt };
+        Slew { up: per_volt, down: per_volt }
     }
 
     /// What the makers of the instruments claim.
@@ -177,6 +189,7 @@ impl Setup {
             current: self.ammeter.ranges.iter().map(line).collect(),
             lead_resistance: None,
             sense_resistance: self.voltmeter.input_resistance,
+            slew: self.slew(),
             fixture: Some(self.temperature),
             times: Some(Times {
                 integration: self.ammeter.integration,

@@ -39,6 +39,7 @@ mod session;
 mod sim;
 #[cfg(unix)]
 mod simulated_bench;
+mod slow_supply;
 mod staircase;
 mod study;
 #[cfg(unix)]

@@ -199,6 +199,7 @@ fn ability() -> Ability {
         voltmeter: true,
         load_voltmeter: false,
         short_readings: None,
+        slew: ebbmark::trace::Slew::default(),
         ranges: RANGES.map(Amps).to_vec(),
         range_settle: Duration::from_millis(20),
         max_voltage: Volts(32.0),

@@ -37,6 +37,7 @@ impl BenchFile {
             min_current: source.current.min,
             set_step: source.set_step,
             settle: source.settle,
+            slew: source.slew,
             overshoot: source.overshoot,
             read_time: self.instruments.iter().map(read_time).max().unwrap_or_default(),
             arrival_tolerance: source.settled_within
@@ -66,6 +67,7 @@ impl BenchFile {
                 integration: self.parts.ammeter.integration,
                 settle: self.parts.source.settle,
             }),
+            slew: self.parts.source.slew,
             room: self.room,
             ..Claims::default()
         }

@@ -4,7 +4,7 @@ use super::check::{above_zero, not_negative};
 use super::command::{self, Template};
 use super::validity::{PerDegree, Validity};
 use crate::document::{At, Table};
-use crate::trace::Accuracy;
+use crate::trace::{Accuracy, Slew};
 use crate::units::{Amps, Quantity, Volts};
 use std::time::Duration;
 
@@ -25,8 +25,10 @@ pub struct Source {
     pub per_degree: PerDegree,
     /// When it holds.
     pub valid: Validity,
-    /// Time after a step until the output has settled, board on.
+    /// Time after a small step until the output has settled, board on.
     pub settle: Duration,
+    /// How much longer a step takes the farther it goes.
+    pub slew: Slew,
     /// How close to its final value a voltage counts as settled.
     pub settled_within: Volts,
     /// Share of an upward step by which the output may overshoot; 0 where nothing is said.
@@ -52,6 +54,8 @@ impl Source {
             table.problem_here("what a degree adds needs [source.valid] with \"from\" and \"to\"".to_owned());
         }
         let settle = table.duration("settle");
+        let up = table.optional_duration("settle_per_volt_up");
+        let down = table.optional_duration("settle_per_volt_down");
         let settled_within = table.quantity("settled_within");
         above_zero(&settled_within, &table);
         let overshoot = table.optional_fraction("overshoot");
@@ -69,6 +73,10 @@ impl Source {
             per_degree,
             valid,
             settle: settle?.value,
+            slew: Slew {
+                up: up.map(|up| up.value).unwrap_or_default(),
+                down: down.map(|down| down.value).unwrap_or_default(),
+            },
             settled_within: settled_within?.value,
             overshoot: overshoot.map_or(0.0, |share| share.value),
             setup: setup?,
@@ -216,6 +224,7 @@ impl LimitedQuery {
 #[cfg(test)]
 mod tests {
     use super::super::sample::{good, problems};
+    use super::super::{Definition, builtin};
     use super::*;
     use insta::assert_snapshot as says;
 
@@ -229,6 +238,17 @@ mod tests {
         assert_eq!(source.commands.set_voltage.with(7.6), "VOLT 7.6");
         let limited = source.commands.ask_limited.expect("it can tell");
         assert!(limited.limited(0b1001) && !limited.limited(0b1000));
+    }
+
+    #[test]
+    fn a_slew_is_read_where_it_is_stated() {
+        assert!(good(SUPPLY).source.expect("it is a source").slew.is_none());
+        let text = builtin(SUPPLY)
+            .expect("it comes with the program")
+            .replace("# settle_per_volt", "settle_per_volt");
+        let definition = Definition::read("d.toml", &text).unwrap_or_else(|problems| panic!("{problems}"));
+        let slew = definition.source.expect("it is a source").slew;
+        assert_eq!(slew, Slew { up: Duration::from_millis(5), down: Duration::from_millis(20) });
     }
 
     #[test]

@@ -4,7 +4,7 @@
 
 use ebbmark::bench::Bench;
 use ebbmark::procedure::{Ability, Action, Event};
-use ebbmark::trace::{Current, Sample};
+use ebbmark::trace::{Current, Sample, Slew};
 use ebbmark::units::{Amps, Volts};
 use std::fmt::Write as _;
 use std::io::{BufRead, BufReader, Write};
@@ -136,6 +136,7 @@ impl CircuitBench {
             voltmeter: true,
             load_voltmeter: true,
             short_readings: None,
+            slew: Slew::default(),
             ranges: ranges.map(Amps).to_vec(),
             range_settle: Duration::from_millis(5),
             max_voltage: Volts(32.0),
