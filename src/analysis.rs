@@ -97,7 +97,7 @@ pub fn analyse(trace: &Trace, profile: &Profile) -> Analysis {
     let found = Edges::find(&course);
     let mut down = Search::run(&course, &found, Direction::Down);
     let mut up = Search::run(&course, &found, Direction::Up);
-    let noise = Search::allow_for_noise([&mut down, &mut up]);
+    let noise = Search::allow_for_noise(profile, [&mut down, &mut up]);
     let below = rests_off::rests_off_below(&course, &found, down.slow);
     let off_fit = off_fit::off_fit(&course, below);
     let paths = off_fit.as_ref().map(|fit| off_budget::off_budget(fit, profile)).unwrap_or_default();

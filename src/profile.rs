@@ -80,6 +80,7 @@ mod bench;
 mod check;
 mod check_limits;
 mod decision;
+mod detector_noise;
 mod draft;
 mod limit;
 mod measure;
@@ -94,6 +95,7 @@ mod serial_number;
 
 pub use bench::{BenchRules, WhenOverdue};
 pub use decision::{Acceptance, DecisionRule, WhenBelow};
+pub use detector_noise::{DetectorNoise, noise_rate};
 pub use limit::{Limit, QuantityName};
 pub use measure::{InBand, Measure, WantedInBand};
 pub use off_line::OffLine;

@@ -4,11 +4,12 @@ use super::cause::Cause;
 use super::contribution::Contribution;
 use super::noise::{Evidence, Located, Noise};
 use super::threshold::{BRACKET, CONTRADICTION, SCATTER, Search, Threshold};
+use crate::profile::Profile;
 use crate::units::Unit;
 
 impl Search {
     /// Takes into account that noise at the detector moves both thresholds inwards; returns what was found of it.
-    pub(super) fn allow_for_noise(searches: [&mut Self; 2]) -> Option<Noise> {
+    pub(super) fn allow_for_noise(profile: &Profile, searches: [&mut Self; 2]) -> Option<Noise> {
         let mut thresholds: Vec<&mut Threshold> = searches
             .into_iter()
             .filter_map(|search| search.threshold.as_mut())
@@ -17,7 +18,7 @@ impl Search {
         let evidence: Vec<&Evidence> =
             thresholds.iter().filter_map(|threshold| threshold.evidence.as_ref()).collect();
         let volts = thresholds.first()?.value;
-        let noise = Noise::find(&evidence, volts)?;
+        let noise = Noise::find(&evidence, profile.detector_noise(volts), volts)?;
         for (threshold, located) in thresholds.iter_mut().zip(&noise.located) {
             threshold.move_to(located);
         }

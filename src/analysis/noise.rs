@@ -6,16 +6,19 @@
 //! At z standard deviations from the threshold noise crosses it with the rate r Q(z), Q the upper tail of the normal
 //! distribution and r the number of independent values of the noise in a second; beyond the threshold the change comes at
 //! once. A delay is made behind the comparator as often as before it, and one of the two directions mostly has none; so noise
-//! faster than the shorter of the two longest delays is taken to be averaged out, and r is one in that time.
+//! faster than the shorter of the two delays is taken to be averaged out, and r is one in that time. Of the delays no more
+//! is known than the longest that the design allows; half of that is taken.
 //!
-//! With that likelihood, nothing known of the threshold beforehand, and of the noise only what detectors usually have,
-//! threshold and uncertainty are the mean and standard deviation of the posterior (JCGM 101:2008, 6.2). The level of the
-//! noise is common to both thresholds and moves them apart together; what is left is each threshold's own.
+//! With that likelihood, nothing known of the threshold beforehand, and of the noise what the profile states or else what
+//! detectors usually have, threshold and uncertainty are the mean and standard deviation of the posterior (JCGM 101:2008,
+//! 6.2). The level of the noise is common to both thresholds and moves them apart together; what is left is each
+//! threshold's own.
 //!
-//! One pass alone cannot tell a quiet detector from one with a millivolt of noise. Only where a board changes at a voltage at
-//! which it had stayed before is there evidence, and then the level is left wide open. So U holds for noise up to about a
-//! sixth of the step; with more of it the true thresholds lie outside U more often than stated.
+//! One run alone cannot tell a quiet detector from one with half a millivolt of noise: what is known beforehand decides. Only
+//! where a board changes at a voltage at which it had stayed before is there evidence. So one detector in five hundred is
+//! taken to be unlike the others, and then its level is wide open.
 
+use crate::profile::{DetectorNoise, Timing, noise_rate};
 use crate::statistics::distribution::{Distribution, Normal};
 use crate::units::Volts;
 use std::time::Duration;
@@ -24,11 +27,15 @@ use std::time::Duration;
 #[derive(Clone, Debug, Default)]
 pub(super) struct Evidence {
     /// Independent values of the noise in a second.
-    pub(super) rate: f64,
-    /// Voltage, and the seconds it stood without a change.
-    pub(super) stays: Vec<(f64, f64)>,
+    rate: f64,
+    /// Seconds by which a change comes after its crossing.
+    delay: f64,
+    /// Seconds that the supply takes to arrive.
+    settle: f64,
+    /// Voltage, and the seconds it stood without a crossing.
+    stays: Vec<(f64, f64)>,
     /// Voltage of a change, and the seconds within which it came.
-    pub(super) changes: Vec<(f64, f64)>,
+    changes: Vec<(f64, f64)>,
 }
 
 /// A threshold in the light of noise, along its direction.
@@ -53,34 +60,53 @@ pub(super) struct Noise {
     pub(super) located: Vec<Located>,
 }
 
-/// Levels of noise, as shares of the voltage.
-const LEVELS: (f64, f64) = (2e-6, 1e-3);
-/// The level a detector usually has: some tens to hundreds of microvolts on a few volts (common practice).
-const USUAL: Usual = Usual { share: 8e-6, factor: 2.0, widened: 4.0 };
-/// Levels looked at between them.
-const LEVEL_COUNT: usize = 16;
+/// Levels looked at on either side of the known one, a standard deviation apart: for a sum over a normal distribution that
+/// is as good as its integral.
+const REACH_OF_LEVELS: i32 = 3;
+/// Share of detectors that are unlike what is known of them, the standard deviation of their levels as a factor, and at how
+/// many parts of that, how far below and above the known level, they are looked at.
+const UNLIKE: Unlike = Unlike { share: 0.002, factor: 4.0, part: 0.3, from: -6, to: 12 };
+/// Noise below this share of the voltage is none.
+const LEAST_LEVEL: f64 = 1e-7;
 /// Places looked at for the threshold at each level.
 const PLACES: usize = 40;
 /// Noise beyond this many standard deviations is not counted with: once in a billion values.
 const REACH: f64 = 6.0;
-/// Rates of noise that make sense, per second.
-const RATES: (f64, f64) = (1.0, 1000.0);
 
-/// What is known of a level before anything is seen: about normal in its logarithm.
-struct Usual {
-    /// In the middle, as a share of the voltage.
+struct Unlike {
     share: f64,
-    /// One standard deviation, as a factor either way.
     factor: f64,
-    /// The same where a contradiction has shown that there is noise that matters.
-    widened: f64,
+    part: f64,
+    from: i32,
+    to: i32,
 }
 
 impl Evidence {
-    /// No evidence yet, about a board whose detector follows nothing faster than `delay`.
-    pub(super) fn new(delay: Duration) -> Self {
-        let rate = (1.0 / delay.as_secs_f64()).clamp(RATES.0, RATES.1);
-        Self { rate, stays: Vec::new(), changes: Vec::new() }
+    /// No evidence yet, about a board that takes up to `longest` to change and follows the design's `timing`, on a supply
+    /// that takes `settle` to arrive.
+    pub(super) fn new(timing: &Timing, longest: Duration, settle: Duration) -> Self {
+        let shorter = timing.detect_delay.min(timing.release_delay);
+        Self {
+            rate: noise_rate(Timing::likely(shorter)),
+            delay: Timing::likely(longest).as_secs_f64(),
+            settle: settle.as_secs_f64(),
+            stays: Vec::new(),
+            changes: Vec::new(),
+        }
+    }
+
+    /// The board stayed for `time` from the step to `along` on. On the way there noise reached it less, and what crossed in
+    /// the end would not show yet.
+    pub(super) fn stayed(&mut self, along: f64, time: Duration) {
+        let known = time.as_secs_f64() - self.settle - self.delay;
+        if known > 0.0 {
+            self.stays.push((along, known));
+        }
+    }
+
+    /// The board changed at `along` within `time`.
+    pub(super) fn changed(&mut self, along: f64, time: Duration) {
+        self.changes.push((along, time.as_secs_f64()));
     }
 
     /// Sorts the stays, farthest first, and adds up the times of equal voltages.
@@ -97,6 +123,15 @@ impl Evidence {
     fn is_contradictory(&self) -> bool {
         let farthest = self.stays.first().map_or(f64::NEG_INFINITY, |(volts, _)| *volts);
         self.changes.iter().any(|(volts, _)| *volts <= farthest + SAME)
+    }
+
+    /// How well noise of a known level explains what is seen, in volts of threshold: the likelihood over all places it may
+    /// have. Without any noise, and nothing in contradiction, the width of the bracket.
+    pub(super) fn explained_by(&self, known: DetectorNoise, volts: Volts) -> f64 {
+        let levels = known_levels(known, volts);
+        let all: f64 = levels.iter().map(|(weight, _)| weight).sum();
+        let weight = |deviation: f64| self.under(deviation).map_or(0.0, |under| under.weight);
+        levels.iter().map(|(share, deviation)| share * weight(*deviation)).sum::<f64>() / all
     }
 
     /// Likelihood of a threshold at `along` with noise of `deviation`.
@@ -143,21 +178,45 @@ struct Under {
     variance: f64,
 }
 
+/// Levels about what is known, in volts, each after its weight.
+fn known_levels(known: DetectorNoise, volts: Volts) -> Vec<(f64, f64)> {
+    let least = volts.0.abs() * LEAST_LEVEL;
+    let level = |deviations: f64| (density(deviations), known.above(deviations).0.max(least));
+    (-REACH_OF_LEVELS..=REACH_OF_LEVELS).map(|deviations| level(f64::from(deviations))).collect()
+}
+
+/// Levels that a detector unlike the others may have, each after its weight.
+fn unlike_levels(known: DetectorNoise, volts: Volts) -> impl Iterator<Item = (f64, f64)> {
+    let usual = DetectorNoise::usual(volts).level.max(known.level);
+    let wide = DetectorNoise { level: usual, factor: UNLIKE.factor };
+    let weight = UNLIKE.part * UNLIKE.share / (1.0 - UNLIKE.share);
+    (UNLIKE.from..=UNLIKE.to).map(move |step| {
+        let deviations = f64::from(step) * UNLIKE.part;
+        (weight * density(deviations), wide.above(deviations).0)
+    })
+}
+
+/// Of the normal distribution, to a factor.
+fn density(deviations: f64) -> f64 {
+    (-deviations * deviations / 2.0).exp()
+}
+
 impl Noise {
-    /// The noise of a board near `volts`, from what is seen of its thresholds. `None` where no level of noise explains
-    /// what is seen, or nothing is.
-    pub(super) fn find(evidence: &[&Evidence], volts: Volts) -> Option<Self> {
-        let (low, high) = (LEVELS.0 * volts.0.abs(), LEVELS.1 * volts.0.abs());
-        let level = |index: usize| low * (high / low).powf(index as f64 / (LEVEL_COUNT - 1) as f64);
+    /// The noise of a board near `volts` of whose detector so much is `known`, from what is seen of its thresholds. `None`
+    /// where no level of noise explains what is seen, or nothing is.
+    pub(super) fn find(evidence: &[&Evidence], known: DetectorNoise, volts: Volts) -> Option<Self> {
         let evident = evidence.iter().any(|evidence| evidence.is_contradictory());
-        let mut levels = Vec::with_capacity(LEVEL_COUNT);
-        for deviation in (0..LEVEL_COUNT).map(level) {
+        let mut looked_at = known_levels(known, volts);
+        if evident {
+            // Without a contradiction a level far from the known one would hardly count.
+            looked_at.extend(unlike_levels(known, volts));
+            looked_at.sort_by(|a, b| a.1.total_cmp(&b.1));
+        }
+        let mut levels = Vec::with_capacity(looked_at.len());
+        for (share, deviation) in looked_at {
             let under =
                 evidence.iter().map(|evidence| evidence.under(deviation)).collect::<Option<Vec<_>>>()?;
-            let likelihood: f64 = under.iter().map(|under| under.weight).product();
-            let factor = if evident { USUAL.widened } else { USUAL.factor };
-            let distance = (deviation / (USUAL.share * volts.0.abs())).ln() / factor.ln();
-            let weight = likelihood * (-distance * distance / 2.0).exp();
+            let weight = share * under.iter().map(|under| under.weight).product::<f64>();
             if weight > 0.0 {
                 levels.push((weight, deviation, under));
             }
@@ -197,8 +256,11 @@ fn exceeded(levels: &[(f64, f64, Vec<Under>)], all: f64) -> f64 {
 mod tests {
     use super::*;
 
+    const USUAL: DetectorNoise = DetectorNoise { level: Volts(60e-6), factor: 2.0 };
+
     fn steps(stays: &[(f64, f64)], changes: &[(f64, f64)]) -> Evidence {
-        let mut evidence = Evidence { stays: stays.to_vec(), changes: changes.to_vec(), rate: 100.0 };
+        let mut evidence =
+            Evidence { stays: stays.to_vec(), changes: changes.to_vec(), rate: 100.0, ..Evidence::default() };
         evidence.sort();
         evidence
     }
@@ -211,7 +273,7 @@ mod tests {
 
     #[test]
     fn without_contradiction_the_threshold_lies_in_its_bracket_and_a_little_farther() {
-        let noise = Noise::find(&[&quiet()], Volts(6.0)).expect("explained");
+        let noise = Noise::find(&[&quiet()], USUAL, Volts(6.0)).expect("explained");
         let found = noise.located[0];
         assert!(noise.at_least == 0.0 && noise.deviation < 150e-6, "{noise:?}");
         assert!(found.along > 6.001 && found.along < 6.0014, "{found:?}");
@@ -223,7 +285,7 @@ mod tests {
     fn a_change_where_the_board_had_stayed_is_noise_and_puts_the_threshold_beyond_both() {
         let mut noisy = quiet();
         noisy.changes.push((5.996, 0.05));
-        let noise = Noise::find(&[&noisy], Volts(6.0)).expect("explained");
+        let noise = Noise::find(&[&noisy], USUAL, Volts(6.0)).expect("explained");
         assert!(noise.at_least > 0.3e-3 && noise.deviation > 1e-3, "{noise:?}");
         assert!(noise.located[0].along > 6.003, "{noise:?}");
         assert!(noise.located[0].level > 1e-3, "{noise:?}");

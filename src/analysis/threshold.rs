@@ -22,6 +22,9 @@ const SIMILAR: f64 = 1.5;
 /// A claimed lead resistance is taken as known to this share: contacts vary from board to board.
 const LEAD_TOLERANCE: f64 = 0.2;
 
+/// Share of boards that are slower than their design and change at rest just there.
+const RARELY_SLOW: f64 = 1e-3;
+
 /// Names of lines in the budget.
 pub(super) const SCATTER: &str = "scatter between passes";
 pub(super) const CONTRADICTION: &str = "passes that disagree";
@@ -106,9 +109,13 @@ impl Search {
             return Self::default();
         }
         let declared = direction.delay(&course.profile.timing);
-        let slow = Slow::find(course, all, direction, &rail);
-        let delay = slow.map_or(declared, |slow| slow.at_most.max(declared));
-        let stays = Stays::sorted(course, found, direction, &rail, delay);
+        let within_design = Stays::sorted(course, found, direction, &rail, declared);
+        let slow = Slow::find(course, all, direction, &rail)
+            .filter(|_| !within_design.is_noise(course, &edges, &rail));
+        let stays = match slow {
+            Some(slow) => Stays::sorted(course, found, direction, &rail, slow.at_most.max(declared)),
+            None => within_design,
+        };
         let mut threshold = stays.threshold(course, &edges, &rail);
         if let Some(threshold) = threshold.as_mut().filter(|found| found.smear.is_none() && slow.is_none()) {
             threshold.evidence = Some(stays.evidence(course, &edges, &rail));
@@ -189,23 +196,35 @@ impl Stays {
         Some(Threshold { value, contributions, stayed, smear, direction, evidence: None })
     }
 
+    /// True where noise as it is known of such detectors explains that the board changed at rest. A board slower than its
+    /// design is as rare as one in a hundred, and explains it anywhere between the set-points.
+    fn is_noise(&self, course: &Course<'_>, edges: &[&Edge], rail: &Rail) -> bool {
+        let Some(near) = edges.last().map(|edge| rail.at(course.plateaus[edge.plateau].set)) else {
+            return false;
+        };
+        let brackets = edges.iter().filter_map(|edge| self.bracket(course, edge.plateau));
+        let Some(narrowest) = brackets.map(|bracket| bracket.width()).min_by(f64::total_cmp) else {
+            return false;
+        };
+        let explained =
+            self.evidence(course, edges, rail).explained_by(course.profile.detector_noise(near), near);
+        explained > RARELY_SLOW * narrowest
+    }
+
     /// All that was seen, at the terminals.
     fn evidence(&self, course: &Course<'_>, edges: &[&Edge], rail: &Rail) -> Evidence {
-        let timing = &course.profile.timing;
-        let mut evidence = Evidence::new(timing.detect_delay.min(timing.release_delay));
+        let mut evidence = Evidence::new(&course.profile.timing, self.delay, settle(course));
         let along = |plateau: usize| self.direction.along(rail.at(course.plateaus[plateau].set));
         for (_, plateau) in &self.long {
             let stood = &course.plateaus[*plateau];
-            evidence.stays.push((along(*plateau), (stood.ended.saturating_sub(stood.began)).as_secs_f64()));
+            evidence.stayed(along(*plateau), stood.ended.saturating_sub(stood.began));
         }
         for edge in edges {
             let began = course.plateaus[edge.plateau].began;
             let at = |sample: usize| course.trace.samples[sample].at;
             let last = edge.last_before.map_or(began, at);
-            if last > began {
-                evidence.stays.push((along(edge.plateau), (last.saturating_sub(began)).as_secs_f64()));
-            }
-            evidence.changes.push((along(edge.plateau), (at(edge.seen).saturating_sub(last)).as_secs_f64()));
+            evidence.stayed(along(edge.plateau), last.saturating_sub(began));
+            evidence.changed(along(edge.plateau), at(edge.seen).saturating_sub(last));
         }
         evidence.sort();
         evidence
@@ -248,6 +267,11 @@ impl Stays {
         let dwell = nearest.map_or(plateau.ended.saturating_sub(plateau.began), |(_, dwell)| *dwell);
         (steps > 0).then_some(Smear { dwell, delay: self.delay, steps })
     }
+}
+
+/// Time that the supply takes to arrive, as far as the bench states it.
+fn settle(course: &Course<'_>) -> Duration {
+    course.trace.claims.times.map_or(Duration::ZERO, |times| times.settle)
 }
 
 /// Where the voltage is not known behind the leads, the drop rests on their claimed resistance, as a rectangle

@@ -48,9 +48,14 @@ pub(super) fn delays(course: &Course<'_>, searches: [(Direction, &Search); 2]) -
 /// Noise worth a word, as a share of the start voltage: 0.4 mV on 7.6 V.
 const NOISY: f64 = 5e-5;
 
+/// Standard deviations above the known level up to which noise is as it was to be expected: one board in forty has more.
+const USUALLY: f64 = 2.0;
+
 /// Thresholds that noise moves from pass to pass hold for the pace of this run only.
 pub(super) fn noise(course: &Course<'_>, noise: &Noise) -> Option<Finding> {
-    if noise.at_least < NOISY * course.profile.supply.start.0 {
+    let start = course.profile.supply.start;
+    let known = course.profile.detector_noise(start).above(USUALLY);
+    if noise.at_least < known.max(start * NOISY).0 {
         return None;
     }
     let dwells = course.in_scope().map(|plateau| plateau.ended.saturating_sub(plateau.began));

@@ -8,6 +8,7 @@
 //! tempco = "100 ppm/K"                # either sign; needs [environment]
 //! ageing = "0.1 %"                    # over the board's life, either sign
 //! minimum_voltage = "0.95 V"          # below it the output is undefined
+//! noise = "0.1 mV"                    # at the board's terminals, rms; what is usual when left out
 //!
 //! [divider]                           # in front of the detector; left out where there is none
 //! top = "100 kohm"
@@ -68,6 +69,8 @@ pub struct Detector {
     pub ageing: f64,
     /// Lowest supply of the detector at which its output is defined.
     pub minimum_voltage: Option<Volts>,
+    /// Noise at the board's terminals, rms, in the bandwidth that the detector follows.
+    pub noise: Option<Volts>,
 }
 
 /// Two resistors that divide the battery's voltage for the detector.

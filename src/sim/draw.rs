@@ -16,6 +16,7 @@ pub(super) enum Concern {
     Contact = 7,
     Conditions = 8,
     OffPaths = 9,
+    NoiseLevel = 10,
 }
 
 /// The stream of one concern.

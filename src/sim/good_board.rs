@@ -2,7 +2,7 @@
 
 use super::draw::Draw;
 use super::{BoardModel, PullUp, Switch};
-use crate::profile::{Conducts, Draws, OffPath, Profile, QuantityName};
+use crate::profile::{Conducts, Draws, OffPath, Profile, QuantityName, noise_rate};
 use crate::units::{Amps, Farads, Ohms, Siemens, Volts};
 
 /// Share of a limit's width in which good boards lie, around its middle.
@@ -61,8 +61,8 @@ pub(super) fn good_board(profile: &Profile, draw: &mut Draw) -> BoardModel {
         hysteresis: Volts(hysteresis),
         detect_delay,
         release_delay,
-        noise: Volts(100e-6),
-        noise_rate: 100.0,
+        noise: Volts(0.0),
+        noise_rate: noise_rate(detect_delay.min(release_delay)),
         minimum_operating: Volts(draw.between(0.7, 1.0)),
         pull_up: Ohms(off_at / (off_current - detector_current - 2.0 * leakage)),
         pull_up_conducts: PullUp::WhenOff,
@@ -106,6 +106,11 @@ pub(super) fn fit_off_paths(board: &mut BoardModel, paths: &[OffPath], draw: &mu
 
 /// Conductance of a pull-up that is as good as none, S.
 const NO_PULL_UP: f64 = 1e-12;
+
+/// Draws the noise at the detector's input from what the profile states, or from what is usual: boards differ.
+pub(super) fn noise(profile: &Profile, trip: Volts, draw: &mut Draw) -> Volts {
+    profile.detector_noise(trip).above(draw.normal())
+}
 
 /// What a good switch leaks, as a share of the detector's current.
 const SMALL_LEAK: f64 = 0.01;

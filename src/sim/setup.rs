@@ -4,7 +4,7 @@ mod bench_conditions;
 mod board_conditions;
 
 use super::draw::{Concern, Draw};
-use super::good_board::{fit_off_paths, good_board};
+use super::good_board::{fit_off_paths, good_board, noise};
 use super::link_faults::LinkFault;
 use super::temperature::ROOM;
 use super::{
@@ -91,6 +91,7 @@ impl Setup {
     pub fn with(profile: &Profile, conditions: &[Condition], seed: u64) -> Self {
         let mut draw = Draw::new(seed, Concern::Board);
         let mut board = good_board(profile, &mut draw);
+        board.noise = noise(profile, board.trip, &mut Draw::new(seed, Concern::NoiseLevel));
         fit_off_paths(&mut board, &profile.off_paths, &mut Draw::new(seed, Concern::OffPaths));
         let wiring = Wiring::plain(Ohms(draw.between(0.04, 0.12)));
         let mut setup = Self::of(board, wiring, seed);

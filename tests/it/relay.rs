@@ -14,7 +14,7 @@ pub(crate) const BOARD: BoardModel = BoardModel {
     detect_delay: Duration::from_micros(300),
     release_delay: Duration::from_millis(100),
     noise: Volts(0.5e-3),
-    noise_rate: 100.0,
+    noise_rate: 1000.0,
     minimum_operating: Volts(0.95),
     pull_up: Ohms(1e6),
     pull_up_conducts: PullUp::WhenOff,

@@ -2,7 +2,7 @@
 
 use super::super::draft::Draft;
 use crate::document::{At, Table};
-use crate::units::Quantity;
+use crate::units::{Quantity, Volts};
 
 /// Largest tolerance of a part that still makes a threshold.
 const LARGEST_TOLERANCE: f64 = 0.2;
@@ -27,6 +27,17 @@ pub(super) fn above_zero<Q: Quantity>(at: &Option<At<Q>>, table: &Table<'_, '_>)
         && at.value.si() <= 0.0
     {
         table.problem(at, "not above zero");
+    }
+}
+
+/// Noise of more than a hundredth of the trip is none that a threshold could be told through.
+pub(super) fn noise(noise: &Option<At<Volts>>, trip: &Option<At<Volts>>, table: &Table<'_, '_>) {
+    const LARGEST_NOISE: f64 = 0.01;
+    not_below(Volts::ZERO, noise, table);
+    if let (Some(noise), Some(trip)) = (noise, trip)
+        && noise.value > trip.value * LARGEST_NOISE
+    {
+        table.problem(noise, &format!("more than a hundredth of {trip}"));
     }
 }
 
@@ -77,6 +88,10 @@ mod tests {
             @r#"p.toml:47:12: detector.accuracy = "100 %": wanted 0 % to 20 %, to either side"#);
         says!(problems(&[("min = \"5.0 %\", typical = \"6.7 %\"", "min = \"7 %\", typical = \"6 %\"")]),
             @r#"p.toml:48:22: detector.hysteresis.min = "7 %": above detector.hysteresis.typical = "6 %""#);
+        says!(problems(&[("tempco = \"100 ppm/K\"                #", "noise = \"-1 mV\" #")]),
+            @r#"p.toml:49:9: detector.noise = "-1 mV": lower than can be"#);
+        says!(problems(&[("tempco = \"100 ppm/K\"                #", "noise = \"50 mV\" #")]),
+            @r#"p.toml:49:9: detector.noise = "50 mV": more than a hundredth of detector.trip = "3.00 V""#);
         says!(problems(&[("min = \"5.0 %\", ", "")]),
             @r#"p.toml:48:14: one end is missing; wanted "min" and "max", and "typical" where known"#);
         says!(problems(&[("min = \"5.0 %\"", "min = \"-5.0 %\"")]),

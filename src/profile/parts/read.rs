@@ -48,6 +48,8 @@ fn read_detector(mut table: Table<'_, '_>, drifts_unplaced: bool) -> Option<(At<
     let ageing = read_ageing(&mut table);
     let minimum_voltage = table.optional_quantity::<Volts>("minimum_voltage");
     check::above_zero(&minimum_voltage, &table);
+    let noise = table.optional_quantity::<Volts>("noise");
+    check::noise(&noise, &trip, &table);
     let trip = trip?;
     let detector = Detector {
         trip: trip.value,
@@ -56,6 +58,7 @@ fn read_detector(mut table: Table<'_, '_>, drifts_unplaced: bool) -> Option<(At<
         tempco,
         ageing,
         minimum_voltage: minimum_voltage.map(|at| at.value),
+        noise: noise.map(|at| at.value),
     };
     Some((trip, detector))
 }

@@ -28,6 +28,7 @@ fn parts() -> Parts {
             tempco: PerKelvin(100e-6),
             ageing: 0.0,
             minimum_voltage: None,
+            noise: None,
         },
         divider: Some(Divider {
             top: Ohms(100e3),
