@@ -90,6 +90,7 @@ fn earlier_boards_save_set_points_and_a_board_unlike_them_is_measured_as_well() 
     let spread = |mean| Some(Spread { mean: Volts(mean), deviation: Volts(0.01) });
     let earlier = Prior { trip: spread(6.0), re_enable: spread(6.4) };
     let (mut with, mut without) = (0, 0);
+    let mut outside: [Vec<u64>; 2] = [Vec::new(), Vec::new()];
     for seed in 0..100 {
         let mut setup = Setup::new(&profile, Condition::Good, seed);
         let mut rng = ChaCha8Rng::seed_from_u64(seed);
@@ -100,14 +101,17 @@ fn earlier_boards_save_set_points_and_a_board_unlike_them_is_measured_as_well() 
 
         let unlike = anywhere_in_the_limits(&profile, seed);
         let run = run(&profile, &unlike, earlier);
-        let (trip, uncertainty) = measured(&run, QuantityName::Trip);
-        assert!((trip - unlike.board.trip.0).abs() <= 2.0 * uncertainty, "seed {seed}: {trip}");
-        let (re_enable, uncertainty) = measured(&run, QuantityName::ReEnable);
-        assert!(
-            (re_enable - unlike.board.re_enable().0).abs() <= 2.0 * uncertainty,
-            "seed {seed}: {re_enable}"
-        );
+        let truths =
+            [(QuantityName::Trip, unlike.board.trip.0), (QuantityName::ReEnable, unlike.board.re_enable().0)];
+        for ((name, truth), outside) in truths.into_iter().zip(&mut outside) {
+            let (found, uncertainty) = measured(&run, name);
+            let times = (found - truth).abs() / uncertainty;
+            assert!(times <= 2.0, "seed {seed}: {} {found}, in truth {truth}", name.key());
+            outside.extend((times > 1.0).then_some(seed));
+        }
     }
+    // Of 100 values that U covers with 95 %, more than 12 lie outside once in seven hundred times (binomial law).
+    assert!(outside.iter().all(|seeds| seeds.len() <= 12), "outside at seeds {outside:?}");
     println!("{with} set-points with earlier boards known, {without} without");
     assert!(with * 4 < without * 3, "{with} set-points with earlier boards known, {without} without");
 }
@@ -154,7 +158,6 @@ fn trips_far_outside_their_limits_are_found_wherever_they_lie() {
         let run = run(&profile, &setup, Prior::default());
         // U leaves one in twenty outside; none twice as far.
         let (found, uncertainty) = measured(&run, QuantityName::Trip);
-        // Noise at the border of a cell is not in every single U.
         assert!((found - trip).abs() <= 2.0 * uncertainty, "{trip} {hysteresis}: {found}");
         let (found, uncertainty) = measured(&run, QuantityName::ReEnable);
         assert!((found - trip - hysteresis).abs() <= 2.0 * uncertainty, "{trip} {hysteresis}: {found}");
