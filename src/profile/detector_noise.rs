@@ -71,7 +71,7 @@ mod tests {
     use super::*;
 
     fn noise_with(line: &str) -> DetectorNoise {
-        let text = RIVER_NODE.replace("[detector] ", &format!("[detector]\n{line}\n# "));
+        let text = RIVER_NODE.replacen("[detector] ", &format!("[detector]\n{line}\n# "), 1);
         let profile = Profile::read("p.toml", &text).unwrap_or_else(|problems| panic!("{problems}"));
         profile.detector_noise(Volts(6.0))
     }
