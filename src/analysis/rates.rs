@@ -24,6 +24,7 @@ use crate::profile::{Profile, QuantityName};
 use crate::statistics::line::{Line, Point};
 use crate::trace::Trace;
 use crate::units::{Unit, Volts};
+use std::time::Duration;
 
 /// Steps before a change over which the rate is taken.
 const RATE_STEPS: usize = 10;
@@ -40,7 +41,7 @@ pub fn from_rates(traces: &[Trace], profile: &Profile) -> Analysis {
         let ramps =
             courses.iter().zip(&found).filter_map(|(course, found)| Ramp::of(course, found, direction));
         let mut ramps: Vec<Ramp> = ramps.collect();
-        allow_for_noise(&mut ramps, direction);
+        allow_for_noise(&mut ramps, direction, profile);
         ThroughRates::fit(&ramps, direction)
     });
     let threshold = |name, at_rest: &ThroughRates| {
@@ -125,13 +126,17 @@ impl Ramp {
         let width = (along(edge.seen) - along(before)).abs() * rail.slope();
         let uncertainty = (width.powi(2) / 12.0 + rail.uncertainty(set).powi(2)).sqrt();
         let timing = &course.profile.timing;
-        let mut evidence = Evidence::new(timing.detect_delay.min(timing.release_delay));
+        // On a ramp that goes on, the delay is the slope of the line and no part of a step.
+        let mut evidence = Evidence::new(timing, Duration::ZERO, Duration::ZERO);
         let stood = |at: usize| {
             let volts = direction.along(rail.at(samples[at].set));
-            (volts, (samples[at].at.saturating_sub(samples[at - 1].at)).as_secs_f64())
+            (volts, samples[at].at.saturating_sub(samples[at - 1].at))
         };
-        evidence.stays = (edge.seen.saturating_sub(STAYS).max(1)..edge.seen).map(stood).collect();
-        evidence.changes.push(stood(edge.seen));
+        for (along, time) in (edge.seen.saturating_sub(STAYS).max(1)..edge.seen).map(stood) {
+            evidence.stayed(along, time);
+        }
+        let (along, time) = stood(edge.seen);
+        evidence.changed(along, time);
         evidence.sort();
         (rate.is_finite() && rate > 0.0 && uncertainty > 0.0).then(|| Self {
             rate,
@@ -148,10 +153,10 @@ impl Ramp {
 const STAYS: usize = 200;
 
 /// Puts the changes of all ramps of one direction where they lie in the light of noise; they share its level.
-fn allow_for_noise(ramps: &mut [Ramp], direction: Direction) {
+fn allow_for_noise(ramps: &mut [Ramp], direction: Direction, profile: &Profile) {
     let Some(volts) = ramps.first().map(|ramp| Volts(ramp.volts)) else { return };
     let evidence: Vec<&Evidence> = ramps.iter().map(|ramp| &ramp.evidence).collect();
-    let Some(noise) = Noise::find(&evidence, volts) else { return };
+    let Some(noise) = Noise::find(&evidence, profile.detector_noise(volts), volts) else { return };
     for (ramp, located) in ramps.iter_mut().zip(noise.located) {
         ramp.volts = direction.volts(located.along).0;
         ramp.uncertainty = located.own.hypot(ramp.rail);

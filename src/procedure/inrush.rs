@@ -123,9 +123,8 @@ mod tests {
 
     #[test]
     fn the_limit_that_is_advised_just_does() {
-        let profile = profile(470e-6, Duration::from_millis(5));
-        let found = inrush(&profile).expect("too much to charge");
-        let mut raised = profile.clone();
+        let mut raised = profile(470e-6, Duration::from_millis(5));
+        let found = inrush(&raised).expect("too much to charge");
         raised.supply.current_limit = found.wanted.expect("a sensible one") * 1.0001;
         assert_eq!(inrush(&raised), None);
         raised.supply.current_limit = found.wanted.expect("a sensible one") * 0.999;

@@ -78,7 +78,7 @@ pub(crate) fn all() -> [Studied; 18] {
         Studied::stated("0.5 mV of noise, stated", "0.5 mV"),
         Studied::stated("1 mV of noise, stated", "1 mV"),
         Studied::exactly("0.3 mV on every board, stated", "0.3 mV", |setup, _| {
-            setup.board.noise = Volts(0.3e-3)
+            setup.board.noise = Volts(0.3e-3);
         }),
         Studied::exactly("1 mV on every board, stated", "1 mV", |setup, _| setup.board.noise = Volts(1e-3)),
         Studied::unstated("no noise, not stated", |setup, _| setup.board.noise = Volts::ZERO),

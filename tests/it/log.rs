@@ -146,7 +146,7 @@ fn earlier_passes_are_the_newest_of_the_same_profile_in_the_two_newest_months() 
         .collect();
     log.start(subject("RN000124"), moment(MORNING)).expect("ready");
     let mut failed = passing();
-    failed.outcome = ebbmark::verdict::Outcome::Fail;
+    failed.outcome = Outcome::Fail;
     log.finish(&finished(failed), &trace()).expect("space left");
     let mut other = subject("RN000125");
     other.profile.sha256 = "cd".repeat(32);

@@ -5,7 +5,7 @@
 //! and a run stopped after a failing reading (`verdict::judge`, `cli::stopped`). Late and cut replies are played here
 //! as what the bench makes of them; over a real line they are in `cli::fault_mid_run`.
 
-use super::table::Wanted::{Anything, First, Nothing};
+use super::table::Wanted::{First, Nothing};
 use super::table::{Case, FAIL, INVALID, PASS};
 use ebbmark::sim::Condition::*;
 use ebbmark::units::{Amps, Ohms, Volts};

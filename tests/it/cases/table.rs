@@ -33,8 +33,6 @@ pub(super) enum Wanted {
     First(&'static str),
     /// None at all.
     Nothing,
-    /// Whatever there is: the quantities say enough.
-    Anything,
 }
 
 impl Wanted {
@@ -42,7 +40,6 @@ impl Wanted {
         match self {
             Self::First(name) => first == Some(name),
             Self::Nothing => first.is_none(),
-            Self::Anything => true,
         }
     }
 }
