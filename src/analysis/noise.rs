@@ -104,9 +104,16 @@ impl Evidence {
         }
     }
 
-    /// The board changed at `along` within `time`.
+    /// The board changed at `along` within `time` of a reading that saw it there before.
     pub(super) fn changed(&mut self, along: f64, time: Duration) {
         self.changes.push((along, time.as_secs_f64()));
+    }
+
+    /// The first reading after the step to `along`, `time` later, saw the board changed. Noise had as much less time for it
+    /// as for a stay.
+    pub(super) fn changed_at_once(&mut self, along: f64, time: Duration) {
+        let known = time.as_secs_f64() - self.settle - self.delay;
+        self.changes.push((along, known.max(AT_ONCE)));
     }
 
     /// Sorts the stays, farthest first, and adds up the times of equal voltages.
@@ -171,6 +178,8 @@ impl Evidence {
 
 /// Voltages closer than this are the same.
 const SAME: f64 = 1e-9;
+/// Time in which noise does nothing, s.
+const AT_ONCE: f64 = 1e-6;
 
 struct Under {
     weight: f64,

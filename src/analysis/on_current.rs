@@ -111,9 +111,16 @@ mod tests {
     use super::super::fixture::{off, on, profile, staircase};
     use crate::analysis::{Quantity, analyse};
     use crate::profile::QuantityName;
+    use crate::units::Volts;
 
+    /// With a voltmeter at the load, without which nothing is stated of a load that regulates.
     fn found(readings: &[(f64, f64)]) -> Quantity {
-        let found = analyse(&staircase(readings), &profile()).quantities;
+        let mut trace = staircase(readings);
+        for sample in &mut trace.samples {
+            let is_on = sample.current.amps().is_some_and(|amps| amps.0 > 0.01);
+            sample.load = if is_on { sample.sense } else { Some(Volts::ZERO) };
+        }
+        let found = analyse(&trace, &profile()).quantities;
         found.into_iter().find(|quantity| quantity.name == QuantityName::OnCurrent).expect("an on current")
     }
 

@@ -222,9 +222,14 @@ impl Stays {
         for edge in edges {
             let began = course.plateaus[edge.plateau].began;
             let at = |sample: usize| course.trace.samples[sample].at;
-            let last = edge.last_before.map_or(began, at);
-            evidence.stayed(along(edge.plateau), last.saturating_sub(began));
-            evidence.changed(along(edge.plateau), at(edge.seen).saturating_sub(last));
+            let (along, seen) = (along(edge.plateau), at(edge.seen));
+            match edge.last_before.map(at) {
+                Some(last) => {
+                    evidence.stayed(along, last.saturating_sub(began));
+                    evidence.changed(along, seen.saturating_sub(last));
+                }
+                None => evidence.changed_at_once(along, seen.saturating_sub(began)),
+            }
         }
         evidence.sort();
         evidence

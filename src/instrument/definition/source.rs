@@ -254,8 +254,8 @@ mod tests {
     #[test]
     fn a_command_that_is_missing_or_of_the_wrong_sort_is_named() {
         says!(problems(SUPPLY, &[("set_over_voltage = \"VOLT:PROT {}\"\n", ""), ("ask_output = \"OUTP?\"", "")]), @r#"
-        d.toml:45:1: [source.commands] has no key "set_over_voltage"; wanted a command such as "VOLT {}"
-        d.toml:45:1: [source.commands] has no key "ask_output"; wanted a question such as "VOLT?"
+        d.toml:47:1: [source.commands] has no key "set_over_voltage"; wanted a command such as "VOLT {}"
+        d.toml:47:1: [source.commands] has no key "ask_output"; wanted a question such as "VOLT?"
         "#);
         let changes = [
             ("\"*CLS\"", "\"*CLS;*RST\""),
@@ -274,7 +274,7 @@ mod tests {
     #[test]
     fn a_mask_without_bits_or_without_question_is_refused() {
         says!(problems(SUPPLY, &[("limited_mask = 1", "limited_mask = 0")]),
-            @"d.toml:56:16: source.commands.limited_mask = 0: wanted the bits of a status register, 1 to 32767");
+            @"d.toml:58:16: source.commands.limited_mask = 0: wanted the bits of a status register, 1 to 32767");
         says!(problems(SUPPLY, &[("limited_mask = 1", "")]),
             @r#"d.toml:45:1: [source.commands] has no key "limited_mask"; wanted a whole number"#);
     }
