@@ -8,8 +8,8 @@ use crate::profile::Limit;
 use crate::statistics::line::Line;
 use crate::units::{Amps, Ohms, Volts};
 
-/// The expanded uncertainty may fill this share of the limits' width.
-const ADEQUATE: f64 = 0.5;
+/// The expanded uncertainty may fill this share of the limits' width: with more, their middle third is all that is certain.
+const ADEQUATE: f64 = 1.0 / 3.0;
 /// The voltages must lie apart by this share before the path is guessed from them.
 const APART: f64 = 0.02;
 

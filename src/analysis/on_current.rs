@@ -46,7 +46,7 @@ struct Way {
 
 /// How far above the reading, as a share of its voltage, the load is looked at: near enough to be the same, and far
 /// enough apart for the slope not to be noise.
-const HIGHER: (f64, f64) = (0.02, 0.3);
+const HIGHER: (f64, f64) = (0.005, 0.3);
 
 impl Way {
     fn of(course: &Course<'_>, near: &Settled, trip: Volts) -> Self {

@@ -6,8 +6,8 @@ use crate::units::Ohms;
 /// How long a burst lasts, s: what a loose pin does under vibration, common practice.
 const BURST: (f64, f64) = (5e-3, 50e-3);
 
-/// How long the contact is good between two bursts, s.
-const PAUSE: (f64, f64) = (0.1, 0.6);
+/// How long the contact is good between two bursts, s: a loose pin opens several times a second, common practice.
+const PAUSE: (f64, f64) = (0.05, 0.3);
 
 /// A contact that comes and goes.
 #[derive(Clone, Debug)]

@@ -12,6 +12,8 @@ pub(crate) struct Studied {
     pub(crate) name: &'static str,
     /// The noise at the detector that the profile states, as it is written there.
     states: Option<&'static str>,
+    /// Whether delays and what flows far below the trip are measured as well; that takes its time.
+    in_full: bool,
     /// Changes board and bench.
     pub(crate) vary: Vary,
     /// Whether U must cover here: boards as they are drawn, or noise that the profile states.
@@ -21,26 +23,38 @@ pub(crate) struct Studied {
 impl Studied {
     /// Boards drawn with the noise that is usual.
     const fn drawn(name: &'static str, vary: Vary) -> Self {
-        Self { name, states: None, vary, claimed: true }
+        Self { name, states: None, in_full: false, vary, claimed: true }
     }
 
     /// Boards of a design of which the profile states the noise: drawn about that level.
     const fn stated(name: &'static str, noise: &'static str) -> Self {
-        Self { name, states: Some(noise), vary: |_, _| {}, claimed: true }
+        Self { name, states: Some(noise), in_full: false, vary: |_, _| {}, claimed: true }
     }
 
     /// Boards that all have just the noise that the profile states.
     const fn exactly(name: &'static str, noise: &'static str, vary: Vary) -> Self {
-        Self { name, states: Some(noise), vary, claimed: false }
+        Self { name, states: Some(noise), in_full: false, vary, claimed: false }
     }
 
     /// Boards that all have one noise, of which the profile says nothing.
     const fn unstated(name: &'static str, vary: Vary) -> Self {
-        Self { name, states: None, vary, claimed: false }
+        Self { name, states: None, in_full: false, vary, claimed: false }
     }
 
-    /// The text of the profile with the noise stated.
+    /// Boards drawn with the noise that is usual, of which everything is measured.
+    const fn in_full(name: &'static str) -> Self {
+        Self { name, states: None, in_full: true, vary: |_, _| {}, claimed: true }
+    }
+
+    /// How many quantities are measured at least.
+    pub(crate) const fn quantities(&self) -> usize {
+        if self.in_full { 13 } else { 10 }
+    }
+
+    /// The text of the profile with the noise stated, and with all that is to be measured.
     pub(crate) fn profile(&self, text: &str) -> Result<String, Box<dyn Error>> {
+        let more = if self.in_full { "\n[measure]\ndelays = true\ndeep_floor = \"0.3 V\"\n" } else { "" };
+        let text = &format!("{text}{more}");
         let Some(noise) = self.states else { return Ok(text.to_owned()) };
         let (head, rest) =
             text.split_once("[detector]").ok_or("the profile has no [detector] to state noise in")?;
@@ -49,7 +63,7 @@ impl Studied {
 }
 
 /// All of them.
-pub(crate) fn all() -> [Studied; 18] {
+pub(crate) fn all() -> [Studied; 19] {
     [
         Studied::drawn("as drawn", |_, _| {}),
         Studied::drawn("noisy meters", |setup, _| {
@@ -72,6 +86,7 @@ pub(crate) fn all() -> [Studied; 18] {
                 range.claim.resolution = 1e-3;
             }
         }),
+        Studied::in_full("with delays and deep sweep"),
         Studied::stated("no noise, stated", "0 V"),
         Studied::stated("0.1 mV of noise, stated", "0.1 mV"),
         Studied::stated("0.3 mV of noise, stated", "0.3 mV"),

@@ -22,6 +22,7 @@ use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 use std::collections::BTreeMap;
 use std::error::Error;
+use std::panic::resume_unwind;
 use std::process::ExitCode;
 use std::thread;
 
@@ -33,6 +34,9 @@ const COVERED: (f64, f64) = (0.94, 0.97);
 
 /// Largest mean error of a threshold, in U.
 const BIAS: f64 = 0.1;
+
+/// Share of the boards of which every quantity must be seen: a board in doubt has none.
+const SEEN: f64 = 0.9;
 
 /// Boards are told apart by their seed; each condition has its own.
 const SEEDS_APART: u64 = 1_000_000;
@@ -80,8 +84,17 @@ fn main() -> Result<ExitCode, Box<dyn Error>> {
     for (index, studied) in all().iter().enumerate() {
         let first = index as u64 * SEEDS_APART;
         let table = study(&studied.profile(&profile)?, studied.vary, first, boards)?;
-        println!("{}{}", studied.name, if studied.claimed { "" } else { " (outside the claim)" });
+        let claim = if studied.claimed { "" } else { " (outside the claim)" };
+        println!("{}{claim}, seeds from {first}", studied.name);
+        if table.len() < studied.quantities() {
+            return Err(
+                format!("{} quantities were seen, wanted {}", table.len(), studied.quantities()).into()
+            );
+        }
         for (quantity, seen) in &table {
+            if (seen.expanded.len() as f64) < SEEN * boards as f64 {
+                return Err(format!("{}: seen of {} boards", quantity.title(), seen.expanded.len()).into());
+            }
             println!(
                 "  {:22} {:6.2} %  {:+.3} U  {:6} boards, U mostly {}",
                 quantity.title(),
@@ -124,7 +137,7 @@ fn study(profile: &str, vary: Vary, first: u64, boards: u64) -> Result<Table, Bo
     };
     let tables: Vec<Table> = thread::scope(|scope| {
         let workers: Vec<_> = (0..cores).map(|core| scope.spawn(move || share(core))).collect();
-        workers.into_iter().map(|worker| worker.join().unwrap_or_default()).collect()
+        workers.into_iter().map(|worker| worker.join().unwrap_or_else(|panic| resume_unwind(panic))).collect()
     });
     let mut all = Table::new();
     for (name, seen) in tables.into_iter().flatten() {

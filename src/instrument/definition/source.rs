@@ -265,9 +265,9 @@ mod tests {
         ];
         says!(problems(SUPPLY, &changes), @r#"
         d.toml:16:18: setup = "*CLS;*RST": wanted one command in printable ASCII, without ";" and without line end
-        d.toml:46:15: source.commands.set_voltage = "VOLT": wanted a command with one "{}" where the number goes, such as "VOLT {}"
-        d.toml:47:15: source.commands.ask_voltage = "VOLT": not a question; wanted one with "?", such as "VOLT?"
-        d.toml:53:14: source.commands.output_off = "OUTP?": a question, whose reply nobody would read; wanted a command without "?"
+        d.toml:48:15: source.commands.set_voltage = "VOLT": wanted a command with one "{}" where the number goes, such as "VOLT {}"
+        d.toml:49:15: source.commands.ask_voltage = "VOLT": not a question; wanted one with "?", such as "VOLT?"
+        d.toml:55:14: source.commands.output_off = "OUTP?": a question, whose reply nobody would read; wanted a command without "?"
         "#);
     }
 
@@ -276,7 +276,7 @@ mod tests {
         says!(problems(SUPPLY, &[("limited_mask = 1", "limited_mask = 0")]),
             @"d.toml:58:16: source.commands.limited_mask = 0: wanted the bits of a status register, 1 to 32767");
         says!(problems(SUPPLY, &[("limited_mask = 1", "")]),
-            @r#"d.toml:45:1: [source.commands] has no key "limited_mask"; wanted a whole number"#);
+            @r#"d.toml:47:1: [source.commands] has no key "limited_mask"; wanted a whole number"#);
     }
 
     #[test]

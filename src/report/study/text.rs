@@ -19,7 +19,7 @@ pub fn study_text(sheet: &StudySheet<'_>) -> String {
         }
     };
     section("each threshold under each condition", cells(estimates, &confidence));
-    section("at rest", at_rest(&estimates.at_rest));
+    section("at rest", at_rest(estimates));
     section("over temperature", temperature(&estimates.temperature));
     section("limits that follow", limits(&estimates.limits));
     for note in notes(estimates) {
@@ -110,9 +110,16 @@ fn drift(drift: Drift) -> String {
     if drift.significant { format!("{text}, DRIFTS") } else { text }
 }
 
-fn at_rest(boards: &[AtRest]) -> Vec<Vec<String>> {
+/// Whether a threshold has no delay although there were ramps of several rates.
+fn lacks_delay(estimates: &Estimates, board: &AtRest) -> bool {
+    let first = estimates.cells.first().map(|cell| cell.rate_v_per_s);
+    let several = estimates.cells.iter().any(|cell| Some(cell.rate_v_per_s) != first);
+    several && board.delay.is_none() && board.quantity != QuantityName::Hysteresis
+}
+
+fn at_rest(estimates: &Estimates) -> Vec<Vec<String>> {
     let mut rows = vec![row(["board", "temperature", "load", "quantity", "value ± U", "delay ± U"])];
-    rows.extend(boards.iter().map(|board| {
+    rows.extend(estimates.at_rest.iter().map(|board| {
         let uncertainty = 2.0 * board.statistical_v.hypot(board.instrument_v.unwrap_or(0.0));
         let value = with_uncertainty(board.value_v, uncertainty, Unit::Volt);
         vec![
@@ -204,11 +211,7 @@ fn notes(estimates: &Estimates) -> Vec<String> {
             "note: nothing is claimed of the instrument that read the voltages; U leaves it out.".to_owned(),
         );
     }
-    if estimates
-        .at_rest
-        .iter()
-        .any(|board| board.quantity != QuantityName::Hysteresis && board.delay.is_none())
-    {
+    if estimates.at_rest.iter().any(|board| lacks_delay(estimates, board)) {
         notes.push(
             "A delay needs ramps at two rates at least (--rate), which the bench must be fast enough to tell apart."
                 .to_owned(),

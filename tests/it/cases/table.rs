@@ -31,6 +31,8 @@ pub(super) struct Case {
 pub(super) enum Wanted {
     /// This one, by its name in files.
     First(&'static str),
+    /// One of these: what is seen of one fault is a matter of chance.
+    OneOf(&'static [&'static str]),
     /// None at all.
     Nothing,
 }
@@ -39,6 +41,7 @@ impl Wanted {
     fn is(self, first: Option<&str>) -> bool {
         match self {
             Self::First(name) => first == Some(name),
+            Self::OneOf(names) => first.is_some_and(|first| names.contains(&first)),
             Self::Nothing => first.is_none(),
         }
     }
@@ -80,9 +83,15 @@ impl Case {
 
     /// Tests its board.
     pub(super) fn run(&self, seed: u64) -> Run {
+        self.run_with(seed, |_| {})
+    }
+
+    /// Tests its board with something else about it.
+    pub(super) fn run_with(&self, seed: u64, change: impl Fn(&mut Setup)) -> Run {
         let profile = relay::profile(self.limits);
         let mut setup = relay::in_order(seed).under(self.conditions, &profile);
         (self.figures)(&mut setup);
+        change(&mut setup);
         let mut ability = setup.ability();
         (self.bench)(&mut ability);
         run_able(&profile, &setup, ability)

@@ -121,7 +121,7 @@ fn measured_temperatures_come_from_a_file() {
                       [[temperature]]\nnominal = \"60 degC\"\n";
     fs::write(folder.path().join("conditions.toml"), conditions).expect("writable");
     let said =
-        study(folder.path(), &["--cycles", "1", "--conditions", "conditions.toml", "--format", "json"]);
+        study(folder.path(), &["--cycles", "2", "--conditions", "conditions.toml", "--format", "json"]);
     said.ended(0);
     let json = said.json();
     let cells = json["cells"].as_array().expect("an array");
@@ -138,7 +138,7 @@ fn measured_temperatures_come_from_a_file() {
 fn at_a_terminal_the_operator_says_what_was_measured() {
     let place = Workplace::new();
     let arguments = ["characterise", "profile.toml", "--bench", "bench.toml", "--serial-number", "RN000123"];
-    let more = ["--cycles", "1", "--rate", "0.5 V/s", "--temperature", "-20 degC", "--format", "json"];
+    let more = ["--cycles", "2", "--rate", "0.5 V/s", "--temperature", "-20 degC", "--format", "json"];
     let arguments = [&arguments[..], &more].concat();
     let said = typed(place.folder(), &arguments, &["cold", "-19.5 degC", ""]);
     said.ended(0);

@@ -8,6 +8,9 @@ use ebbmark::units::Volts;
 /// Good boards and benches; the same each time.
 const SEEDS: [u64; 3] = [1, 2, 3];
 
+/// Once in a thousand times a value of a normal distribution lies farther off than so many U of 95 %.
+const FARTHEST: f64 = 1.7;
+
 /// The truth is that of the simulation's world, which never goes over a port.
 #[test]
 fn what_is_said_of_good_boards_is_true_within_the_expanded_uncertainty() {
@@ -21,6 +24,7 @@ fn what_is_said_of_good_boards_is_true_within_the_expanded_uncertainty() {
         let running = Running::start(place.folder(), &arguments);
         (seed, place, running)
     });
+    let mut outside = Vec::new();
     for (seed, place, running) in runs {
         let said = running.end();
         assert_eq!(said.code, 0, "seed {seed}: {said}");
@@ -39,10 +43,13 @@ fn what_is_said_of_good_boards_is_true_within_the_expanded_uncertainty() {
                 "hysteresis" => truth.hysteresis.0,
                 _ => truth.off_current(Volts(number("at"))).0,
             };
-            assert!(
-                expanded > 0.0 && (value - wanted).abs() <= expanded,
-                "seed {seed}: {name} {value} ± {expanded}, truly {wanted}"
-            );
+            let error = (value - wanted).abs();
+            let what = format!("seed {seed}: {name} {value} ± {expanded}, truly {wanted}");
+            assert!(expanded > 0.0 && error <= FARTHEST * expanded, "{what}");
+            outside.extend((error > expanded).then_some(what));
         }
     }
+    // Of twelve values that U covers with 95 %, more than two lie outside once in fifty times (binomial law), and the
+    // hysteresis goes with a threshold.
+    assert!(outside.len() <= 2, "{outside:#?}");
 }
