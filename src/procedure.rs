@@ -37,7 +37,7 @@ mod walk;
 
 pub use ability::Ability;
 pub use action::{Action, Event};
-pub use bench_work::{BenchWork, Task};
+pub use bench_work::{BenchWork, SMALL_CURRENT, Task};
 pub use cycle::{Steps, Sweep, Window, shortest_period};
 pub use fit::{Misfit, fits};
 pub use inrush::{Inrush, inrush};

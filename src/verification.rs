@@ -10,6 +10,8 @@ mod leads;
 mod mean;
 mod reference;
 mod rest;
+mod small_range;
+mod standard;
 mod steps;
 mod zeros;
 
@@ -17,5 +19,6 @@ pub use comparison::{Compared, ReferenceResult, compare};
 pub use leads::{KnownLoad, Leads, LoadFound, leads};
 pub use reference::{KnownValue, Must, Reference};
 pub use rest::{AtRest, rest};
+pub use standard::{StandardFound, StandardTask, standard};
 pub use steps::{Step, steps};
 pub use zeros::{FixtureZero, ZeroTask, zeros};

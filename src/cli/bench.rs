@@ -4,6 +4,7 @@ mod check;
 mod list;
 mod place;
 mod reference;
+mod standard;
 mod work;
 mod zero;
 

@@ -1,4 +1,5 @@
-//! Looking at a bench itself: meters at rest, the supply against the voltmeter, and the zeros of an empty fixture.
+//! Looking at a bench itself: meters at rest, the supply against the voltmeter, and the ammeter's small
+//! ranges with an empty fixture or a known resistor.
 //!
 //! No board is tested. The same desk, the same actions and the same way out as for a run: whatever happens, the output
 //! goes off and is read back.
@@ -49,8 +50,9 @@ pub enum Task {
     Rest,
     /// With the output on at each of these voltages, from low to high: every meter, the ammeter on its large range.
     Steps(Vec<Volts>),
-    /// With an empty fixture, at each of these voltages: the ammeter on each small range.
-    Zeros(Vec<Volts>),
+    /// With nothing in the fixture, or a known resistor that draws next to nothing, at each of these voltages: the
+    /// ammeter on each small range.
+    SmallRanges(Vec<Volts>),
 }
 
 /// Readings after a change of range that are not counted: the first may hold what went before.
@@ -127,7 +129,7 @@ async fn carry_out(desk: &Desk, work: &BenchWork) -> Result<(), Stop> {
             }
             Ok(())
         }
-        Task::Zeros(volts) => {
+        Task::SmallRanges(volts) => {
             switch_on(desk, work).await?;
             for volts in volts {
                 let sample = arrive(desk, work, *volts).await?;
@@ -135,7 +137,7 @@ async fn carry_out(desk: &Desk, work: &BenchWork) -> Result<(), Stop> {
                     // Something draws current: on a small range that would harm the meter's fuse.
                     return Ok(());
                 }
-                zeros(desk, work).await?;
+                small_ranges(desk, work).await?;
             }
             Ok(())
         }
@@ -155,7 +157,7 @@ async fn rest(desk: &Desk, work: &BenchWork) -> Result<(), Stop> {
 }
 
 /// From the largest of the small ranges down, which disturbs the path least, and back to the large one.
-async fn zeros(desk: &Desk, work: &BenchWork) -> Result<(), Stop> {
+async fn small_ranges(desk: &Desk, work: &BenchWork) -> Result<(), Stop> {
     for range in work.small_ranges.iter().rev() {
         change_range(desk, work, *range).await?;
         read(desk, DISCARDED + work.readings).await?;
@@ -189,11 +191,11 @@ async fn arrive(desk: &Desk, work: &BenchWork, volts: Volts) -> Result<Sample, S
 
 fn is_nearly_nothing(work: &BenchWork, sample: &Sample) -> bool {
     sample.limited != Some(true)
-        && sample.current.amps().is_some_and(|amps| amps.abs() <= work.large_zero + LITTLE)
+        && sample.current.amps().is_some_and(|amps| amps.abs() <= work.large_zero + SMALL_CURRENT)
 }
 
-/// What a voltmeter and a clean fixture may draw; the small ranges carry it.
-const LITTLE: Amps = Amps(10e-6);
+/// What a voltmeter, a clean fixture and a known resistor may draw together; the small ranges carry it.
+pub const SMALL_CURRENT: Amps = Amps(10e-6);
 
 async fn change_range(desk: &Desk, work: &BenchWork, range: Amps) -> Result<(), Stop> {
     desk.order(Action::Range(range)).await?;
@@ -223,7 +225,7 @@ mod tests {
 
     fn zeros_at(volts: &[f64]) -> BenchWork {
         let volts: Vec<Volts> = volts.iter().copied().map(Volts).collect();
-        BenchWork::new(&ability(), Volts(5.8), Amps(5e-3), 3, Task::Zeros(volts))
+        BenchWork::new(&ability(), Volts(5.8), Amps(5e-3), 3, Task::SmallRanges(volts))
     }
 
     /// All actions of the work on a bench where `current` flows, until the action with this number fails.
@@ -306,7 +308,9 @@ mod tests {
 
     #[test]
     fn wherever_it_fails_the_last_order_is_to_switch_off() {
-        for task in [Task::Rest, Task::Steps(vec![Volts(1.0)]), Task::Zeros(vec![Volts(0.0), Volts(5.8)])] {
+        for task in
+            [Task::Rest, Task::Steps(vec![Volts(1.0)]), Task::SmallRanges(vec![Volts(0.0), Volts(5.8)])]
+        {
             let work = BenchWork::new(&ability(), Volts(5.8), Amps(5e-3), 3, task);
             let whole = actions(&work, 0.0, usize::MAX).len();
             for fails_at in 0..whole {

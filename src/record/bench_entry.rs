@@ -3,7 +3,7 @@
 use super::{BenchUsed, Instrument, Moment, RunId, SCHEMA, Software};
 use crate::trace::{Trace, Zero};
 use crate::units::{Amps, Volts};
-use crate::verification::{AtRest, FixtureZero, Leads, LoadFound, ReferenceResult, Step};
+use crate::verification::{AtRest, FixtureZero, Leads, LoadFound, ReferenceResult, StandardFound, Step};
 use jiff::civil::Date;
 use jiff::{SignedDuration, Timestamp};
 use serde::{Deserialize, Serialize};
@@ -73,6 +73,9 @@ pub struct CheckFound {
     /// That load as the meters see it.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub load: Option<LoadFound>,
+    /// A known resistor on the ammeter's small ranges, where one was in place.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub standard: Vec<StandardFound>,
 }
 
 /// One instrument by itself.

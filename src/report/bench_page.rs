@@ -5,7 +5,7 @@ use super::words::in_files;
 use crate::record::{BenchEntry, BenchFound, CheckFound, InstrumentFound};
 use crate::units::{Amps, Ohms, Unit, Volts, prefixed, with_decimals_of};
 use crate::verdict::COVERAGE_FACTOR;
-use crate::verification::{FixtureZero, ReferenceResult};
+use crate::verification::{FixtureZero, ReferenceResult, StandardFound};
 use serde_json::json;
 
 /// One look as text, ending with a newline.
@@ -93,7 +93,28 @@ fn check_page(check: &CheckFound) -> String {
         rows.push(vec!["  load".to_owned(), format!("{}, {stated}", Ohms(load.found_ohm))]);
     }
     page.push_str(&titled("between supply and board (k = 2)", &rows));
+    page.push_str(&standard(&check.standard));
     page
+}
+
+fn standard(found: &[StandardFound]) -> String {
+    let Some(first) = found.first() else { return String::new() };
+    let rows: Vec<Vec<String>> = found
+        .iter()
+        .map(|found| {
+            vec![
+                format!("  range {}", Amps(found.full_scale_a)),
+                format!("measured {}", shown(found.measured_a, found.expanded_uncertainty_a, Unit::Ampere)),
+                format!(
+                    "expected {}",
+                    shown(found.expected_a, found.expected_expanded_uncertainty_a, Unit::Ampere)
+                ),
+                format!("E_n {:.2}", found.normalised_error),
+            ]
+        })
+        .collect();
+    let (resistance, percent, at) = (Ohms(first.stated_ohm), first.tolerance * 100.0, Volts(first.at_v));
+    titled(&format!("ammeter through {resistance} ± {percent} % at {at} (k = 2)"), &rows)
 }
 
 fn instrument(found: &InstrumentFound) -> String {

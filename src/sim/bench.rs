@@ -214,23 +214,19 @@ impl SimulatedBench {
 }
 
 impl InFixture {
-    /// The setup with this in its fixture: a switch without a detector, open on nothing or closed on a resistor.
-    fn in_place_of_board(self, mut setup: Setup) -> Setup {
-        let switch = match self {
+    /// The setup with this in its fixture, across the terminals and nothing behind them: a voltmeter where the load was
+    /// touches none of it.
+    pub fn in_place_of_board(self, mut setup: Setup) -> Setup {
+        let across = match self {
             Self::Board => return setup,
-            Self::Nothing => Switch::StuckOpen,
-            Self::Resistor(resistance) => {
-                setup.board.load = resistance;
-                Switch::StuckClosed
-            }
+            Self::Nothing => CLEAN_FIXTURE,
+            Self::Resistor(resistance) => Ohms(1.0 / (1.0 / resistance.0 + 1.0 / CLEAN_FIXTURE.0)),
         };
-        if switch == Switch::StuckOpen {
-            setup.wiring.load = LoadWiring::Lifted;
-        }
+        setup.wiring.load = LoadWiring::Lifted;
         setup.board = BoardModel {
-            switch,
+            switch: Switch::StuckOpen,
             on_resistance: Ohms::ZERO,
-            pull_up: CLEAN_FIXTURE,
+            pull_up: across,
             pull_up_conducts: PullUp::Always,
             divider: Siemens::ZERO,
             detector_current: Amps::ZERO,

@@ -1,8 +1,7 @@
 //! The zeros of a bench with nothing in its fixture.
 
 use super::ending::cut_short;
-use super::fuse;
-use super::mean::Mean;
+use super::small_range::{INPUT_TOLERANCE, OnSmallRange, groups, on_small_ranges};
 use crate::trace::{Sample, Trace};
 use crate::units::{Amps, Volts};
 use serde::{Deserialize, Serialize};
@@ -40,9 +39,6 @@ pub struct FixtureZero {
 /// A zero beyond this multiple of the claim is no zero.
 const ABSURD: f64 = 5.0;
 
-/// Share by which a voltmeter may draw more than stated: 1 % of its input resistance is common practice.
-const INPUT_TOLERANCE: f64 = 0.01;
-
 /// What leaks in a fixture may be this share of the off current that is to be judged.
 const LEAKAGE_SHARE: f64 = 0.1;
 
@@ -50,76 +46,54 @@ const LEAKAGE_SHARE: f64 = 0.1;
 pub fn zeros(trace: &Trace, task: &ZeroTask) -> (Vec<FixtureZero>, Vec<String>) {
     let mut problems: Vec<String> = cut_short(&trace.ending).into_iter().collect();
     let mut found: Vec<FixtureZero> = Vec::new();
-    let same = |a: &Sample, b: &Sample| a.range == b.range && (a.set - b.set).abs().0 < 1e-6;
-    let groups: Vec<&[Sample]> = trace.samples.chunk_by(same).collect();
-    for group in &groups {
-        let Some(range) = group[0].range.filter(|range| *range < task.large_range) else { continue };
-        let taken = &group[group.len().saturating_sub(task.readings)..];
-        match zero(trace, range, taken) {
-            Ok(zero) => {
-                problems.extend(not_arrived(group[0].set, &zero, task));
-                problems.extend(suspect(trace, range, &zero));
-                found.push(zero);
+    for read in on_small_ranges(trace, task.large_range, task.readings, IS_IT_EMPTY) {
+        match read {
+            Ok(read) => {
+                problems.extend(read.not_arrived(task.arrival_tolerance, DRAWS_TOO_MUCH));
+                problems.extend(suspect(&read));
+                found.push(zero(&read));
             }
             Err(problem) => problems.push(problem),
         }
     }
     if found.is_empty() && problems.is_empty() {
-        problems.push(occupied(&groups));
+        problems.push(occupied(&groups(trace)));
     }
     problems.extend(task.off_current.and_then(|most| leaks(&found, most)));
     (found, problems)
 }
 
-fn zero(trace: &Trace, range: Amps, taken: &[Sample]) -> Result<FixtureZero, String> {
-    let amps: Option<Vec<f64>> =
-        taken.iter().map(|sample| sample.current.amps().map(|amps| amps.0)).collect();
-    let volts: Vec<f64> = taken.iter().map(|sample| sample.terminals().0).collect();
-    let (Some(mean), Some(at)) = (amps.and_then(|amps| Mean::of(&amps)), Mean::of(&volts)) else {
-        return Err(format!("the ammeter overloads on its {range} range: {IS_IT_EMPTY}"));
-    };
-    let claim = trace.claims.current_accuracy(Some(range), Amps(mean.value));
-    if let Some(told) = fuse::suspicion(&mean, claim, range.0) {
-        return Err(format!("ammeter on its {range} range at {}: {told}", Volts(at.value)));
+fn zero(read: &OnSmallRange) -> FixtureZero {
+    FixtureZero {
+        full_scale_a: read.range.0,
+        at_v: read.at.value,
+        current_a: read.current(),
+        noise_a: read.reading.deviation,
+        standard_uncertainty_a: read
+            .reading
+            .standard_uncertainty(read.claim.map_or(0.0, |claim| claim.resolution)),
+        readings: read.reading.count,
     }
-    let passing = trace.claims.sense_resistance.map_or(0.0, |input| at.value / input.0);
-    Ok(FixtureZero {
-        full_scale_a: range.0,
-        at_v: at.value,
-        current_a: mean.value - passing,
-        noise_a: mean.deviation,
-        standard_uncertainty_a: mean.standard_uncertainty(claim.map_or(0.0, |claim| claim.resolution)),
-        readings: mean.count,
-    })
-}
-
-/// The voltage did not come to the terminals: what was read there is no zero at that voltage.
-fn not_arrived(set: Volts, zero: &FixtureZero, task: &ZeroTask) -> Option<String> {
-    let at = Volts(zero.at_v);
-    ((at - set).abs() > task.arrival_tolerance).then(|| {
-        format!(
-            "set to {set}, but {at} stand at the terminals: no path through the ammeter (its fuse, a lead), or something in \
-             the fixture that draws more than the current limit"
-        )
-    })
 }
 
 /// More than claim and voltmeter can explain.
-fn suspect(trace: &Trace, range: Amps, zero: &FixtureZero) -> Option<String> {
-    let passing = trace.claims.sense_resistance.map_or(0.0, |input| zero.at_v / input.0);
-    let reading = Amps(zero.current_a + passing);
-    let claim = trace.claims.current_accuracy(Some(range), reading)?;
-    let allowed = ABSURD * claim.limit(reading.0) + claim.resolution + INPUT_TOLERANCE * passing;
-    let credible = zero.current_a.abs() <= allowed;
+fn suspect(read: &OnSmallRange) -> Option<String> {
+    let claim = read.claim?;
+    let allowed =
+        ABSURD * claim.limit(read.reading.value) + claim.resolution + INPUT_TOLERANCE * read.passing;
+    let credible = read.current().abs() <= allowed;
     (!credible).then(|| {
         format!(
-            "zero of {} on the {range} range at {}, at most {} is credible: {IS_IT_EMPTY}",
-            Amps(zero.current_a),
-            Volts(zero.at_v),
+            "zero of {} on the {} range at {}, at most {} is credible: {IS_IT_EMPTY}",
+            Amps(read.current()),
+            read.range,
+            Volts(read.at.value),
             Amps(allowed)
         )
     })
 }
+
+const DRAWS_TOO_MUCH: &str = "something in the fixture that draws more than the current limit";
 
 const IS_IT_EMPTY: &str = "is a board still in the fixture? Take out whatever is in it, clean it of flux, and look that the \
                            voltmeter sits where the bench file says";

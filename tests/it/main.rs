@@ -13,6 +13,7 @@ mod definitions_on_simulation;
 mod delays;
 mod everything;
 mod latched;
+mod known_resistor;
 mod limits;
 mod live_circuit;
 mod log;

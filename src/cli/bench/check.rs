@@ -3,6 +3,7 @@
 
 use super::place::{Found, Place, allowed};
 use super::reference;
+use super::standard::Standard;
 use super::work::{Connected, exit};
 use super::zero::volts;
 use crate::bench::serial::{Report, check};
@@ -28,8 +29,9 @@ use std::path::PathBuf;
 Example:
   ebbmark bench check instruments/benches/first-bench.toml
 
-With a resistor or a reference board in the fixture:
+With a load resistor, a known large resistor, or a reference board in the fixture:
   ebbmark bench check my-bench.toml --energise --load \"55 ohm\" --profile profiles/river-node.toml --test-voltage \"7.6 V\"
+  ebbmark bench check my-bench.toml --energise --standard \"1 Mohm\" --standard-tolerance \"1 %\"
   ebbmark bench check my-bench.toml --profile profiles/river-node.toml --reference my-reference.toml
 
 Without --energise or --reference the output is never switched on. The exit code is 0 when everything is in order and 3
@@ -40,27 +42,29 @@ pub(super) struct Arguments {
     /// Switch the output on at a low voltage with the lowest current limit, and compare set-point and voltmeter.
     #[arg(long)]
     energise: bool,
-    /// Voltage of that comparison.
-    #[arg(long, value_name = "VOLTAGE", default_value = "1 V", value_parser = volts)]
-    test_voltage: Volts,
+    /// Voltage of that comparison; when left out 1 V, or 3 V with --standard.
+    #[arg(long, value_name = "VOLTAGE", value_parser = volts)]
+    test_voltage: Option<Volts>,
     /// A resistor of this value is in the fixture in place of a board, such as "55 ohm": the leads are measured too.
     #[arg(long, value_name = "RESISTANCE", value_parser = ohms, requires = "energise")]
     load: Option<Ohms>,
     /// Tolerance of that resistor.
     #[arg(long, value_name = "SHARE", default_value = "1 %", value_parser = share)]
     load_tolerance: f64,
+    #[command(flatten)]
+    standard: Standard,
     /// A reference board is in the fixture, described in this file: it is tested, and compared with what is known of it.
-    #[arg(long, value_name = "FILE", requires = "profile", conflicts_with = "load")]
+    #[arg(long, value_name = "FILE", requires = "profile", conflicts_with_all = ["load", "standard"])]
     reference: Option<PathBuf>,
 }
 
-fn ohms(text: &str) -> Result<Ohms, String> {
+pub(super) fn ohms(text: &str) -> Result<Ohms, String> {
     Ohms::parse(text)
         .map_err(|error| error.to_string())
         .and_then(|load| if load > Ohms::ZERO { Ok(load) } else { Err("wanted more than 0 ohm".to_owned()) })
 }
 
-fn share(text: &str) -> Result<f64, String> {
+pub(super) fn share(text: &str) -> Result<f64, String> {
     parse_fraction(text).map_err(|error| error.to_string()).and_then(|share| {
         if (0.0..=0.2).contains(&share) { Ok(share) } else { Err("wanted 0 % to 20 %".to_owned()) }
     })
@@ -92,10 +96,7 @@ struct Findings {
 impl Arguments {
     pub(super) fn run(self) -> Result<Exit, Failure> {
         let profile = self.place.profile()?;
-        let in_fixture = match self.load {
-            Some(load) => InFixture::Resistor(load),
-            None => InFixture::Board,
-        };
+        let in_fixture = self.load.or(self.standard.resistance).map_or(InFixture::Board, InFixture::Resistor);
         let found = self.place.find(profile.as_ref(), in_fixture)?;
         self.is_allowed(profile.as_ref(), &found)?;
         let reference = self.reference.as_deref().map(reference::read).transpose()?;
@@ -127,7 +128,7 @@ impl Arguments {
         }
         let mut used = found.used(Vec::new());
         if reports.iter().all(Result::is_ok) {
-            match Connected::new(&mut station, found, self.test_voltage) {
+            match Connected::new(&mut station, found, self.test_voltage()) {
                 Ok(mut bench) => {
                     used = bench.used();
                     self.read(found, &mut bench, &mut findings)?;
@@ -160,9 +161,10 @@ impl Arguments {
         bench: &mut Connected<'_, '_>,
         findings: &mut Findings,
     ) -> Result<(), Failure> {
-        let (ability, readings) = (found.file.ability(self.test_voltage), self.place.readings());
+        let test_voltage = self.test_voltage();
+        let (ability, readings) = (found.file.ability(test_voltage), self.place.readings());
         let (current_limit, voltages) = self.energised();
-        let work = |task| BenchWork::new(&ability, self.test_voltage, current_limit, readings, task);
+        let work = |task| BenchWork::new(&ability, test_voltage, current_limit, readings, task);
         let at_rest = bench.carry_out(NAME, work(Task::Rest))?;
         let (at_rest_found, problems) = rest(&at_rest, readings);
         findings.check.rest = at_rest_found;
@@ -190,27 +192,43 @@ impl Arguments {
         }
         findings.check.steps = found_steps;
         findings.traces.push(trace);
+        if findings.problems.is_empty()
+            && let Some(resistor) = self.standard.resistor()
+        {
+            let work = work(Task::SmallRanges(vec![test_voltage]));
+            let (trace, found, problems) = Standard::read(resistor, work, bench, NAME)?;
+            findings.check.standard = found;
+            findings.problems.extend(problems);
+            findings.traces.push(trace);
+        }
         Ok(())
+    }
+
+    fn test_voltage(&self) -> Volts {
+        self.test_voltage.unwrap_or_else(|| self.standard.usual_voltage())
     }
 
     /// Current limit and voltages of the comparison.
     fn energised(&self) -> (Amps, Vec<Volts>) {
-        let Some(load) = self.load else { return (LITTLE_CURRENT, vec![self.test_voltage]) };
-        let current_limit = (self.test_voltage / load * CURRENT_MARGIN).max(LITTLE_CURRENT);
-        let step = |step| self.test_voltage * (f64::from(step) / f64::from(STEPS));
+        let test_voltage = self.test_voltage();
+        let Some(load) = self.load else { return (LITTLE_CURRENT, vec![test_voltage]) };
+        let current_limit = (test_voltage / load * CURRENT_MARGIN).max(LITTLE_CURRENT);
+        let step = |step| test_voltage * (f64::from(step) / f64::from(STEPS));
         (current_limit, (1..=STEPS).map(step).collect())
     }
 
     fn is_allowed(&self, profile: Option<&Profile>, found: &Found) -> Result<(), Failure> {
-        allowed(self.test_voltage, profile, &found.file)?;
+        let test_voltage = self.test_voltage();
+        allowed(test_voltage, profile, &found.file)?;
+        self.standard.is_allowed(test_voltage, &found.file)?;
         let Some(load) = self.load else { return Ok(()) };
-        let current = self.test_voltage / load;
-        let power = self.test_voltage * current;
+        let current = test_voltage / load;
+        let power = test_voltage * current;
         let bears = profile.map_or(SMALL_RESISTOR, |profile| profile.load.rating);
         if power > bears {
             return Err(anyhow::anyhow!(
                 "{load} takes {power} at {}, more than the {bears} of {}; lower --test-voltage",
-                self.test_voltage,
+                test_voltage,
                 if profile.is_some() {
                     "the profile's load"
                 } else {
@@ -219,13 +237,11 @@ impl Arguments {
             )
             .into());
         }
-        let most = profile.map_or(found.file.ability(self.test_voltage).max_current, |profile| {
-            profile.supply.current_limit
-        });
+        let most = profile
+            .map_or(found.file.ability(test_voltage).max_current, |profile| profile.supply.current_limit);
         if current * CURRENT_MARGIN > most {
             return Err(anyhow::anyhow!(
-                "{load} draws {current} at {}; with its margin that is above the limit of {most}; lower --test-voltage",
-                self.test_voltage
+                "{load} draws {current} at {test_voltage}; with its margin that is above the limit of {most}; lower --test-voltage"
             )
             .into());
         }

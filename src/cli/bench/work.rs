@@ -5,6 +5,7 @@ use crate::bench::serial::SerialBench;
 use crate::cli::station::Station;
 use crate::cli::stop::listen;
 use crate::cli::{Exit, Failure, guard, who};
+use crate::instrument::bench_file::BenchFile;
 use crate::procedure::{BenchWork, Procedure};
 use crate::profile::Supply;
 use crate::record::{BenchUsed, BoardUnderTest, Occasion, ProfileUsed, Subject, now};
@@ -32,6 +33,11 @@ impl<'s, 'b> Connected<'s, 'b> {
     /// The bench, its instruments as they named themselves.
     pub(super) fn used(&self) -> BenchUsed {
         self.used.clone()
+    }
+
+    /// The bench's file.
+    pub(super) fn file(&self) -> &BenchFile {
+        self.station.bench
     }
 
     /// Carries out some work. However it ends, a panic and the operator's stop included, the output was commanded off.

@@ -59,7 +59,7 @@ impl Arguments {
 
         let ability = found.file.ability(highest);
         let readings = self.place.readings();
-        let work = BenchWork::new(&ability, highest, LITTLE_CURRENT, readings, Task::Zeros(voltages));
+        let work = BenchWork::new(&ability, highest, LITTLE_CURRENT, readings, Task::SmallRanges(voltages));
         let limit = profile.as_ref().and_then(|profile| profile.limits.get(&QuantityName::OffCurrent));
         let task = ZeroTask {
             readings,

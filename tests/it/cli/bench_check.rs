@@ -81,6 +81,31 @@ fn a_known_load_shows_the_leads() {
         .refuses(2, &["a small resistor"]);
 }
 
+/// A megohm of the simulation draws 3 µA at 3 V, whatever the ammeter says.
+#[test]
+fn a_known_resistor_is_compared_on_the_small_ranges_and_kept() {
+    let place = Workplace::holding(InFixture::Resistor(Ohms(1e6)), Vec::new());
+    let said = check(&place, &["--energise", "--standard", "1 Mohm"]);
+    said.ended(0);
+    assert!(said.out.contains("ammeter through 1.000 MΩ ± 1 % at "), "{said}");
+    let BenchFound::Check(found) = last(&place, &said).found else { panic!("{said}") };
+    assert_eq!(found.standard.len(), 2, "100 µA and 1 mA: {said}");
+    for compared in &found.standard {
+        assert!((compared.expected_a - 3e-6).abs() < 0.01e-6, "{said}");
+        assert!(compared.normalised_error <= 1.0, "{said}");
+    }
+
+    not_ready(
+        &place,
+        &["--energise", "--standard", "2 Mohm"],
+        "wanted at most 1: look whether it is the resistor",
+    );
+    check(&place, &["--energise", "--standard", "100 kohm"]).refuses(2, &["for at most 10.00 µA"]);
+    let above = ["--energise", "--standard", "10 Mohm", "--test-voltage", "9 V", "--profile", "profile.toml"];
+    check(&place, &above).refuses(2, &["the maximum of the profile"]);
+    check(&place, &["--standard", "1 Mohm"]).refuses(2, &["--energise"]);
+}
+
 #[test]
 fn a_supply_and_a_voltmeter_that_disagree_are_told() {
     let mut apart = setup();
