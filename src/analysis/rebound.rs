@@ -2,13 +2,13 @@
 //!
 //! The margin is worked out from the hysteresis, whose two thresholds were read by one voltmeter, and not from the
 //! re-enable voltage and the trip apart: what the voltmeter errs in common has cancelled there. Resistance and recovery
-//! are the most the design allows for, and carry no uncertainty of their own. Where the rise was tried out, a board
-//! that came back is told with the moment and the voltage.
+//! are the profile's: with a tolerance of theirs they count as rectangles, without one as exact, as the most the design
+//! allows for. Where the rise was tried out, a board that came back is told with the moment and the voltage.
 
 use super::edges::{Direction, Edges};
 use super::finding::{About, Finding, FindingCode};
 use super::plateau::Course;
-use super::quantity::{Quantity, Term};
+use super::quantity::{Contribution, Quantity, Term};
 use super::threshold::Threshold;
 use crate::profile::{QuantityName, Rebound};
 use crate::trace::SwitchState;
@@ -21,8 +21,25 @@ const NEAR: Volts = Volts(5e-3);
 pub(super) fn rebound_margin(hysteresis: &Quantity, on_current: &Quantity, rebound: &Rebound) -> Quantity {
     let band = Term { factor: 1.0, title: "hysteresis", quantity: hysteresis };
     let rise = Term { factor: -rebound.resistance.0, title: "on current", quantity: on_current };
-    let margin = Quantity::sum(QuantityName::ReboundMargin, &[band, rise]);
-    Quantity { value: hysteresis.value - rebound.rise(Amps(on_current.value)).0, ..margin }
+    let mut parts = Quantity::sum(QuantityName::ReboundMargin, &[band, rise]).contributions;
+    if rebound.tolerance > 0.0 {
+        parts.extend(as_stated(Amps(on_current.value), rebound));
+    }
+    let value = hysteresis.value - rebound.rise(Amps(on_current.value)).0;
+    Quantity::new(QuantityName::ReboundMargin, value, parts)
+}
+
+/// The profile's own figures: of each ohm the margin loses the on current, of each volt of recovery a volt.
+fn as_stated(on_current: Amps, rebound: &Rebound) -> [Contribution; 2] {
+    let (resistance, recovery) = (rebound.resistance.0, rebound.recovery.0);
+    [
+        Contribution::rectangular("resistance of the pack, as stated", rebound.tolerance * resistance)
+            .through(-on_current.0, Unit::Ohm)
+            .estimated(resistance),
+        Contribution::rectangular("recovery of the pack, as stated", rebound.tolerance * recovery)
+            .through(-1.0, Unit::Volt)
+            .estimated(recovery),
+    ]
 }
 
 /// What a margin below zero means.
@@ -100,8 +117,12 @@ mod tests {
     }
 
     fn with(recovery: f64) -> Profile {
-        let rebound =
-            Rebound { resistance: Ohms(0.15), recovery: Volts(recovery), hold: Some(Duration::from_secs(2)) };
+        let rebound = Rebound {
+            resistance: Ohms(0.15),
+            recovery: Volts(recovery),
+            tolerance: 0.0,
+            hold: Some(Duration::from_secs(2)),
+        };
         Profile { pack: Pack { rebound: Some(rebound), storage: None }, ..profile() }
     }
 
@@ -122,6 +143,36 @@ mod tests {
         // The allowance for noise widens the hysteresis by less than a millivolt.
         assert!((margin(&analysis).value - (0.4 - 6.01 / 55.0 * 0.15 - 0.2)).abs() < 1e-3);
         assert_eq!(codes(&analysis), []);
+    }
+
+    /// By hand: 0.4 V less 0.1 A x 150 mohm less 0.2 V leave 185 mV. 30 % of 150 mohm are 45 mohm, over sqrt 3 25.981 mohm,
+    /// times 0.1 A 2.5981 mV; 30 % of 0.2 V are 60 mV, over sqrt 3 34.641 mV; with 1 mV of the hysteresis and 2 mA of the
+    /// on current times 150 mohm, 0.3 mV: together 34.754 mV.
+    #[test]
+    fn a_tolerance_of_resistance_and_recovery_counts_as_two_rectangles() {
+        let quantity =
+            |name, value, spread| Quantity::new(name, value, vec![Contribution::normal("by itself", spread)]);
+        let hysteresis = quantity(QuantityName::Hysteresis, 0.4, 1e-3);
+        let on_current = quantity(QuantityName::OnCurrent, 0.1, 2e-3);
+        let exact = with(0.2).pack.rebound.expect("a rebound");
+        let margin = rebound_margin(&hysteresis, &on_current, &Rebound { tolerance: 0.3, ..exact });
+        assert!((margin.value - 0.185).abs() < 1e-12, "{margin:?}");
+        let line = |word: &str| {
+            margin.contributions.iter().find(|line| line.source.starts_with(word)).expect("a line")
+        };
+        for (word, sensitivity, spread, contribution) in
+            [("resistance", -0.1, 25.981e-3, 2.5981e-3), ("recovery", -1.0, 34.641e-3, 34.641e-3)]
+        {
+            let line = line(word);
+            assert!((line.sensitivity() - sensitivity).abs() < 1e-12, "{line:?}");
+            assert!((line.input_uncertainty() - spread).abs() < 1e-6, "{line:?}");
+            assert!((line.standard_uncertainty - contribution).abs() < 1e-6, "{line:?}");
+        }
+        assert!((margin.standard_uncertainty - 34.754e-3).abs() < 1e-6, "{margin:?}");
+
+        let margin = rebound_margin(&hysteresis, &on_current, &exact);
+        assert_eq!(margin.contributions.len(), 2, "exact figures have no line: {margin:?}");
+        assert!((margin.standard_uncertainty - 1.0440e-3).abs() < 1e-7, "1 mV and 0.3 mV: {margin:?}");
     }
 
     /// A voltmeter off by 1 % moves both thresholds by 60 mV and the margin by 4 mV.

@@ -69,7 +69,7 @@ mod tests {
     /// 109 mA through 150 mohm and 200 mV: 216.4 mV, by Ohm's law.
     #[test]
     fn a_battery_rises_by_its_resistance_and_its_recovery() {
-        let rebound = Rebound { resistance: Ohms(0.15), recovery: Volts(0.2), hold: None };
+        let rebound = Rebound { resistance: Ohms(0.15), recovery: Volts(0.2), tolerance: 0.0, hold: None };
         assert!((rebound.rise(Amps(6.0 / 55.0)) - Volts(0.216_363_6)).abs() < Volts(1e-6));
         assert_eq!(trial(Some(rebound)), None, "worked out, not tried");
     }

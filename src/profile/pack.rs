@@ -27,6 +27,8 @@ pub struct Rebound {
     pub resistance: Ohms,
     /// Rises by this afterwards, in minutes to hours.
     pub recovery: Volts,
+    /// How far both may be off, as a fraction of one; zero where the profile does not tell, and then they count as exact.
+    pub tolerance: f64,
     /// How long the board is held at the risen voltage, where it is tried out.
     pub hold: Option<Duration>,
 }
@@ -55,6 +57,7 @@ impl Rebound {
 pub(super) struct PackDraft {
     resistance: Option<At<Ohms>>,
     recovery: Option<At<Volts>>,
+    rebound_tolerance: Option<At<f64>>,
     rebound_hold: Option<At<Duration>>,
     remaining: Option<At<Coulombs>>,
     capacity: Option<At<Coulombs>>,
@@ -76,6 +79,7 @@ pub(super) fn read(root: &mut Table<'_, '_>) -> Option<PackDraft> {
     let draft = PackDraft {
         resistance: table.optional_quantity("resistance"),
         recovery: table.optional_quantity("recovery"),
+        rebound_tolerance: table.optional_fraction("rebound_tolerance"),
         rebound_hold: table.optional_duration("rebound_hold"),
         remaining: table.optional_quantity("remaining_capacity"),
         capacity: table.optional_quantity("capacity"),
@@ -88,6 +92,7 @@ pub(super) fn read(root: &mut Table<'_, '_>) -> Option<PackDraft> {
     for (key, other) in [
         ("resistance", "recovery"),
         ("recovery", "resistance"),
+        ("rebound_tolerance", "resistance"),
         ("rebound_hold", "resistance"),
         ("self_discharge", "capacity"),
         ("capacity", "self_discharge"),
@@ -127,7 +132,7 @@ impl PackDraft {
         {
             table.problem(remaining, &format!("more than {capacity}"));
         }
-        for at in [&self.self_discharge, &self.tolerance].into_iter().flatten() {
+        for at in [&self.self_discharge, &self.tolerance, &self.rebound_tolerance].into_iter().flatten() {
             if !(0.0..1.0).contains(&at.value) {
                 table.problem(at, "wanted 0 % to less than 100 %");
             }
@@ -144,6 +149,7 @@ impl PackDraft {
             rebound: rebound.map(|(resistance, recovery)| Rebound {
                 resistance: resistance.value,
                 recovery: recovery.value,
+                tolerance: self.rebound_tolerance.as_ref().map_or(0.0, |at| at.value),
                 hold: self.rebound_hold.as_ref().map(|at| at.value),
             }),
             storage: self.remaining.as_ref().map(|remaining| Storage {

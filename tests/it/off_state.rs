@@ -227,8 +227,12 @@ fn a_narrow_hysteresis_restarts_when_lifted_and_the_margin_says_why() {
 #[test]
 fn nothing_is_lifted_above_the_maximum() {
     let mut profile = profile(0);
-    let rebound =
-        Rebound { resistance: Ohms(1.0), recovery: Volts(5.0), hold: Some(Duration::from_millis(100)) };
+    let rebound = Rebound {
+        resistance: Ohms(1.0),
+        recovery: Volts(5.0),
+        tolerance: 0.0,
+        hold: Some(Duration::from_millis(100)),
+    };
     profile.pack = Pack { rebound: Some(rebound), storage: None };
     let run = run(&profile, Condition::Good, 3);
     let highest = run.trace.samples.iter().map(|sample| sample.set.0).fold(0.0, f64::max);
