@@ -38,6 +38,7 @@ impl Sample {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::statistics::distribution::{Distribution, StudentT};
     use serde_json::Value;
 
     /// NIST Statistical Reference Datasets, univariate summary statistics. Compared are the digits that survive the
@@ -70,6 +71,38 @@ mod tests {
                 let miss = (found / wanted - 1.0).abs();
                 assert!(miss < 10.0_f64.powi(-digits), "{} {label}: {found} against {wanted}", file["id"]);
             }
+        }
+    }
+
+    /// NIST/SEMATECH e-Handbook, 1.3.5.2: the confidence limits of the mean of 195 values. The handbook's own output
+    /// (printed digits from memory) is of single precision, so six digits of it are compared; the figures worked out
+    /// anew with scipy from the same data agree to twelve, as many as data of seven digits leave in a double.
+    #[test]
+    fn the_mean_and_its_interval_are_those_of_the_handbook() {
+        let text = include_str!("../../tests/data/nist/nist_zarr13_mean_ci.json");
+        let file: Value = serde_json::from_str(text).expect("reference data");
+        let values: Vec<f64> = serde_json::from_value(file["data"]["y"].clone()).expect("a list");
+        let sample = Sample::of(&values).expect("a sample");
+        let student = StudentT::new(sample.count as f64 - 1.0).expect("t");
+        let factor = student.quantile(0.975).expect("a quantile");
+        let half_width = factor * sample.mean_uncertainty().expect("many values");
+        let deviation = sample.standard_deviation.expect("many values");
+        for (label, found) in [
+            ("n", sample.count as f64),
+            ("mean", sample.mean),
+            ("sd", deviation),
+            ("t_crit", factor),
+            ("ci_lo", sample.mean - half_width),
+            ("ci_hi", sample.mean + half_width),
+        ] {
+            let published = file["published"].as_array().expect("a list");
+            let entry = published.iter().find(|entry| entry["label"] == label).expect("the label");
+            let exact = entry["recomputed"].as_f64().expect("a number");
+            let printed: f64 = entry["printed"].as_str().expect("text").parse().expect("a number");
+            assert!((found / exact - 1.0).abs() < 1e-12, "{label}: {found} against {exact}");
+            // Single precision holds six digits; t is printed with five.
+            let digits = if label == "t_crit" { 4e-5 } else { 1e-6 };
+            assert!((found / printed - 1.0).abs() < digits, "{label}: {found} against {printed}");
         }
     }
 
