@@ -15,7 +15,9 @@ fn table(judged: &Judged) -> String {
     let heading = ["influence", "estimate", "u(x)", "distribution", "nu", "c", "|c| u(x)", "share"];
     let mut rows = vec![heading.map(str::to_owned).to_vec()];
     let unit = judged.quantity.unit();
-    rows.extend(budget(&judged.quantity).iter().map(|line| row(line, unit)));
+    // What cancels or does not act contributes exactly nothing and is no news; the record and the JSON keep it.
+    let lines = budget(&judged.quantity);
+    rows.extend(lines.iter().filter(|line| line.contribution != 0.0).map(|line| row(line, unit)));
     rows.push(total(judged));
     format!("{}\n{}\n{}\n", title(judged), aligned(&rows).join("\n"), conclusion(judged))
 }
@@ -89,4 +91,25 @@ fn sensitivity(line: &BudgetLine, unit: Unit) -> String {
         return format!("{:.4}", line.sensitivity).trim_end_matches('0').trim_end_matches('.').to_owned();
     }
     format!("{}/{}", prefixed(line.sensitivity, unit), line.unit.symbol())
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::analysis::{Contribution, Quantity};
+    use crate::profile::QuantityName;
+
+    #[test]
+    fn what_contributes_nothing_has_no_row() {
+        let lines = vec![
+            Contribution::rectangular("bracket", 1e-3),
+            Contribution::normal("noise at the detector", 0.0),
+            Contribution::rectangular("voltmeter offset", 5e-5).through(0.0, Unit::Volt),
+        ];
+        let quantity = Quantity::new(QuantityName::Hysteresis, 0.4, lines);
+        assert_eq!(budget(&quantity).len(), 3, "all are kept");
+        let text = table(&Judged::new(quantity, None));
+        assert!(text.contains("bracket") && text.contains("together"), "{text}");
+        assert!(!text.contains("noise") && !text.contains("offset"), "{text}");
+    }
 }
