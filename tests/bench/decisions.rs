@@ -65,7 +65,9 @@ fn main() -> Result<ExitCode, Box<dyn Error>> {
     let each = (tested.len() / BUDGETS).max(1);
     let spreads: Vec<&Spread> =
         tested.iter().step_by(each).filter_map(|board| board.spread.as_ref()).collect();
-    println!("{boards} boards, trip {} V ± {} V, limits {LIMITS:?} V", PRODUCTION.0, PRODUCTION.1);
+    let judged = tested.len();
+    println!("{boards} boards, seeds 0 to {}, {judged} of them judged", boards.saturating_sub(1));
+    println!("trip {} V ± {} V, limits {LIMITS:?} V", PRODUCTION.0, PRODUCTION.1);
     println!("U of a board mostly {:.3} mV\n", quantile(&expanded, 0.5) * 1e3);
     println!("rule             wrong decision     predicted      seen   standard deviations apart");
     let mut farthest = 0.0_f64;
@@ -77,7 +79,7 @@ fn main() -> Result<ExitCode, Box<dyn Error>> {
         for (name, risk, seen) in
             [("false acceptance", consumer, wrongly_in), ("false rejection", producer, wrongly_out)]
         {
-            let expected = risk * boards as f64;
+            let expected = risk * judged as f64;
             // A count of nothing expected still may be one.
             let apart = (seen as f64 - expected) / expected.max(1.0).sqrt();
             println!("{rule:16} {name:16} {expected:11.1} {seen:9} {apart:+8.2}");
@@ -132,7 +134,11 @@ fn test(boards: u64) -> Result<Vec<Tested>, Box<dyn Error>> {
     };
     let tested: Vec<Tested> = thread::scope(|scope| {
         let workers: Vec<_> = (0..cores).map(|core| scope.spawn(move || share(core))).collect();
-        workers.into_iter().flat_map(|worker| worker.join().unwrap_or_default()).collect()
+        // A worker that panicked takes the study with it: boards that are missing would look like good decisions.
+        let joined = |worker: thread::ScopedJoinHandle<'_, Vec<Tested>>| {
+            worker.join().unwrap_or_else(|panic| std::panic::resume_unwind(panic))
+        };
+        workers.into_iter().flat_map(joined).collect()
     });
     Ok(tested)
 }
