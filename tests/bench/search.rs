@@ -9,6 +9,7 @@
 
 mod figures;
 mod optimum;
+mod probe_cost;
 mod tally;
 
 use ebbmark::analysis::{Analysis, analyse};
@@ -25,6 +26,7 @@ use ebbmark::trace::Trace;
 use ebbmark::units::Volts;
 use figures::{conclude, quantile};
 use optimum::optimum;
+use probe_cost::probe_cost;
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 use std::error::Error;
@@ -37,7 +39,7 @@ use tally::Tally;
 const FEWER: f64 = 15.0;
 const SOONER: f64 = 10.0;
 
-/// Set-points of a search against the least there can be, without and with confirmation.
+/// Set-points of a search, and its time, against the least there can be; set-points with confirmation.
 const NEAR_OPTIMUM: (f64, f64) = (1.03, 1.15);
 
 /// Boards in virtual time: searched, and put through a staircase as well.
@@ -139,8 +141,8 @@ fn against_the_optimum(profile: &Profile) -> bool {
     let clock = Clock::real();
     let runs: Vec<Run> = (0..SEARCHED).map(|seed| virtually(profile, &board(profile, seed))).collect();
     let each = clock.now().as_secs_f64() * 1e3 / SEARCHED as f64;
-    // What a probe takes in virtual time: to set, to settle, a quarter more than the delay and 1 ms, to read.
-    let least = optimum(CELLS, CELLS, 0.037 + 0.00725, 0.037 + 0.026);
+    let (down, up) = probe_cost(&board(profile, 0).ability(), profile);
+    let least = optimum(CELLS, CELLS, down, up);
     let narrowing = mean(&runs, |run| f64::from(run.tally.narrowing));
     let confirmed = mean(&runs, |run| f64::from(run.tally.narrowing + run.tally.confirming));
     let seconds = mean(&runs, |run| run.tally.narrowing_s);
@@ -154,7 +156,9 @@ fn against_the_optimum(profile: &Profile) -> bool {
     line("seconds to narrow", seconds, least.cost);
     let worst = quantile(&runs.iter().map(|run| f64::from(run.tally.narrowing)).collect::<Vec<_>>(), 1.0);
     println!("most set-points to narrow a board's windows: {worst:.0}");
-    narrowing / least.probes <= NEAR_OPTIMUM.0 && confirmed / least.probes <= NEAR_OPTIMUM.1
+    narrowing / least.probes <= NEAR_OPTIMUM.0
+        && seconds / least.cost <= NEAR_OPTIMUM.0
+        && confirmed / least.probes <= NEAR_OPTIMUM.1
 }
 
 fn in_virtual_time(search: &Profile, staircase: &Profile) -> bool {

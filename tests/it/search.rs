@@ -4,6 +4,8 @@
 
 #[path = "../bench/optimum.rs"]
 mod optimum;
+#[path = "../bench/probe_cost.rs"]
+mod probe_cost;
 #[path = "../bench/tally.rs"]
 mod tally;
 
@@ -17,6 +19,7 @@ use ebbmark::trace::Trace;
 use ebbmark::units::Volts;
 use ebbmark::verdict::{Outcome, Verdict, judge};
 use optimum::optimum;
+use probe_cost::probe_cost;
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 use std::time::Duration;
@@ -68,9 +71,9 @@ fn a_run_takes_hardly_more_set_points_than_the_least_there_can_be() {
         confirmed += f64::from(tally.narrowing + tally.confirming) / SEEDS as f64;
         seconds += tally.narrowing_s / SEEDS as f64;
     }
-    // 240 mV and 320 mV in cells of 2 mV. In virtual time a probe takes 2 ms to set, 15 ms to settle, a quarter more than
-    // the delay and 1 ms, and 20 ms to read.
-    let least = optimum(120, 160, 0.037 + 0.00725, 0.037 + 0.026);
+    let (down, up) = probe_cost(&anywhere_in_the_limits(&profile, 0).ability(), &profile);
+    // 240 mV and 320 mV in cells of 2 mV.
+    let least = optimum(120, 160, down, up);
     println!(
         "{narrowing:.2} set-points to narrow, {confirmed:.2} with confirmation, {:.2} at least: {:.3}, {:.3}; {seconds:.3} s, \
          {:.3} s at least: {:.3}",
