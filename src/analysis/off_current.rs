@@ -46,9 +46,13 @@ pub(super) fn off_current(
             let finding = outside_finding(&quantity, &limit, at, (!attributed).then_some(&on_range));
             return (Some(quantity), finding.into_iter().collect());
         }
-        coarse = coarse.or_else(|| Some(coarse_finding(&quantity, expanded, range)));
+        coarse = coarse.or_else(|| Some((range, coarse_finding(&quantity, expanded, range))));
     }
-    (None, readings.moves().or(coarse).or_else(|| readings.overload_finding()).into_iter().collect())
+    // On a range too coarse for the limits, what seems to move is its own noise.
+    let is_noise = coarse.as_ref().is_some_and(|(range, _)| readings.moves_on_no_smaller_than(*range));
+    let moves = if is_noise { None } else { readings.moves() };
+    let coarse = coarse.map(|(_, finding)| finding);
+    (None, moves.or(coarse).or_else(|| readings.overload_finding()).into_iter().collect())
 }
 
 /// All settled readings of the off current that count, on whatever range.
@@ -70,8 +74,8 @@ pub(super) fn off_current_at(course: &Course<'_>, below: Volts, at: Volts) -> Op
 struct Readings {
     settled: Vec<Settled>,
     overloaded: Option<(Volts, Option<Amps>)>,
-    /// Where the last reading still moved.
-    moving: Option<Volts>,
+    /// Where, and on which range, the last reading still moved.
+    moving: Option<(Volts, Option<Amps>)>,
 }
 
 impl Readings {
@@ -106,7 +110,7 @@ impl Readings {
             self.overloaded = Some((last.set, last.range));
         } else if course.states[samples.end - 1] == SwitchState::Off {
             let standing = Settled::standing(course, samples);
-            self.moving = standing.is_none().then_some(last.set).or(self.moving);
+            self.moving = standing.is_none().then_some((last.set, last.range)).or(self.moving);
             self.settled.extend(standing);
         }
     }
@@ -124,9 +128,15 @@ impl Readings {
         self.settled.iter().map(|settled| settled.volts).max_by(|a, b| a.0.total_cmp(&b.0))
     }
 
+    /// Whether no smaller range than this has shown a current that moves.
+    fn moves_on_no_smaller_than(&self, range: Option<Amps>) -> bool {
+        let scale = |range: Option<Amps>| range.map_or(f64::INFINITY, |range| range.0);
+        self.moving.is_none_or(|(_, moving)| scale(moving) >= scale(range))
+    }
+
     /// Where no reading stood.
     fn moves(&self) -> Option<Finding> {
-        let set = self.moving?;
+        let (set, _) = self.moving?;
         Some(Finding {
             code: FindingCode::OffCurrentMoves,
             about: About::Bench,

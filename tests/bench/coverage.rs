@@ -156,10 +156,11 @@ fn board(profile: &Profile, vary: Vary, seed: u64, table: &mut Table) {
     let truth = bench.world().truth();
     for judged in judge(&analyse(&trace, profile), profile, &trace.ending).judged {
         let name = judged.quantity.name;
-        let truth = if name == QuantityName::StorageTime {
-            stored(&truth, profile, seed)
-        } else {
-            truth.value(name, profile)
+        let truth = match name {
+            QuantityName::StorageTime => stored(&truth, profile, seed),
+            // The off current of a good board rises with the voltage.
+            QuantityName::DeepCurrent => Some(truth.off_current(profile.supply.floor).0),
+            _ => truth.value(name, profile),
         };
         let Some(truth) = truth else { continue };
         let (error, expanded) = (judged.quantity.value - truth, judged.expanded_uncertainty());

@@ -129,7 +129,7 @@ fn at_rest(estimates: &Estimates) -> Vec<Vec<String>> {
             board.quantity.title().to_owned(),
             if board.delay_included { format!("{value}, delay included") } else { value },
             board.delay.map_or_else(
-                || "not told".to_owned(),
+                || if lacks_delay(estimates, board) { "not told" } else { "" }.to_owned(),
                 |delay| with_uncertainty(delay.delay_s, delay.expanded_uncertainty_s, Unit::Second),
             ),
         ]

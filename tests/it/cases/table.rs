@@ -83,15 +83,9 @@ impl Case {
 
     /// Tests its board.
     pub(super) fn run(&self, seed: u64) -> Run {
-        self.run_with(seed, |_| {})
-    }
-
-    /// Tests its board with something else about it.
-    pub(super) fn run_with(&self, seed: u64, change: impl Fn(&mut Setup)) -> Run {
         let profile = relay::profile(self.limits);
         let mut setup = relay::in_order(seed).under(self.conditions, &profile);
         (self.figures)(&mut setup);
-        change(&mut setup);
         let mut ability = setup.ability();
         (self.bench)(&mut ability);
         run_able(&profile, &setup, ability)
