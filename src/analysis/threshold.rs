@@ -23,7 +23,7 @@ const SIMILAR: f64 = 1.5;
 const LEAD_TOLERANCE: f64 = 0.2;
 
 /// Share of boards that are slower than their design and change at rest just there.
-const RARELY_SLOW: f64 = 1e-4;
+const RARELY_SLOW: f64 = 1e-3;
 
 /// Names of lines in the budget.
 pub(super) const SCATTER: &str = "scatter between passes";

@@ -62,9 +62,9 @@ mod tests {
                 now = next;
                 assert!(contact.change_if_due(now), "seed {seed}");
             }
-            // The means of the two draws: 27.5 ms in every 377.5 ms.
+            // The means of the two draws: 27.5 ms in every 202.5 ms.
             assert!(
-                (bad / now - 27.5 / 377.5).abs() < 0.01,
+                (bad / now - 27.5 / 202.5).abs() < 0.01,
                 "seed {seed}: bad for {} of the time",
                 bad / now
             );

@@ -109,7 +109,7 @@ fn earlier_boards_save_set_points_and_a_board_unlike_them_is_measured_as_well() 
         for ((name, truth), outside) in truths.into_iter().zip(&mut outside) {
             let (found, uncertainty) = measured(&run, name);
             let times = (found - truth).abs() / uncertainty;
-            assert!(times <= 2.0, "seed {seed}: {} {found}, in truth {truth}", name.key());
+            assert!(times <= 2.0, "seed {seed}: {} {found} ± {uncertainty}, in truth {truth}", name.key());
             outside.extend((times > 1.0).then_some(seed));
         }
     }
