@@ -80,11 +80,16 @@ async fn staircase(desk: &Desk, plan: &Plan) -> Result<(), Stop> {
     if plan.latched == re_enable.is_some() {
         return Ok(());
     }
-    let trip = narrow_trip(desk, plan, trip).await?;
+    let mut odd = false;
+    let trip = narrow_trip(desk, plan, trip, &mut odd).await?;
     let re_enable = match re_enable {
-        Some(survey) => Some(narrow_re_enable(desk, plan, trip, survey).await?),
+        Some(survey) => Some(narrow_re_enable(desk, plan, trip, survey, &mut odd).await?),
         None => None,
     };
+    if odd {
+        arm_on(desk, plan).await?;
+        listen_for_contact(desk, plan).await?;
+    }
     measure_more(desk, plan, trip, re_enable).await
 }
 
@@ -97,8 +102,9 @@ async fn measure_more(desk: &Desk, plan: &Plan, trip: Edge, re_enable: Option<Ed
     sweep_deep(desk, plan, trip).await
 }
 
-/// Small steps through the bracket, then a hold just above it; a board that trips there is slow and gets more time.
-async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Stop> {
+/// Small steps through the bracket, then a hold just above it; a board that trips there is slow and gets more time. Sets `odd`
+/// where the board did not do again what it had done.
+async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge, odd: &mut bool) -> Result<Edge, Stop> {
     let step = plan.fine_step.unwrap_or(plan.survey_step);
     let mut pace = plan.down;
     let mut edge = survey;
@@ -112,13 +118,17 @@ async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Sto
             let to = (survey.changed - plan.survey_step).max(plan.floor);
             match walk_down(desk, plan, from, to, step, pace).await? {
                 Some(found) => edge = found,
-                None => return Ok(edge),
+                None => {
+                    *odd = true;
+                    return Ok(edge);
+                }
             }
         }
         desk.enter(Stage::ConfirmTrip, left(plan, Stage::ConfirmTrip));
         match confirm_trip(desk, plan, edge, pace).await? {
             Confirmed::Stands => break,
             Confirmed::Moved { after } => {
+                *odd = true;
                 from = approach.after_move(plan, edge, pace, after);
                 (known, pace) = (false, pace.slower(after));
             }
@@ -128,7 +138,13 @@ async fn narrow_trip(desk: &Desk, plan: &Plan, survey: Edge) -> Result<Edge, Sto
 }
 
 /// The mirror image of [`narrow_trip`]; the board is brought below its trip before each attempt.
-async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) -> Result<Edge, Stop> {
+async fn narrow_re_enable(
+    desk: &Desk,
+    plan: &Plan,
+    trip: Edge,
+    survey: Edge,
+    odd: &mut bool,
+) -> Result<Edge, Stop> {
     let step = plan.fine_step.unwrap_or(plan.survey_step);
     let below_trip = (trip.changed - plan.survey_step).max(plan.floor);
     let mut pace = plan.up;
@@ -143,13 +159,17 @@ async fn narrow_re_enable(desk: &Desk, plan: &Plan, trip: Edge, survey: Edge) ->
             let to = (survey.changed + plan.survey_step).min(plan.start);
             match walk_up(desk, plan, from, to, step, pace).await? {
                 Some(found) => edge = found,
-                None => return Ok(edge),
+                None => {
+                    *odd = true;
+                    return Ok(edge);
+                }
             }
         }
         desk.enter(Stage::ConfirmReEnable, left(plan, Stage::ConfirmReEnable));
         match confirm_re_enable(desk, plan, edge, below_trip, pace).await? {
             Confirmed::Stands => break,
             Confirmed::Moved { after } => {
+                *odd = true;
                 from = approach.after_move(plan, edge, pace, after);
                 (known, pace) = (false, pace.slower(after));
             }

@@ -21,13 +21,15 @@ const FAIL: &[Outcome] = &[Outcome::Fail];
 const INVALID: &[Outcome] = &[Outcome::Invalid];
 
 /// Conditions that are not called by their name on every board yet, and what is said instead. Strike off what is right.
-const NOT_YET: [(Condition, &str); 4] = [
-    (Condition::IntermittentContact, "often no reading falls into a burst, and chatter or nothing is told"),
-    (Condition::StuckRange, "the voltage that its resistance drops is laid to a contact"),
-    (Condition::LowCurrentLimit, "the voltage given way is laid to the resistance of the source"),
+const NOT_YET: [(Condition, &str); 3] = [
+    (
+        Condition::IntermittentContact,
+        "each time it closes, the load's capacitor meets the supply's limit, which is told first on some boards",
+    ),
+    (Condition::StuckRange, "on one board in 25 the voltage that its resistance drops is laid to hum"),
     (
         Condition::LargeLoadCapacitor,
-        "as the low current limit; a few boards start with it all the same and pass",
+        "the voltage given way is laid to a contact on a third of the boards; a few start all the same and pass",
     ),
 ];
 
