@@ -75,6 +75,8 @@ pub enum FindingCode {
     Chatter,
     /// Source resistance times load current is more than the hysteresis.
     SourceResistance,
+    /// At a resting set-point the board took longer to change than its design allows.
+    SlowerThanDesign,
     /// A step was shorter than the board's delay, so the edge is smeared.
     DwellShorterThanDelay,
     /// More current than the load can draw at the pre-check voltage.

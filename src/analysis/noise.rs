@@ -65,7 +65,7 @@ pub(super) struct Noise {
 const REACH_OF_LEVELS: i32 = 3;
 /// Share of detectors that are unlike what is known of them, the standard deviation of their levels as a factor, and at how
 /// many parts of that, how far below and above the known level, they are looked at.
-const UNLIKE: Unlike = Unlike { share: 0.002, factor: 4.0, part: 0.3, from: -6, to: 12 };
+const UNLIKE: Unlike = Unlike { share: 0.1, factor: 4.0, part: 0.3, from: -6, to: 12 };
 /// Noise below this share of the voltage is none.
 const LEAST_LEVEL: f64 = 1e-7;
 /// Places looked at for the threshold at each level.

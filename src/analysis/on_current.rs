@@ -25,7 +25,10 @@ pub(super) fn on_current(course: &Course<'_>, trip: &Threshold) -> Option<Quanti
     }
     let settled = settled(course, read)?;
     let way = Way::of(course, &settled, trip.value);
-    let mut lines = vec![Contribution::rectangular("distance to the trip", way.in_doubt)];
+    let mut lines = vec![
+        Contribution::rectangular("distance to the trip", way.in_doubt),
+        Contribution::normal("place of the trip", way.per_volt * trip.bracket_uncertainty()),
+    ];
     if let Some(scatter) = settled.scatter() {
         let scatter = scatter * way.scatter;
         lines.push(Contribution::scatter("scatter of the readings", scatter, settled.count as f64 - 1.0));
@@ -40,6 +43,8 @@ struct Way {
     change: f64,
     /// How far that may be off, either way.
     in_doubt: f64,
+    /// What the current changes by for each volt, S.
+    per_volt: f64,
     /// Scatter of the result over that of the reading.
     scatter: f64,
 }
@@ -62,12 +67,14 @@ impl Way {
                 Self {
                     change,
                     in_doubt: change * bend,
+                    per_volt: ((higher.amps - near.amps).0 / apart.0).abs(),
                     scatter: ((1.0 - share).powi(2) + share.powi(2) * fewer).sqrt(),
                 }
             }
             None => {
                 let half_way = near.amps.0 * (distance / near.volts) / 2.0;
-                Self { change: half_way, in_doubt: half_way, scatter: 1.0 }
+                let per_volt = near.amps.0 / near.volts.0;
+                Self { change: half_way, in_doubt: half_way, per_volt, scatter: 1.0 }
             }
         }
     }

@@ -69,7 +69,7 @@ fn place(code: FindingCode) -> Place {
         OffPathResistive | OffPathConstant | OffCurrentBends => Place::OffPath,
         TripHigh | TripLow | ReEnableHigh | ReEnableLow | HysteresisNarrow | HysteresisWide
         | OnResistanceHigh | OnResistanceLow => Place::Figure,
-        DwellShorterThanDelay | DetectorNoise => Place::Slow,
+        SlowerThanDesign | DwellShorterThanDelay | DetectorNoise => Place::Slow,
         DetectDelayLong | DetectDelayShort | ReleaseDelayLong | ReleaseDelayShort => Place::Timing,
         RestartsAfterRebound | UnwantedInBand => Place::Trial,
         RangeNotAdequate | OffCurrentMoves | DelayNotResolved | DelaysDiffer | DeepFloorNotReached
@@ -147,8 +147,8 @@ mod tests {
         assert_eq!(ranked(&[Chatter, ConductsWhenDeep]), [ConductsWhenDeep, Chatter]);
         assert_eq!(ranked(&[BenchFault, OutputMayBeOn]), [OutputMayBeOn, BenchFault]);
         assert_eq!(
-            ranked(&[DetectDelayLong, DwellShorterThanDelay]),
-            [DwellShorterThanDelay, DetectDelayLong],
+            ranked(&[DetectDelayLong, SlowerThanDesign]),
+            [SlowerThanDesign, DetectDelayLong],
             "that it is slow comes before by how much"
         );
     }
@@ -172,7 +172,7 @@ mod tests {
     fn two_that_do_not_explain_each_other_are_both_kept() {
         assert_eq!(ranked(&[OffCurrentHigh, WrongDetectorOption]), [WrongDetectorOption, OffCurrentHigh]);
         assert_eq!(ranked(&[TripHigh, OffCurrentHigh]), [OffCurrentHigh, TripHigh]);
-        assert_eq!(ranked(&[DwellShorterThanDelay, OffCurrentHigh]), [OffCurrentHigh, DwellShorterThanDelay]);
+        assert_eq!(ranked(&[SlowerThanDesign, OffCurrentHigh]), [OffCurrentHigh, SlowerThanDesign]);
     }
 
     #[test]

@@ -72,22 +72,28 @@ impl Spoilt {
 fn explains(code: FindingCode) -> &'static [FindingCode] {
     use FindingCode::{
         BackFeed, Chatter, DetectorNoise, DwellShorterThanDelay, NeitherOnNorOff, NeverOn, NeverReEnables,
-        NeverTrips, NoCurrent, NoLoad, SourceResistance, SupplyNotArrived,
+        NeverTrips, NoCurrent, NoLoad, SlowerThanDesign, SourceResistance, SupplyNotArrived,
     };
     match code {
         FindingCode::MeterFuse => &[SupplyNotArrived, NeverOn, NoLoad, NoCurrent],
         FindingCode::MeterReversed => &[BackFeed, NeitherOnNorOff],
         FindingCode::SupplyDisagrees => &[SupplyNotArrived, SourceResistance],
         FindingCode::CurrentLimit => &[NeverOn, Chatter, NeitherOnNorOff, NoCurrent, DetectorNoise],
-        FindingCode::Contact => {
-            &[Chatter, NeitherOnNorOff, DwellShorterThanDelay, DetectorNoise, SourceResistance]
-        }
+        FindingCode::Contact => &[
+            Chatter,
+            NeitherOnNorOff,
+            SlowerThanDesign,
+            DwellShorterThanDelay,
+            DetectorNoise,
+            SourceResistance,
+        ],
         FindingCode::RangeNotAdequate => &[
             Chatter,
             NeitherOnNorOff,
             NeverOn,
             NeverTrips,
             NeverReEnables,
+            SlowerThanDesign,
             DwellShorterThanDelay,
             DetectorNoise,
         ],

@@ -19,7 +19,7 @@ pub(super) fn delays(course: &Course<'_>, searches: [(Direction, &Search); 2]) -
         let declared = text(direction.delay(&course.profile.timing));
         if let Some(slow) = search.slow {
             findings.push(Finding {
-                code: FindingCode::DwellShorterThanDelay,
+                code: FindingCode::SlowerThanDesign,
                 about: About::Board,
                 text: format!(
                     "slow detector at the {edge}, or noise there: at a resting set-point it took between {} and {} to switch, the design \

@@ -158,8 +158,6 @@ fn board(profile: &Profile, vary: Vary, seed: u64, table: &mut Table) {
         let name = judged.quantity.name;
         let truth = match name {
             QuantityName::StorageTime => stored(&truth, profile, seed),
-            // The off current of a good board rises with the voltage.
-            QuantityName::DeepCurrent => Some(truth.off_current(profile.supply.floor).0),
             _ => truth.value(name, profile),
         };
         let Some(truth) = truth else { continue };

@@ -48,7 +48,7 @@ fn expected(condition: Condition, profile: &str) -> Vec<Way> {
         // Inside the limits of the off current, and not what the paths draw.
         Condition::FluxFilm | Condition::UnstatedVoltmeter => one(PASS, Is::OffPathResistive),
         Condition::NoSink => one(PASS, Is::StillCharged),
-        Condition::SlowDetector | Condition::SlowRelease => one(PASS, Is::DwellShorterThanDelay),
+        Condition::SlowDetector | Condition::SlowRelease => one(PASS, Is::SlowerThanDesign),
         // This board's re-enable is not seen while its load stays away: the run says so and judges nothing.
         Condition::LoadLockout if profile == "mast-beacon" => one(INVALID, Is::LoadStopped),
         Condition::LoadLockout => one(PASS, Is::LoadStopped),
@@ -110,7 +110,7 @@ fn wrong(name: &str, profile: &Profile, condition: Condition) -> Vec<String> {
         if !fits(first) {
             let told =
                 format!("{name} {condition}, seed {seed}: {} {first:?}, wanted {ways:?}", verdict.outcome);
-            let remark = first == Some(FindingCode::DwellShorterThanDelay) && fits(codes.next());
+            let remark = first == Some(FindingCode::SlowerThanDesign) && fits(codes.next());
             if remark { remarked.push(told) } else { wrong.push(told) }
         }
     }

@@ -30,7 +30,7 @@ fn limited(most: f64) -> Profile {
 /// here.
 fn codes(run: &Run) -> Vec<FindingCode> {
     let codes = run.verdict.findings.iter().map(|finding| finding.code);
-    codes.filter(|code| *code != FindingCode::DwellShorterThanDelay).collect()
+    codes.filter(|code| *code != FindingCode::SlowerThanDesign).collect()
 }
 
 fn assert_safe(run: &Run, profile: &Profile, what: &str) {

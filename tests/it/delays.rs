@@ -62,7 +62,7 @@ fn good_boards_have_their_delays_inside_the_stated_bounds_and_pass() {
         assert_inside(&run, &what);
         assert_safe(&run, &profile, &what);
         // One board in some hundred is noisier than most and changes where it was held, as a slow one would.
-        let other = run.verdict.findings.iter().find(|it| it.code != FindingCode::DwellShorterThanDelay);
+        let other = run.verdict.findings.iter().find(|it| it.code != FindingCode::SlowerThanDesign);
         assert_eq!(other, None, "{what}");
         remarked.extend((!run.verdict.findings.is_empty()).then_some(seed));
         assert!(
@@ -194,7 +194,7 @@ fn a_bench_that_cannot_judge_a_board_states_no_delay() {
             assert_eq!(run.trace.ending.output, OutputState::Off);
         }
         let slow = run_setup(&profile, &Setup::new(&profile, Condition::SlowDetector, seed));
-        let named = slow.verdict.findings.iter().any(|f| f.code == FindingCode::DwellShorterThanDelay);
+        let named = slow.verdict.findings.iter().any(|f| f.code == FindingCode::SlowerThanDesign);
         assert!(named, "seed {seed}: {:?}", slow.verdict.findings);
     }
 }

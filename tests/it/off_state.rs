@@ -80,7 +80,7 @@ fn good_boards_fit_their_budget_and_stay_off_when_lifted() {
         for seed in 0..SEEDS {
             let run = run(&profile, Condition::Good, seed);
             // Noise next to a threshold may look like a slow detector now and then.
-            let usual = [FindingCode::StorageDrain, FindingCode::DwellShorterThanDelay];
+            let usual = [FindingCode::StorageDrain, FindingCode::SlowerThanDesign];
             let remarks = codes(&run).into_iter().filter(|code| !usual.contains(code));
             assert_eq!(remarks.collect::<Vec<_>>(), [], "{name} seed {seed}: {:#?}", run.verdict.findings);
         }

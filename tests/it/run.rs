@@ -233,7 +233,7 @@ fn good_boards_pass_with_the_truth_inside_and_hardly_a_remark() {
         let (analysis, verdict) = Bench::new(seed, board.clone()).run();
         assert_eq!(verdict.outcome, Outcome::Pass, "seed {seed}: {board:?} {verdict:#?}");
         // Noise that moves a board held beside its threshold is as usual, and no slow detector; but for a few.
-        let noise = |code| code == FindingCode::DwellShorterThanDelay;
+        let noise = |code| code == FindingCode::SlowerThanDesign;
         assert_eq!(analysis.findings.iter().find(|finding| !noise(finding.code)), None, "seed {seed}");
         remarked.extend((!analysis.findings.is_empty()).then_some(seed));
         let truths = [
@@ -259,7 +259,7 @@ fn slow_boards_are_named_and_their_thresholds_still_lie_inside() {
         let mut board = Board::good(&mut rng);
         board.detect = Duration::from_millis(rng.random_range(60..160));
         let (analysis, _) = Bench::new(seed, board.clone()).run();
-        assert!(found(&analysis, FindingCode::DwellShorterThanDelay), "seed {seed}: {board:?} {analysis:#?}");
+        assert!(found(&analysis, FindingCode::SlowerThanDesign), "seed {seed}: {board:?} {analysis:#?}");
         let trip = inside(&analysis, QuantityName::Trip, board.trip);
         if !trip || !inside(&analysis, QuantityName::ReEnable, board.re_enable) {
             outside.push(seed);

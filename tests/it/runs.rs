@@ -98,7 +98,7 @@ fn a_slow_board_is_measured_right_and_called_slow() {
         let (trip, uncertainty) = run.measured(QuantityName::Trip).expect("a trip");
         covered += u64::from((trip - run.truth.trip.0).abs() <= uncertainty);
         let codes: Vec<FindingCode> = run.verdict.findings.iter().map(|finding| finding.code).collect();
-        assert!(codes.contains(&FindingCode::DwellShorterThanDelay), "seed {seed}: {codes:?}");
+        assert!(codes.contains(&FindingCode::SlowerThanDesign), "seed {seed}: {codes:?}");
     }
     let share = covered as f64 / SEEDS as f64;
     assert!(share >= least_coverage(SEEDS), "U covers the trip in {share} of {SEEDS} seeds");

@@ -54,7 +54,7 @@ pub(super) const CASES: &[Case] = &[
     Case::new("11", "hysteresis of 30 mV", &[NarrowHysteresis], FAIL, First("chatter"))
         .figures(|setup| setup.board.hysteresis = Volts(0.03)),
     Case::new("12", "reversed board", &[Reversed], INVALID, First("reversed")),
-    Case::new("13", "detector of 50 ms", &[SlowDetector], PASS, First("dwell_shorter_than_delay"))
+    Case::new("13", "detector of 50 ms", &[SlowDetector], PASS, First("slower_than_design"))
         .figures(|setup| setup.board.detect_delay = Duration::from_millis(50)),
     Case::new("14", "conducts in deep discharge", &[DeepConduction], FAIL, First("conducts_when_deep"))
         .limits(DEEP),
