@@ -126,35 +126,25 @@ mod tests {
         cycles
     }
 
+    /// What ramps of these rates say of that board.
+    fn found<const N: usize>(rates: [f64; N], delay: f64) -> Option<Delay> {
+        let rates = rates.map(|rate| staircase(rate, delay));
+        let cycles = rates.each_ref().map(|cycles| cycles.iter().collect::<Vec<&Cycle>>());
+        let thresholds =
+            cycles.each_ref().map(|cycles| Threshold::of(cycles, Edge::Trip, 0.95).expect("found"));
+        let by_rate: Vec<(Vec<&Cycle>, &Threshold)> = cycles.into_iter().zip(&thresholds).collect();
+        Delay::of(&by_rate, Edge::Trip)
+    }
+
     #[test]
     fn rates_that_came_out_alike_tell_no_delay() {
-        let rates = [0.2, 0.21].map(|rate| staircase(rate, 0.1));
-        let found: Vec<(Vec<&Cycle>, Threshold)> = rates
-            .iter()
-            .map(|cycles| {
-                let cycles: Vec<&Cycle> = cycles.iter().collect();
-                let threshold = Threshold::of(&cycles, Edge::Trip, 0.95).expect("found");
-                (cycles, threshold)
-            })
-            .collect();
-        let by_rate: Vec<_> = found.iter().map(|(cycles, it)| (cycles.clone(), it)).collect();
-        assert_eq!(Delay::of(&by_rate, Edge::Trip), None);
+        assert_eq!(found([0.2, 0.21], 0.1), None);
     }
 
     #[test]
     fn rates_give_threshold_and_delay_within_what_they_claim() {
         for delay in [0.0, 0.02, 0.049, 0.051, 0.1, 0.13, 0.25, 0.5] {
-            let rates = [0.05, 0.2, 0.5].map(|rate| staircase(rate, delay));
-            let by_rate: Vec<(Vec<&Cycle>, Threshold)> = rates
-                .iter()
-                .map(|cycles| {
-                    let cycles: Vec<&Cycle> = cycles.iter().collect();
-                    let threshold = Threshold::of(&cycles, Edge::Trip, 0.95).expect("found");
-                    (cycles, threshold)
-                })
-                .collect();
-            let by_rate: Vec<_> = by_rate.iter().map(|(cycles, it)| (cycles.clone(), it)).collect();
-            let found = Delay::of(&by_rate, Edge::Trip).expect("three rates");
+            let found = found([0.05, 0.2, 0.5], delay).expect("three rates");
             assert!((found.at_rest_v - 6.0).abs() <= 2.0 * found.statistical_v, "{delay} s: {found:?}");
             assert!((found.delay_s - delay).abs() <= found.expanded_uncertainty_s, "{delay} s: {found:?}");
             // One period as a rectangle, k = 2, is 34.6 ms; what is stated is less than twice that.
