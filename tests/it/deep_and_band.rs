@@ -1,11 +1,11 @@
 //! Deep sweep and switching on inside the band, on virtual benches and over pseudo-terminals.
 
 use crate::river;
-use crate::virtual_run::{Run, run_setup};
+use crate::virtual_run::{Run, assert_safe, run_setup};
 use ebbmark::analysis::FindingCode;
 use ebbmark::profile::{InBand, Limit, Profile, QuantityName, WantedInBand};
 use ebbmark::sim::{Condition, DeepConduction, Setup};
-use ebbmark::trace::{OutputState, Stop};
+use ebbmark::trace::OutputState;
 use ebbmark::units::{Amps, Ohms, Volts};
 use ebbmark::verdict::{Decision, Outcome};
 
@@ -31,16 +31,6 @@ fn limited(most: f64) -> Profile {
 fn codes(run: &Run) -> Vec<FindingCode> {
     let codes = run.verdict.findings.iter().map(|finding| finding.code);
     codes.filter(|code| *code != FindingCode::SlowerThanDesign).collect()
-}
-
-fn assert_safe(run: &Run, profile: &Profile, what: &str) {
-    let highest = run.trace.samples.iter().map(|sample| sample.set).fold(Volts::ZERO, Volts::max);
-    assert!(highest <= profile.supply.maximum, "{what}: {highest}");
-    assert_eq!(
-        (&run.trace.ending.stop, run.trace.ending.output),
-        (&Stop::Completed, OutputState::Off),
-        "{what}"
-    );
 }
 
 fn deep_decision(run: &Run) -> Option<Decision> {

@@ -1,12 +1,12 @@
 //! Delays from step tests: on virtual benches the truth lies inside what is stated, whatever the delay and the bench.
 
 use crate::river;
-use crate::virtual_run::{Run, run_setup};
+use crate::virtual_run::{Run, assert_safe, run_setup};
 use ebbmark::analysis::FindingCode;
 use ebbmark::profile::{Limit, Profile, QuantityName};
 use ebbmark::sim::{Condition, Setup};
-use ebbmark::trace::{OutputState, Stop};
-use ebbmark::units::{Farads, Volts};
+use ebbmark::trace::OutputState;
+use ebbmark::units::Farads;
 use ebbmark::verdict::{Decision, Outcome};
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
@@ -41,13 +41,6 @@ fn assert_inside(run: &Run, what: &str) {
             true_delay(run, name)
         );
     }
-}
-
-fn assert_safe(run: &Run, profile: &Profile, what: &str) {
-    let highest = run.trace.samples.iter().map(|sample| sample.set).fold(Volts::ZERO, Volts::max);
-    assert!(highest <= profile.supply.maximum, "{what}: {highest}");
-    assert_eq!(run.trace.ending.output, OutputState::Off, "{what}");
-    assert_eq!(run.trace.ending.stop, Stop::Completed, "{what}");
 }
 
 #[test]

@@ -1,11 +1,10 @@
 //! A board that stays off once tripped, until its supply has gone: all is measured that such a board has.
 
 use crate::river;
-use crate::virtual_run::{Run, run_setup};
+use crate::virtual_run::{Run, assert_safe, run_setup};
 use ebbmark::analysis::{FindingCode, from_ramps};
 use ebbmark::profile::{Limit, Profile, QuantityName, Ramp};
 use ebbmark::sim::{Condition, DeepConduction, Setup};
-use ebbmark::trace::{OutputState, Stop};
 use ebbmark::units::{Amps, Volts};
 use ebbmark::verdict::Outcome;
 use std::time::Duration;
@@ -30,16 +29,6 @@ fn profile() -> Profile {
 
 fn codes(run: &Run) -> Vec<FindingCode> {
     run.verdict.findings.iter().map(|finding| finding.code).collect()
-}
-
-fn assert_safe(run: &Run, profile: &Profile, what: &str) {
-    let highest = run.trace.samples.iter().map(|sample| sample.set).fold(Volts::ZERO, Volts::max);
-    assert!(highest <= profile.supply.maximum, "{what}: {highest}");
-    assert_eq!(
-        (&run.trace.ending.stop, run.trace.ending.output),
-        (&Stop::Completed, OutputState::Off),
-        "{what}"
-    );
 }
 
 #[test]

@@ -1,12 +1,11 @@
 //! Delays from ramps of several rates within one run: on virtual benches they hold the truth, and agree with the steps.
 
 use crate::river;
-use crate::virtual_run::{Run, run_setup};
+use crate::virtual_run::{Run, assert_safe, run_setup};
 use ebbmark::analysis::{FindingCode, RampFit, from_ramps};
 use ebbmark::profile::{Profile, QuantityName};
 use ebbmark::sim::{Condition, Setup};
-use ebbmark::trace::{OutputState, Stop};
-use ebbmark::units::{Farads, Volts};
+use ebbmark::units::Farads;
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 use std::time::Duration;
@@ -43,13 +42,6 @@ fn errors(run: &Run, fit: &RampFit) -> (f64, f64) {
     let (threshold, delay) = truth(run, fit.threshold);
     let fit = fit.at_rest;
     ((fit.value - threshold) / (K * fit.uncertainty), (fit.delay - delay) / (K * fit.delay_uncertainty))
-}
-
-fn assert_safe(run: &Run, profile: &Profile, what: &str) {
-    let highest = run.trace.samples.iter().map(|sample| sample.set).fold(Volts::ZERO, Volts::max);
-    assert!(highest <= profile.supply.maximum, "{what}: {highest}");
-    assert_eq!(run.trace.ending.output, OutputState::Off, "{what}");
-    assert_eq!(run.trace.ending.stop, Stop::Completed, "{what}");
 }
 
 fn codes(run: &Run) -> Vec<FindingCode> {

@@ -5,7 +5,8 @@ use ebbmark::bench::{VirtualBench, drive, run_ready};
 use ebbmark::procedure::{Ability, Plan, Procedure};
 use ebbmark::profile::{Profile, QuantityName};
 use ebbmark::sim::{Condition, Faults, Setup, Truth};
-use ebbmark::trace::Trace;
+use ebbmark::trace::{OutputState, Stop, Trace};
+use ebbmark::units::Volts;
 use ebbmark::verdict::{Verdict, judge};
 use std::time::Duration;
 
@@ -94,4 +95,12 @@ pub(crate) fn faulty_run(profile: &Profile, condition: Condition, seed: u64) -> 
 fn run_on(profile: &Profile, setup: &Setup, bench: &mut VirtualBench) -> Trace {
     let procedure = Procedure::new(Plan::new(profile, bench.ability()));
     run_ready(drive(procedure, bench, setup.claims(), &mut (), std::future::pending()))
+}
+
+/// The run came to its end, no set-point was above the profile's maximum, and the output is off.
+pub(crate) fn assert_safe(run: &Run, profile: &Profile, what: &str) {
+    let highest = run.trace.samples.iter().map(|sample| sample.set).fold(Volts::ZERO, Volts::max);
+    assert!(highest <= profile.supply.maximum, "{what}: {highest}");
+    assert_eq!(run.trace.ending.output, OutputState::Off, "{what}");
+    assert_eq!(run.trace.ending.stop, Stop::Completed, "{what}");
 }
